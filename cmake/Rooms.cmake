@@ -1,0 +1,82 @@
+# One static library a room. A room sees the public headers of all, its own sources, and links only the rooms it names:
+# an include that runs back fails tests/layers, and a call that runs back fails to link.
+
+find_package(PkgConfig REQUIRED)
+find_package(Eigen3 3.4 REQUIRED NO_MODULE)
+find_package(fmt REQUIRED)
+find_package(nlohmann_json 3.11 REQUIRED)
+find_package(Boost 1.74 REQUIRED)
+find_package(Threads REQUIRED)
+find_package(OpenSSL REQUIRED)
+find_package(SQLiteCpp REQUIRED)
+pkg_check_modules(FFTW3 REQUIRED IMPORTED_TARGET fftw3)
+pkg_check_modules(SNDFILE REQUIRED IMPORTED_TARGET sndfile)
+pkg_check_modules(CAIRO REQUIRED IMPORTED_TARGET cairo cairo-pdf cairo-svg cairo-png)
+pkg_check_modules(PANGO REQUIRED IMPORTED_TARGET pangocairo)
+pkg_check_modules(PLPLOT REQUIRED IMPORTED_TARGET plplot)
+
+add_library(ringwright_flags INTERFACE)
+target_compile_options(ringwright_flags INTERFACE
+  -Wall -Wextra -Wpedantic -Wconversion -Wshadow -Werror)
+if(RINGWRIGHT_SANITIZE)
+  target_compile_options(ringwright_flags INTERFACE
+    -fsanitize=address,undefined -fno-sanitize-recover=all -fno-omit-frame-pointer)
+  target_link_options(ringwright_flags INTERFACE -fsanitize=address,undefined)
+endif()
+if(RINGWRIGHT_FUZZ)
+  target_compile_options(ringwright_flags INTERFACE -fsanitize=fuzzer-no-link,address,undefined)
+  target_link_options(ringwright_flags INTERFACE -fsanitize=address,undefined)
+endif()
+
+# What each room takes from outside the project.
+set(ringwright_value_libraries fmt::fmt)
+set(ringwright_recording_libraries PkgConfig::SNDFILE OpenSSL::Crypto fmt::fmt Threads::Threads)
+set(ringwright_event_libraries Eigen3::Eigen PkgConfig::FFTW3 fmt::fmt)
+set(ringwright_uncertainty_libraries Eigen3::Eigen Boost::headers fmt::fmt)
+set(ringwright_identify_libraries Eigen3::Eigen Boost::headers PkgConfig::FFTW3 fmt::fmt Threads::Threads)
+set(ringwright_property_libraries Boost::headers Eigen3::Eigen fmt::fmt)
+set(ringwright_analysis_libraries fmt::fmt Threads::Threads)
+set(ringwright_conformity_libraries Boost::headers Eigen3::Eigen fmt::fmt)
+set(ringwright_ledger_libraries SQLiteCpp sqlite3 OpenSSL::Crypto Boost::headers Eigen3::Eigen fmt::fmt
+    nlohmann_json::nlohmann_json)
+set(ringwright_report_libraries fmt::fmt nlohmann_json::nlohmann_json PkgConfig::CAIRO PkgConfig::PANGO
+    PkgConfig::PLPLOT Boost::headers)
+
+function(ringwright_room name)
+  cmake_parse_arguments(room "" "" "USES" ${ARGN})
+  file(GLOB sources CONFIGURE_DEPENDS ${PROJECT_SOURCE_DIR}/src/${name}/*.cpp)
+  set(target ringwright_${name})
+  if(NOT sources)
+    add_library(${target} INTERFACE)
+    target_include_directories(${target} INTERFACE ${PROJECT_SOURCE_DIR}/include)
+    return()
+  endif()
+  add_library(${target} STATIC ${sources})
+  target_include_directories(${target} PUBLIC ${PROJECT_SOURCE_DIR}/include PRIVATE ${PROJECT_SOURCE_DIR}/src)
+  target_compile_definitions(${target} PRIVATE RINGWRIGHT_VERSION="${PROJECT_VERSION}")
+  target_link_libraries(${target} PRIVATE ringwright_flags ${ringwright_${name}_libraries})
+  foreach(used IN LISTS room_USES)
+    target_link_libraries(${target} PUBLIC ringwright_${used})
+  endforeach()
+endfunction()
+
+# `ringwright`: all rooms as one name, for callers who link the library.
+function(ringwright_umbrella target)
+  add_library(${target} INTERFACE)
+  target_link_libraries(${target} INTERFACE ringwright_report ringwright_ledger ringwright_conformity
+    ringwright_analysis ringwright_property ringwright_identify ringwright_uncertainty ringwright_event
+    ringwright_recording ringwright_value)
+endfunction()
+
+# The program: build/ringwright, a thin client of the library.
+function(ringwright_program target library)
+  file(GLOB sources CONFIGURE_DEPENDS ${PROJECT_SOURCE_DIR}/src/app/*.cpp)
+  if(NOT sources)
+    return()
+  endif()
+  add_executable(${target} ${sources})
+  set_target_properties(${target} PROPERTIES OUTPUT_NAME ringwright)
+  target_include_directories(${target} PRIVATE ${PROJECT_SOURCE_DIR}/src)
+  target_compile_definitions(${target} PRIVATE RINGWRIGHT_VERSION="${PROJECT_VERSION}")
+  target_link_libraries(${target} PRIVATE ${library} ringwright_flags fmt::fmt nlohmann_json::nlohmann_json)
+endfunction()

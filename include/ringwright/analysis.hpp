@@ -1,0 +1,61 @@
+#pragma once
+// The whole pipeline in memory: recordings in, one identification out.
+
+#include <optional>
+#include <string>
+#include <vector>
+
+#include "ringwright/event.hpp"
+#include "ringwright/identify.hpp"
+#include "ringwright/property.hpp"
+#include "ringwright/recording.hpp"
+
+namespace ringwright {
+
+/// One recording to analyse with the mass that was added to the article for it.
+struct RecordingInput {
+    Recording recording;
+    std::optional<MeasuredValue> added_mass;
+};
+
+struct AnalysisOptions {
+    EventOptions event;
+    IdentifyOptions identify;
+    Article article;
+    std::optional<double> time_base_ppm;         ///< standard uncertainty of the clock, parts per million
+    std::optional<double> sensor_gain_relative;  ///< relative standard uncertainty of the sensor's gain
+};
+
+struct RecordingIdentification {
+    Recording recording;  ///< samples may be released to save memory
+    std::optional<MeasuredValue> added_mass;
+    std::size_t sample_count = 0;
+    std::vector<EventIdentification> events;
+    Findings findings;   ///< of the recording, its events search included
+    std::string reason;  ///< why there is no event
+};
+
+/// What the releases say together.
+struct PooledResult {
+    std::string method;  ///< "curve_fit" …; empty when nothing answered
+    std::string model;
+    std::size_t event_count = 0;
+    Quantities quantities;
+    std::vector<BudgetLine> budget;
+    Findings findings;
+};
+
+struct Identification {
+    double confidence_level = 0.95;
+    std::vector<RecordingIdentification> recordings;
+    PooledResult result;
+    /// True when some method answered for some event.
+    [[nodiscard]] bool answered() const { return !result.method.empty(); }
+};
+
+/// Finds the events of each recording, identifies each, pools them as repeats on one article, derives the
+/// properties.
+[[nodiscard]] Identification identify(std::vector<RecordingInput> recordings,
+                                      const AnalysisOptions& options = {});
+
+}  // namespace ringwright

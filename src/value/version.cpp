@@ -1,0 +1,9 @@
+#include "ringwright/version.hpp"
+
+namespace ringwright {
+
+std::string_view version() {
+    return RINGWRIGHT_VERSION;
+}
+
+}  // namespace ringwright
