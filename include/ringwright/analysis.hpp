@@ -24,12 +24,16 @@ struct AnalysisOptions {
     Article article;
     std::optional<double> time_base_ppm;         ///< standard uncertainty of the clock, parts per million
     std::optional<double> sensor_gain_relative;  ///< relative standard uncertainty of the sensor's gain
+    unsigned jobs =
+        0;  ///< threads over events; 0: as many as the machine has. The answer does not depend on it
+    bool keep_samples = false;  ///< keep the samples in the result; off to save memory
 };
 
 struct RecordingIdentification {
     Recording recording;  ///< samples may be released to save memory
     std::optional<MeasuredValue> added_mass;
     std::size_t sample_count = 0;
+    double duration_s = 0.0;
     std::vector<EventIdentification> events;
     Findings findings;   ///< of the recording, its events search included
     std::string reason;  ///< why there is no event
@@ -40,6 +44,7 @@ struct PooledResult {
     std::string method;  ///< "curve_fit" …; empty when nothing answered
     std::string model;
     std::size_t event_count = 0;
+    bool torsional = false;  ///< units of torsion: N·m/rad, N·m·s/rad
     Quantities quantities;
     std::vector<BudgetLine> budget;
     Findings findings;
@@ -47,6 +52,7 @@ struct PooledResult {
 
 struct Identification {
     double confidence_level = 0.95;
+    Article article;  ///< as it was given
     std::vector<RecordingIdentification> recordings;
     PooledResult result;
     /// True when some method answered for some event.
@@ -54,7 +60,11 @@ struct Identification {
 };
 
 /// Finds the events of each recording, identifies each, pools them as repeats on one article, derives the
-/// properties.
+/// properties. The result takes its numbers from the curve fit where that answers at least half of the
+/// releases that any method answers, else from the logarithmic decrement, else from the half-power bandwidth.
+/// Recordings with different added masses are pooled loading by loading; the frequency and damping stated are
+/// then those with the least added, and a finding says so. Never throws for what is in the samples; throws
+/// UsageError where from/to lie outside a recording or the article is contradictory (derive_properties).
 [[nodiscard]] Identification identify(std::vector<RecordingInput> recordings,
                                       const AnalysisOptions& options = {});
 

@@ -1,0 +1,81 @@
+#include "ringwright/analysis.hpp"
+
+#include <algorithm>
+#include <atomic>
+#include <cmath>
+#include <functional>
+#include <thread>
+#include <utility>
+
+#include "analysis/result.hpp"
+#include "analysis/series.hpp"
+
+namespace ringwright {
+namespace {
+
+/// Runs task(0) … task(count − 1) on as many threads as asked; each task writes only its own place, so that
+/// the result does not depend on the number of threads. Tasks do not throw.
+void for_each_index(std::size_t count, unsigned jobs, const std::function<void(std::size_t)>& task) {
+    const unsigned hardware = std::max(1U, std::thread::hardware_concurrency());
+    const std::size_t threads = std::min<std::size_t>(jobs == 0 ? hardware : jobs, count);
+    if (threads < 2) {
+        for (std::size_t i = 0; i < count; ++i) task(i);
+        return;
+    }
+    std::atomic<std::size_t> next{0};
+    std::vector<std::jthread> pool;
+    for (std::size_t t = 0; t < threads; ++t)
+        pool.emplace_back([&] {
+            for (std::size_t i = next++; i < count; i = next++) task(i);
+        });
+}
+
+RecordingIdentification search(RecordingInput input, const EventOptions& options) {
+    RecordingIdentification result;
+    EventSearch found = find_events(input.recording, options);
+    result.sample_count = input.recording.size();
+    result.duration_s = input.recording.duration_s();
+    result.findings = input.recording.findings;
+    result.findings.insert(result.findings.end(), found.findings.begin(), found.findings.end());
+    result.reason = std::move(found.reason);
+    result.added_mass = std::move(input.added_mass);
+    result.recording = std::move(input.recording);
+    for (Event& event : found.events) {
+        result.events.emplace_back();
+        result.events.back().event = std::move(event);
+    }
+    return result;
+}
+
+void identify_all(std::vector<RecordingIdentification>& recordings, const AnalysisOptions& options) {
+    std::vector<std::pair<const Recording*, EventIdentification*>> work;
+    for (RecordingIdentification& recording : recordings)
+        for (EventIdentification& event : recording.events) work.emplace_back(&recording.recording, &event);
+    for_each_index(work.size(), options.jobs, [&](std::size_t i) {
+        const Event event = work[i].second->event;
+        *work[i].second = identify_event(*work[i].first, event, options.identify);
+    });
+}
+
+void release_samples(std::vector<RecordingIdentification>& recordings) {
+    for (RecordingIdentification& recording : recordings) {
+        recording.recording.samples = {};
+        recording.recording.clock.times_s.shrink_to_fit();
+    }
+}
+
+}  // namespace
+
+Identification identify(std::vector<RecordingInput> recordings, const AnalysisOptions& options) {
+    Identification identification;
+    identification.confidence_level = options.identify.confidence_level;
+    identification.article = options.article;
+    for (RecordingInput& recording : recordings)
+        identification.recordings.push_back(search(std::move(recording), options.event));
+    identify_all(identification.recordings, options);
+    identification.result = analysis::combine(identification.recordings, options);
+    if (!options.keep_samples) release_samples(identification.recordings);
+    return identification;
+}
+
+}  // namespace ringwright

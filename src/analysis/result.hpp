@@ -1,0 +1,13 @@
+#pragma once
+// From the releases of all recordings to the one result.
+
+#include <vector>
+
+#include "ringwright/analysis.hpp"
+
+namespace ringwright::analysis {
+
+[[nodiscard]] PooledResult combine(const std::vector<RecordingIdentification>& recordings,
+                                   const AnalysisOptions& options);
+
+}  // namespace ringwright::analysis
