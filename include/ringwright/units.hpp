@@ -47,6 +47,12 @@ struct Unit {
 /// The unit that `text` names, whatever the spelling ("mm/s^2", "mm/s2", "mm/s²", "mm s-2", "G", "in/s2",
 /// "lbf/in"). Nothing when the text names no unit that is known.
 [[nodiscard]] std::optional<Unit> find_unit(std::string_view text);
+/// The same, and of the dimension wanted, which settles what can be read in two ways: "g" and "mg" are masses
+/// where a mass is wanted and accelerations otherwise; "lb/in" and "kg/mm" are stiffnesses where one is
+/// wanted.
+[[nodiscard]] std::optional<Unit> find_unit(std::string_view text, Dimension wanted);
+/// The usual spelling nearest to `text`, for a message about an unknown unit.
+[[nodiscard]] std::string_view suggested_unit(std::string_view text);
 
 /// As find_unit, but throws UsageError naming `where` (an option, a header, a sheet key) and the nearest
 /// known spelling.
