@@ -136,8 +136,4 @@ struct MassAndStiffness {
 
 /// Mass that moves with the end of a heavy uniform spring: m + m_s/3 (Rayleigh 1877).
 [[nodiscard]] double moving_mass(double mass, double spring_mass);
-/// Exact natural frequency over the one of Rayleigh's third, from β tan β = m_s/m, ω = β√(k/m_s). Always ≤ 1;
-/// 0.9934 for a spring as heavy as its load. mass > 0, spring_mass ≥ 0.
-[[nodiscard]] double spring_mass_correction(double mass, double spring_mass);
-
 }  // namespace ringwright

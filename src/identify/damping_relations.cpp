@@ -1,9 +1,7 @@
 #include "ringwright/damping_relations.hpp"
 
-#include <boost/math/tools/roots.hpp>
 #include <cassert>
 #include <cmath>
-#include <cstdint>
 #include <numbers>
 
 namespace ringwright {
@@ -193,19 +191,6 @@ std::optional<MassAndStiffness> from_added_mass(double frequency_hz, double load
 
 double moving_mass(double mass, double spring_mass) {
     return mass + spring_mass / 3.0;
-}
-
-double spring_mass_correction(double mass, double spring_mass) {
-    assert(mass > 0.0 && spring_mass >= 0.0);
-    if (spring_mass == 0.0) return 1.0;
-    const double share = spring_mass / mass;
-    // β sin β − share·cos β is negative at 0, positive at π/2, and has one root between.
-    const auto condition = [share](double beta) { return beta * std::sin(beta) - share * std::cos(beta); };
-    std::uintmax_t steps = 200;
-    const auto bracket = boost::math::tools::toms748_solve(
-        condition, 0.0, 0.5 * pi, -share, 0.5 * pi, boost::math::tools::eps_tolerance<double>(), steps);
-    const double beta = 0.5 * (bracket.first + bracket.second);
-    return beta * std::sqrt((1.0 + share / 3.0) / share);
 }
 
 }  // namespace ringwright

@@ -47,15 +47,15 @@ void add_quantity(PropertyResult& result, const ArticleModel& model, Quantity qu
 
 void note_heavy_spring(PropertyResult& result, const Article& article, double load) {
     if (!article.spring_mass || !(load > 0.0)) return;
-    const double excess = rule_of_a_third_excess(article.spring_mass->value / load) - 1.0;
+    const double shortfall = 1.0 - rule_of_a_third_ratio(article.spring_mass->value / load);
     // A tenth of a per cent is what a good weighing and a good record leave.
-    if (excess < 1e-3) return;
+    if (shortfall < 1e-3) return;
     result.findings.push_back(
         {"heavy_spring", Severity::caution,
          fmt::format(
              "The spring weighs {:.0f} % of the load on it, so that counting a third of its mass puts the "
-             "stiffness about {:.1f} % too high for a uniform spring. Test with a heavier load",
-             100.0 * article.spring_mass->value / load, 100.0 * excess)});
+             "stiffness about {:.1f} % too low for a uniform spring. Test with a heavier load",
+             100.0 * article.spring_mass->value / load, 100.0 * shortfall)});
 }
 
 PropertyResult with_known_mass(const std::vector<Loading>& loadings, const Article& article,
@@ -124,7 +124,7 @@ PropertyResult with_unknown_mass(const std::vector<Loading>& loadings, const Art
 
 }  // namespace
 
-double rule_of_a_third_excess(double spring_over_load) {
+double rule_of_a_third_ratio(double spring_over_load) {
     // β tan β rises from 0 without bound on (0, π/2).
     double low = 0.0;
     double high = std::numbers::pi / 2.0;

@@ -6,6 +6,7 @@
 #include <numbers>
 
 #include "ringwright/damping_relations.hpp"
+#include "ringwright/property.hpp"
 
 using namespace ringwright;
 
@@ -13,6 +14,19 @@ namespace {
 
 constexpr double pi = std::numbers::pi;
 constexpr double table_gravity = 9.81;  // the books' value, m/s²
+
+/// What the whole step from loadings to mass and stiffness says, nothing known of the mass.
+Quantities from_loadings(double frequency_hz, double loaded_frequency_hz, double added_mass) {
+    const auto frequency = [](double value) {
+        return Estimate{value, 1e-4 * value, {0.9998 * value, 1.0002 * value}};
+    };
+    Loading plain, loaded;
+    plain.natural_frequency = frequency(frequency_hz);
+    loaded.natural_frequency = frequency(loaded_frequency_hz);
+    plain.damping_ratio = loaded.damping_ratio = {0.01, 1e-4, {0.0098, 0.0102}};
+    loaded.added_mass.value = added_mass;
+    return derive_properties({plain, loaded}, {}, false, 0.95).quantities;
+}
 
 }  // namespace
 
@@ -47,6 +61,9 @@ TEST_CASE("E4 added mass: 94 cycles a minute, 76.7 with 0.453 kg more") {
     REQUIRE(article);
     CHECK(article->mass == Approx(0.902421).epsilon(1e-6));
     CHECK(article->stiffness == Approx(87.44244).epsilon(1e-7));
+    const Quantities line = from_loadings(94.0 / 60.0, 76.7 / 60.0, 0.453);
+    CHECK(line.at(Quantity::mass).value == Approx(0.902421).epsilon(1e-6));
+    CHECK(line.at(Quantity::stiffness).value == Approx(87.44244).epsilon(1e-7));
 }
 
 TEST_CASE("E5 added mass: 1.5 Hz, 0.9 Hz with 80 g more") {
@@ -55,6 +72,9 @@ TEST_CASE("E5 added mass: 1.5 Hz, 0.9 Hz with 80 g more") {
     REQUIRE(article);
     CHECK(article->mass == Approx(0.045).epsilon(1e-12));
     CHECK(article->stiffness == Approx(3.997190).epsilon(2e-7));
+    const Quantities line = from_loadings(1.5, 0.9, 0.080);
+    CHECK(line.at(Quantity::mass).value == Approx(0.045).epsilon(1e-9));
+    CHECK(line.at(Quantity::stiffness).value == Approx(3.997190).epsilon(2e-7));
     CHECK_FALSE(from_added_mass(0.9, 1.5, 0.080));
     CHECK_FALSE(from_added_mass(1.5, 0.9, 0.0));
 }
@@ -156,6 +176,18 @@ TEST_CASE("E16 quality factor from the ratio of neighbouring extremes") {
     CHECK(quality(0.99) == Approx(std::hypot(156.2929189, 0.5)).epsilon(1e-9));
     CHECK(quality(0.98) == Approx(std::hypot(77.75177367, 0.5)).epsilon(1e-9));
     CHECK(quality(0.90) == Approx(std::hypot(14.908776, 0.5)).epsilon(5e-8));
+}
+
+TEST_CASE("E17 mass of the spring itself") {
+    // β tan β = m_s/m against Rayleigh's third, frequency ratios with 12 digits (rule seen in a physics
+    // forum's worked answer; ratios computed). The stiffness goes with the square of the frequency.
+    const auto frequency_ratio = [](double share) { return std::sqrt(rule_of_a_third_ratio(share)); };
+    CHECK(frequency_ratio(0.01) == Approx(0.999998895215).epsilon(1e-12));
+    CHECK(frequency_ratio(0.1) == Approx(0.999895012085).epsilon(1e-12));
+    CHECK(frequency_ratio(0.5) == Approx(0.997888221398).epsilon(1e-12));
+    CHECK(frequency_ratio(1.0) == Approx(0.993427658426).epsilon(1e-12));
+    CHECK(frequency_ratio(2.0) == Approx(0.983046956489).epsilon(1e-12));
+    CHECK(frequency_ratio(5.0) == Approx(0.959491405632).epsilon(1e-12));
 }
 
 TEST_CASE("E18 torsion wire, steel, 2 mm by 1 m, disc of 2 kg and 0.1 m radius") {

@@ -72,8 +72,6 @@ TEST_CASE("friction force and its loss of amplitude undo each other") {
           Approx(force).epsilon(rounding));
 }
 
-TEST_CASE("a third of the spring moves, exactly so for a light spring") {
+TEST_CASE("a third of the spring moves") {
     CHECK(moving_mass(2.0, 0.3) == Approx(2.1).epsilon(rounding));
-    CHECK(spring_mass_correction(1.0, 0.0) == 1.0);
-    CHECK(spring_mass_correction(1.0, 1e-9) == Approx(1.0).epsilon(1e-12));
 }
