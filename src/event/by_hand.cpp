@@ -1,0 +1,101 @@
+#include "event/by_hand.hpp"
+
+#include <algorithm>
+#include <cmath>
+#include <span>
+
+#include "event/spectrum.hpp"
+#include "fmt/format.h"
+#include "ringwright/error.hpp"
+
+namespace ringwright::event_search {
+namespace {
+
+constexpr std::size_t fewest_samples = 8;
+
+/// First sample not before `time_s`.
+std::size_t sample_at_time(const Recording& recording, double time_s) {
+    const SampleClock& clock = recording.clock;
+    if (!clock.uniform()) {
+        const auto at = std::lower_bound(clock.times_s.begin(), clock.times_s.end(), time_s);
+        return static_cast<std::size_t>(at - clock.times_s.begin());
+    }
+    const double position = std::ceil((time_s - clock.start_s) * clock.sample_rate_hz - 1e-6);
+    return std::min(static_cast<std::size_t>(std::max(0.0, position)), recording.size());
+}
+
+SampleRange window_of(const Recording& recording, const EventOptions& options) {
+    const std::size_t n = recording.size();
+    const double start_s = n > 0 ? recording.clock.time_of(0) : 0.0;
+    const double end_s = n > 0 ? recording.clock.time_of(n - 1) : 0.0;
+    const double from_s = options.from_s.value_or(start_s), to_s = options.to_s.value_or(end_s);
+    const std::string place = fmt::format("{:.6g} s to {:.6g} s", from_s, to_s);
+    if (!(from_s < to_s))
+        throw UsageError({"--from/--to", place, "the window ends before it begins",
+                          "Give a window whose end is later than its start."});
+    if (!(from_s < end_s) || !(to_s > start_s))
+        throw UsageError({"--from/--to", place,
+                          fmt::format("the recording runs from {:.6g} s to {:.6g} s", start_s, end_s),
+                          "Give a window inside the recording."});
+    const std::size_t end = options.to_s ? sample_at_time(recording, to_s) : n;
+    const SampleRange window{sample_at_time(recording, from_s), end};
+    if (window.end < window.begin + fewest_samples)
+        throw UsageError(
+            {"--from/--to", place,
+             fmt::format("the window holds {} samples", window.end - std::min(window.begin, window.end)),
+             fmt::format("Give a window of at least {} samples.", fewest_samples)});
+    return window;
+}
+
+/// The decay that begins at the first value, on the time scale on which it is plainest.
+std::optional<Found> decay_from_first(const Pyramid& pyramid, std::size_t size) {
+    std::optional<Found> best;
+    double most = 0.0;
+    for (std::size_t level = 0; level < pyramid.levels(); ++level) {
+        const std::span<const double> means = pyramid.level(level);
+        const std::span<const double> points = means.subspan(0, std::min<std::size_t>(means.size(), 48));
+        const std::optional<DecayFit> fit = fit_decay(points);
+        if (!fit) continue;
+        const double explained =
+            std::sqrt(std::max(0.0, fit->total_sum - fit->residual_sum) / static_cast<double>(points.size()));
+        const double score = explained * std::log1p(fit->explained_ratio());
+        if (score <= most) continue;
+        most = score;
+        Found found;
+        found.start.shape = at_level(fit->shape, level, 0);
+        found.start.level = level;
+        found.start.fit = *fit;
+        found.start.amplitude = fit->envelope_at(0.0);
+        found.start.noise_rms = fit->residual_rms();
+        best = found;
+    }
+    if (best) best->course = follow_decay(pyramid, best->start, size);
+    return best;
+}
+
+}  // namespace
+
+EventSearch search_by_hand(const Recording& recording, const EventOptions& options) {
+    const SampleRange window = window_of(recording, options);
+    Event event;
+    event.by_hand = true;
+    event.kind = options.kind.value_or(TestKind::pluck);
+    event.kind_known = options.kind.has_value();
+    event.begin = window.begin;
+    event.end = event.rest_end = window.end;
+    const Series series(recording);
+    const std::size_t first = series.position_of(window.begin), last = series.position_of(window.end);
+    const std::span<const double> values = series.values().subspan(first, last - first);
+    const Pyramid pyramid(values);
+    if (const std::optional<Found> found = decay_from_first(pyramid, values.size())) {
+        event.end = std::clamp(series.sample_at(first + found->end()), event.begin + 1, window.end);
+        event.noise_level = found->start.noise_rms;
+        event.start_amplitude = found->start.amplitude;
+        event.frequency_guess_hz = ringing_frequency(pyramid, series.rate_hz(), *found, options.near_hz);
+    }
+    EventSearch result;
+    result.events.push_back(event);
+    return result;
+}
+
+}  // namespace ringwright::event_search

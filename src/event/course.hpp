@@ -1,0 +1,21 @@
+#pragma once
+// How a decay goes on after its start: down to the noise, and on until something disturbs it.
+
+#include "event/start.hpp"
+
+namespace ringwright::event_search {
+
+/// Positions of the series; see Event for the meaning of end and rest_end.
+struct Course {
+    std::size_t end = 0, rest_end = 0;
+    double fall = 0.0;              ///< of ln amplitude over the decay
+    double fall_uncertainty = 0.0;  ///< standard uncertainty of it
+    double floor = 0.0;  ///< amplitude of the noise in the band of the mode; 0 when it is not reached
+    bool reaches_noise = false;
+    [[nodiscard]] bool falls() const { return fall > 0.05 && fall > 4.0 * fall_uncertainty; }
+};
+
+/// Follows the decay from its start to `limit` at most.
+[[nodiscard]] Course follow_decay(const Pyramid& pyramid, const Start& start, std::size_t limit);
+
+}  // namespace ringwright::event_search
