@@ -63,6 +63,7 @@ bool estimate_noise(CurveFit& fit, int draws, std::uint64_t seed) {
     if (!design.full_rank) return false;
     fit.residual = fit.samples.value - linear_columns(fit.fit.model, fit.samples) * fit.fit.coefficients;
     fit.map = design.map;
+    fit.basis = design.basis;
     NoiseOptions options;
     options.draws = draws;
     options.seed = seed;

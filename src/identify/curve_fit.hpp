@@ -28,6 +28,7 @@ struct CurveFit {
     DecaySamples samples;
     ProjectedFit fit;
     NoiseFit noise;
+    Eigen::MatrixXd basis;        ///< orthonormal columns: design · map
     Eigen::MatrixXd map;
     Eigen::VectorXd residual;     ///< value − model, scaled like samples.value
     Eigen::VectorXd innovations;  ///< whitened residuals over their standard deviation

@@ -56,9 +56,16 @@ double outstanding_frequency(const CurveFit& fit) {
     return two_pi * refined_peak(spectrum.power, best, best) * spectrum.bin_cycles / fit.samples.step_s;
 }
 
+// −2 log-likelihood, each order of the noise model paid for.
+double criterion_of(const CurveFit& fit) {
+    return fit.noise.fit.likelihood_criterion + 2.0 * static_cast<double>(fit.noise.noise.order());
+}
+
+// Gain that chance reaches at the best of all frequencies in one recording in a thousand. The frequency is searched on a
+// grid about four times finer than the independent ones.
 double needed_gain(const CurveFit& fit, double parameters) {
-    const double searched = static_cast<double>(longest_stretch(fit.samples).length) / 2.0;
-    return chi_squared_quantile(1.0 - false_alarm / std::max(1.0, searched), parameters);
+    const double searched = 2.0 * static_cast<double>(longest_stretch(fit.samples).length);
+    return chi_squared_quantile(1.0 - false_alarm / searched, parameters);
 }
 
 std::optional<CurveFit> with_tone(const CurveFit& fit, double omega) {
@@ -79,7 +86,7 @@ std::optional<CurveFit> with_mode(const CurveFit& fit, double omega) {
         const Oscillator& added = trial.fit.model.oscillators.back();
         if (added.damping_ratio() <= 0.0 || added.damping_ratio() > 0.5) continue;
         if (!settle(trial)) continue;
-        if (!best || trial.noise.fit.likelihood_criterion < best->noise.fit.likelihood_criterion)
+        if (!best || criterion_of(trial) < criterion_of(*best))
             best = std::move(trial);
     }
     return best;
@@ -103,16 +110,16 @@ void add_components(CurveFit& fit, const CurveFitOptions& options) {
     for (int i = 0; i < most_components; ++i) {
         const double omega = outstanding_frequency(fit);
         if (omega <= 0.0) return;
-        const double before = fit.noise.fit.likelihood_criterion;
+        const double before = criterion_of(fit);
         std::optional<CurveFit> tone = with_tone(fit, omega);
         std::optional<CurveFit> mode;
         const bool mode_allowed =
             !options.modes || static_cast<int>(fit.fit.model.oscillators.size()) < *options.modes;
         if (mode_allowed) mode = with_mode(fit, omega);
         const double tone_gain =
-            tone ? before - tone->noise.fit.likelihood_criterion - needed_gain(fit, 3.0) : -1.0;
+            tone ? before - criterion_of(*tone) - needed_gain(fit, 3.0) : -1.0;
         const double mode_gain =
-            mode ? before - mode->noise.fit.likelihood_criterion - needed_gain(fit, 4.0) : -1.0;
+            mode ? before - criterion_of(*mode) - needed_gain(fit, 4.0) : -1.0;
         if (tone_gain <= 0.0 && mode_gain <= 0.0) return;
         if (mode_gain > tone_gain) {
             fit = std::move(*mode);
