@@ -14,8 +14,8 @@ struct Stretch {
     Eigen::Index length = 0;
 };
 
-/// Stationary autoregressive noise x_t = Σ a_j x_(t−j) + e_t, held by its partial autocorrelations κ_1 … κ_p (each in
-/// (−1, 1), so that every value is stationary) and the variance of e.
+/// Stationary autoregressive noise x_t = Σ a_j x_(t−j) + e_t, held by its partial autocorrelations κ_1 … κ_p
+/// (each in (−1, 1), so that every value is stationary) and the variance of e.
 struct AutoregressiveNoise {
     Eigen::VectorXd partial_autocorrelation;
     double innovation_variance = 1.0;
@@ -25,34 +25,39 @@ struct AutoregressiveNoise {
     [[nodiscard]] Eigen::VectorXd coefficients() const;
     /// Variance of x.
     [[nodiscard]] double variance() const;
-    /// Power spectral density at `cycles_per_sample` (0 … 0.5), two-sided, so that its mean over the band is the variance.
+    /// Power spectral density at `cycles_per_sample` (0 … 0.5), two-sided, so that its mean over the band is
+    /// the variance.
     [[nodiscard]] double spectral_density(double cycles_per_sample) const;
 };
 
-/// Turns each column of `columns` into innovations in units of √innovation_variance's numerator: after whitening, noise of
-/// this model is white with variance `innovation_variance`. The first p rows of each stretch use the predictors of lower
-/// order, so nothing is lost at the edges. Rows outside the stretches are left as they are.
-void whiten(const AutoregressiveNoise& noise, const std::vector<Stretch>& stretches, Eigen::Ref<Eigen::MatrixXd> columns);
+/// Turns each column of `columns` into innovations in units of √innovation_variance's numerator: after
+/// whitening, noise of this model is white with variance `innovation_variance`. The first p rows of each
+/// stretch use the predictors of lower order, so nothing is lost at the edges. Rows outside the stretches are
+/// left as they are.
+void whiten(const AutoregressiveNoise& noise, const std::vector<Stretch>& stretches,
+            Eigen::Ref<Eigen::MatrixXd> columns);
 
 /// Draws noise of this model into each stretch of `out` from unit normal deviates in `deviates` (same size).
-void colour(const AutoregressiveNoise& noise, const std::vector<Stretch>& stretches, const Eigen::VectorXd& deviates,
-            Eigen::Ref<Eigen::VectorXd> out);
+void colour(const AutoregressiveNoise& noise, const std::vector<Stretch>& stretches,
+            const Eigen::VectorXd& deviates, Eigen::Ref<Eigen::VectorXd> out);
 
-/// Generalised least squares of `response` on `design` under one noise model: coefficients of the design, their
-/// covariance for unit innovation variance, and the whitened residual sum of squares.
+/// Generalised least squares of `response` on `design` under one noise model: coefficients of the design,
+/// their covariance for unit innovation variance, and the whitened residual sum of squares.
 struct WhitenedFit {
     Eigen::VectorXd coefficients;
     Eigen::MatrixXd unit_covariance;
     double residual_sum = 0.0;
-    double criterion = 0.0;             ///< −2 × restricted log-likelihood, constants dropped
-    double likelihood_criterion = 0.0;  ///< −2 × log-likelihood, constants dropped: comparable between designs
+    double criterion = 0.0;  ///< −2 × restricted log-likelihood, constants dropped
+    double likelihood_criterion =
+        0.0;  ///< −2 × log-likelihood, constants dropped: comparable between designs
     bool valid = false;
 };
 
-/// Restricted likelihood (Patterson & Thompson 1971) of autoregressive noise for a linear model: the coefficients are
-/// integrated out, so that what the fit takes from the residuals is not taken for less noise. One pass over the rows
-/// gathers lagged products; each evaluation then costs O(p² k²), whatever the number of rows.
-/// Preconditions: design has full column rank and well-scaled (preferably orthonormal) columns.
+/// Restricted likelihood (Patterson & Thompson 1971) of autoregressive noise for a linear model: the
+/// coefficients are integrated out, so that what the fit takes from the residuals is not taken for less
+/// noise. One pass over the rows gathers lagged products; each evaluation then costs O(p² k²), whatever the
+/// number of rows. Preconditions: design has full column rank and well-scaled (preferably orthonormal)
+/// columns.
 class RestrictedLikelihood {
   public:
     RestrictedLikelihood(const Eigen::MatrixXd& design, const Eigen::VectorXd& response,
@@ -64,7 +69,8 @@ class RestrictedLikelihood {
     [[nodiscard]] Eigen::Index highest_order() const { return highest_order_; }
 
   private:
-    [[nodiscard]] Eigen::MatrixXd gram(const Eigen::MatrixXd& predictors, const Eigen::VectorXd& variances) const;
+    [[nodiscard]] Eigen::MatrixXd gram(const Eigen::MatrixXd& predictors,
+                                       const Eigen::VectorXd& variances) const;
     [[nodiscard]] const std::vector<Eigen::MatrixXd>& lag_products(Eigen::Index order) const;
 
     Eigen::Index rows_ = 0, width_ = 0, highest_order_ = 0;
@@ -81,8 +87,8 @@ struct NoiseDraw {
     WhitenedFit fit;
 };
 
-/// The noise model chosen, and draws from what else the residuals allow (the restricted likelihood with a flat prior on
-/// each partial autocorrelation): what it cost to estimate the noise is read from their spread.
+/// The noise model chosen, and draws from what else the residuals allow (the restricted likelihood with a
+/// flat prior on each partial autocorrelation): what it cost to estimate the noise is read from their spread.
 struct NoiseFit {
     AutoregressiveNoise noise;
     WhitenedFit fit;  ///< at the chosen model
@@ -96,8 +102,8 @@ struct NoiseOptions {
     std::uint64_t seed = 1;
 };
 
-/// Chooses the order by the corrected Akaike criterion (Hurvich & Tsai 1989) on the restricted likelihood and estimates
-/// the partial autocorrelations. Precondition: rows − columns ≥ 3.
+/// Chooses the order by the corrected Akaike criterion (Hurvich & Tsai 1989) on the restricted likelihood and
+/// estimates the partial autocorrelations. Precondition: rows − columns ≥ 3.
 [[nodiscard]] NoiseFit fit_noise(const RestrictedLikelihood& likelihood, const NoiseOptions& options = {});
 
 }  // namespace ringwright

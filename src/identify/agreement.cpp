@@ -23,7 +23,8 @@ struct Differences {
 };
 
 template <typename Reading>
-void append(Differences& differences, const CurveFit& fit, const Reading& reading, const MethodErrors& errors) {
+void append(Differences& differences, const CurveFit& fit, const Reading& reading,
+            const MethodErrors& errors) {
     const Oscillator& o = fit.oscillator();
     const auto n = static_cast<Index>(errors.errors.size());
     const Index rows = differences.replicates.rows() == 0 ? n : std::min(n, differences.replicates.rows());
@@ -61,17 +62,23 @@ bool has(const Findings& findings, std::string_view code) {
 
 std::string suggestion(const CurveFit& fit, const MethodBootstrap& bootstrap, const Findings& findings) {
     if (has(findings, "clipped_samples")) return "samples are clipped; lower the gain and repeat the test";
-    if (has(findings, "second_mode")) return "another mode rings along; place the sensor or the tap so that it is not excited";
+    if (has(findings, "second_mode"))
+        return "another mode rings along; place the sensor or the tap so that it is not excited";
     const DecrementReading& decrement = bootstrap.readings.decrement;
     if (decrement.valid && decrement.half_cycle.size() >= 6 && decrement.bend != 0.0) {
         const double last = decrement.half_cycle.back();
         const double sag = decrement.bend * last * last / 4.0;  // of the log amplitude at mid-record
         if (sag < -0.02) return "the decay quickens as it gets smaller, as dry friction makes it";
-        if (sag > 0.02) return "the decay slows as it gets smaller, as quadratic (orifice) damping or a second mode makes it";
+        if (sag > 0.02)
+            return "the decay slows as it gets smaller, as quadratic (orifice) damping or a second mode "
+                   "makes it";
     }
-    const double half = bootstrap.half_power.usable ? bootstrap.readings.half_power.damping_ratio - bootstrap.half_power.bias[1] : 0.0;
+    const double half = bootstrap.half_power.usable
+                            ? bootstrap.readings.half_power.damping_ratio - bootstrap.half_power.bias[1]
+                            : 0.0;
     if (bootstrap.half_power.usable && half > 1.05 * fit.oscillator().damping_ratio())
-        return "the spectrum is broader than the decay is fast, as a frequency that moves with amplitude or a short record makes it";
+        return "the spectrum is broader than the decay is fast, as a frequency that moves with amplitude or "
+               "a short record makes it";
     return "look at the residuals: the decay is not that of one linear mode";
 }
 
@@ -80,8 +87,10 @@ std::string suggestion(const CurveFit& fit, const MethodBootstrap& bootstrap, co
 Agreement test_agreement(const CurveFit& fit, const MethodBootstrap& bootstrap, const Findings& findings) {
     Agreement agreement;
     Differences differences;
-    if (bootstrap.decrement.usable) append(differences, fit, bootstrap.readings.decrement, bootstrap.decrement);
-    if (bootstrap.half_power.usable) append(differences, fit, bootstrap.readings.half_power, bootstrap.half_power);
+    if (bootstrap.decrement.usable)
+        append(differences, fit, bootstrap.readings.decrement, bootstrap.decrement);
+    if (bootstrap.half_power.usable)
+        append(differences, fit, bootstrap.readings.half_power, bootstrap.half_power);
     if (differences.observed.size() == 0) {
         agreement.reading = "Only the curve fit answered, so there is nothing to compare it with.";
         return agreement;

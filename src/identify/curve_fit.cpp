@@ -51,8 +51,8 @@ Orthonormal orthonormalise(const MatrixXd& design) {
     result.full_rank = diagonal.minCoeff() > 1e-9 * diagonal.maxCoeff();
     if (!result.full_rank) return result;
     result.basis = factor.householderQ() * MatrixXd::Identity(design.rows(), k);
-    result.map =
-        norms.cwiseInverse().asDiagonal() * upper.triangularView<Eigen::Upper>().solve(MatrixXd::Identity(k, k));
+    result.map = norms.cwiseInverse().asDiagonal() *
+                 upper.triangularView<Eigen::Upper>().solve(MatrixXd::Identity(k, k));
     return result;
 }
 
@@ -67,7 +67,8 @@ bool estimate_noise(CurveFit& fit, int draws, std::uint64_t seed) {
     NoiseOptions options;
     options.draws = draws;
     options.seed = seed;
-    const RestrictedLikelihood likelihood(design.basis, fit.residual, fit.samples.stretches, options.highest_order);
+    const RestrictedLikelihood likelihood(design.basis, fit.residual, fit.samples.stretches,
+                                          options.highest_order);
     if (likelihood.rows() - likelihood.columns() < 4) return false;
     fit.noise = fit_noise(likelihood, options);
     fit.innovations = fit.residual;
@@ -106,8 +107,8 @@ bool settle(CurveFit& fit) {
 
 namespace {
 
-// First blocks that do not belong to the decay (the release or the contact still going on) show as innovations far
-// beyond the rest; each test has a false-alarm rate of 1e-5.
+// First blocks that do not belong to the decay (the release or the contact still going on) show as
+// innovations far beyond the rest; each test has a false-alarm rate of 1e-5.
 Index misfitting_start(const CurveFit& fit) {
     constexpr double false_alarm = 1e-5;
     double sum = 0.0;
@@ -191,8 +192,7 @@ Spread spread_of(const CurveFit& fit, const VectorXd& gradient) {
     Spread spread;
     spread.degrees_of_freedom = 4.0 + 2.0 / relative_square;
     const double inflated = mean_variance * spare / std::max(1.0, spare - 2.0) + centre_variance;
-    spread.scale =
-        std::sqrt(inflated * (spread.degrees_of_freedom - 2.0) / spread.degrees_of_freedom);
+    spread.scale = std::sqrt(inflated * (spread.degrees_of_freedom - 2.0) / spread.degrees_of_freedom);
     return spread;
 }
 

@@ -21,14 +21,14 @@ struct CurveFitOptions {
     std::uint64_t seed = 1;
 };
 
-/// A decay fitted by generalised least squares. All parameters, linear ones first, are q-coordinates times `map`; in
-/// q-coordinates the design is orthonormal.
+/// A decay fitted by generalised least squares. All parameters, linear ones first, are q-coordinates times
+/// `map`; in q-coordinates the design is orthonormal.
 struct CurveFit {
     DecayWindow window;
     DecaySamples samples;
     ProjectedFit fit;
     NoiseFit noise;
-    Eigen::MatrixXd basis;        ///< orthonormal columns: design · map
+    Eigen::MatrixXd basis;  ///< orthonormal columns: design · map
     Eigen::MatrixXd map;
     Eigen::VectorXd residual;     ///< value − model, scaled like samples.value
     Eigen::VectorXd innovations;  ///< whitened residuals over their standard deviation
@@ -41,10 +41,12 @@ struct CurveFit {
 };
 
 /// Fits the event. Never throws for what is in the samples.
-[[nodiscard]] CurveFit fit_decay(const Recording& recording, const Event& event, const CurveFitOptions& options);
+[[nodiscard]] CurveFit fit_decay(const Recording& recording, const Event& event,
+                                 const CurveFitOptions& options);
 
-/// Scale and degrees of freedom of Student's t that describe the error of a scalar with `gradient` in all parameters: the
-/// noise parameters are integrated over their draws, so that both own up to what it cost to estimate the noise.
+/// Scale and degrees of freedom of Student's t that describe the error of a scalar with `gradient` in all
+/// parameters: the noise parameters are integrated over their draws, so that both own up to what it cost to
+/// estimate the noise.
 struct Spread {
     double scale = 0.0;
     double degrees_of_freedom = 1.0;

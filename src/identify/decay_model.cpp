@@ -13,9 +13,15 @@ using Eigen::VectorXd;
 Oscillator Oscillator::from(double damping_ratio, double angular_frequency) {
     return {std::asinh(damping_ratio), std::log(angular_frequency)};
 }
-double Oscillator::damping_ratio() const { return std::sinh(asinh_damping); }
-double Oscillator::angular_frequency() const { return std::exp(log_frequency); }
-double Oscillator::decay_rate() const { return damping_ratio() * angular_frequency(); }
+double Oscillator::damping_ratio() const {
+    return std::sinh(asinh_damping);
+}
+double Oscillator::angular_frequency() const {
+    return std::exp(log_frequency);
+}
+double Oscillator::decay_rate() const {
+    return damping_ratio() * angular_frequency();
+}
 
 double Oscillator::damped_frequency_hz() const {
     const double ratio = damping_ratio();
@@ -74,10 +80,12 @@ struct Kernel {
 // Power series in p t², for |p| t² < 0.05: six terms leave less than 1e-16.
 Kernel near_critical(double decay, double p, double t) {
     const double t2 = t * t, x = p * t2, e = std::exp(-decay * t);
-    const double c = 1.0 - x / 2.0 * (1.0 - x / 12.0 * (1.0 - x / 30.0 * (1.0 - x / 56.0 * (1.0 - x / 90.0))));
+    const double c =
+        1.0 - x / 2.0 * (1.0 - x / 12.0 * (1.0 - x / 30.0 * (1.0 - x / 56.0 * (1.0 - x / 90.0))));
     const double s =
         t * (1.0 - x / 6.0 * (1.0 - x / 20.0 * (1.0 - x / 42.0 * (1.0 - x / 72.0 * (1.0 - x / 110.0)))));
-    const double ds = -t * t2 / 6.0 * (1.0 - x / 10.0 * (1.0 - x / 28.0 * (1.0 - x / 54.0 * (1.0 - x / 88.0))));
+    const double ds =
+        -t * t2 / 6.0 * (1.0 - x / 10.0 * (1.0 - x / 28.0 * (1.0 - x / 54.0 * (1.0 - x / 88.0))));
     return {e * c, e * s, e * ds};
 }
 
@@ -148,7 +156,8 @@ MatrixXd linear_columns(const DecayModel& model, const DecaySamples& samples) {
     });
 }
 
-MatrixXd derivative_columns(const DecayModel& model, const DecaySamples& samples, const VectorXd& coefficients) {
+MatrixXd derivative_columns(const DecayModel& model, const DecaySamples& samples,
+                            const VectorXd& coefficients) {
     return over_blocks(samples, model.nonlinear_count(), [&](const VectorXd& time, MatrixXd& out) {
         Index column = 0, linear = model.first_oscillator_column();
         for (const Oscillator& o : model.oscillators) {

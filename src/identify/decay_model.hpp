@@ -8,9 +8,9 @@
 
 namespace ringwright::identify {
 
-/// One decaying mode y = e^(−s t) [A C(p,t) + B ω S(p,t)], s = ζω, p = ω²(1 − ζ²), held by coordinates in which the
-/// problem is well scaled everywhere: z = asinh ζ, w = ln ω. For ζ ≫ 1 only w − z = ln(k/c) is determined, along a straight
-/// line in (z, w).
+/// One decaying mode y = e^(−s t) [A C(p,t) + B ω S(p,t)], s = ζω, p = ω²(1 − ζ²), held by coordinates in
+/// which the problem is well scaled everywhere: z = asinh ζ, w = ln ω. For ζ ≫ 1 only w − z = ln(k/c) is
+/// determined, along a straight line in (z, w).
 struct Oscillator {
     double asinh_damping = 0.0;
     double log_frequency = 0.0;  ///< natural logarithm of the undamped angular frequency in rad/s
@@ -27,7 +27,8 @@ struct Oscillator {
     [[nodiscard]] double slowest_rate() const;
 };
 
-/// Everything that a recorded decay is made of. Offset, drift and amplitudes are linear and never stored here.
+/// Everything that a recorded decay is made of. Offset, drift and amplitudes are linear and never stored
+/// here.
 struct DecayModel {
     std::vector<Oscillator> oscillators;  ///< the mode meant first
     std::vector<double> tones;            ///< ln of angular frequencies of steady interference, rad/s
@@ -41,10 +42,10 @@ struct DecayModel {
     void set_parameters(const Eigen::VectorXd& parameters);
 };
 
-/// Samples of one decay as the fit sees them: block means of the recording. The mean of a decaying exponential over a block
-/// of equal steps is the same exponential with another amplitude, so block means of a uniform recording lose nothing but
-/// noise bandwidth. Where steps are unequal and blocks longer than one, `fine_time` holds the time of every sample and the
-/// model is averaged over the same blocks.
+/// Samples of one decay as the fit sees them: block means of the recording. The mean of a decaying
+/// exponential over a block of equal steps is the same exponential with another amplitude, so block means of
+/// a uniform recording lose nothing but noise bandwidth. Where steps are unequal and blocks longer than one,
+/// `fine_time` holds the time of every sample and the model is averaged over the same blocks.
 struct DecaySamples {
     Eigen::VectorXd time;   ///< centre of each block, s after the start of the decay
     Eigen::VectorXd value;  ///< block means over `scale`
@@ -56,14 +57,16 @@ struct DecaySamples {
     [[nodiscard]] Eigen::Index size() const { return time.size(); }
 };
 
-/// Columns of the linear part: 1 [, t/T], then (C, ωS) of each oscillator, (cos, sin) of each tone, each real pole.
+/// Columns of the linear part: 1 [, t/T], then (C, ωS) of each oscillator, (cos, sin) of each tone, each real
+/// pole.
 [[nodiscard]] Eigen::MatrixXd linear_columns(const DecayModel& model, const DecaySamples& samples);
 /// Derivative of columns · coefficients with respect to each nonlinear parameter.
 [[nodiscard]] Eigen::MatrixXd derivative_columns(const DecayModel& model, const DecaySamples& samples,
                                                  const Eigen::VectorXd& coefficients);
 
-/// Modulus of the decaying term of oscillator `index` at t = 0, from its coefficients (A, B): √(A² + B²ω²/p) below critical
-/// damping, |A| + |B| at or above.
-[[nodiscard]] double start_amplitude(const DecayModel& model, const Eigen::VectorXd& coefficients, std::size_t index);
+/// Modulus of the decaying term of oscillator `index` at t = 0, from its coefficients (A, B): √(A² + B²ω²/p)
+/// below critical damping, |A| + |B| at or above.
+[[nodiscard]] double start_amplitude(const DecayModel& model, const Eigen::VectorXd& coefficients,
+                                     std::size_t index);
 
 }  // namespace ringwright::identify

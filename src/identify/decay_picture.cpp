@@ -10,7 +10,9 @@ using Eigen::VectorXd;
 
 namespace {
 
-std::vector<double> to_vector(const VectorXd& values) { return {values.begin(), values.end()}; }
+std::vector<double> to_vector(const VectorXd& values) {
+    return {values.begin(), values.end()};
+}
 
 void add_decay(DecayPicture& picture, const Recording& recording, const CurveFit& fit) {
     const double start = recording.clock.time_of(fit.window.begin), scale = fit.samples.scale;
@@ -28,7 +30,8 @@ void add_spectrum(DecayPicture& picture, const CurveFit& fit, const MethodReadin
     if (!readings.half_power.valid) return;
     const HalfPowerReading& reading = readings.half_power;
     const double width = reading.high_hz - reading.low_hz;
-    const double low = std::max(0.02 * reading.peak_hz, reading.peak_hz - 4.0 * width), high = reading.peak_hz + 4.0 * width;
+    const double low = std::max(0.02 * reading.peak_hz, reading.peak_hz - 4.0 * width),
+                 high = reading.peak_hz + 4.0 * width;
     const VectorXd frequency = VectorXd::LinSpaced(201, low, high);
     const VectorXd power = half_power_spectrum(fit.samples, readings.half_power_settings, frequency);
     picture.frequency_hz = to_vector(frequency);
@@ -42,7 +45,8 @@ void add_autocorrelation(DecayPicture& picture, const CurveFit& fit) {
     const VectorXd& x = fit.innovations;
     const Index lags = std::min<Index>(40, x.size() / 3);
     for (Index lag = 0; lag <= lags; ++lag)
-        picture.residual_autocorrelation.push_back(x.head(x.size() - lag).dot(x.tail(x.size() - lag)) / x.squaredNorm());
+        picture.residual_autocorrelation.push_back(x.head(x.size() - lag).dot(x.tail(x.size() - lag)) /
+                                                   x.squaredNorm());
     picture.residual_autocorrelation_band = 1.959964 / std::sqrt(static_cast<double>(x.size()));
 }
 

@@ -29,11 +29,21 @@ struct Derived {
     bool logarithmic;
 };
 
-double damping_ratio(const Oscillator& o) { return o.damping_ratio(); }
-double natural_frequency(const Oscillator& o) { return o.angular_frequency() / two_pi; }
-double damped_frequency(const Oscillator& o) { return o.damped_frequency_hz(); }
-double decay_rate(const Oscillator& o) { return o.decay_rate(); }
-double slow_decay_rate(const Oscillator& o) { return o.angular_frequency() / (2.0 * o.damping_ratio()); }
+double damping_ratio(const Oscillator& o) {
+    return o.damping_ratio();
+}
+double natural_frequency(const Oscillator& o) {
+    return o.angular_frequency() / two_pi;
+}
+double damped_frequency(const Oscillator& o) {
+    return o.damped_frequency_hz();
+}
+double decay_rate(const Oscillator& o) {
+    return o.decay_rate();
+}
+double slow_decay_rate(const Oscillator& o) {
+    return o.angular_frequency() / (2.0 * o.damping_ratio());
+}
 
 constexpr double far_beyond_critical = 2.0;
 
@@ -66,8 +76,8 @@ Spread spread_of_oscillator(const CurveFit& fit, std::size_t index, const Vector
     return spread_of(fit, full);
 }
 
-// Whitened residual sum with the oscillator held at one place and everything else at its best: nuisance nonlinear
-// parameters enter by their derivative columns.
+// Whitened residual sum with the oscillator held at one place and everything else at its best: nuisance
+// nonlinear parameters enter by their derivative columns.
 class Profile {
   public:
     Profile(const CurveFit& fit, std::size_t index) : fit_(fit), index_(index) {
@@ -76,7 +86,8 @@ class Profile {
         const MatrixXd derivatives = derivative_columns(fit.fit.model, fit.samples, fit.fit.coefficients);
         nuisance_.resize(derivatives.rows(), derivatives.cols() - 2);
         for (Index c = 0, at = 0; c < derivatives.cols(); ++c)
-            if (c / 2 != static_cast<Index>(index) || c >= 2 * static_cast<Index>(fit.fit.model.oscillators.size()))
+            if (c / 2 != static_cast<Index>(index) ||
+                c >= 2 * static_cast<Index>(fit.fit.model.oscillators.size()))
                 nuisance_.col(at++) = derivatives.col(c);
         unit_ = fit.noise.noise.innovation_variance;
         least_ = residual_sum(fit.fit.model.oscillators[index]);
@@ -108,12 +119,13 @@ class Profile {
     double unit_ = 1.0, least_ = 0.0;
 };
 
-constexpr double straight_enough = 0.04;  // relative departure of the rise from a parabola at the interval's ends
+constexpr double straight_enough =
+    0.04;  // relative departure of the rise from a parabola at the interval's ends
 constexpr int directions = 24;
 constexpr double farthest = 60.0;  // times the straight-line distance: then there is no end
 
-// Distance along `direction` at which the profile has risen by `target`² (direction has unit rise per unit length squared
-// where the problem is straight). Infinite where it never does.
+// Distance along `direction` at which the profile has risen by `target`² (direction has unit rise per unit
+// length squared where the problem is straight). Infinite where it never does.
 double distance_to_rise(const Profile& profile, const Vector2d& direction, double target) {
     const auto root_of_rise = [&](double distance) {
         const double rise = profile.rise(distance * direction);
@@ -187,7 +199,8 @@ Region trace_region(const CurveFit& fit, std::size_t index, double factor) {
     if (root.info() != Eigen::Success) return region;
     const Profile profile(fit, index);
     const Matrix2d lower = root.matrixL();
-    for (const Vector2d& axis : {Vector2d(1.0, 0.0), Vector2d(0.0, 1.0), Vector2d(0.7071, 0.7071), Vector2d(0.7071, -0.7071)})
+    for (const Vector2d& axis :
+         {Vector2d(1.0, 0.0), Vector2d(0.0, 1.0), Vector2d(0.7071, 0.7071), Vector2d(0.7071, -0.7071)})
         for (const double sign : {1.0, -1.0}) {
             const double rise = profile.rise(sign * factor * (lower * axis));
             region.curved = region.curved || !(std::abs(rise / (factor * factor) - 1.0) < straight_enough);
@@ -196,7 +209,8 @@ Region trace_region(const CurveFit& fit, std::size_t index, double factor) {
     return region;
 }
 
-Estimate straight_estimate(const Derived& derived, const Oscillator& at, const Spread& spread, double confidence_level) {
+Estimate straight_estimate(const Derived& derived, const Oscillator& at, const Spread& spread,
+                           double confidence_level) {
     Estimate estimate;
     estimate.value = derived.value(at);
     estimate.standard_uncertainty = spread.scale;
@@ -211,12 +225,13 @@ Estimate straight_estimate(const Derived& derived, const Oscillator& at, const S
     return estimate;
 }
 
-// The profile region was traced for the noise as estimated; its half-widths are stretched by what it cost to estimate it.
-void bend_interval(Estimate& estimate, const Derived& derived, const CurveFit& fit, std::size_t index, const Region& region,
-                   double plain_scale, double confidence_level) {
+// The profile region was traced for the noise as estimated; its half-widths are stretched by what it cost to
+// estimate it.
+void bend_interval(Estimate& estimate, const Derived& derived, const CurveFit& fit, std::size_t index,
+                   const Region& region, double plain_scale, double confidence_level) {
     const Oscillator& at = fit.fit.model.oscillators[index];
-    const double wanted =
-        student_t_factor(confidence_level, estimate.degrees_of_freedom) * estimate.standard_uncertainty / plain_scale;
+    const double wanted = student_t_factor(confidence_level, estimate.degrees_of_freedom) *
+                          estimate.standard_uncertainty / plain_scale;
     const double stretch = wanted / region.factor;
     const auto scaled = [&](const Vector2d& point) { return derived.value(moved(at, stretch * point)); };
     estimate.interval.high = largest_on(region.edge, scaled);
@@ -244,9 +259,15 @@ Estimate through(const Estimate& of, double (*function)(double), double slope) {
     return estimate;
 }
 
-double decrement_of(double zeta) { return zeta < 1.0 ? two_pi * zeta / std::sqrt(1.0 - zeta * zeta) : 1e300; }
-double loss_factor_of(double zeta) { return 2.0 * zeta; }
-double quality_factor_of(double zeta) { return 0.5 / zeta; }
+double decrement_of(double zeta) {
+    return zeta < 1.0 ? two_pi * zeta / std::sqrt(1.0 - zeta * zeta) : 1e300;
+}
+double loss_factor_of(double zeta) {
+    return 2.0 * zeta;
+}
+double quality_factor_of(double zeta) {
+    return 0.5 / zeta;
+}
 
 void add_functions_of_damping(Quantities& quantities) {
     const auto found = quantities.find(Quantity::damping_ratio);
@@ -276,7 +297,8 @@ Quantities decay_quantities(const CurveFit& fit, std::size_t index, double confi
         Estimate estimate = straight_estimate(derived, at, spread, confidence_level);
         const double plain = std::sqrt(gradient.dot(covariance * gradient));
         if (!region) {
-            const double factor = student_t_factor(confidence_level, spread.degrees_of_freedom) * spread.scale / plain;
+            const double factor =
+                student_t_factor(confidence_level, spread.degrees_of_freedom) * spread.scale / plain;
             region = trace_region(fit, index, factor);
         }
         if (region->curved) bend_interval(estimate, derived, fit, index, *region, plain, confidence_level);
@@ -303,8 +325,9 @@ Quantities quantities_from(const Estimate& natural_frequency_estimate, const Est
     for (const Derived& derived : basic) {
         if (quantities.contains(derived.quantity) || !exists(derived, at)) continue;
         const Vector2d gradient = gradient_of(derived, at);
-        const Spread spread{std::sqrt(gradient.dot(covariance * gradient)), std::min(natural_frequency_estimate.degrees_of_freedom,
-                                                                                     damping_ratio_estimate.degrees_of_freedom)};
+        const Spread spread{std::sqrt(gradient.dot(covariance * gradient)),
+                            std::min(natural_frequency_estimate.degrees_of_freedom,
+                                     damping_ratio_estimate.degrees_of_freedom)};
         quantities[derived.quantity] = straight_estimate(derived, at, spread, confidence_level);
     }
     add_functions_of_damping(quantities);

@@ -11,8 +11,8 @@ using Eigen::Index;
 
 namespace {
 
-constexpr double gap_in_steps = 2.5;      // a longer step is a gap
-constexpr std::size_t shortest_run = 4;   // samples; shorter runs between clipped ones tell nothing
+constexpr double gap_in_steps = 2.5;     // a longer step is a gap
+constexpr std::size_t shortest_run = 4;  // samples; shorter runs between clipped ones tell nothing
 
 std::vector<char> usable_samples(const Recording& recording, std::size_t begin, std::size_t end) {
     std::vector<char> usable(end - begin, 1);

@@ -51,15 +51,19 @@ double offset_of(const DecaySamples& samples, double frequency_hz, Index count) 
     return samples.value.segment(count - length, length).mean();
 }
 
-std::optional<WindowedRecord> cut_at_crossing(const DecaySamples& samples, const HalfPowerSettings& settings) {
-    const Index count = std::upper_bound(samples.time.begin(), samples.time.end(), settings.end_s) - samples.time.begin();
+std::optional<WindowedRecord> cut_at_crossing(const DecaySamples& samples,
+                                              const HalfPowerSettings& settings) {
+    const Index count =
+        std::upper_bound(samples.time.begin(), samples.time.end(), settings.end_s) - samples.time.begin();
     if (count < 16) return std::nullopt;
     const double offset = offset_of(samples, settings.frequency_hz, count);
     const VectorXd value = samples.value.head(count).array() - offset;
     Index first = 1;
     while (first < count && !(value(first - 1) * value(first) <= 0.0 && value(first) != 0.0)) ++first;
-    if (first + 12 > count || samples.time(first) - samples.time(0) > 0.8 / settings.frequency_hz) return std::nullopt;
-    const double share = value(first) / (value(first) - value(first - 1));  // of the step, from crossing to sample
+    if (first + 12 > count || samples.time(first) - samples.time(0) > 0.8 / settings.frequency_hz)
+        return std::nullopt;
+    const double share =
+        value(first) / (value(first) - value(first - 1));  // of the step, from crossing to sample
     WindowedRecord record;
     record.step = samples.step_s;
     record.first_time = share * record.step;
@@ -95,10 +99,13 @@ double peak_near(const WindowedRecord& record, double frequency_hz, double width
     return best;
 }
 
-// Frequency at which the power falls to `level` on one side of the peak (direction ±1); nothing when it never does.
-std::optional<double> crossing(const WindowedRecord& record, double peak_hz, double level, double width_hz, double direction) {
+// Frequency at which the power falls to `level` on one side of the peak (direction ±1); nothing when it never
+// does.
+std::optional<double> crossing(const WindowedRecord& record, double peak_hz, double level, double width_hz,
+                               double direction) {
     const auto logarithm = [&](double f) { return std::log(record.power(f) / level); };
-    double inside = peak_hz, inside_value = logarithm(peak_hz), step = 0.5 * width_hz, outside = peak_hz, outside_value = 0.0;
+    double inside = peak_hz, inside_value = logarithm(peak_hz), step = 0.5 * width_hz, outside = peak_hz,
+           outside_value = 0.0;
     for (int i = 0;; ++i) {
         outside = inside + direction * step;
         if (outside <= 0.0 || i > 40) return std::nullopt;
@@ -148,7 +155,8 @@ HalfPowerReading read_half_power(const DecaySamples& samples, const HalfPowerSet
     const double square_low = *low * *low, square_high = *high * *high;
     const double twice_theta = std::atan2(square_high - square_low, square_high + square_low);
     const double windowed_ratio = std::sin(0.5 * twice_theta);
-    const double windowed_omega = two_pi * std::sqrt((square_low + square_high) / (2.0 * std::cos(twice_theta)));
+    const double windowed_omega =
+        two_pi * std::sqrt((square_low + square_high) / (2.0 * std::cos(twice_theta)));
     const double rate = windowed_ratio * windowed_omega - settings.window_rate;
     const double p = windowed_omega * windowed_omega * (1.0 - windowed_ratio * windowed_ratio);
     const double omega = std::sqrt(p + rate * rate);
@@ -158,8 +166,8 @@ HalfPowerReading read_half_power(const DecaySamples& samples, const HalfPowerSet
     return reading;
 }
 
-HalfPowerSettings choose_half_power_settings(const DecaySamples& samples, double frequency_hz, double decay_rate,
-                                             double end_s) {
+HalfPowerSettings choose_half_power_settings(const DecaySamples& samples, double frequency_hz,
+                                             double decay_rate, double end_s) {
     HalfPowerSettings settings;
     settings.frequency_hz = frequency_hz;
     settings.end_s = std::min(end_s, samples.time(samples.size() - 1));
@@ -169,7 +177,8 @@ HalfPowerSettings choose_half_power_settings(const DecaySamples& samples, double
     return settings;
 }
 
-VectorXd half_power_spectrum(const DecaySamples& samples, const HalfPowerSettings& settings, const VectorXd& frequency_hz) {
+VectorXd half_power_spectrum(const DecaySamples& samples, const HalfPowerSettings& settings,
+                             const VectorXd& frequency_hz) {
     const std::optional<WindowedRecord> record = cut_at_crossing(samples, settings);
     VectorXd power = VectorXd::Zero(frequency_hz.size());
     if (record)

@@ -9,8 +9,8 @@
 #include "identify/decay_quantities.hpp"
 #include "identify/method_bootstrap.hpp"
 #include "identify/residual_checks.hpp"
-#include "ringwright/identify.hpp"
 #include "ringwright/distributions.hpp"
+#include "ringwright/identify.hpp"
 
 namespace ringwright {
 
@@ -44,7 +44,8 @@ MethodResult curve_fit_result(const CurveFit& fit, double confidence_level) {
     return result;
 }
 
-Estimate estimate_from(double value, double deviation, double degrees_of_freedom, double confidence_level, bool logarithmic) {
+Estimate estimate_from(double value, double deviation, double degrees_of_freedom, double confidence_level,
+                       bool logarithmic) {
     Estimate estimate;
     const double reach = student_t_factor(confidence_level, degrees_of_freedom) * deviation;
     estimate.value = value;
@@ -74,8 +75,8 @@ MethodResult simple_method_result(const Reading& reading, const MethodErrors& er
         1.0 / (1.0 / fit.noise.degrees_of_freedom + 1.0 / static_cast<double>(errors.errors.size() - 1));
     result.quantities =
         quantities_from(estimate_from(frequency, errors.deviation[0], freedom, confidence_level, true),
-                        estimate_from(ratio, errors.deviation[1], freedom, confidence_level, false), errors.correlation,
-                        confidence_level);
+                        estimate_from(ratio, errors.deviation[1], freedom, confidence_level, false),
+                        errors.correlation, confidence_level);
     result.status = MethodStatus::ok;
     return result;
 }
@@ -84,14 +85,16 @@ void explain_missing(const CurveFit& fit, const MethodResult& result, Findings& 
     if (result.status != MethodStatus::ok) return;
     const bool ratio_told = result.quantities.contains(Quantity::damping_ratio);
     if (fit.oscillator().damping_ratio() > far_beyond_critical || !ratio_told)
-        findings.push_back({"beyond_critical", Severity::caution,
-                            "The decay is far beyond critical damping: mostly the slow decay rate k/c can be told from it; "
-                            "frequency and damping ratio each depend on the first moments of the decay."});
+        findings.push_back(
+            {"beyond_critical", Severity::caution,
+             "The decay is far beyond critical damping: mostly the slow decay rate k/c can be told from it; "
+             "frequency and damping ratio each depend on the first moments of the decay."});
 }
 
 }  // namespace
 
-EventIdentification identify_event(const Recording& recording, const Event& event, const IdentifyOptions& options) {
+EventIdentification identify_event(const Recording& recording, const Event& event,
+                                   const IdentifyOptions& options) {
     EventIdentification result;
     result.event = event;
     result.start_s = recording.clock.time_of(event.begin);
@@ -108,10 +111,10 @@ EventIdentification identify_event(const Recording& recording, const Event& even
         return result;
     }
     const MethodBootstrap bootstrap = bootstrap_methods(fit, event, replicates, options.seed);
-    result.logarithmic_decrement =
-        simple_method_result(bootstrap.readings.decrement, bootstrap.decrement, fit, options.confidence_level);
-    result.half_power_bandwidth =
-        simple_method_result(bootstrap.readings.half_power, bootstrap.half_power, fit, options.confidence_level);
+    result.logarithmic_decrement = simple_method_result(bootstrap.readings.decrement, bootstrap.decrement,
+                                                        fit, options.confidence_level);
+    result.half_power_bandwidth = simple_method_result(bootstrap.readings.half_power, bootstrap.half_power,
+                                                       fit, options.confidence_level);
     const Findings checks = check_residuals(fit);
     result.findings.insert(result.findings.end(), checks.begin(), checks.end());
     explain_missing(fit, result.curve_fit, result.findings);

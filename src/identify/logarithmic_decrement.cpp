@@ -71,7 +71,8 @@ std::optional<double> first_extreme_time(const DecaySamples& samples, double hal
     double best_time = 0.0, best = -1.0;
     double mean = 0.0;
     Index count = 0;
-    for (Index i = 0; i < samples.size() && samples.time(i) < samples.time(0) + 2.0 * half_period; ++i, ++count)
+    for (Index i = 0; i < samples.size() && samples.time(i) < samples.time(0) + 2.0 * half_period;
+         ++i, ++count)
         mean += samples.value(i);
     mean /= static_cast<double>(std::max<Index>(1, count));
     for (Index i = 0; i < samples.size() && samples.time(i) < start + 1.1 * half_period; ++i) {
@@ -94,7 +95,8 @@ std::vector<Extreme> find_extremes(const DecaySamples& samples, double half_peri
     for (;;) {
         const std::optional<Extreme> extreme = refine(samples, time, half_width);
         if (!extreme || std::abs(extreme->time - time) > 0.45 * half_period) {
-            if (extremes.empty() && time < *first + 0.5 * half_period) {  // the first one may be cut by the start
+            if (extremes.empty() &&
+                time < *first + 0.5 * half_period) {  // the first one may be cut by the start
                 time += half_period;
                 continue;
             }
@@ -115,8 +117,9 @@ std::vector<Extreme> find_extremes(const DecaySamples& samples, double half_peri
     return extremes;
 }
 
-// Generalised least squares of ln D on its number; neighbouring differences share an extreme (correlation −1/2).
-// Covariance of ln D for differences of the sizes given is tridiagonal; its Cholesky factor has two diagonals.
+// Generalised least squares of ln D on its number; neighbouring differences share an extreme (correlation
+// −1/2). Covariance of ln D for differences of the sizes given is tridiagonal; its Cholesky factor has two
+// diagonals.
 VectorXd solve_weighted(const MatrixXd& design, const VectorXd& response, const VectorXd& size) {
     const Index n = size.size();
     MatrixXd whitened(n, design.cols() + 1);
@@ -139,14 +142,16 @@ DecrementReading read_decrement(const DecaySamples& samples, double frequency_hz
     DecrementReading reading;
     const std::vector<Extreme> extremes = find_extremes(samples, 0.5 / frequency_hz, noise);
     if (extremes.size() < fewest_extremes) {
-        reading.reason = fmt::format("only {} extreme{} stand{} above the noise; at least {} are needed", extremes.size(),
-                                     extremes.size() == 1 ? "" : "s", extremes.size() == 1 ? "s" : "", fewest_extremes);
+        reading.reason =
+            fmt::format("only {} extreme{} stand{} above the noise; at least {} are needed", extremes.size(),
+                        extremes.size() == 1 ? "" : "s", extremes.size() == 1 ? "s" : "", fewest_extremes);
         return reading;
     }
     const auto n = static_cast<Index>(extremes.size()) - 1;
     VectorXd logarithm(n), size(n), number(n);
     for (Index j = 0; j < n; ++j) {
-        size(j) = std::abs(extremes[static_cast<std::size_t>(j + 1)].value - extremes[static_cast<std::size_t>(j)].value);
+        size(j) = std::abs(extremes[static_cast<std::size_t>(j + 1)].value -
+                           extremes[static_cast<std::size_t>(j)].value);
         logarithm(j) = std::log(size(j));
         number(j) = static_cast<double>(j);
     }

@@ -34,8 +34,9 @@ Setup set_up(const CurveFit& fit) {
     const MatrixXd columns = linear_columns(fit.fit.model, fit.samples);
     VectorXd interference = fit.fit.coefficients;
     interference(0) = 0.0;
-    interference.segment(fit.fit.model.first_oscillator_column(),
-                         static_cast<Index>(2 * fit.fit.model.oscillators.size()))
+    interference
+        .segment(fit.fit.model.first_oscillator_column(),
+                 static_cast<Index>(2 * fit.fit.model.oscillators.size()))
         .setZero();
     setup.interference = columns * interference;
     setup.model = columns * fit.fit.coefficients - setup.interference;
@@ -78,14 +79,16 @@ std::vector<const NoiseDraw*> spread_draws(const NoiseFit& noise, int replicates
     std::size_t at = 0;
     for (int i = 0; i < replicates; ++i) {
         const double wanted = (i + 0.5) / replicates;
-        while (at + 1 < noise.draws.size() && sum + noise.draws[at].weight < wanted) sum += noise.draws[at++].weight;
+        while (at + 1 < noise.draws.size() && sum + noise.draws[at].weight < wanted)
+            sum += noise.draws[at++].weight;
         chosen.push_back(&noise.draws[at]);
     }
     return chosen;
 }
 
 template <typename Reading>
-void collect(MethodErrors& errors, const Reading& reading, const Oscillator& truth, const std::array<double, 2>& fit_error) {
+void collect(MethodErrors& errors, const Reading& reading, const Oscillator& truth,
+             const std::array<double, 2>& fit_error) {
     errors.errors.push_back({std::log(two_pi * reading.natural_frequency_hz) - truth.log_frequency,
                              reading.damping_ratio - truth.damping_ratio()});
     errors.fit_errors.push_back(fit_error);
@@ -95,8 +98,8 @@ void summarise(MethodErrors& errors, int replicates) {
     const auto n = static_cast<double>(errors.errors.size());
     const double failed = 1.0 - n / replicates;
     if (failed > largest_failed_share) {
-        errors.reason = fmt::format("with this much noise the method would fail on {:.0f} % of such recordings",
-                                    100.0 * failed);
+        errors.reason = fmt::format(
+            "with this much noise the method would fail on {:.0f} % of such recordings", 100.0 * failed);
         return;
     }
     double cross = 0.0;
@@ -114,7 +117,8 @@ void summarise(MethodErrors& errors, int replicates) {
 
 }  // namespace
 
-MethodBootstrap bootstrap_methods(const CurveFit& fit, const Event& event, int replicates, std::uint64_t seed) {
+MethodBootstrap bootstrap_methods(const CurveFit& fit, const Event& event, int replicates,
+                                  std::uint64_t seed) {
     (void)event;
     MethodBootstrap result;
     const Setup setup = set_up(fit);
@@ -127,12 +131,13 @@ MethodBootstrap bootstrap_methods(const CurveFit& fit, const Event& event, int r
     DecaySamples samples = fit.samples;
     samples.value -= setup.interference;
     readings.decrement = read_decrement(samples, setup.frequency_hz, setup.noise);
-    readings.half_power_settings = choose_half_power_settings(samples, setup.frequency_hz, fit.oscillator().decay_rate(),
-                                                              time_to_noise(fit, setup.noise));
+    readings.half_power_settings = choose_half_power_settings(
+        samples, setup.frequency_hz, fit.oscillator().decay_rate(), time_to_noise(fit, setup.noise));
     if (samples.stretches.size() == 1)
         readings.half_power = read_half_power(samples, readings.half_power_settings);
     else
-        readings.half_power.reason = "the decay is interrupted by gaps or clipped samples, which a spectrum cannot bridge";
+        readings.half_power.reason =
+            "the decay is interrupted by gaps or clipped samples, which a spectrum cannot bridge";
 
     const FitError fit_error(fit);
     const std::vector<const NoiseDraw*> draws = spread_draws(fit.noise, replicates);

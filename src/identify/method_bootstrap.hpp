@@ -1,5 +1,6 @@
 #pragma once
-// Bias, scatter and common errors of the three methods, from replicates of the fitted decay with noise drawn anew.
+// Bias, scatter and common errors of the three methods, from replicates of the fitted decay with noise drawn
+// anew.
 
 #include <array>
 #include <cstdint>
@@ -35,8 +36,8 @@ struct MethodBootstrap {
     MethodErrors decrement, half_power;
 };
 
-/// Runs both methods on the samples of a valid fit, then on `replicates` decays with the fitted parameters and noise drawn
-/// from the noise model (its own uncertainty included). Preconditions: fit.valid.
+/// Runs both methods on the samples of a valid fit, then on `replicates` decays with the fitted parameters
+/// and noise drawn from the noise model (its own uncertainty included). Preconditions: fit.valid.
 [[nodiscard]] MethodBootstrap bootstrap_methods(const CurveFit& fit, const Event& event, int replicates,
                                                 std::uint64_t seed);
 

@@ -87,12 +87,13 @@ class Projection {
 
 }  // namespace
 
-ProjectedFit solve_linear(const DecayModel& model, const DecaySamples& samples, const AutoregressiveNoise& noise) {
+ProjectedFit solve_linear(const DecayModel& model, const DecaySamples& samples,
+                          const AutoregressiveNoise& noise) {
     return Projection(model, samples, noise).at(model.parameters());
 }
 
-ProjectedFit fit_projected(const DecayModel& start, const DecaySamples& samples, const AutoregressiveNoise& noise,
-                           int most_evaluations) {
+ProjectedFit fit_projected(const DecayModel& start, const DecaySamples& samples,
+                           const AutoregressiveNoise& noise, int most_evaluations) {
     namespace lm = Eigen::LevenbergMarquardtSpace;
     Projection projection(start, samples, noise);
     Eigen::LevenbergMarquardt<Projection> solver(projection);

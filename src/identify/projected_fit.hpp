@@ -1,5 +1,6 @@
 #pragma once
-// Variable projection: the linear part of the decay model eliminated, the nonlinear part by Levenberg–Marquardt.
+// Variable projection: the linear part of the decay model eliminated, the nonlinear part by
+// Levenberg–Marquardt.
 
 #include <Eigen/Core>
 
@@ -8,7 +9,8 @@
 
 namespace ringwright::identify {
 
-/// A fitted decay: nonlinear parameters in `model`, linear ones in `coefficients`; the sum is of whitened residuals.
+/// A fitted decay: nonlinear parameters in `model`, linear ones in `coefficients`; the sum is of whitened
+/// residuals.
 struct ProjectedFit {
     DecayModel model;
     Eigen::VectorXd coefficients;
@@ -20,8 +22,9 @@ struct ProjectedFit {
 [[nodiscard]] ProjectedFit solve_linear(const DecayModel& model, const DecaySamples& samples,
                                         const AutoregressiveNoise& noise);
 
-/// Variable projection (Golub & Pereyra 1973, Jacobian after Kaufman 1975) by Eigen's Levenberg–Marquardt from the model
-/// given. `converged` is false where the steps ran out or the parameters left the range of the model.
+/// Variable projection (Golub & Pereyra 1973, Jacobian after Kaufman 1975) by Eigen's Levenberg–Marquardt
+/// from the model given. `converged` is false where the steps ran out or the parameters left the range of the
+/// model.
 [[nodiscard]] ProjectedFit fit_projected(const DecayModel& start, const DecaySamples& samples,
                                          const AutoregressiveNoise& noise, int most_evaluations = 60);
 

@@ -55,16 +55,18 @@ Findings check_residuals(const CurveFit& fit) {
     Findings findings;
     if (fit.innovations.size() < 40) return findings;
     if (whiteness_p_value(fit) < residual_check_level)
-        findings.push_back({"residuals_not_white", Severity::note,
-                            "What the fit leaves over is not explained by the noise model; another mode or a drift may lie "
-                            "under the decay. Look at the residuals."});
+        findings.push_back(
+            {"residuals_not_white", Severity::note,
+             "What the fit leaves over is not explained by the noise model; another mode or a drift may lie "
+             "under the decay. Look at the residuals."});
     if (fit.innovations.size() >= 200 && normality_p_value(fit.innovations) < residual_check_level / 2.5)
         findings.push_back({"residuals_not_normal", Severity::note,
                             "The noise is not normally distributed (spikes, steps or coarse resolution)."});
     if (std::abs(trend_statistic(fit)) > normal_quantile(1.0 - residual_check_level / 2.0))
-        findings.push_back({"residuals_follow_amplitude", Severity::caution,
-                            "What the fit leaves over changes with the amplitude of the decay: the damping or the stiffness "
-                            "may depend on amplitude."});
+        findings.push_back(
+            {"residuals_follow_amplitude", Severity::caution,
+             "What the fit leaves over changes with the amplitude of the decay: the damping or the stiffness "
+             "may depend on amplitude."});
     return findings;
 }
 

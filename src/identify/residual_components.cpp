@@ -26,7 +26,8 @@ Stretch longest_stretch(const DecaySamples& samples) {
     return *std::ranges::max_element(samples.stretches, {}, &Stretch::length);
 }
 
-// The angular frequency at which the residual spectrum stands highest above its surroundings; 0 when nothing stands out.
+// The angular frequency at which the residual spectrum stands highest above its surroundings; 0 when nothing
+// stands out.
 double outstanding_frequency(const CurveFit& fit) {
     const Stretch stretch = longest_stretch(fit.samples);
     const VectorXd residual = fit.residual.segment(stretch.begin, stretch.length);
@@ -61,8 +62,8 @@ double criterion_of(const CurveFit& fit) {
     return fit.noise.fit.likelihood_criterion + 2.0 * static_cast<double>(fit.noise.noise.order());
 }
 
-// Gain that chance reaches at the best of all frequencies in one recording in a thousand. The frequency is searched on a
-// grid about four times finer than the independent ones.
+// Gain that chance reaches at the best of all frequencies in one recording in a thousand. The frequency is
+// searched on a grid about four times finer than the independent ones.
 double needed_gain(const CurveFit& fit, double parameters) {
     const double searched = 2.0 * static_cast<double>(longest_stretch(fit.samples).length);
     return chi_squared_quantile(1.0 - false_alarm / searched, parameters);
@@ -86,22 +87,25 @@ std::optional<CurveFit> with_mode(const CurveFit& fit, double omega) {
         const Oscillator& added = trial.fit.model.oscillators.back();
         if (added.damping_ratio() <= 0.0 || added.damping_ratio() > 0.5) continue;
         if (!settle(trial)) continue;
-        if (!best || criterion_of(trial) < criterion_of(*best))
-            best = std::move(trial);
+        if (!best || criterion_of(trial) < criterion_of(*best)) best = std::move(trial);
     }
     return best;
 }
 
 Finding tone_finding(double hertz) {
-    return {"steady_tone", Severity::note,
-            fmt::format("A steady tone of {:.4g} Hz lies under the decay; it was taken out as part of the fit.", hertz)};
+    return {
+        "steady_tone", Severity::note,
+        fmt::format("A steady tone of {:.4g} Hz lies under the decay; it was taken out as part of the fit.",
+                    hertz)};
 }
 
 Finding mode_finding(const Oscillator& added) {
-    return {"second_mode", Severity::note,
-            fmt::format("A further mode at {:.4g} Hz (damping ratio {:.2g}) rings along; it was fitted together with the "
-                        "mode reported. Use --near to choose another mode.",
-                        added.angular_frequency() / two_pi, added.damping_ratio())};
+    return {
+        "second_mode", Severity::note,
+        fmt::format(
+            "A further mode at {:.4g} Hz (damping ratio {:.2g}) rings along; it was fitted together with the "
+            "mode reported. Use --near to choose another mode.",
+            added.angular_frequency() / two_pi, added.damping_ratio())};
 }
 
 }  // namespace
@@ -116,10 +120,8 @@ void add_components(CurveFit& fit, const CurveFitOptions& options) {
         const bool mode_allowed =
             !options.modes || static_cast<int>(fit.fit.model.oscillators.size()) < *options.modes;
         if (mode_allowed) mode = with_mode(fit, omega);
-        const double tone_gain =
-            tone ? before - criterion_of(*tone) - needed_gain(fit, 3.0) : -1.0;
-        const double mode_gain =
-            mode ? before - criterion_of(*mode) - needed_gain(fit, 4.0) : -1.0;
+        const double tone_gain = tone ? before - criterion_of(*tone) - needed_gain(fit, 3.0) : -1.0;
+        const double mode_gain = mode ? before - criterion_of(*mode) - needed_gain(fit, 4.0) : -1.0;
         if (tone_gain <= 0.0 && mode_gain <= 0.0) return;
         if (mode_gain > tone_gain) {
             fit = std::move(*mode);

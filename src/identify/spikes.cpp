@@ -64,7 +64,8 @@ bool replace_spikes(CurveFit& fit) {
     const VectorXd residual = residual_at_full_rate(fit);
     const double limit = spike_limit * robust_deviation(residual);
     const std::vector<std::size_t> spikes = find_spikes(residual, limit);
-    if (spikes.empty() || static_cast<double>(spikes.size()) > largest_share * static_cast<double>(residual.size()))
+    if (spikes.empty() ||
+        static_cast<double>(spikes.size()) > largest_share * static_cast<double>(residual.size()))
         return false;
     const auto n = residual.size();
     for (const std::size_t spike : spikes) {
@@ -78,11 +79,12 @@ bool replace_spikes(CurveFit& fit) {
         const double around = count > 0 ? sum / count : 0.0;
         fit.window.value[spike] += around - residual(static_cast<Index>(spike));
     }
-    fit.findings.push_back({"spikes_replaced", Severity::note,
-                            fmt::format("{} isolated sample{} far outside the noise (the first at {:.6g} s after the "
-                                        "start of the decay) {} left out of the fit.",
-                                        spikes.size(), spikes.size() == 1 ? "" : "s",
-                                        fit.window.time_of(spikes.front()), spikes.size() == 1 ? "was" : "were")});
+    fit.findings.push_back(
+        {"spikes_replaced", Severity::note,
+         fmt::format("{} isolated sample{} far outside the noise (the first at {:.6g} s after the "
+                     "start of the decay) {} left out of the fit.",
+                     spikes.size(), spikes.size() == 1 ? "" : "s", fit.window.time_of(spikes.front()),
+                     spikes.size() == 1 ? "was" : "were")});
     return true;
 }
 

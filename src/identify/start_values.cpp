@@ -38,11 +38,13 @@ std::vector<double> spectral_candidates(const DecaySamples& samples) {
     return found;
 }
 
-std::vector<double> candidate_frequencies(const DecaySamples& samples, double guess_hz, std::optional<double> near_hz) {
+std::vector<double> candidate_frequencies(const DecaySamples& samples, double guess_hz,
+                                          std::optional<double> near_hz) {
     std::vector<double> candidates = spectral_candidates(samples);
     if (guess_hz > 0.0) candidates.push_back(two_pi * guess_hz);
     const double span = samples.time.maxCoeff();
-    for (double cycles = 0.15; cycles < 40.0 && cycles < 0.2 * static_cast<double>(samples.size()); cycles *= 1.6)
+    for (double cycles = 0.15; cycles < 40.0 && cycles < 0.2 * static_cast<double>(samples.size());
+         cycles *= 1.6)
         candidates.push_back(two_pi * cycles / span);
     if (near_hz) {
         candidates.push_back(two_pi * *near_hz);
@@ -56,7 +58,8 @@ std::vector<double> candidate_frequencies(const DecaySamples& samples, double gu
 
 }  // namespace
 
-std::optional<ProjectedFit> find_start(const DecaySamples& samples, double guess_hz, std::optional<double> near_hz) {
+std::optional<ProjectedFit> find_start(const DecaySamples& samples, double guess_hz,
+                                       std::optional<double> near_hz) {
     const AutoregressiveNoise white;
     std::vector<ProjectedFit> tried;
     for (const double omega : candidate_frequencies(samples, guess_hz, near_hz)) {
@@ -65,7 +68,8 @@ std::optional<ProjectedFit> find_start(const DecaySamples& samples, double guess
             DecayModel model;
             model.oscillators.push_back(Oscillator::from(damping, omega));
             ProjectedFit trial = solve_linear(model, samples, white);
-            if (best.model.oscillators.empty() || trial.residual_sum < best.residual_sum) best = std::move(trial);
+            if (best.model.oscillators.empty() || trial.residual_sum < best.residual_sum)
+                best = std::move(trial);
         }
         tried.push_back(std::move(best));
     }

@@ -35,7 +35,8 @@ VectorXd relative_variances(const VectorXd& partial) {
     const Index order = partial.size();
     VectorXd variances(order + 1);
     variances(order) = 1.0;
-    for (Index m = order; m > 0; --m) variances(m - 1) = variances(m) / (1.0 - partial(m - 1) * partial(m - 1));
+    for (Index m = order; m > 0; --m)
+        variances(m - 1) = variances(m) / (1.0 - partial(m - 1) * partial(m - 1));
     return variances;
 }
 
@@ -53,11 +54,13 @@ double AutoregressiveNoise::spectral_density(double cycles_per_sample) const {
     const VectorXd a = coefficients();
     std::complex<double> transfer = 1.0;
     for (Index j = 0; j < a.size(); ++j)
-        transfer -= a(j) * std::polar(1.0, -2.0 * std::numbers::pi * cycles_per_sample * static_cast<double>(j + 1));
+        transfer -=
+            a(j) * std::polar(1.0, -2.0 * std::numbers::pi * cycles_per_sample * static_cast<double>(j + 1));
     return innovation_variance / std::norm(transfer);
 }
 
-void whiten(const AutoregressiveNoise& noise, const std::vector<Stretch>& stretches, Eigen::Ref<MatrixXd> columns) {
+void whiten(const AutoregressiveNoise& noise, const std::vector<Stretch>& stretches,
+            Eigen::Ref<MatrixXd> columns) {
     const Index order = noise.order();
     if (order == 0) return;
     const MatrixXd predictors = predictors_of(noise.partial_autocorrelation);
@@ -137,7 +140,8 @@ const std::vector<MatrixXd>& RestrictedLikelihood::lag_products(Index order) con
                 const Index length = stretches_[s].length;
                 const MatrixXd &head = heads_[s], &tail = tails_[s];
                 if (length <= order) {  // the stretch is whitened by its edge rows alone
-                    for (Index u = lag; u < length; ++u) sum.noalias() -= head.row(u).transpose() * head.row(u - lag);
+                    for (Index u = lag; u < length; ++u)
+                        sum.noalias() -= head.row(u).transpose() * head.row(u - lag);
                     continue;
                 }
                 for (Index u = lag; u < order - i; ++u)
@@ -188,7 +192,8 @@ WhitenedFit RestrictedLikelihood::evaluate(const VectorXd& partial) const {
     WhitenedFit fit;
     double log_determinant = 0.0;
     for (const Stretch& stretch : stretches_)
-        for (Index m = 0; m < std::min(partial.size(), stretch.length); ++m) log_determinant += std::log(variances(m));
+        for (Index m = 0; m < std::min(partial.size(), stretch.length); ++m)
+            log_determinant += std::log(variances(m));
     const double log_determinant_noise = log_determinant;
     double explained = 0.0;
     if (k > 0) {
@@ -202,7 +207,8 @@ WhitenedFit RestrictedLikelihood::evaluate(const VectorXd& partial) const {
     fit.residual_sum = sum(k, k) - explained;
     if (!(fit.residual_sum > 0.0) || !std::isfinite(log_determinant)) return fit;
     fit.criterion = static_cast<double>(rows_ - k) * std::log(fit.residual_sum) + log_determinant;
-    fit.likelihood_criterion = static_cast<double>(rows_) * std::log(fit.residual_sum) + log_determinant_noise;
+    fit.likelihood_criterion =
+        static_cast<double>(rows_) * std::log(fit.residual_sum) + log_determinant_noise;
     fit.valid = std::isfinite(fit.criterion);
     return fit;
 }
@@ -215,8 +221,8 @@ VectorXd to_partial(const VectorXd& unbounded) {
     return unbounded.array().tanh().max(-largest_partial).min(largest_partial);
 }
 
-// −2 log posterior for a flat prior on each partial autocorrelation (the prior of their inverse hyperbolic tangents is
-// then 1 − κ²).
+// −2 log posterior for a flat prior on each partial autocorrelation (the prior of their inverse hyperbolic
+// tangents is then 1 − κ²).
 double minus_two_log_posterior(const WhitenedFit& fit, const VectorXd& partial) {
     if (!fit.valid) return std::numeric_limits<double>::infinity();
     return fit.criterion - 2.0 * (1.0 - partial.array().square()).log().sum();
@@ -234,8 +240,8 @@ VectorXd gradient_of(const RestrictedLikelihood& likelihood, const VectorXd& at)
         VectorXd up = at, down = at;
         up(i) += step;
         down(i) -= step;
-        gradient(i) =
-            (minus_two_log_posterior(likelihood, up) - minus_two_log_posterior(likelihood, down)) / (2.0 * step);
+        gradient(i) = (minus_two_log_posterior(likelihood, up) - minus_two_log_posterior(likelihood, down)) /
+                      (2.0 * step);
     }
     return gradient;
 }
@@ -267,7 +273,8 @@ VectorXd minimise(const RestrictedLikelihood& likelihood, VectorXd at) {
         if (curvature > 1e-12) {
             const double rho = 1.0 / curvature;
             const MatrixXd project = MatrixXd::Identity(n, n) - rho * moved * change.transpose();
-            inverse_hessian = project * inverse_hessian * project.transpose() + rho * moved * moved.transpose();
+            inverse_hessian =
+                project * inverse_hessian * project.transpose() + rho * moved * moved.transpose();
         }
         const double gain = value - next_value;
         at = next;
@@ -298,7 +305,8 @@ MatrixXd posterior_covariance(const RestrictedLikelihood& likelihood, const Vect
 }
 
 // Importance draws about the mode, in antithetic pairs.
-std::vector<NoiseDraw> draw_noise(const RestrictedLikelihood& likelihood, const VectorXd& mode, const NoiseOptions& options) {
+std::vector<NoiseDraw> draw_noise(const RestrictedLikelihood& likelihood, const VectorXd& mode,
+                                  const NoiseOptions& options) {
     const NoiseDraw best{to_partial(mode), 1.0, likelihood.evaluate(to_partial(mode))};
     if (mode.size() == 0 || options.draws < 2) return {best};
     constexpr double widening = 1.15;  // of the proposal, so that its tails reach those of the target
@@ -343,7 +351,8 @@ NoiseFit fit_noise(const RestrictedLikelihood& likelihood, const NoiseOptions& o
         const WhitenedFit fit = likelihood.evaluate(to_partial(current));
         if (!fit.valid) continue;
         const double parameters = static_cast<double>(order) + 1.0;
-        const double criterion = fit.criterion + 2.0 * parameters * spare / std::max(1.0, spare - parameters - 1.0);
+        const double criterion =
+            fit.criterion + 2.0 * parameters * spare / std::max(1.0, spare - parameters - 1.0);
         if (criterion < best_criterion) {
             best_criterion = criterion;
             best = current;

@@ -79,11 +79,13 @@ Sample draw(const Truth& truth, Deviates& deviates) {
     auto& event = sample.event;
     event.begin = held;
     event.rest_end = held + decay;
-    const double fall = truth.damping_ratio < 1.0
-                            ? truth.damping_ratio
-                            : 1.0 / (truth.damping_ratio + std::sqrt(truth.damping_ratio * truth.damping_ratio - 1.0));
+    const double fall =
+        truth.damping_ratio < 1.0
+            ? truth.damping_ratio
+            : 1.0 / (truth.damping_ratio + std::sqrt(truth.damping_ratio * truth.damping_ratio - 1.0));
     const double to_noise = std::log(1.0 / sigma) / (two_pi * fall) * truth.samples_per_cycle;
-    event.end = std::min(event.rest_end, held + std::max<std::size_t>(16, static_cast<std::size_t>(to_noise)));
+    event.end =
+        std::min(event.rest_end, held + std::max<std::size_t>(16, static_cast<std::size_t>(to_noise)));
     event.frequency_guess_hz = truth.damping_ratio < 0.3 ? truth.frequency_hz * 1.01 : 0.0;
     event.noise_level = sigma;
     event.start_amplitude = 1.0;
@@ -95,12 +97,14 @@ Bound cramer_rao(const Truth& truth) {
     const double rate = truth.frequency_hz * truth.samples_per_cycle;
     const double sigma = std::pow(10.0, -truth.signal_to_noise_db / 20.0), phi = truth.noise_correlation;
     Eigen::MatrixXd design(n, 5);
-    const auto velocity_like = [&](double f, double z, double t) {  // the second solution, by differencing the first
+    const auto velocity_like = [&](double f, double z,
+                                   double t) {  // the second solution, by differencing the first
         const double h = 1e-4 / f;
         return (pluck(f, z, t + h) - pluck(f, z, std::max(t - h, 0.0))) / (t > h ? 2.0 * h : h + t) / f;
     };
     for (Eigen::Index i = 0; i < n; ++i) {
-        const double t = (static_cast<double>(i) + 0.0) / rate, f = truth.frequency_hz, z = truth.damping_ratio;
+        const double t = (static_cast<double>(i) + 0.0) / rate, f = truth.frequency_hz,
+                     z = truth.damping_ratio;
         constexpr double h = 1e-5;
         design(i, 0) = (pluck(f * (1.0 + h), z, t) - pluck(f * (1.0 - h), z, t)) / (2.0 * h);
         design(i, 1) = (pluck(f, z + h, t) - pluck(f, z - h, t)) / (2.0 * h);

@@ -11,18 +11,18 @@
 namespace simulated {
 
 struct Truth {
-    double frequency_hz = 5.0;       // undamped
+    double frequency_hz = 5.0;  // undamped
     double damping_ratio = 0.05;
-    double cycles = 20.0;            // undamped periods from the release to the end of the recording
+    double cycles = 20.0;  // undamped periods from the release to the end of the recording
     double samples_per_cycle = 100.0;
     double signal_to_noise_db = 40.0;  // 20 log10(start amplitude / rms of the noise)
     double noise_correlation = 0.0;    // φ of AR(1) noise
     double hum_share = 0.0;            // amplitude of 50 Hz hum over the start amplitude
     double hum_hz = 50.0;
-    int bits = 0;                      // 0: not quantised; else steps over ±1.2 start amplitudes
-    double clip_share = 0.0;           // rail as share of the start amplitude; 0: no rail
-    double jitter_share = 0.0;         // standard deviation of the sampling instants in steps
-    double held_cycles = 0.0;          // plateau before the release, undamped periods
+    int bits = 0;               // 0: not quantised; else steps over ±1.2 start amplitudes
+    double clip_share = 0.0;    // rail as share of the start amplitude; 0: no rail
+    double jitter_share = 0.0;  // standard deviation of the sampling instants in steps
+    double held_cycles = 0.0;   // plateau before the release, undamped periods
     double offset = 0.3;
 };
 
@@ -46,8 +46,8 @@ struct Sample {
 
 [[nodiscard]] Sample draw(const Truth& truth, Deviates& deviates);
 
-/// Cramér–Rao bounds of ln(frequency) and of the damping ratio for the samples from the release on, for the noise that is
-/// present (AR(1) of known correlation and variance), offset and both amplitudes unknown.
+/// Cramér–Rao bounds of ln(frequency) and of the damping ratio for the samples from the release on, for the
+/// noise that is present (AR(1) of known correlation and variance), offset and both amplitudes unknown.
 struct Bound {
     double log_frequency = 0.0, damping_ratio = 0.0;
 };
