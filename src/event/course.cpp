@@ -18,11 +18,11 @@ struct Cycle {
 constexpr double cycle_by_cycle_damping = 0.25;
 
 std::vector<Cycle> cycles_of(std::span<const double> means, std::size_t first, std::size_t end,
-                             double frequency, std::size_t width) {
+                             const DecayShape& shape, std::size_t width) {
     std::vector<Cycle> cycles;
-    const DecayShape steady{frequency, 1e-9};
+    const double frequency = shape.damped_angular_frequency();
     for (std::size_t k = first; k + width <= end; k += std::max<std::size_t>(1, width / 2)) {
-        const DecayFit fit = fit_amplitudes(means.subspan(k, width), steady);
+        const DecayFit fit = fit_amplitudes(means.subspan(k, width), shape);
         cycles.push_back({k, fit.offset, std::hypot(fit.cosine_part, fit.sine_part / frequency)});
     }
     return cycles;
@@ -131,7 +131,7 @@ Course follow_ringing(std::span<const double> means, const Start& start, std::si
     const double frequency = start.fit.shape.damped_angular_frequency();
     const auto width =
         std::max<std::size_t>(6, static_cast<std::size_t>(std::lround(2.0 * std::numbers::pi / frequency)));
-    const std::vector<Cycle> cycles = cycles_of(means, first, limit, frequency, width);
+    const std::vector<Cycle> cycles = cycles_of(means, first, limit, start.fit.shape, width);
     const std::size_t undisturbed = first_disturbed(cycles, start.fit.residual_rms(), start.amplitude);
     const Knee knee = find_knee(cycles, undisturbed);
     Course course;
@@ -164,11 +164,20 @@ std::size_t leaves_rest(std::span<const double> means, std::size_t from, std::si
     return limit;
 }
 
+/// Last moment after the start at which the fit is farther than `threshold` from its rest position.
+double settling_time(const DecayFit& fit, double threshold) {
+    constexpr int looks = 400;
+    const double longest = 20.0 / fit.shape.slow_rate();
+    int k = looks;
+    while (k > 1 && std::abs(fit.value_at(longest * k / looks) - fit.offset) < threshold) --k;
+    return longest * k / looks;
+}
+
 Course follow_settling(std::span<const double> means, const Start& start, std::size_t first,
                        std::size_t limit) {
     const DecayShape& shape = start.fit.shape;
     const double noise = std::max(start.fit.residual_rms(), 1e-4 * start.amplitude);
-    const double settling = std::log(std::max(2.0, start.amplitude / (1.5 * noise))) / shape.slow_rate();
+    const double settling = settling_time(start.fit, 1.5 * noise);
     const auto width = static_cast<std::size_t>(
         std::clamp(0.5 / shape.slow_rate(), 2.0, static_cast<double>(limit - first)));
     const double fitted = static_cast<double>(start.fit_block + start.fit.points - first);

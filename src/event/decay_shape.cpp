@@ -187,13 +187,16 @@ double DecayFit::value_at(double t) const {
 }
 
 double DecayFit::envelope_at(double t) const {
-    const double frequency = shape.damped_angular_frequency();
-    if (frequency * static_cast<double>(points) > 0.3) {
+    if (shape.damping_ratio < 0.5) {
         const double decay = bounded_exp(-shape.decay_rate() * t);
-        return decay * std::hypot(cosine_part, sine_part / frequency);
+        return decay * std::hypot(cosine_part, sine_part / shape.damped_angular_frequency());
     }
-    const DecayTerms terms = decay_terms(shape, t);
-    return std::abs(cosine_part * terms.cosine_like) + std::abs(sine_part * terms.sine_like);
+    constexpr int looks = 24;
+    const double span = 3.0 / shape.undamped_angular_frequency;
+    double largest = 0.0;
+    for (int i = 0; i <= looks; ++i)
+        largest = std::max(largest, std::abs(value_at(t + span * i / looks) - offset));
+    return largest;
 }
 
 double DecayFit::residual_rms() const {

@@ -39,7 +39,8 @@ struct DecayFit {
     double total_sum = 0.0;     ///< of squares about the mean
     std::size_t points = 0;
     [[nodiscard]] double value_at(double t) const;
-    /// Modulus of the decaying part at t, in units of the points (free of the phase of the oscillation).
+    /// Modulus of the decaying part at t in units of the points, free of the phase of the oscillation; from
+    /// half of critical damping on, the largest excursion from t on.
     [[nodiscard]] double envelope_at(double t) const;
     [[nodiscard]] double residual_rms() const;
     /// (explained sum of squares)/(residual sum of squares).

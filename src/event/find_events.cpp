@@ -21,6 +21,12 @@ namespace {
 constexpr std::size_t shortest_recording = 16;
 /// Amplitude against noise of a decay that is worth reporting.
 constexpr double least_amplitude = 3.0;
+/// What the decay may leave unexplained over its first cycle, as a share of its height: of a long decay
+/// (other modes ring along), of a short one (it has little else to show), of one that looks like a mere
+/// pulse.
+constexpr double misfit_of_long = 0.16, misfit_of_short = 0.06, misfit_of_pulse = 0.02;
+/// Samples between the start and the noise.
+constexpr std::size_t shortest_decay = 6;
 
 bool shows_position(MeasuredQuantity quantity) {
     return quantity == MeasuredQuantity::displacement || quantity == MeasuredQuantity::angle;
@@ -72,20 +78,108 @@ StartLimits limits_for(const Search& search, const Onset& onset) {
     return limits;
 }
 
+/// Start and course, the start a second time with the noise that the rest shows.
+std::optional<Found> follow_onset(const Search& search, const Onset& onset, StartLimits limits) {
+    std::optional<Start> start = locate_start(search.pyramid, onset, limits);
+    if (!start || start->position + 8 > limits.latest) return {};
+    Course course = follow_decay(search.pyramid, *start, limits.latest);
+    if (course.reaches_noise) {
+        limits.rest = SampleRange{course.end, course.rest_end};
+        if (std::optional<Start> again = locate_start(search.pyramid, onset, limits)) {
+            if (again->position + 8 <= limits.latest) {
+                start = again;
+                course = follow_decay(search.pyramid, *start, limits.latest);
+            }
+        }
+    }
+    return Found{*start, course, 0, 0, {}};
+}
+
+/// Standard deviation of single values in the rest: of the quieter among its pieces, since a stray knock in
+/// it is no noise. 0 when there is no rest.
+double rest_rms(std::span<const double> values, const Course& course) {
+    constexpr std::size_t pieces = 12, shortest = 16, longest = 20000;
+    if (!course.reaches_noise || course.rest_end < course.end + shortest) return 0.0;
+    const std::size_t rest = course.rest_end - course.end;
+    const std::size_t length = std::min(longest, std::max(shortest, rest / pieces));
+    std::vector<double> deviations;
+    for (std::size_t k = course.end; k + length <= course.rest_end; k += std::max(length, rest / pieces)) {
+        double sum = 0.0, squares = 0.0;
+        for (std::size_t i = k; i < k + length; ++i) {
+            const double y = values[i] - values[k];
+            sum += y, squares += y * y;
+        }
+        const auto n = static_cast<double>(length);
+        deviations.push_back(std::sqrt(std::max(0.0, (squares - sum * sum / n) / (n - 1.0))));
+    }
+    const auto at = deviations.begin() + static_cast<std::ptrdiff_t>(deviations.size() / 3);
+    std::nth_element(deviations.begin(), at, deviations.end());
+    return *at;
+}
+
+double range_of(std::span<const double> values) {
+    const auto [low, high] = std::minmax_element(values.begin(), values.end());
+    return *high - *low;
+}
+
+/// Whether the start belongs to a pulse that fell in less than twice the time in which it rose.
+bool on_a_pulse(std::span<const double> values, const Found& found, double height) {
+    const double rest = found.start.fit.offset;
+    const double sign = values[found.begin()] > rest ? 1.0 : -1.0;
+    const auto above = [&](std::size_t k) { return sign * (values[k] - rest) > 0.1 * height; };
+    std::size_t first = found.begin(), last = found.begin(), peak = found.begin();
+    while (first > 0 && above(first)) --first;
+    while (last + 1 < values.size() && above(last)) ++last;
+    for (std::size_t k = first; k < last; ++k)
+        if (sign * values[k] > sign * values[peak]) peak = k;
+    return first > 0 && last - peak < 2 * (peak - first);
+}
+
+/// Whether one free decay explains what follows the start: not a pulse, a filter's answer or a wiggle of
+/// noise.
+bool believable(const Search& search, const Found& found) {
+    const Start& start = found.start;
+    const std::span<const double> values = search.series.values();
+    const std::size_t cycle = static_cast<std::size_t>(std::min(found.cycle(), 1e15)) + 8;
+    const std::size_t stop = std::min({values.size(), found.begin() + cycle, found.course.rest_end});
+    if (found.course.end < found.begin() + shortest_decay) return false;
+    const double height = range_of(values.subspan(found.begin(), stop - found.begin()));
+    if (start.amplitude > 3.0 * height || start.amplitude < least_amplitude * start.noise_rms) return false;
+    const double cycles = static_cast<double>(found.course.end - found.begin()) / found.cycle();
+    const bool cut = !found.course.reaches_noise && found.course.rest_end < values.size();
+    if (cut && cycles < 1.5) return false;
+    const double noise = rest_rms(values, found.course);
+    const double amplitude = std::min(start.amplitude, height);
+    double misfit = cycles < 3.0 && noise > 0.0 ? misfit_of_short : misfit_of_long;
+    if (misfit == misfit_of_short && on_a_pulse(values, found, height)) misfit = misfit_of_pulse;
+    return start.noise_rms < std::max(misfit * amplitude, 2.5 * noise);
+}
+
 void try_onset(Search& search, const Onset& onset) {
     if (taken(search, onset)) return;
     const StartLimits limits = limits_for(search, onset);
     if (limits.latest <= onset.position + 12) return;
-    const std::optional<Start> start = locate_start(search.pyramid, onset, limits);
-    if (!start || start->position + 8 > limits.latest) return;
-    if (start->amplitude < least_amplitude * start->noise_rms) return;
-    Found found{*start, follow_decay(search.pyramid, *start, limits.latest), 0, 0, {}};
-    if (!found.course.falls()) {
+    std::optional<Found> found = follow_onset(search, onset, limits);
+    if (!found || !believable(search, *found)) return;
+    if (!found->course.falls()) {
         search.steady = true;
         return;
     }
-    if (found.course.rest_end < found.begin() + 12) return;
-    search.found.push_back(std::move(found));
+    search.found.push_back(std::move(*found));
+}
+
+/// What stands out of the noise of the recording no more than noise does is no event.
+void drop_weak(std::vector<Found>& found, std::span<const double> values) {
+    constexpr double stands_out = 6.0;
+    double largest = 0.0, noise = 0.0;
+    for (const Found& f : found) {
+        if (f.start.amplitude <= largest) continue;
+        largest = f.start.amplitude;
+        noise = rest_rms(values, f.course);
+    }
+    std::erase_if(found, [&](const Found& f) {
+        return f.start.amplitude < 0.5 * largest && f.start.amplitude < stands_out * noise;
+    });
 }
 
 /// A slow pull to a plateau that the next release leaves is no decay.
@@ -163,7 +257,8 @@ Event to_event(const Found& found, const Search& search, const EventOptions& opt
     event.begin = series.sample_at(found.begin());
     event.end = series.sample_at(found.end());
     event.rest_end = series.sample_at(found.course.rest_end);
-    event.noise_level = found.start.noise_rms;
+    const double rest = rest_rms(series.values(), found.course);
+    event.noise_level = rest > 0.0 ? rest : found.start.noise_rms;
     event.start_amplitude = found.start.amplitude;
     event.kind = options.kind.value_or(TestKind::pluck);
     event.kind_known = options.kind.has_value() || found.start.from_rest;
@@ -206,6 +301,7 @@ EventSearch search_whole(const Recording& recording, const EventOptions& options
     for (const Onset& onset : find_onsets(pyramid)) try_onset(search, onset);
     std::sort(search.found.begin(), search.found.end(),
               [](const Found& a, const Found& b) { return a.begin() < b.begin(); });
+    drop_weak(search.found, series.values());
     drop_pulls(search.found);
     judge_interruptions(search.found, series);
     find_quiet(search.found, pyramid);

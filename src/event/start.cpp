@@ -14,9 +14,13 @@ namespace {
 /// on average when it is kept; five keeps noise from cutting the start, and drops what departs by more than
 /// about two standard deviations for several values.
 constexpr double cost_of_leaving_out = 5.0;
-/// What a real damper may differ from the model over a few cycles, as a share of the amplitude: not a reason
-/// to start late.
-constexpr double tolerated_misfit = 0.003;
+/// What a real damper may differ from the model over a few cycles, as a share of the amplitude: no reason to
+/// start late. The first guess of the start bears with it; the last one fits the first cycle by itself.
+constexpr double tolerated_misfit = 0.04;
+/// The same where the decay is over within a cycle or two: less, lest a held plateau pass for its beginning.
+constexpr double tolerated_when_damped = 0.01;
+/// The same over one cycle with the shape fitted to that cycle.
+constexpr double tolerated_in_cycle = 0.002;
 
 /// Blocks of a finer level within which an onset of a coarser level is uncertain.
 std::size_t reach_of(const Onset& onset, std::size_t level) {
@@ -83,7 +87,7 @@ std::vector<Trial> trials_over(std::span<const double> means, const Stretch& str
 }
 
 /// The noise variance of one block: the least of the trials that have enough points to show it.
-double noise_variance(const std::vector<Trial>& trials, double amplitude) {
+double noise_variance(const std::vector<Trial>& trials) {
     double least = -1.0;
     for (const Trial& trial : trials) {
         const std::size_t enough = std::max<std::size_t>(20, trials.front().fit.points);
@@ -91,12 +95,27 @@ double noise_variance(const std::vector<Trial>& trials, double amplitude) {
         const double variance = trial.fit.residual_rms() * trial.fit.residual_rms();
         if (least < 0.0 || variance < least) least = variance;
     }
-    const double misfit = tolerated_misfit * amplitude;
-    return std::max({least, misfit * misfit, 0.0});
+    return std::max(least, 0.0);
 }
 
-const Trial* cheapest(const std::vector<Trial>& trials, double amplitude, std::size_t from) {
-    const double price = cost_of_leaving_out * noise_variance(trials, amplitude);
+/// The variance about a straight line of what the rest shows on this level; nothing when it is too short.
+std::optional<double> rest_variance(std::span<const double> values, std::size_t level,
+                                    const std::optional<SampleRange>& rest) {
+    if (!rest) return {};
+    constexpr std::size_t fewest = 12, most = 4096;
+    const std::size_t begin = (rest->begin >> level) + 1, end = std::min(rest->end >> level, begin + most);
+    if (end < begin + fewest) return {};
+    const auto n = static_cast<double>(end - begin);
+    double y1 = 0.0, x1 = 0.0, yy = 0.0, xy = 0.0, xx = 0.0;
+    for (std::size_t k = begin; k < end; ++k) {
+        const double x = static_cast<double>(k - begin) - 0.5 * (n - 1.0), y = values[k] - values[begin];
+        x1 += x, y1 += y, yy += y * y, xy += x * y, xx += x * x;
+    }
+    return std::max(0.0, (yy - y1 * y1 / n - xy * xy / xx) / (n - 2.0));
+}
+
+const Trial* cheapest(const std::vector<Trial>& trials, double variance, std::size_t from) {
+    const double price = cost_of_leaving_out * variance;
     const Trial* best = nullptr;
     double least = 0.0;
     for (const Trial& trial : trials) {
@@ -106,33 +125,86 @@ const Trial* cheapest(const std::vector<Trial>& trials, double amplitude, std::s
     return best;
 }
 
+/// The strict guess, unless it comes so much later than the tolerant one that the damper, not the release,
+/// explains the difference.
+const Trial* first_guess(const std::vector<Trial>& trials, double noise, double amplitude, std::size_t from) {
+    constexpr double late = 0.4, late_when_damped = 0.8;  // of a cycle
+    const double strict_misfit = tolerated_in_cycle * amplitude;
+    const Trial* strict = cheapest(trials, std::max(noise, strict_misfit * strict_misfit), from);
+    const bool damped = strict->fit.shape.damping_ratio > 0.3;
+    const double misfit = (damped ? tolerated_when_damped : tolerated_misfit) * amplitude;
+    const Trial* tolerant = cheapest(trials, std::max(noise, misfit * misfit), from);
+    const double cycle = 2.0 * std::numbers::pi / strict->fit.shape.undamped_angular_frequency;
+    const double allowed = (damped ? late_when_damped : late) * cycle;
+    const bool much_later =
+        static_cast<double>(strict->first) > static_cast<double>(tolerant->first) + allowed;
+    return much_later ? tolerant : strict;
+}
+
+/// The first cycle or so fitted by itself, from a little after the first guess of the start.
+struct Local {
+    std::size_t origin = 0;
+    DecayFit fit;
+};
+
+std::optional<Local> fit_locally(std::span<const double> values, std::size_t origin, std::size_t end,
+                                 const DecayShape& shape, double noise_rms) {
+    const double cycle = 2.0 * std::numbers::pi / shape.undamped_angular_frequency;
+    const double length = std::max(1.25 * cycle, std::min(2.0 / shape.slow_rate(), 2.5 * cycle));
+    const std::size_t stop = std::min(end, origin + static_cast<std::size_t>(std::ceil(length)));
+    if (stop < origin + 8) return {};
+    const std::span<const double> points = values.subspan(origin, stop - origin);
+    Local local{origin, fit_amplitudes(points, shape)};
+    if (local.fit.residual_rms() > 1.3 * noise_rms) {
+        if (const std::optional<DecayFit> own = fit_decay(points, shape)) local.fit = *own;
+    }
+    return local;
+}
+
+/// The earliest of three origins from which the first cycle is as well explained as from the best of them.
+std::optional<Local> choose_origin(std::span<const double> values, std::size_t guess, std::size_t ratio,
+                                   std::size_t end, const DecayShape& shape, double noise_rms) {
+    const double cycle = 2.0 * std::numbers::pi / shape.undamped_angular_frequency;
+    std::vector<Local> choices;
+    for (const double later : {static_cast<double>(ratio), 0.12 * cycle, 0.25 * cycle}) {
+        const std::size_t origin = guess + std::max<std::size_t>(1, static_cast<std::size_t>(later));
+        if (const auto local = fit_locally(values, origin, end, shape, noise_rms)) choices.push_back(*local);
+    }
+    double least = -1.0;
+    for (const Local& local : choices)
+        if (least < 0.0 || local.fit.residual_rms() < least) least = local.fit.residual_rms();
+    for (const Local& local : choices)
+        if (local.fit.residual_rms() <= 1.25 * std::max(least, noise_rms)) return local;
+    return {};
+}
+
 /// The start among single values (or fine blocks): back from the fitted stretch for as long as the decay
 /// explains them.
-void refine_position(const Pyramid& pyramid, Start& start, const StartLimits& limits) {
+void refine_position(const Pyramid& pyramid, Start& start, const StartLimits& limits,
+                     double noise_block_rms) {
     const std::size_t fine = start.level > 4 ? start.level - 4 : 0;
     const std::size_t ratio = std::size_t{1} << (start.level - fine);
     const std::span<const double> values = pyramid.level(fine);
     const DecayShape shape = at_level(start.shape, 0, fine);
-    const std::size_t origin = (start.fit_block + 1) * ratio;
-    const double cycle = 2.0 * std::numbers::pi / shape.undamped_angular_frequency;
-    const auto wanted = static_cast<std::size_t>(std::ceil(1.5 * cycle));
-    const std::size_t stop =
-        std::min({values.size(), (start.fit_block + start.fit.points) * ratio, origin + wanted});
-    if (stop < origin + 8) {
-        start.position = std::max(start.fit_block << start.level, limits.earliest);
-        return;
-    }
-    const DecayFit local = fit_amplitudes(values.subspan(origin, stop - origin), shape);
-    start.noise_rms = local.residual_rms();
-    const double floor = std::max(start.noise_rms, tolerated_misfit * start.amplitude);
+    const std::size_t guess = start.fit_block * ratio;
+    const std::size_t end = std::min(values.size(), (start.fit_block + start.fit.points) * ratio);
+    const double rest =
+        std::sqrt(rest_variance(values, fine, limits.rest).value_or(noise_block_rms * noise_block_rms));
+    const std::optional<Local> local = choose_origin(values, guess, ratio, end, shape, rest);
+    start.position = std::max(guess << fine, limits.earliest);
+    start.noise_rms = start.fit.residual_rms();
+    if (!local) return;
+    start.noise_rms = local->fit.residual_rms();
+    const double floor = std::max({start.noise_rms, rest, tolerated_in_cycle * start.amplitude});
     const double price = cost_of_leaving_out * floor * floor;
     const std::size_t earliest = (limits.earliest + (std::size_t{1} << fine) - 1) >> fine;
-    const std::size_t back = origin > 4 * ratio ? origin - 4 * ratio : 0;
+    const auto back = static_cast<std::size_t>(std::numbers::pi / shape.undamped_angular_frequency);
+    const std::size_t stop = std::max(guess > back ? guess - back : 0, earliest);
     double gain = 0.0, best = 0.0;
-    std::size_t first = origin;
-    for (std::size_t k = origin; k-- > std::max(back, earliest);) {
-        const double t = static_cast<double>(k) - static_cast<double>(origin);
-        const double r = values[k] - local.value_at(t);
+    std::size_t first = local->origin;
+    for (std::size_t k = local->origin; k-- > stop;) {
+        const double t = static_cast<double>(k) - static_cast<double>(local->origin);
+        const double r = values[k] - local->fit.value_at(t);
         gain += price - r * r;
         if (gain > best) best = gain, first = k;
     }
@@ -150,13 +222,14 @@ std::optional<Start> locate_start(const Pyramid& pyramid, const Onset& onset, co
     const Stretch stretch = stretch_around(onset, shape, start.level, means.size(), limits);
     if (stretch.end < stretch.first + 12) return {};
     const std::vector<Trial> trials = trials_over(means, stretch, shape);
-    const Trial* best = trials.empty() ? nullptr : cheapest(trials, onset.amplitude, stretch.first);
-    if (best == nullptr) return {};
+    if (trials.empty()) return {};
+    const double noise = rest_variance(means, start.level, limits.rest).value_or(noise_variance(trials));
+    const Trial* best = first_guess(trials, noise, onset.amplitude, stretch.first);
     start.fit = best->fit;
     start.fit_block = best->first;
     start.shape = at_level(best->fit.shape, start.level, 0);
     start.amplitude = best->fit.envelope_at(0.0);
-    refine_position(pyramid, start, limits);
+    refine_position(pyramid, start, limits, std::sqrt(noise));
     if (limits.displacement) refine_release(pyramid, start, limits);
     const double ahead =
         (static_cast<double>(start.position) - static_cast<double>(start.fit_block << start.level)) /
