@@ -1,0 +1,199 @@
+#include "identify/curve_fit.hpp"
+
+#include <fmt/format.h>
+
+#include <Eigen/QR>
+#include <algorithm>
+#include <cmath>
+#include <numbers>
+
+#include "identify/curve_fit_steps.hpp"
+#include "identify/start_values.hpp"
+#include "ringwright/distributions.hpp"
+
+namespace ringwright::identify {
+
+using Eigen::Index;
+using Eigen::MatrixXd;
+using Eigen::VectorXd;
+
+namespace {
+
+constexpr Index fewest_rows = 12;
+constexpr int noise_rounds = 4;
+constexpr double settled = 0.02;  // change of the parameters between rounds, in standard uncertainties
+
+// How far behind the decay the fit reads on: the noise there is the same noise, and a short decay needs it.
+std::size_t end_of_fit(const Event& event) {
+    const std::size_t decay = event.end - event.begin;
+    const std::size_t wanted = event.end + std::max<std::size_t>(decay / 2, 400);
+    return std::max(event.end, std::min(event.rest_end, wanted));
+}
+
+MatrixXd full_design(const ProjectedFit& fit, const DecaySamples& samples) {
+    MatrixXd design(samples.size(), fit.model.linear_count() + fit.model.nonlinear_count());
+    design << linear_columns(fit.model, samples), derivative_columns(fit.model, samples, fit.coefficients);
+    return design;
+}
+
+struct Orthonormal {
+    MatrixXd basis, map;  // design · map = basis
+    bool full_rank = false;
+};
+
+Orthonormal orthonormalise(const MatrixXd& design) {
+    const Index k = design.cols();
+    const VectorXd norms = design.colwise().norm().cwiseMax(1e-300);
+    const Eigen::HouseholderQR<MatrixXd> factor(design * norms.cwiseInverse().asDiagonal());
+    const MatrixXd upper = factor.matrixQR().topRows(k).triangularView<Eigen::Upper>();
+    Orthonormal result;
+    const VectorXd diagonal = upper.diagonal().cwiseAbs();
+    result.full_rank = diagonal.minCoeff() > 1e-9 * diagonal.maxCoeff();
+    if (!result.full_rank) return result;
+    result.basis = factor.householderQ() * MatrixXd::Identity(design.rows(), k);
+    result.map = norms.cwiseInverse().asDiagonal() *
+                 upper.triangularView<Eigen::Upper>().solve(MatrixXd::Identity(k, k));
+    return result;
+}
+
+}  // namespace
+
+bool estimate_noise(CurveFit& fit, int draws, std::uint64_t seed) {
+    const Orthonormal design = orthonormalise(full_design(fit.fit, fit.samples));
+    if (!design.full_rank) return false;
+    fit.residual = fit.samples.value - linear_columns(fit.fit.model, fit.samples) * fit.fit.coefficients;
+    fit.map = design.map;
+    fit.basis = design.basis;
+    NoiseOptions options;
+    options.draws = draws;
+    options.seed = seed;
+    const RestrictedLikelihood likelihood(design.basis, fit.residual, fit.samples.stretches,
+                                          options.highest_order);
+    if (likelihood.rows() - likelihood.columns() < 4) return false;
+    fit.noise = fit_noise(likelihood, options);
+    fit.innovations = fit.residual;
+    whiten(fit.noise.noise, fit.samples.stretches, fit.innovations);
+    fit.innovations /= std::sqrt(fit.noise.noise.innovation_variance);
+    return fit.noise.fit.valid;
+}
+
+namespace {
+
+double largest_move(const CurveFit& fit, const VectorXd& before) {
+    const Index linear = fit.linear_count();
+    const VectorXd move = fit.fit.model.parameters() - before;
+    double largest = 0.0;
+    for (Index i = 0; i < move.size(); ++i) {
+        const VectorXd row = fit.map.row(linear + i);
+        const double variance =
+            fit.noise.noise.innovation_variance * row.dot(fit.noise.fit.unit_covariance * row);
+        largest = std::max(largest, std::abs(move(i)) / std::sqrt(std::max(variance, 1e-300)));
+    }
+    return largest;
+}
+
+}  // namespace
+
+bool settle(CurveFit& fit) {
+    for (int round = 0; round < noise_rounds; ++round) {
+        if (!estimate_noise(fit, 0, 1)) return false;
+        const VectorXd before = fit.fit.model.parameters();
+        fit.fit = fit_projected(fit.fit.model, fit.samples, fit.noise.noise);
+        if (!fit.fit.model.parameters().allFinite()) return false;
+        if (largest_move(fit, before) < settled) break;
+    }
+    return estimate_noise(fit, 0, 1);
+}
+
+namespace {
+
+// First blocks that do not belong to the decay (the release or the contact still going on) show as
+// innovations far beyond the rest; each test has a false-alarm rate of 1e-5.
+Index misfitting_start(const CurveFit& fit) {
+    constexpr double false_alarm = 1e-5;
+    double sum = 0.0;
+    Index drop = 0;
+    const Index most = std::min<Index>(12, fit.innovations.size() / 10);
+    for (Index m = 1; m <= most; ++m) {
+        sum += fit.innovations(m - 1) * fit.innovations(m - 1);
+        if (sum > chi_squared_quantile(1.0 - false_alarm, static_cast<double>(m))) drop = m;
+    }
+    return drop;
+}
+
+bool start_fit(CurveFit& fit, const Event& event, const CurveFitOptions& options) {
+    const double guess = options.near_hz.value_or(event.frequency_guess_hz);
+    const double span = static_cast<double>(event.end - event.begin) / fit.window.rate_hz;
+    const double first_rate = 2.0 * std::numbers::pi * (guess > 0.0 ? 1.5 * guess : 30.0 / span);
+    fit.samples = block_means(fit.window, block_for(fit.window, first_rate, 300.0));
+    if (fit.samples.size() < fewest_rows) {
+        fit.reason = fmt::format("the decay has only {} usable samples", fit.samples.size());
+        return false;
+    }
+    const std::optional<ProjectedFit> start = find_start(fit.samples, guess, options.near_hz);
+    if (!start) {
+        fit.reason = "no decaying oscillation fits the recording";
+        return false;
+    }
+    fit.fit = *start;
+    return true;
+}
+
+void reblock(CurveFit& fit) {
+    double fastest = 0.0;
+    for (const Oscillator& o : fit.fit.model.oscillators) fastest = std::max(fastest, o.fastest_rate());
+    fit.samples = block_means(fit.window, block_for(fit.window, fastest));
+    fit.fit = fit_projected(fit.fit.model, fit.samples, fit.noise.noise);
+}
+
+}  // namespace
+
+CurveFit fit_decay(const Recording& recording, const Event& event, const CurveFitOptions& options) {
+    CurveFit fit;
+    const std::size_t end = end_of_fit(event);
+    fit.window = cut_window(recording, event.begin, end);
+    if (!start_fit(fit, event, options)) return fit;
+    reblock(fit);
+    fit.reason = "the samples do not determine a decay (too few, or too much noise)";
+    for (int attempt = 0; attempt < 4; ++attempt) {
+        if (fit.samples.size() < fewest_rows || !settle(fit)) return fit;
+        if (replace_spikes(fit)) {
+            reblock(fit);
+            continue;
+        }
+        const Index drop = misfitting_start(fit);
+        if (drop == 0 || attempt == 3) break;
+        const auto samples = static_cast<std::size_t>(drop * fit.samples.block);
+        fit.window = cut_window(recording, fit.window.begin + samples, end);
+        reblock(fit);
+    }
+    add_components(fit, options);
+    fit.valid = estimate_noise(fit, options.noise_draws, options.seed);
+    if (fit.valid) fit.reason.clear();
+    return fit;
+}
+
+Spread spread_of(const CurveFit& fit, const VectorXd& gradient) {
+    const VectorXd row = fit.map.transpose() * gradient;
+    const double spare = fit.noise.degrees_of_freedom;
+    double mean_variance = 0.0, mean_square = 0.0, mean_centre = 0.0, mean_centre_square = 0.0;
+    for (const NoiseDraw& draw : fit.noise.draws) {
+        const WhitenedFit& at = draw.fit;
+        const double variance = at.residual_sum / spare * row.dot(at.unit_covariance * row);
+        const double centre = row.dot(at.coefficients);
+        mean_variance += draw.weight * variance;
+        mean_square += draw.weight * variance * variance;
+        mean_centre += draw.weight * centre;
+        mean_centre_square += draw.weight * centre * centre;
+    }
+    const double centre_variance = std::max(0.0, mean_centre_square - mean_centre * mean_centre);
+    const double relative_square =
+        std::max(0.0, mean_square / (mean_variance * mean_variance) - 1.0) + 2.0 / std::max(1.0, spare - 4.0);
+    Spread spread;
+    spread.degrees_of_freedom = 4.0 + 2.0 / relative_square;
+    const double inflated = mean_variance * spare / std::max(1.0, spare - 2.0) + centre_variance;
+    spread.scale = std::sqrt(inflated * (spread.degrees_of_freedom - 2.0) / spread.degrees_of_freedom);
+    return spread;
+}
+
+}  // namespace ringwright::identify

@@ -1,0 +1,198 @@
+#include "identify/decay_model.hpp"
+
+#include <algorithm>
+#include <cmath>
+#include <numbers>
+
+namespace ringwright::identify {
+
+using Eigen::Index;
+using Eigen::MatrixXd;
+using Eigen::VectorXd;
+
+Oscillator Oscillator::from(double damping_ratio, double angular_frequency) {
+    return {std::asinh(damping_ratio), std::log(angular_frequency)};
+}
+double Oscillator::damping_ratio() const {
+    return std::sinh(asinh_damping);
+}
+double Oscillator::angular_frequency() const {
+    return std::exp(log_frequency);
+}
+double Oscillator::decay_rate() const {
+    return damping_ratio() * angular_frequency();
+}
+
+double Oscillator::damped_frequency_hz() const {
+    const double ratio = damping_ratio();
+    if (ratio * ratio >= 1.0) return 0.0;
+    return angular_frequency() * std::sqrt(1.0 - ratio * ratio) / (2.0 * std::numbers::pi);
+}
+
+double Oscillator::fastest_rate() const {
+    const double ratio = std::abs(damping_ratio());
+    return angular_frequency() * (ratio <= 1.0 ? 1.0 : ratio + std::sqrt(ratio * ratio - 1.0));
+}
+
+double Oscillator::slowest_rate() const {
+    const double ratio = damping_ratio();
+    return ratio <= 1.0 ? decay_rate() : angular_frequency() / (ratio + std::sqrt(ratio * ratio - 1.0));
+}
+
+Index DecayModel::nonlinear_count() const {
+    return static_cast<Index>(2 * oscillators.size() + tones.size() + real_poles.size());
+}
+
+Index DecayModel::linear_count() const {
+    return first_oscillator_column() +
+           static_cast<Index>(2 * oscillators.size() + 2 * tones.size() + real_poles.size());
+}
+
+VectorXd DecayModel::parameters() const {
+    VectorXd all(nonlinear_count());
+    Index at = 0;
+    for (const Oscillator& o : oscillators) {
+        all(at++) = o.asinh_damping;
+        all(at++) = o.log_frequency;
+    }
+    for (const double tone : tones) all(at++) = tone;
+    for (const double pole : real_poles) all(at++) = pole;
+    return all;
+}
+
+void DecayModel::set_parameters(const VectorXd& parameters) {
+    Index at = 0;
+    for (Oscillator& o : oscillators) {
+        o.asinh_damping = parameters(at++);
+        o.log_frequency = parameters(at++);
+    }
+    for (double& tone : tones) tone = parameters(at++);
+    for (double& pole : real_poles) pole = parameters(at++);
+}
+
+namespace {
+
+// e^(−s t) C(p,t), e^(−s t) S(p,t) and e^(−s t) ∂S/∂p at one time.
+struct Kernel {
+    double c, s, ds_dp;
+};
+
+// Power series in p t², for |p| t² < 0.05: six terms leave less than 1e-16.
+Kernel near_critical(double decay, double p, double t) {
+    const double t2 = t * t, x = p * t2, e = std::exp(-decay * t);
+    const double c =
+        1.0 - x / 2.0 * (1.0 - x / 12.0 * (1.0 - x / 30.0 * (1.0 - x / 56.0 * (1.0 - x / 90.0))));
+    const double s =
+        t * (1.0 - x / 6.0 * (1.0 - x / 20.0 * (1.0 - x / 42.0 * (1.0 - x / 72.0 * (1.0 - x / 110.0)))));
+    const double ds =
+        -t * t2 / 6.0 * (1.0 - x / 10.0 * (1.0 - x / 28.0 * (1.0 - x / 54.0 * (1.0 - x / 88.0))));
+    return {e * c, e * s, e * ds};
+}
+
+Kernel kernel_at(double decay, double p, double root, double t) {
+    if (std::abs(p) * t * t < 0.05) return near_critical(decay, p, t);
+    double c = 0.0, s = 0.0;
+    if (p > 0.0) {
+        const double e = std::exp(-decay * t);
+        c = e * std::cos(root * t);
+        s = e * std::sin(root * t) / root;
+    } else {  // two decaying exponentials, so that nothing overflows
+        const double slow = std::exp(-(decay - root) * t), fast = std::exp(-(decay + root) * t);
+        c = 0.5 * (slow + fast);
+        s = 0.5 * (slow - fast) / root;
+    }
+    return {c, s, (t * c - s) / (2.0 * p)};
+}
+
+struct OscillatorConstants {
+    double omega, decay, p, root, ds_dz, dp_dz;
+    explicit OscillatorConstants(const Oscillator& o)
+        : omega(o.angular_frequency()),
+          decay(o.decay_rate()),
+          p(omega * omega * (1.0 - o.damping_ratio() * o.damping_ratio())),
+          root(std::sqrt(std::abs(p))),
+          ds_dz(omega * std::cosh(o.asinh_damping)),
+          dp_dz(-2.0 * omega * o.damping_ratio() * ds_dz) {}
+};
+
+// Evaluates `fill(time, out)` at the block centres, or at every sample and averages over the blocks.
+template <typename Fill>
+MatrixXd over_blocks(const DecaySamples& samples, Index columns, Fill fill) {
+    MatrixXd out(samples.size(), columns);
+    if (samples.fine_time.size() == 0) {
+        fill(samples.time, out);
+        return out;
+    }
+    MatrixXd fine(samples.fine_time.size(), columns);
+    fill(samples.fine_time, fine);
+    for (Index i = 0; i < samples.size(); ++i)
+        out.row(i) = fine.middleRows(i * samples.block, samples.block).colwise().mean();
+    return out;
+}
+
+}  // namespace
+
+MatrixXd linear_columns(const DecayModel& model, const DecaySamples& samples) {
+    const double span = std::max(samples.time.maxCoeff(), samples.step_s);
+    return over_blocks(samples, model.linear_count(), [&](const VectorXd& time, MatrixXd& out) {
+        Index column = 0;
+        out.col(column++).setOnes();
+        if (model.drift) out.col(column++) = time / span;
+        for (const Oscillator& o : model.oscillators) {
+            const OscillatorConstants k(o);
+            for (Index i = 0; i < time.size(); ++i) {
+                const Kernel kernel = kernel_at(k.decay, k.p, k.root, time(i));
+                out(i, column) = kernel.c;
+                out(i, column + 1) = k.omega * kernel.s;
+            }
+            column += 2;
+        }
+        for (const double tone : model.tones) {
+            const double omega = std::exp(tone);
+            out.col(column++) = (omega * time.array()).cos();
+            out.col(column++) = (omega * time.array()).sin();
+        }
+        for (const double pole : model.real_poles) out.col(column++) = (-std::exp(pole) * time.array()).exp();
+    });
+}
+
+MatrixXd derivative_columns(const DecayModel& model, const DecaySamples& samples,
+                            const VectorXd& coefficients) {
+    return over_blocks(samples, model.nonlinear_count(), [&](const VectorXd& time, MatrixXd& out) {
+        Index column = 0, linear = model.first_oscillator_column();
+        for (const Oscillator& o : model.oscillators) {
+            const OscillatorConstants k(o);
+            const double a = coefficients(linear), b = coefficients(linear + 1);
+            for (Index i = 0; i < time.size(); ++i) {
+                const double t = time(i);
+                const Kernel kernel = kernel_at(k.decay, k.p, k.root, t);
+                const double by_decay = -t * (a * kernel.c + b * k.omega * kernel.s);
+                const double by_p = -0.5 * a * t * kernel.s + b * k.omega * kernel.ds_dp;
+                out(i, column) = by_decay * k.ds_dz + by_p * k.dp_dz;
+                out(i, column + 1) = by_decay * k.decay + by_p * 2.0 * k.p + b * k.omega * kernel.s;
+            }
+            column += 2;
+            linear += 2;
+        }
+        for (const double tone : model.tones) {
+            const Eigen::ArrayXd phase = std::exp(tone) * time.array();
+            out.col(column++) =
+                phase * (coefficients(linear + 1) * phase.cos() - coefficients(linear) * phase.sin());
+            linear += 2;
+        }
+        for (const double pole : model.real_poles) {
+            const Eigen::ArrayXd decayed = std::exp(pole) * time.array();
+            out.col(column++) = -coefficients(linear++) * decayed * (-decayed).exp();
+        }
+    });
+}
+
+double start_amplitude(const DecayModel& model, const VectorXd& coefficients, std::size_t index) {
+    const OscillatorConstants k(model.oscillators[index]);
+    const Index column = model.first_oscillator_column() + 2 * static_cast<Index>(index);
+    const double a = coefficients(column), b = coefficients(column + 1);
+    if (k.p <= 0.0) return std::abs(a) + std::abs(b);
+    return std::hypot(a, b * k.omega / k.root);
+}
+
+}  // namespace ringwright::identify

@@ -1,0 +1,21 @@
+#pragma once
+// From a fitted decay to frequency, damping ratio and what follows from them, with intervals.
+
+#include <Eigen/Core>
+
+#include "identify/curve_fit.hpp"
+#include "ringwright/estimate.hpp"
+
+namespace ringwright::identify {
+
+/// All quantities of oscillator `index`. Where the problem is curved over the width of its own interval (few
+/// cycles, heavy damping, much noise), the intervals are those of the profile likelihood and may be lopsided.
+/// A quantity that does not exist, or whose interval has no finite end, is left out.
+[[nodiscard]] Quantities decay_quantities(const CurveFit& fit, std::size_t index, double confidence_level);
+
+/// Quantities that follow from one damping ratio and one undamped frequency (both with intervals) and their
+/// correlation.
+[[nodiscard]] Quantities quantities_from(const Estimate& natural_frequency, const Estimate& damping_ratio,
+                                         double correlation, double confidence_level);
+
+}  // namespace ringwright::identify

@@ -1,0 +1,108 @@
+#include "identify/decay_window.hpp"
+
+#include <algorithm>
+#include <cmath>
+#include <numbers>
+#include <numeric>
+
+namespace ringwright::identify {
+
+using Eigen::Index;
+
+namespace {
+
+constexpr double gap_in_steps = 2.5;     // a longer step is a gap
+constexpr std::size_t shortest_run = 4;  // samples; shorter runs between clipped ones tell nothing
+
+std::vector<char> usable_samples(const Recording& recording, std::size_t begin, std::size_t end) {
+    std::vector<char> usable(end - begin, 1);
+    for (const SampleRange& range : recording.clipped) {
+        const std::size_t from = std::max(range.begin > 0 ? range.begin - 1 : 0, begin);
+        const std::size_t to = std::min(range.end + 1, end);
+        for (std::size_t i = from; i < to; ++i) usable[i - begin] = 0;
+    }
+    return usable;
+}
+
+}  // namespace
+
+DecayWindow cut_window(const Recording& recording, std::size_t begin, std::size_t end) {
+    DecayWindow window;
+    window.begin = begin;
+    window.rate_hz = recording.clock.sample_rate_hz;
+    const auto first = static_cast<std::ptrdiff_t>(begin), last = static_cast<std::ptrdiff_t>(end);
+    window.value.assign(recording.samples.begin() + first, recording.samples.begin() + last);
+    if (!recording.clock.uniform()) {
+        window.time_s.assign(recording.clock.times_s.begin() + first, recording.clock.times_s.begin() + last);
+        const double start = window.time_s.empty() ? 0.0 : window.time_s.front();
+        for (double& t : window.time_s) t -= start;
+    }
+    const std::vector<char> usable = usable_samples(recording, begin, end);
+    const double longest_step = gap_in_steps / window.rate_hz;
+    SampleRange run{0, 0};
+    const auto close = [&](std::size_t at) {
+        run.end = at;
+        if (run.end - run.begin >= shortest_run) window.runs.push_back(run);
+    };
+    bool open = false;
+    for (std::size_t i = 0; i < window.size(); ++i) {
+        const bool gap = i > 0 && window.time_of(i) - window.time_of(i - 1) > longest_step;
+        if (open && (gap || !usable[i])) {
+            close(i);
+            open = false;
+        }
+        if (!open && usable[i]) {
+            run.begin = i;
+            open = true;
+        }
+    }
+    if (open) close(window.size());
+    return window;
+}
+
+DecaySamples block_means(const DecayWindow& window, Index block) {
+    DecaySamples samples;
+    samples.block = block;
+    samples.step_s = static_cast<double>(block) / window.rate_hz;
+    const auto width = static_cast<std::size_t>(block);
+    Index count = 0;
+    for (const SampleRange& run : window.runs) {
+        const auto blocks = static_cast<Index>((run.end - run.begin) / width);
+        if (blocks > 0) samples.stretches.push_back({count, blocks});
+        count += blocks;
+    }
+    samples.time.resize(count);
+    samples.value.resize(count);
+    const bool fine = block > 1 && !window.time_s.empty();
+    if (fine) samples.fine_time.resize(count * block);
+    Index at = 0;
+    for (const SampleRange& run : window.runs) {
+        for (std::size_t i = run.begin; i + width <= run.end; i += width, ++at) {
+            double sum = 0.0, time = 0.0;
+            for (std::size_t j = i; j < i + width; ++j) {
+                sum += window.value[j];
+                time += window.time_of(j);
+                if (fine) samples.fine_time(at * block + static_cast<Index>(j - i)) = window.time_of(j);
+            }
+            samples.value(at) = sum / static_cast<double>(width);
+            samples.time(at) = time / static_cast<double>(width);
+        }
+    }
+    if (count == 0) return samples;
+    std::vector<double> sorted(samples.value.begin(), samples.value.end());
+    std::nth_element(sorted.begin(), sorted.begin() + count / 2, sorted.end());
+    const double median = sorted[static_cast<std::size_t>(count / 2)];
+    samples.scale = (samples.value.array() - median).abs().maxCoeff();
+    if (!(samples.scale > 0.0)) samples.scale = 1.0;
+    samples.value /= samples.scale;
+    return samples;
+}
+
+Index block_for(const DecayWindow& window, double fastest_rate, double fewest) {
+    const double widest_turn = 2.0 * std::numbers::pi / 24.0;
+    const double by_rate = widest_turn * window.rate_hz / fastest_rate;
+    const double by_count = static_cast<double>(window.size()) / fewest;
+    return std::max<Index>(1, static_cast<Index>(std::floor(std::min(by_rate, by_count))));
+}
+
+}  // namespace ringwright::identify

@@ -1,0 +1,189 @@
+#include "identify/half_power.hpp"
+
+#include <algorithm>
+#include <cmath>
+#include <complex>
+#include <numbers>
+#include <optional>
+
+namespace ringwright::identify {
+
+using Eigen::Index;
+using Eigen::VectorXd;
+
+namespace {
+
+constexpr double two_pi = 2.0 * std::numbers::pi;
+constexpr double left_at_end = 4.6;  // nepers: one per cent of the start
+
+// The record from its first zero crossing on, offset removed and windowed, times from the crossing.
+struct WindowedRecord {
+    VectorXd value;
+    double first_time = 0.0, step = 0.0;
+
+    [[nodiscard]] double power(double frequency_hz) const {
+        const double turn = -two_pi * frequency_hz * step;
+        const std::complex<double> rotation = std::polar(1.0, turn);
+        double real = 0.0, imaginary = 0.0;
+        constexpr Index resync = 256;
+        for (Index begin = 0; begin < value.size(); begin += resync) {
+            std::complex<double> phasor = std::polar(1.0, turn * static_cast<double>(begin));
+            double c = phasor.real(), s = phasor.imag();
+            const Index end = std::min(begin + resync, value.size());
+            for (Index i = begin; i < end; ++i) {
+                real += value(i) * c;
+                imaginary += value(i) * s;
+                const double next = c * rotation.real() - s * rotation.imag();
+                s = c * rotation.imag() + s * rotation.real();
+                c = next;
+            }
+        }
+        return real * real + imaginary * imaginary;
+    }
+};
+
+// Mean over the last whole cycles within the last third.
+double offset_of(const DecaySamples& samples, double frequency_hz, Index count) {
+    const double cycle = 1.0 / (frequency_hz * samples.step_s);
+    const double third = static_cast<double>(count) / 3.0;
+    const double whole = std::max(1.0, std::floor(third / cycle)) * cycle;
+    const auto length = std::clamp<Index>(static_cast<Index>(std::lround(whole)), 1, count);
+    return samples.value.segment(count - length, length).mean();
+}
+
+std::optional<WindowedRecord> cut_at_crossing(const DecaySamples& samples,
+                                              const HalfPowerSettings& settings) {
+    const Index count =
+        std::upper_bound(samples.time.begin(), samples.time.end(), settings.end_s) - samples.time.begin();
+    if (count < 16) return std::nullopt;
+    const double offset = offset_of(samples, settings.frequency_hz, count);
+    const VectorXd value = samples.value.head(count).array() - offset;
+    Index first = 1;
+    while (first < count && !(value(first - 1) * value(first) <= 0.0 && value(first) != 0.0)) ++first;
+    if (first + 12 > count || samples.time(first) - samples.time(0) > 0.8 / settings.frequency_hz)
+        return std::nullopt;
+    const double share =
+        value(first) / (value(first) - value(first - 1));  // of the step, from crossing to sample
+    WindowedRecord record;
+    record.step = samples.step_s;
+    record.first_time = share * record.step;
+    record.value = value.tail(count - first);
+    record.value(0) *= 0.5 * (1.0 + share);  // trapezium from the crossing
+    const double factor = std::exp(-settings.window_rate * record.step);
+    double window = std::exp(-settings.window_rate * record.first_time);
+    for (double& v : record.value) {
+        v *= window;
+        window *= factor;
+    }
+    return record;
+}
+
+double peak_near(const WindowedRecord& record, double frequency_hz, double width_hz) {
+    double best = frequency_hz, best_power = record.power(frequency_hz);
+    const double reach = std::min(0.5 * frequency_hz, 2.0 * width_hz);
+    for (int i = -4; i <= 4; ++i) {
+        const double f = frequency_hz + reach * i / 4.0, p = record.power(f);
+        if (p > best_power) {
+            best_power = p;
+            best = f;
+        }
+    }
+    double h = reach / 4.0;
+    for (int i = 0; i < 4; ++i) {  // parabola through three points, closer each time
+        const double left = std::log(record.power(best - h)), middle = std::log(record.power(best)),
+                     right = std::log(record.power(best + h));
+        const double bend = left - 2.0 * middle + right;
+        if (bend < 0.0) best += std::clamp(0.5 * (left - right) / bend, -1.0, 1.0) * h;
+        h *= 0.4;
+    }
+    return best;
+}
+
+// Frequency at which the power falls to `level` on one side of the peak (direction ±1); nothing when it never
+// does.
+std::optional<double> crossing(const WindowedRecord& record, double peak_hz, double level, double width_hz,
+                               double direction) {
+    const auto logarithm = [&](double f) { return std::log(record.power(f) / level); };
+    double inside = peak_hz, inside_value = logarithm(peak_hz), step = 0.5 * width_hz, outside = peak_hz,
+           outside_value = 0.0;
+    for (int i = 0;; ++i) {
+        outside = inside + direction * step;
+        if (outside <= 0.0 || i > 40) return std::nullopt;
+        outside_value = logarithm(outside);
+        if (outside_value < 0.0) break;
+        inside = outside;
+        inside_value = outside_value;
+        step = 0.25 * width_hz;
+    }
+    for (int i = 0; i < 20 && std::abs(outside - inside) > 1e-9 * peak_hz; ++i) {  // regula falsi, Illinois
+        const double f = inside - inside_value * (outside - inside) / (outside_value - inside_value);
+        const double value = logarithm(f);
+        if (std::abs(value) < 1e-8) return f;
+        if (value < 0.0) {
+            outside = f;
+            outside_value = value;
+            inside_value *= 0.5;
+        } else {
+            inside = f;
+            inside_value = value;
+            outside_value *= 0.5;
+        }
+    }
+    return 0.5 * (inside + outside);
+}
+
+}  // namespace
+
+HalfPowerReading read_half_power(const DecaySamples& samples, const HalfPowerSettings& settings) {
+    HalfPowerReading reading;
+    const std::optional<WindowedRecord> record = cut_at_crossing(samples, settings);
+    if (!record) {
+        reading.reason = "the decay is too short: fewer than a dozen samples follow its first zero crossing";
+        return reading;
+    }
+    reading.peak_hz = peak_near(*record, settings.frequency_hz, settings.width_hz);
+    reading.peak_power = record->power(reading.peak_hz);
+    const double level = 0.5 * reading.peak_power;
+    const std::optional<double> low = crossing(*record, reading.peak_hz, level, settings.width_hz, -1.0),
+                                high = crossing(*record, reading.peak_hz, level, settings.width_hz, 1.0);
+    if (!low || !high) {
+        reading.reason = "the spectrum does not fall to half its peak on both sides of it";
+        return reading;
+    }
+    reading.low_hz = *low;
+    reading.high_hz = *high;
+    const double square_low = *low * *low, square_high = *high * *high;
+    const double twice_theta = std::atan2(square_high - square_low, square_high + square_low);
+    const double windowed_ratio = std::sin(0.5 * twice_theta);
+    const double windowed_omega =
+        two_pi * std::sqrt((square_low + square_high) / (2.0 * std::cos(twice_theta)));
+    const double rate = windowed_ratio * windowed_omega - settings.window_rate;
+    const double p = windowed_omega * windowed_omega * (1.0 - windowed_ratio * windowed_ratio);
+    const double omega = std::sqrt(p + rate * rate);
+    reading.natural_frequency_hz = omega / two_pi;
+    reading.damping_ratio = rate / omega;
+    reading.valid = std::isfinite(omega) && std::isfinite(rate);
+    return reading;
+}
+
+HalfPowerSettings choose_half_power_settings(const DecaySamples& samples, double frequency_hz,
+                                             double decay_rate, double end_s) {
+    HalfPowerSettings settings;
+    settings.frequency_hz = frequency_hz;
+    settings.end_s = std::min(end_s, samples.time(samples.size() - 1));
+    const double length = std::max(samples.step_s, settings.end_s - 0.25 / frequency_hz);
+    settings.window_rate = std::max(0.0, left_at_end / length - decay_rate);
+    settings.width_hz = 2.0 * (decay_rate + settings.window_rate) / two_pi;
+    return settings;
+}
+
+VectorXd half_power_spectrum(const DecaySamples& samples, const HalfPowerSettings& settings,
+                             const VectorXd& frequency_hz) {
+    const std::optional<WindowedRecord> record = cut_at_crossing(samples, settings);
+    VectorXd power = VectorXd::Zero(frequency_hz.size());
+    if (record)
+        for (Index i = 0; i < power.size(); ++i) power(i) = record->power(frequency_hz(i));
+    return power;
+}
+
+}  // namespace ringwright::identify

@@ -1,0 +1,129 @@
+#include <fmt/format.h>
+
+#include <cmath>
+#include <numbers>
+
+#include "identify/agreement.hpp"
+#include "identify/curve_fit.hpp"
+#include "identify/decay_picture.hpp"
+#include "identify/decay_quantities.hpp"
+#include "identify/method_bootstrap.hpp"
+#include "identify/residual_checks.hpp"
+#include "ringwright/distributions.hpp"
+#include "ringwright/identify.hpp"
+
+namespace ringwright {
+
+using namespace identify;
+
+namespace {
+
+constexpr int replicates = 200;
+constexpr double far_beyond_critical = 2.0;
+
+MethodResult curve_fit_result(const CurveFit& fit, double confidence_level) {
+    MethodResult result;
+    if (!fit.valid) {
+        result.reason = fit.reason;
+        return result;
+    }
+    result.model = "viscous";
+    for (std::size_t i = 0; i < fit.fit.model.oscillators.size(); ++i) {
+        Mode mode;
+        mode.quantities = decay_quantities(fit, i, confidence_level);
+        mode.amplitude = start_amplitude(fit.fit.model, fit.fit.coefficients, i) * fit.samples.scale;
+        result.modes.push_back(std::move(mode));
+    }
+    result.quantities = result.modes.front().quantities;
+    if (result.quantities.empty()) {
+        result.reason = "the noise leaves the decay undetermined";
+        result.modes.clear();
+        return result;
+    }
+    result.status = MethodStatus::ok;
+    return result;
+}
+
+Estimate estimate_from(double value, double deviation, double degrees_of_freedom, double confidence_level,
+                       bool logarithmic) {
+    Estimate estimate;
+    const double reach = student_t_factor(confidence_level, degrees_of_freedom) * deviation;
+    estimate.value = value;
+    estimate.degrees_of_freedom = degrees_of_freedom;
+    if (logarithmic) {
+        estimate.standard_uncertainty = value * deviation;
+        estimate.interval = {value * std::exp(-reach), value * std::exp(reach)};
+    } else {
+        estimate.standard_uncertainty = deviation;
+        estimate.interval = {value - reach, value + reach};
+    }
+    return estimate;
+}
+
+// Bias removed, scatter from the replicates; their number limits the degrees of freedom.
+template <typename Reading>
+MethodResult simple_method_result(const Reading& reading, const MethodErrors& errors, const CurveFit& fit,
+                                  double confidence_level) {
+    MethodResult result;
+    if (!reading.valid || !errors.usable) {
+        result.reason = reading.valid ? errors.reason : reading.reason;
+        return result;
+    }
+    const double frequency = reading.natural_frequency_hz * std::exp(-errors.bias[0]);
+    const double ratio = reading.damping_ratio - errors.bias[1];
+    const double freedom =
+        1.0 / (1.0 / fit.noise.degrees_of_freedom + 1.0 / static_cast<double>(errors.errors.size() - 1));
+    result.quantities =
+        quantities_from(estimate_from(frequency, errors.deviation[0], freedom, confidence_level, true),
+                        estimate_from(ratio, errors.deviation[1], freedom, confidence_level, false),
+                        errors.correlation, confidence_level);
+    result.status = MethodStatus::ok;
+    return result;
+}
+
+void explain_missing(const CurveFit& fit, const MethodResult& result, Findings& findings) {
+    if (result.status != MethodStatus::ok) return;
+    const bool ratio_told = result.quantities.contains(Quantity::damping_ratio);
+    if (fit.oscillator().damping_ratio() > far_beyond_critical || !ratio_told)
+        findings.push_back(
+            {"beyond_critical", Severity::caution,
+             "The decay is far beyond critical damping: mostly the slow decay rate k/c can be told from it; "
+             "frequency and damping ratio each depend on the first moments of the decay."});
+}
+
+}  // namespace
+
+EventIdentification identify_event(const Recording& recording, const Event& event,
+                                   const IdentifyOptions& options) {
+    EventIdentification result;
+    result.event = event;
+    result.start_s = recording.clock.time_of(event.begin);
+    result.end_s = recording.clock.time_of(event.end > event.begin ? event.end - 1 : event.begin);
+    CurveFitOptions fit_options;
+    fit_options.near_hz = options.near_hz;
+    fit_options.modes = options.modes;
+    fit_options.seed = options.seed;
+    const CurveFit fit = fit_decay(recording, event, fit_options);
+    result.curve_fit = curve_fit_result(fit, options.confidence_level);
+    result.findings = fit.findings;
+    if (!fit.valid) {
+        result.logarithmic_decrement.reason = result.half_power_bandwidth.reason = fit.reason;
+        return result;
+    }
+    const MethodBootstrap bootstrap = bootstrap_methods(fit, event, replicates, options.seed);
+    result.logarithmic_decrement = simple_method_result(bootstrap.readings.decrement, bootstrap.decrement,
+                                                        fit, options.confidence_level);
+    result.half_power_bandwidth = simple_method_result(bootstrap.readings.half_power, bootstrap.half_power,
+                                                       fit, options.confidence_level);
+    const Findings checks = check_residuals(fit);
+    result.findings.insert(result.findings.end(), checks.begin(), checks.end());
+    explain_missing(fit, result.curve_fit, result.findings);
+    Findings known = result.findings;
+    known.insert(known.end(), event.findings.begin(), event.findings.end());
+    known.insert(known.end(), recording.findings.begin(), recording.findings.end());
+    result.agreement = test_agreement(fit, bootstrap, known);
+    if (options.pictures) result.picture = draw_decay(recording, fit, bootstrap);
+    return result;
+}
+
+}  // namespace ringwright

@@ -1,0 +1,194 @@
+#include "identify/logarithmic_decrement.hpp"
+
+#include <fmt/format.h>
+
+#include <Eigen/Cholesky>
+#include <algorithm>
+#include <cmath>
+#include <numbers>
+
+namespace ringwright::identify {
+
+using Eigen::Index;
+using Eigen::MatrixXd;
+using Eigen::VectorXd;
+
+namespace {
+
+constexpr double smallest_ratio = 4.0;  // of a difference to its own standard deviation
+constexpr std::size_t fewest_extremes = 3;
+constexpr double half_window = 0.125;  // cycles to each side of the vertex
+
+struct Extreme {
+    double time = 0.0, value = 0.0;
+    Index samples = 0;  // that its parabola used
+};
+
+// Parabola by least squares over the samples within half a window of `centre` (moments about the centre).
+std::optional<Extreme> vertex_near(const DecaySamples& samples, double centre, double half_width) {
+    const auto begin = samples.time.begin();
+    const auto first = std::lower_bound(begin, samples.time.end(), centre - half_width) - begin;
+    const auto last = std::upper_bound(begin, samples.time.end(), centre + half_width) - begin;
+    if (last - first < 3) return std::nullopt;
+    double s[5] = {}, m[3] = {};
+    for (Index i = first; i < last; ++i) {
+        const double x = (samples.time(i) - centre) / half_width, y = samples.value(i);
+        const double x2 = x * x;
+        s[0] += 1.0;
+        s[1] += x;
+        s[2] += x2;
+        s[3] += x2 * x;
+        s[4] += x2 * x2;
+        m[0] += y;
+        m[1] += y * x;
+        m[2] += y * x2;
+    }
+    Eigen::Matrix3d normal;
+    normal << s[0], s[1], s[2], s[1], s[2], s[3], s[2], s[3], s[4];
+    const Eigen::Vector3d c = normal.ldlt().solve(Eigen::Vector3d(m[0], m[1], m[2]));
+    if (!c.allFinite() || c(2) == 0.0) return std::nullopt;
+    const double x = std::clamp(-c(1) / (2.0 * c(2)), -1.5, 1.5);
+    return Extreme{centre + x * half_width, c(0) + x * (c(1) + x * c(2)), last - first};
+}
+
+// The vertex, the window centred on it by two further passes.
+std::optional<Extreme> refine(const DecaySamples& samples, double time, double half_width) {
+    std::optional<Extreme> extreme;
+    for (int pass = 0; pass < 3; ++pass) {
+        extreme = vertex_near(samples, time, half_width);
+        if (!extreme) return std::nullopt;
+        time = extreme->time;
+    }
+    if (time - half_width < samples.time(0) - 0.3 * half_width ||
+        time + half_width > samples.time(samples.size() - 1) + 0.3 * half_width)
+        return std::nullopt;
+    return extreme;
+}
+
+// The first extreme: where the samples, less their mean over a whole cycle, turn for the first time.
+std::optional<double> first_extreme_time(const DecaySamples& samples, double half_period) {
+    const double start = samples.time(0) + half_window * half_period;
+    double best_time = 0.0, best = -1.0;
+    double mean = 0.0;
+    Index count = 0;
+    for (Index i = 0; i < samples.size() && samples.time(i) < samples.time(0) + 2.0 * half_period;
+         ++i, ++count)
+        mean += samples.value(i);
+    mean /= static_cast<double>(std::max<Index>(1, count));
+    for (Index i = 0; i < samples.size() && samples.time(i) < start + 1.1 * half_period; ++i) {
+        if (samples.time(i) < start) continue;
+        if (std::abs(samples.value(i) - mean) > best) {
+            best = std::abs(samples.value(i) - mean);
+            best_time = samples.time(i);
+        }
+    }
+    if (best <= 0.0) return std::nullopt;
+    return best_time;
+}
+
+std::vector<Extreme> find_extremes(const DecaySamples& samples, double half_period, double noise) {
+    std::vector<Extreme> extremes;
+    const double half_width = 2.0 * half_window * half_period;
+    const std::optional<double> first = first_extreme_time(samples, half_period);
+    if (!first) return extremes;
+    double time = *first;
+    for (;;) {
+        const std::optional<Extreme> extreme = refine(samples, time, half_width);
+        if (!extreme || std::abs(extreme->time - time) > 0.45 * half_period) {
+            if (extremes.empty() &&
+                time < *first + 0.5 * half_period) {  // the first one may be cut by the start
+                time += half_period;
+                continue;
+            }
+            break;
+        }
+        if (!extremes.empty()) {
+            const double difference = std::abs(extreme->value - extremes.back().value);
+            const double deviation = noise * std::sqrt(2.0 / static_cast<double>(extreme->samples)) * 1.5;
+            if (difference < smallest_ratio * deviation) break;
+            if (extremes.size() >= 2) {  // signs alternate
+                const double last = extremes.back().value - extremes[extremes.size() - 2].value;
+                if (last * (extreme->value - extremes.back().value) >= 0.0) break;
+            }
+        }
+        extremes.push_back(*extreme);
+        time = extreme->time + half_period;
+    }
+    return extremes;
+}
+
+// Generalised least squares of ln D on its number; neighbouring differences share an extreme (correlation
+// −1/2). Covariance of ln D for differences of the sizes given is tridiagonal; its Cholesky factor has two
+// diagonals.
+VectorXd solve_weighted(const MatrixXd& design, const VectorXd& response, const VectorXd& size) {
+    const Index n = size.size();
+    MatrixXd whitened(n, design.cols() + 1);
+    whitened << design, response;
+    double below = 0.0, diagonal = 0.0;
+    for (Index i = 0; i < n; ++i) {
+        const double variance = 2.0 / (size(i) * size(i));
+        below = i > 0 ? -1.0 / (size(i) * size(i - 1)) / diagonal : 0.0;
+        diagonal = std::sqrt(variance - below * below);
+        if (i > 0) whitened.row(i) -= below * whitened.row(i - 1);
+        whitened.row(i) /= diagonal;
+    }
+    const MatrixXd left = whitened.leftCols(design.cols());
+    return (left.transpose() * left).ldlt().solve(left.transpose() * whitened.col(design.cols()));
+}
+
+}  // namespace
+
+DecrementReading read_decrement(const DecaySamples& samples, double frequency_hz, double noise) {
+    DecrementReading reading;
+    const std::vector<Extreme> extremes = find_extremes(samples, 0.5 / frequency_hz, noise);
+    if (extremes.size() < fewest_extremes) {
+        reading.reason =
+            fmt::format("only {} extreme{} stand{} above the noise; at least {} are needed", extremes.size(),
+                        extremes.size() == 1 ? "" : "s", extremes.size() == 1 ? "s" : "", fewest_extremes);
+        return reading;
+    }
+    const auto n = static_cast<Index>(extremes.size()) - 1;
+    VectorXd logarithm(n), size(n), number(n);
+    for (Index j = 0; j < n; ++j) {
+        size(j) = std::abs(extremes[static_cast<std::size_t>(j + 1)].value -
+                           extremes[static_cast<std::size_t>(j)].value);
+        logarithm(j) = std::log(size(j));
+        number(j) = static_cast<double>(j);
+    }
+    MatrixXd design(n, 2);
+    design << VectorXd::Ones(n), number;
+    // Two passes: the weights from the sizes as read, then from the line through them.
+    VectorXd line = solve_weighted(design, logarithm, size);
+    const VectorXd smooth = (design * line).array().exp();
+    line = solve_weighted(design, logarithm, smooth);
+    if (n >= 4) {
+        MatrixXd bent(n, 3);
+        bent << design, number.array().square();
+        reading.bend = solve_weighted(bent, logarithm, smooth)(2);
+    }
+    reading.decrement = -2.0 * line(1);
+    reading.damping_ratio = reading.decrement / std::hypot(2.0 * std::numbers::pi, reading.decrement);
+    VectorXd times(n + 1), count(n + 1), weight(n + 1);
+    for (Index j = 0; j <= n; ++j) {
+        times(j) = extremes[static_cast<std::size_t>(j)].time;
+        count(j) = static_cast<double>(j);
+        weight(j) = std::exp(line(1) * count(j));
+        reading.extreme_time.push_back(times(j));
+    }
+    const VectorXd w = weight.array().square();
+    const double mean_count = w.dot(count) / w.sum(), mean_time = w.dot(times) / w.sum();
+    const VectorXd centred = count.array() - mean_count;
+    const double half_period = (w.array() * centred.array() * (times.array() - mean_time)).sum() /
+                               (w.array() * centred.array().square()).sum();
+    const double damped = 0.5 / half_period;
+    reading.natural_frequency_hz = damped / std::sqrt(1.0 - reading.damping_ratio * reading.damping_ratio);
+    reading.half_cycle.assign(number.begin(), number.end());
+    reading.log_difference.assign(logarithm.begin(), logarithm.end());
+    const VectorXd fitted = design * line;
+    reading.line.assign(fitted.begin(), fitted.end());
+    reading.valid = std::isfinite(reading.natural_frequency_hz) && std::isfinite(reading.damping_ratio);
+    if (!reading.valid) reading.reason = "the extremes do not follow a decay";
+    return reading;
+}
+
+}  // namespace ringwright::identify

@@ -1,0 +1,168 @@
+#include "identify/method_bootstrap.hpp"
+
+#include <fmt/format.h>
+
+#include <boost/random/mersenne_twister.hpp>
+#include <boost/random/normal_distribution.hpp>
+#include <cmath>
+#include <numbers>
+
+#include "identify/decay_quantities.hpp"
+
+namespace ringwright::identify {
+
+using Eigen::Index;
+using Eigen::MatrixXd;
+using Eigen::VectorXd;
+
+namespace {
+
+constexpr double two_pi = 2.0 * std::numbers::pi;
+constexpr double largest_failed_share = 0.05;
+
+struct Setup {
+    double frequency_hz = 0.0;  // damped
+    double noise = 0.0;         // standard deviation of a sample
+    VectorXd interference;      // tones, drift and nuisance poles, to be taken off before the simple methods
+    VectorXd model;             // the decay alone, with offset
+};
+
+Setup set_up(const CurveFit& fit) {
+    Setup setup;
+    setup.frequency_hz = fit.oscillator().damped_frequency_hz();
+    setup.noise = std::sqrt(fit.noise.noise.variance());
+    const MatrixXd columns = linear_columns(fit.fit.model, fit.samples);
+    VectorXd interference = fit.fit.coefficients;
+    interference(0) = 0.0;
+    interference
+        .segment(fit.fit.model.first_oscillator_column(),
+                 static_cast<Index>(2 * fit.fit.model.oscillators.size()))
+        .setZero();
+    setup.interference = columns * interference;
+    setup.model = columns * fit.fit.coefficients - setup.interference;
+    return setup;
+}
+
+double time_to_noise(const CurveFit& fit, double noise) {
+    const double amplitude = start_amplitude(fit.fit.model, fit.fit.coefficients, 0);
+    const double rate = std::max(fit.oscillator().slowest_rate(), 1e-12);
+    return std::log(std::max(amplitude / noise, 1.5)) / rate;
+}
+
+// Error of (ln frequency, damping ratio) of the curve fit for given noise, to first order.
+class FitError {
+  public:
+    explicit FitError(const CurveFit& fit) : fit_(fit) {
+        MatrixXd whitened = fit.basis;
+        whiten(fit.noise.noise, fit.samples.stretches, whitened);
+        const MatrixXd rows = fit.map.middleRows(fit.linear_count(), 2);
+        gain_ = rows * fit.noise.fit.unit_covariance * whitened.transpose();
+        damping_slope_ = std::cosh(fit.oscillator().asinh_damping);
+    }
+    [[nodiscard]] std::array<double, 2> operator()(const VectorXd& noise) const {
+        VectorXd whitened = noise;
+        whiten(fit_.noise.noise, fit_.samples.stretches, whitened);
+        const VectorXd move = gain_ * whitened;
+        return {move(1), move(0) * damping_slope_};
+    }
+
+  private:
+    const CurveFit& fit_;
+    MatrixXd gain_;
+    double damping_slope_ = 1.0;
+};
+
+// The noise models of the replicates follow the weights of the draws.
+std::vector<const NoiseDraw*> spread_draws(const NoiseFit& noise, int replicates) {
+    std::vector<const NoiseDraw*> chosen;
+    double sum = 0.0;
+    std::size_t at = 0;
+    for (int i = 0; i < replicates; ++i) {
+        const double wanted = (i + 0.5) / replicates;
+        while (at + 1 < noise.draws.size() && sum + noise.draws[at].weight < wanted)
+            sum += noise.draws[at++].weight;
+        chosen.push_back(&noise.draws[at]);
+    }
+    return chosen;
+}
+
+template <typename Reading>
+void collect(MethodErrors& errors, const Reading& reading, const Oscillator& truth,
+             const std::array<double, 2>& fit_error) {
+    errors.errors.push_back({std::log(two_pi * reading.natural_frequency_hz) - truth.log_frequency,
+                             reading.damping_ratio - truth.damping_ratio()});
+    errors.fit_errors.push_back(fit_error);
+}
+
+void summarise(MethodErrors& errors, int replicates) {
+    const auto n = static_cast<double>(errors.errors.size());
+    const double failed = 1.0 - n / replicates;
+    if (failed > largest_failed_share) {
+        errors.reason = fmt::format(
+            "with this much noise the method would fail on {:.0f} % of such recordings", 100.0 * failed);
+        return;
+    }
+    double cross = 0.0;
+    for (const auto& e : errors.errors)
+        for (std::size_t k = 0; k < 2; ++k) errors.bias[k] += e[k] / n;
+    for (const auto& e : errors.errors) {
+        for (std::size_t k = 0; k < 2; ++k)
+            errors.deviation[k] += (e[k] - errors.bias[k]) * (e[k] - errors.bias[k]) / (n - 1.0);
+        cross += (e[0] - errors.bias[0]) * (e[1] - errors.bias[1]) / (n - 1.0);
+    }
+    for (double& d : errors.deviation) d = std::sqrt(d);
+    errors.correlation = cross / (errors.deviation[0] * errors.deviation[1]);
+    errors.usable = true;
+}
+
+}  // namespace
+
+MethodBootstrap bootstrap_methods(const CurveFit& fit, const Event& event, int replicates,
+                                  std::uint64_t seed) {
+    (void)event;
+    MethodBootstrap result;
+    const Setup setup = set_up(fit);
+    MethodReadings& readings = result.readings;
+    if (setup.frequency_hz <= 0.0) {
+        readings.decrement.reason = readings.half_power.reason =
+            "the decay does not ring: it is at or beyond critical damping";
+        return result;
+    }
+    DecaySamples samples = fit.samples;
+    samples.value -= setup.interference;
+    readings.decrement = read_decrement(samples, setup.frequency_hz, setup.noise);
+    readings.half_power_settings = choose_half_power_settings(
+        samples, setup.frequency_hz, fit.oscillator().decay_rate(), time_to_noise(fit, setup.noise));
+    if (samples.stretches.size() == 1)
+        readings.half_power = read_half_power(samples, readings.half_power_settings);
+    else
+        readings.half_power.reason =
+            "the decay is interrupted by gaps or clipped samples, which a spectrum cannot bridge";
+
+    const FitError fit_error(fit);
+    const std::vector<const NoiseDraw*> draws = spread_draws(fit.noise, replicates);
+    boost::random::mt19937_64 generator(seed);
+    boost::random::normal_distribution<double> normal;
+    VectorXd deviates(samples.size()), noise(samples.size());
+    for (const NoiseDraw* draw : draws) {
+        const AutoregressiveNoise model{draw->partial_autocorrelation,
+                                        draw->fit.residual_sum / fit.noise.degrees_of_freedom};
+        for (double& d : deviates) d = normal(generator);
+        colour(model, samples.stretches, deviates, noise);
+        samples.value = setup.model + noise;
+        const std::array<double, 2> error = fit_error(noise);
+        if (readings.decrement.valid) {
+            const DecrementReading again = read_decrement(samples, setup.frequency_hz, setup.noise);
+            if (again.valid) collect(result.decrement, again, fit.oscillator(), error);
+        }
+        if (readings.half_power.valid) {
+            const HalfPowerReading again = read_half_power(samples, readings.half_power_settings);
+            if (again.valid) collect(result.half_power, again, fit.oscillator(), error);
+        }
+    }
+    if (readings.decrement.valid) summarise(result.decrement, replicates);
+    if (readings.half_power.valid) summarise(result.half_power, replicates);
+    return result;
+}
+
+}  // namespace ringwright::identify

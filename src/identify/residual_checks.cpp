@@ -1,0 +1,73 @@
+#include "identify/residual_checks.hpp"
+
+#include <fmt/format.h>
+
+#include <algorithm>
+#include <cmath>
+
+#include "ringwright/distributions.hpp"
+
+namespace ringwright::identify {
+
+using Eigen::Index;
+using Eigen::VectorXd;
+
+namespace {
+
+double autocorrelation(const VectorXd& x, Index lag) {
+    return x.head(x.size() - lag).dot(x.tail(x.size() - lag)) / x.squaredNorm();
+}
+
+// The noise model has spent its order on the first lags.
+double whiteness_p_value(const CurveFit& fit) {
+    const VectorXd& x = fit.innovations;
+    const auto n = static_cast<double>(x.size());
+    const Index order = fit.noise.noise.order(), lags = std::min<Index>(order + 15, x.size() / 4);
+    double sum = 0.0;
+    for (Index lag = 1; lag <= lags; ++lag) {
+        const double r = autocorrelation(x, lag);
+        sum += r * r / (n - static_cast<double>(lag));
+    }
+    return 1.0 - chi_squared_probability(n * (n + 2.0) * sum, static_cast<double>(lags - order));
+}
+
+double normality_p_value(const VectorXd& x) {
+    const auto n = static_cast<double>(x.size());
+    const Eigen::ArrayXd centred = x.array() - x.mean();
+    const double variance = centred.square().mean();
+    const double skewness = centred.cube().mean() / std::pow(variance, 1.5);
+    const double excess = centred.square().square().mean() / (variance * variance) - 3.0;
+    return 1.0 - chi_squared_probability(n / 6.0 * (skewness * skewness + excess * excess / 4.0), 2.0);
+}
+
+// Spearman-like: correlation of |innovation| with the amplitude of the decay.
+double trend_statistic(const CurveFit& fit) {
+    const Eigen::ArrayXd size = fit.innovations.array().abs();
+    const Eigen::ArrayXd envelope = (-fit.oscillator().slowest_rate() * fit.samples.time.array()).exp();
+    const Eigen::ArrayXd a = size - size.mean(), b = envelope - envelope.mean();
+    const double correlation = (a * b).sum() / std::sqrt(a.square().sum() * b.square().sum() + 1e-300);
+    return correlation * std::sqrt(static_cast<double>(size.size()));
+}
+
+}  // namespace
+
+Findings check_residuals(const CurveFit& fit) {
+    Findings findings;
+    if (fit.innovations.size() < 40) return findings;
+    if (whiteness_p_value(fit) < residual_check_level)
+        findings.push_back(
+            {"residuals_not_white", Severity::note,
+             "What the fit leaves over is not explained by the noise model; another mode or a drift may lie "
+             "under the decay. Look at the residuals."});
+    if (fit.innovations.size() >= 200 && normality_p_value(fit.innovations) < residual_check_level / 2.5)
+        findings.push_back({"residuals_not_normal", Severity::note,
+                            "The noise is not normally distributed (spikes, steps or coarse resolution)."});
+    if (std::abs(trend_statistic(fit)) > normal_quantile(1.0 - residual_check_level / 2.0))
+        findings.push_back(
+            {"residuals_follow_amplitude", Severity::caution,
+             "What the fit leaves over changes with the amplitude of the decay: the damping or the stiffness "
+             "may depend on amplitude."});
+    return findings;
+}
+
+}  // namespace ringwright::identify

@@ -1,0 +1,136 @@
+// Steady tones and further modes that the residuals of a decay fit show.
+
+#include <fmt/format.h>
+
+#include <algorithm>
+#include <cmath>
+#include <numbers>
+#include <vector>
+
+#include "identify/curve_fit_steps.hpp"
+#include "identify/spectrum.hpp"
+#include "ringwright/distributions.hpp"
+
+namespace ringwright::identify {
+
+using Eigen::Index;
+using Eigen::VectorXd;
+
+namespace {
+
+constexpr double two_pi = 2.0 * std::numbers::pi;
+constexpr int most_components = 4;
+constexpr double false_alarm = 1e-3;  // a recording, for each component looked for
+
+Stretch longest_stretch(const DecaySamples& samples) {
+    return *std::ranges::max_element(samples.stretches, {}, &Stretch::length);
+}
+
+// The angular frequency at which the residual spectrum stands highest above its surroundings; 0 when nothing
+// stands out.
+double outstanding_frequency(const CurveFit& fit) {
+    const Stretch stretch = longest_stretch(fit.samples);
+    const VectorXd residual = fit.residual.segment(stretch.begin, stretch.length);
+    constexpr double padding = 2.0;
+    const PowerSpectrum spectrum = power_spectrum(residual, padding);
+    const auto bins = spectrum.power.size();
+    const auto half_width = static_cast<Index>(
+        std::max(12.0, 12.0 / (spectrum.bin_cycles * static_cast<double>(stretch.length))));
+    double best_ratio = 0.0;
+    Index best = 0;
+    std::vector<double> around;
+    for (Index i = 2; i + 2 < bins; ++i) {
+        if (spectrum.power(i) < spectrum.power(i - 1) || spectrum.power(i) < spectrum.power(i + 1)) continue;
+        around.clear();
+        for (Index j = std::max<Index>(1, i - half_width); j < std::min(bins, i + half_width + 1); ++j)
+            around.push_back(spectrum.power(j));
+        const auto middle = around.begin() + static_cast<std::ptrdiff_t>(around.size() / 2);
+        std::nth_element(around.begin(), middle, around.end());
+        const double ratio = spectrum.power(i) * std::numbers::ln2 / std::max(*middle, 1e-300);
+        if (ratio > best_ratio) {
+            best_ratio = ratio;
+            best = i;
+        }
+    }
+    const double threshold = std::log(static_cast<double>(bins) / 0.02);
+    if (best == 0 || best_ratio < threshold) return 0.0;
+    return two_pi * refined_peak(spectrum.power, best, best) * spectrum.bin_cycles / fit.samples.step_s;
+}
+
+// −2 log-likelihood, each order of the noise model paid for.
+double criterion_of(const CurveFit& fit) {
+    return fit.noise.fit.likelihood_criterion + 2.0 * static_cast<double>(fit.noise.noise.order());
+}
+
+// Gain that chance reaches at the best of all frequencies in one recording in a thousand. The frequency is
+// searched on a grid about four times finer than the independent ones.
+double needed_gain(const CurveFit& fit, double parameters) {
+    const double searched = 2.0 * static_cast<double>(longest_stretch(fit.samples).length);
+    return chi_squared_quantile(1.0 - false_alarm / searched, parameters);
+}
+
+std::optional<CurveFit> with_tone(const CurveFit& fit, double omega) {
+    CurveFit trial = fit;
+    trial.fit.model.tones.push_back(std::log(omega));
+    trial.fit = fit_projected(trial.fit.model, trial.samples, trial.noise.noise);
+    if (!settle(trial)) return std::nullopt;
+    return trial;
+}
+
+std::optional<CurveFit> with_mode(const CurveFit& fit, double omega) {
+    std::optional<CurveFit> best;
+    for (const double damping : {0.003, 0.03}) {
+        CurveFit trial = fit;
+        trial.fit.model.oscillators.push_back(Oscillator::from(damping, omega));
+        trial.fit = fit_projected(trial.fit.model, trial.samples, trial.noise.noise);
+        if (!trial.fit.model.parameters().allFinite()) continue;
+        const Oscillator& added = trial.fit.model.oscillators.back();
+        if (added.damping_ratio() <= 0.0 || added.damping_ratio() > 0.5) continue;
+        if (!settle(trial)) continue;
+        if (!best || criterion_of(trial) < criterion_of(*best)) best = std::move(trial);
+    }
+    return best;
+}
+
+Finding tone_finding(double hertz) {
+    return {
+        "steady_tone", Severity::note,
+        fmt::format("A steady tone of {:.4g} Hz lies under the decay; it was taken out as part of the fit.",
+                    hertz)};
+}
+
+Finding mode_finding(const Oscillator& added) {
+    return {
+        "second_mode", Severity::note,
+        fmt::format(
+            "A further mode at {:.4g} Hz (damping ratio {:.2g}) rings along; it was fitted together with the "
+            "mode reported. Use --near to choose another mode.",
+            added.angular_frequency() / two_pi, added.damping_ratio())};
+}
+
+}  // namespace
+
+void add_components(CurveFit& fit, const CurveFitOptions& options) {
+    for (int i = 0; i < most_components; ++i) {
+        const double omega = outstanding_frequency(fit);
+        if (omega <= 0.0) return;
+        const double before = criterion_of(fit);
+        std::optional<CurveFit> tone = with_tone(fit, omega);
+        std::optional<CurveFit> mode;
+        const bool mode_allowed =
+            !options.modes || static_cast<int>(fit.fit.model.oscillators.size()) < *options.modes;
+        if (mode_allowed) mode = with_mode(fit, omega);
+        const double tone_gain = tone ? before - criterion_of(*tone) - needed_gain(fit, 3.0) : -1.0;
+        const double mode_gain = mode ? before - criterion_of(*mode) - needed_gain(fit, 4.0) : -1.0;
+        if (tone_gain <= 0.0 && mode_gain <= 0.0) return;
+        if (mode_gain > tone_gain) {
+            fit = std::move(*mode);
+            fit.findings.push_back(mode_finding(fit.fit.model.oscillators.back()));
+        } else {
+            fit = std::move(*tone);
+            fit.findings.push_back(tone_finding(std::exp(fit.fit.model.tones.back()) / two_pi));
+        }
+    }
+}
+
+}  // namespace ringwright::identify

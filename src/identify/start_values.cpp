@@ -1,0 +1,86 @@
+#include "identify/start_values.hpp"
+
+#include <algorithm>
+#include <array>
+#include <cmath>
+#include <numbers>
+#include <vector>
+
+#include "identify/spectrum.hpp"
+
+namespace ringwright::identify {
+
+using Eigen::Index;
+using Eigen::VectorXd;
+
+namespace {
+
+constexpr double two_pi = 2.0 * std::numbers::pi;
+constexpr std::array damping_grid{0.0005, 0.003, 0.015, 0.06, 0.18, 0.45, 0.9, 1.6, 3.5};
+constexpr double widest_ratio_to_near = 1.4;
+constexpr std::size_t refined_starts = 4;
+
+// The two highest peaks of the spectrum, rad/s.
+std::vector<double> spectral_candidates(const DecaySamples& samples) {
+    const Index tail = std::max<Index>(1, samples.size() / 5);
+    const VectorXd centred = samples.value.array() - samples.value.tail(tail).mean();
+    const PowerSpectrum spectrum = power_spectrum(centred);
+    std::vector<std::pair<double, Index>> peaks;
+    for (Index i = 2; i + 1 < spectrum.power.size(); ++i)
+        if (spectrum.power(i) > spectrum.power(i - 1) && spectrum.power(i) >= spectrum.power(i + 1))
+            peaks.emplace_back(spectrum.power(i), i);
+    std::ranges::sort(peaks, std::greater<>{});
+    std::vector<double> found;
+    for (std::size_t i = 0; i < std::min<std::size_t>(2, peaks.size()); ++i) {
+        const Index at = peaks[i].second;
+        found.push_back(two_pi * refined_peak(spectrum.power, at, at) * spectrum.bin_cycles / samples.step_s);
+    }
+    return found;
+}
+
+std::vector<double> candidate_frequencies(const DecaySamples& samples, double guess_hz,
+                                          std::optional<double> near_hz) {
+    std::vector<double> candidates = spectral_candidates(samples);
+    if (guess_hz > 0.0) candidates.push_back(two_pi * guess_hz);
+    const double span = samples.time.maxCoeff();
+    for (double cycles = 0.15; cycles < 40.0 && cycles < 0.2 * static_cast<double>(samples.size());
+         cycles *= 1.6)
+        candidates.push_back(two_pi * cycles / span);
+    if (near_hz) {
+        candidates.push_back(two_pi * *near_hz);
+        std::erase_if(candidates, [&](double omega) {
+            const double ratio = omega / (two_pi * *near_hz);
+            return ratio > widest_ratio_to_near || ratio < 1.0 / widest_ratio_to_near;
+        });
+    }
+    return candidates;
+}
+
+}  // namespace
+
+std::optional<ProjectedFit> find_start(const DecaySamples& samples, double guess_hz,
+                                       std::optional<double> near_hz) {
+    const AutoregressiveNoise white;
+    std::vector<ProjectedFit> tried;
+    for (const double omega : candidate_frequencies(samples, guess_hz, near_hz)) {
+        ProjectedFit best;
+        for (const double damping : damping_grid) {
+            DecayModel model;
+            model.oscillators.push_back(Oscillator::from(damping, omega));
+            ProjectedFit trial = solve_linear(model, samples, white);
+            if (best.model.oscillators.empty() || trial.residual_sum < best.residual_sum)
+                best = std::move(trial);
+        }
+        tried.push_back(std::move(best));
+    }
+    std::ranges::sort(tried, {}, &ProjectedFit::residual_sum);
+    std::optional<ProjectedFit> found;
+    for (std::size_t i = 0; i < std::min(refined_starts, tried.size()); ++i) {
+        ProjectedFit fit = fit_projected(tried[i].model, samples, white, 40);
+        if (!std::isfinite(fit.residual_sum) || !fit.model.parameters().allFinite()) continue;
+        if (!found || fit.residual_sum < found->residual_sum) found = std::move(fit);
+    }
+    return found;
+}
+
+}  // namespace ringwright::identify

@@ -1,0 +1,321 @@
+#include "recording/clock.hpp"
+
+#include <fmt/format.h>
+
+#include <algorithm>
+#include <cmath>
+#include <optional>
+
+namespace ringwright {
+namespace {
+
+// Longer than this many usual steps, a step is a gap.
+constexpr double gap_steps = 1.5;
+
+struct Line {
+    double start = 0.0;
+    double step = 0.0;
+    double worst = 0.0;  // largest distance of a stamp from the line
+};
+
+// Least squares of the stamps against their number, about the middle so that nothing cancels.
+Line fitted_line(const std::vector<double>& t) {
+    const auto n = static_cast<double>(t.size());
+    const double middle = 0.5 * (n - 1.0);
+    const double reference = t.front();
+    double sum = 0.0, weighted = 0.0;
+    for (std::size_t i = 0; i < t.size(); ++i) {
+        sum += t[i] - reference;
+        weighted += (t[i] - reference) * (static_cast<double>(i) - middle);
+    }
+    Line line;
+    line.step = weighted / (n * (n * n - 1.0) / 12.0);
+    line.start = reference + sum / n - line.step * middle;
+    return line;
+}
+
+double worst_distance(const std::vector<double>& t, double start, double step) {
+    double worst = 0.0;
+    for (std::size_t i = 0; i < t.size(); ++i)
+        worst = std::max(worst, std::abs(t[i] - start - step * static_cast<double>(i)));
+    return worst;
+}
+
+// How far a stamp of a steady clock may lie from the line: rounding to the last written digit (half a step of
+// it, a little more because the line is fitted to rounded stamps), the digits of a double, and a thousandth
+// of a sampling step, which no method here can feel.
+double tolerance(const std::vector<double>& t, double step, double rounding) {
+    const double magnitude = std::max(std::abs(t.front()), std::abs(t.back()));
+    return 0.6 * rounding + 2e-3 * std::abs(step) + 8e-16 * magnitude;
+}
+
+double rounded_to_digits(double value, int digits) {
+    const double scale = std::pow(10.0, digits - 1 - std::floor(std::log10(std::abs(value))));
+    return std::round(value * scale) / scale;
+}
+
+// The rate with the fewest digits that the stamps allow: 2000 Hz, not 2000.0000013 Hz.
+std::optional<double> plain_rate(const std::vector<double>& t, const Line& line, double allowed) {
+    const double slack = std::max(allowed - line.worst, 0.1 * allowed) / static_cast<double>(t.size());
+    const double rate = 1.0 / line.step;
+    for (int digits = 1; digits <= 9; ++digits)
+        for (const double candidate :
+             {rounded_to_digits(rate, digits), 1.0 / rounded_to_digits(line.step, digits)})
+            if (std::abs(1.0 / candidate - line.step) <= slack) return candidate;
+    return std::nullopt;
+}
+
+std::optional<SampleClock> uniform_clock(const std::vector<double>& t, double rounding) {
+    if (t.size() < 3) return std::nullopt;
+    Line line = fitted_line(t);
+    if (!(line.step > 0.0) || !std::isfinite(line.step)) return std::nullopt;
+    const double allowed = tolerance(t, line.step, rounding);
+    line.worst = worst_distance(t, line.start, line.step);
+    if (line.worst > allowed) return std::nullopt;
+    SampleClock clock;
+    clock.sample_rate_hz = 1.0 / line.step;
+    clock.start_s = line.start;
+    if (const auto plain = plain_rate(t, line, allowed)) {
+        clock.sample_rate_hz = *plain;
+        const double middle = 0.5 * static_cast<double>(t.size() - 1);
+        clock.start_s = line.start + middle * (line.step - 1.0 / *plain);
+    }
+    // The first stamp itself where the line allows it, so that "0" stays 0.
+    if (worst_distance(t, t.front(), 1.0 / clock.sample_rate_hz) <= 2.0 * allowed) clock.start_s = t.front();
+    return clock;
+}
+
+double median_of(std::vector<double> values) {
+    if (values.empty()) return 0.0;
+    const auto middle = values.begin() + static_cast<std::ptrdiff_t>(values.size() / 2);
+    std::nth_element(values.begin(), middle, values.end());
+    return *middle;
+}
+
+double median_forward_step(const std::vector<double>& t) {
+    std::vector<double> steps;
+    steps.reserve(t.size());
+    for (std::size_t i = 1; i < t.size(); ++i)
+        if (t[i] > t[i - 1]) steps.push_back(t[i] - t[i - 1]);
+    return median_of(std::move(steps));
+}
+
+void add(Findings& findings, const char* code, Severity severity, std::string message) {
+    findings.push_back(Finding{code, severity, std::move(message)});
+}
+
+// Rows that lack a stamp cannot be placed.
+void drop_unstamped(std::vector<double>& t, std::vector<double>& x) {
+    std::size_t kept = 0;
+    for (std::size_t i = 0; i < t.size(); ++i) {
+        if (std::isnan(t[i])) continue;
+        t[kept] = t[i];
+        x[kept++] = x[i];
+    }
+    t.resize(kept);
+    x.resize(kept);
+}
+
+struct Disorder {
+    std::size_t repeated = 0, backward = 0, set_back = 0;
+    double first_repeated = 0.0, first_backward = 0.0, first_set_back = 0.0;
+    std::vector<double> set_back_at;
+};
+
+// Leaves out rows whose stamp does not go forward; a clock that jumps back and then runs on is shifted.
+class Straightener {
+  public:
+    Straightener(std::vector<double>& t, std::vector<double>& x, double step) : t_(t), x_(x), step_(step) {}
+
+    Disorder run() {
+        double shift = 0.0;
+        for (std::size_t i = 0; i < t_.size(); ++i) {
+            const double time = t_[i] + shift;
+            if (kept_ == 0 || time > t_[kept_ - 1]) {
+                if (runs_ahead(i, time, shift)) {
+                    count_backward(t_[i]);
+                    continue;
+                }
+                keep(i, time);
+            } else if (time == t_[kept_ - 1]) {
+                if (disorder_.repeated++ == 0) disorder_.first_repeated = t_[i];
+            } else if (runs_on(i, shift)) {
+                shift += t_[kept_ - 1] + step_ - time;
+                if (disorder_.set_back++ == 0) disorder_.first_set_back = t_[i];
+                keep(i, t_[i] + shift);
+            } else {
+                count_backward(t_[i]);
+            }
+        }
+        t_.resize(kept_);
+        x_.resize(kept_);
+        return std::move(disorder_);
+    }
+
+  private:
+    void keep(std::size_t i, double time) {
+        x_[kept_] = x_[i];
+        t_[kept_++] = time;
+    }
+    void count_backward(double time) {
+        if (disorder_.backward++ == 0) disorder_.first_backward = time;
+    }
+    // One stamp far ahead of its neighbours: the next rows go on as if it were not there.
+    [[nodiscard]] bool runs_ahead(std::size_t i, double time, double shift) const {
+        if (kept_ == 0 || i + 2 >= t_.size() || time < t_[kept_ - 1] + 4.0 * step_) return false;
+        const double next = t_[i + 1] + shift, after = t_[i + 2] + shift;
+        return next < time && next > t_[kept_ - 1] && after > next && next < t_[kept_ - 1] + 4.0 * step_;
+    }
+    // The clock was set back: the following stamps stay behind and go forward among themselves.
+    [[nodiscard]] bool runs_on(std::size_t i, double shift) const {
+        if (i + 4 >= t_.size()) return false;
+        for (std::size_t j = i; j < i + 4; ++j)
+            if (t_[j + 1] <= t_[j] || t_[j + 1] + shift > t_[kept_ - 1]) return false;
+        return true;
+    }
+
+    std::vector<double>& t_;
+    std::vector<double>& x_;
+    double step_;
+    std::size_t kept_ = 0;
+    Disorder disorder_;
+};
+
+void report(const Disorder& disorder, Findings& findings) {
+    if (disorder.repeated > 0)
+        add(findings, "repeated_time_stamps", Severity::caution,
+            fmt::format(
+                "{} rows repeat the time stamp of the row before (first at {:.6g} s); they were left out.",
+                disorder.repeated, disorder.first_repeated));
+    if (disorder.backward > 0)
+        add(findings, "backward_time_stamps", Severity::caution,
+            fmt::format(
+                "{} rows have a time stamp that runs backward or far ahead (first at {:.6g} s); they were "
+                "left out.",
+                disorder.backward, disorder.first_backward));
+    if (disorder.set_back > 0)
+        add(findings, "clock_set_back", Severity::defect,
+            fmt::format(
+                "The clock jumps back {} times (first to {:.6g} s) and runs on from there; what follows was "
+                "placed one step after what went before. Give the stretch that matters with --from and --to.",
+                disorder.set_back, disorder.first_set_back));
+}
+
+// Rows without a value are left out; with a uniform clock the times of the others are then written out.
+void drop_missing(Timed& timed) {
+    std::vector<double>& x = timed.values;
+    std::size_t first = 0, last = x.size();
+    while (first < last && std::isnan(x[first])) ++first;
+    while (last > first && std::isnan(x[last - 1])) --last;
+    const bool inner =
+        std::any_of(x.begin() + static_cast<std::ptrdiff_t>(first),
+                    x.begin() + static_cast<std::ptrdiff_t>(last), [](double v) { return std::isnan(v); });
+    SampleClock& clock = timed.clock;
+    if (inner && clock.uniform()) {
+        clock.times_s.resize(x.size());
+        for (std::size_t i = 0; i < x.size(); ++i)
+            clock.times_s[i] = clock.start_s + static_cast<double>(i) / clock.sample_rate_hz;
+    } else if (clock.uniform()) {
+        clock.start_s += static_cast<double>(first) / clock.sample_rate_hz;
+    }
+    std::size_t kept = 0;
+    for (std::size_t i = 0; i < x.size(); ++i) {
+        if (std::isnan(x[i])) continue;
+        if (!clock.times_s.empty()) clock.times_s[kept] = clock.times_s[i];
+        x[kept++] = x[i];
+    }
+    x.resize(kept);
+    if (clock.times_s.empty()) return;
+    clock.times_s.resize(kept);
+    if (kept > 0) clock.start_s = clock.times_s.front();
+}
+
+void find_gaps(Timed& timed, double step, double rounding) {
+    const std::vector<double>& t = timed.clock.times_s;
+    double lost = 0.0, longest = 0.0, longest_at = 0.0;
+    for (std::size_t i = 1; i < t.size(); ++i) {
+        const double wide = t[i] - t[i - 1];
+        if (wide <= gap_steps * step + 2.0 * rounding) continue;
+        timed.gaps.push_back({i - 1, i});
+        lost += wide - step;
+        if (wide > longest) longest = wide, longest_at = t[i - 1];
+    }
+    if (timed.gaps.empty()) return;
+    add(timed.findings, "gaps", Severity::caution,
+        fmt::format(
+            "Time is lost at {} places, {:.4g} s in all (the longest: {:.4g} s after {:.6g} s). The times as "
+            "recorded are used.",
+            timed.gaps.size(), lost, longest, longest_at));
+}
+
+// Scatter of the steps that are no gaps, as a share of the usual step.
+double jitter_share(const std::vector<double>& t, double step) {
+    double sum = 0.0;
+    std::size_t count = 0;
+    for (std::size_t i = 1; i < t.size(); ++i) {
+        const double deviation = (t[i] - t[i - 1]) / step - 1.0;
+        if (deviation > gap_steps - 1.0) continue;
+        sum += deviation * deviation;
+        ++count;
+    }
+    return count == 0 ? 0.0 : std::sqrt(sum / static_cast<double>(count));
+}
+
+void report_jitter(Timed& timed, double step, double rounding) {
+    const double share = jitter_share(timed.clock.times_s, step);
+    const double by_rounding = rounding / step;
+    if (share < 0.005 || share < 0.6 * by_rounding) return;
+    add(timed.findings, "jittering_time_stamps", share > 0.2 ? Severity::caution : Severity::note,
+        fmt::format("The sampling steps scatter by {:.2g} % about {:.6g} s. The times as recorded are used.",
+                    100.0 * share, step));
+}
+
+}  // namespace
+
+void unwrap_midnight(std::vector<double>& times_s) {
+    double days = 0.0;
+    double last = times_s.empty() ? 0.0 : times_s.front();
+    for (double& time : times_s) {
+        const double raw = time;
+        if (raw < last - 43200.0) days += 86400.0;
+        if (!std::isnan(raw)) last = raw;
+        time = raw + days;
+    }
+}
+
+Timed clock_from_stamps(std::vector<double> times_s, std::vector<double> values, double rounding_s) {
+    Timed timed;
+    drop_unstamped(times_s, values);
+    auto uniform = uniform_clock(times_s, rounding_s);
+    double step = uniform ? 1.0 / uniform->sample_rate_hz : 0.0;
+    if (!uniform) {
+        step = median_forward_step(times_s);
+        report(Straightener(times_s, values, step).run(), timed.findings);
+        uniform = uniform_clock(times_s, rounding_s);
+    }
+    timed.values = std::move(values);
+    if (uniform) {
+        timed.clock = *uniform;
+        step = 1.0 / uniform->sample_rate_hz;
+    } else {
+        timed.clock.times_s = std::move(times_s);
+        timed.clock.sample_rate_hz = step > 0.0 ? 1.0 / step : 1.0;
+        timed.clock.start_s = timed.clock.times_s.empty() ? 0.0 : timed.clock.times_s.front();
+        report_jitter(timed, step, rounding_s);
+    }
+    drop_missing(timed);
+    find_gaps(timed, step, uniform ? 0.0 : rounding_s);
+    return timed;
+}
+
+Timed clock_from_rate(double rate_hz, double start_s, std::vector<double> values) {
+    Timed timed;
+    timed.values = std::move(values);
+    timed.clock.sample_rate_hz = rate_hz;
+    timed.clock.start_s = start_s;
+    drop_missing(timed);
+    find_gaps(timed, 1.0 / rate_hz, 0.0);
+    return timed;
+}
+
+}  // namespace ringwright

@@ -1,0 +1,34 @@
+#pragma once
+// From time stamps as they were recorded to the clock of a recording.
+
+#include <string>
+#include <vector>
+
+#include "ringwright/finding.hpp"
+#include "ringwright/recording.hpp"
+
+namespace ringwright {
+
+struct Timed {
+    std::vector<double> values;
+    SampleClock clock;
+    std::vector<SampleRange> gaps;
+    Findings findings;
+};
+
+/// Time stamps in seconds, one for each value, with the step to which they were rounded when they were
+/// written (0: not known). Uniform where every stamp agrees with equal steps within that rounding: the rate
+/// then comes from a straight line through all of them. Else rows with repeated or backward stamps are left
+/// out, a clock that was set back goes on from where it stood, and the stamps themselves are the clock. Rows
+/// without a stamp or a value are left out. Each of these is a finding with count and first place,
+/// `first_row` being the line of the first value in the file. Precondition: equal sizes.
+[[nodiscard]] Timed clock_from_stamps(std::vector<double> times_s, std::vector<double> values,
+                                      double rounding_s);
+
+/// Clock times without a date begin again at midnight: adds a day at each such place. Seconds since midnight.
+void unwrap_midnight(std::vector<double>& times_s);
+
+/// Equal steps at a stated rate; missing values are left out with their times kept.
+[[nodiscard]] Timed clock_from_rate(double rate_hz, double start_s, std::vector<double> values);
+
+}  // namespace ringwright

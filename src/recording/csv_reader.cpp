@@ -1,0 +1,388 @@
+#include "recording/csv_reader.hpp"
+
+#include <fmt/format.h>
+
+#include <algorithm>
+#include <cmath>
+#include <limits>
+#include <thread>
+
+#include "recording/channel_scale.hpp"
+#include "recording/clock.hpp"
+#include "recording/csv_columns.hpp"
+#include "recording/csv_rows.hpp"
+#include "recording/csv_table.hpp"
+#include "recording/preamble_rate.hpp"
+#include "recording/text_encoding.hpp"
+#include "ringwright/error.hpp"
+
+namespace ringwright {
+namespace {
+
+void add(Findings& findings, const char* code, Severity severity, std::string message) {
+    findings.push_back(Finding{code, severity, std::move(message)});
+}
+
+void append(Findings& findings, const Findings& more) {
+    findings.insert(findings.end(), more.begin(), more.end());
+}
+
+// A text file with its table found.
+struct OpenTable {
+    DecodedText decoded;
+    std::string_view text;
+    Table table;
+    RowSample sample;
+    [[nodiscard]] std::string_view rows() const { return text.substr(table.begin); }
+};
+
+[[noreturn]] void refuse_no_table(const std::string& file, const DecodedText& decoded) {
+    if (decoded.binary)
+        throw InputError(Problem{file, "",
+                                 "this is neither a sound file nor text, so no recording can be read from it",
+                                 "Export the recording as CSV or WAV."});
+    throw InputError(
+        Problem{file, "", "no table of numbers was found in the text",
+                "Export the recording as CSV: one row for each sample, with a time column or --rate."});
+}
+
+// Whether most of the sampled rows have the form of the table.
+bool rows_have_form(const std::vector<std::vector<std::string_view>>& rows, const Table& table) {
+    if (rows.size() < 8) return true;
+    std::size_t good = 0;
+    for (const auto& cells : rows) {
+        const bool width = cells.size() >= table.columns.size() && cells.size() <= table.columns.size() + 1;
+        bool numeric = false;
+        for (std::size_t i = 0; i < std::min(cells.size(), table.columns.size()); ++i)
+            numeric = numeric || (table.columns[i].content == ColumnContent::number &&
+                                  kind_of_cell(cells[i], table.dialect) != CellKind::text);
+        good += width && numeric ? 1 : 0;
+    }
+    return good * 2 > rows.size();
+}
+
+bool is_text_alone(const std::vector<std::string_view>& cells, const Dialect& dialect) {
+    return std::all_of(cells.begin(), cells.end(), [&](std::string_view cell) {
+        return cell.empty() || kind_of_cell(cell, dialect) == CellKind::text;
+    });
+}
+
+// Where another table may begin: behind the first of the early rows that holds words alone, or, when
+// `anywhere`, before the first three rows in succession that do not fit. The end of the text when there is no
+// such place.
+std::size_t next_start(std::string_view rows, const Table& table, bool anywhere) {
+    constexpr std::size_t early_rows = 200;
+    LineReader reader(rows, table.end_of_line);
+    std::string_view line;
+    std::vector<std::string_view> cells;
+    std::size_t strays = 0, before = 0, stray_begin = 0;
+    for (std::size_t row = 0; before = reader.offset(), reader.next(line); ++row) {
+        if (!anywhere && row >= early_rows) break;
+        split_cells(line, table.dialect.delimiter, cells);
+        const bool blank = line.find_first_not_of(" \t") == std::string_view::npos;
+        if (!blank && !anywhere && is_text_alone(cells, table.dialect)) return before;
+        const bool fits = cells.size() >= table.columns.size() && cells.size() <= table.columns.size() + 1 &&
+                          !cells.empty() && kind_of_cell(cells.front(), table.dialect) != CellKind::text;
+        if (fits)
+            strays = 0;
+        else if (++strays == 1)
+            stray_begin = before;
+        if (anywhere && strays == 3) return stray_begin;
+    }
+    return rows.size();
+}
+
+std::size_t lines_in(std::string_view text, char end_of_line) {
+    return static_cast<std::size_t>(std::count(text.begin(), text.end(), end_of_line));
+}
+
+// A short list of numbers in the preamble can look like the table: where words follow it soon and more rows
+// come behind them, or where the middle of the file has another form, the search goes on there.
+void find_main_table(OpenTable& open, const TableHints& hints) {
+    for (int attempt = 0; attempt < 8; ++attempt) {
+        open.sample = sample_rows(open.rows(), open.table);
+        const bool other_form = !rows_have_form(open.sample.middle, open.table);
+        const std::size_t skipped = next_start(open.rows(), open.table, other_form);
+        if (skipped == 0 || open.rows().size() - skipped <= skipped) return;
+        auto later = find_table(open.rows().substr(skipped), open.decoded.latin1, hints);
+        if (!later) return;
+        const std::size_t offset = open.table.begin + skipped;
+        const std::size_t lines_before = lines_in(open.text.substr(0, offset), open.table.end_of_line);
+        later->begin += offset;
+        later->first_line += lines_before;
+        later->preamble_lines += lines_before;
+        later->preamble = open.text.substr(0, later->begin);
+        open.table = std::move(*later);
+    }
+}
+
+// The first rows may not show what a column holds: an overload at the start, a channel that begins later.
+void refine_contents(OpenTable& open) {
+    for (std::size_t i = 0; i < open.table.columns.size(); ++i) {
+        Column& column = open.table.columns[i];
+        if (column.content != ColumnContent::empty && column.content != ColumnContent::text) continue;
+        std::size_t numbers = 0, words = 0;
+        for (const auto* rows : {&open.sample.first, &open.sample.middle, &open.sample.last})
+            for (const auto& cells : *rows) {
+                if (i >= cells.size()) continue;
+                const CellKind kind = kind_of_cell(cells[i], open.table.dialect);
+                numbers += kind == CellKind::number ? 1 : 0;
+                words += kind == CellKind::text || kind == CellKind::stamp ? 1 : 0;
+            }
+        if (numbers > 9 * words) column.content = ColumnContent::number;
+    }
+}
+
+OpenTable open_table(std::string_view bytes, const ReadOptions& options, const std::string& file) {
+    OpenTable open;
+    open.decoded = decode_text(bytes);
+    if (open.decoded.binary) refuse_no_table(file, open.decoded);
+    open.text = open.decoded.encoding.starts_with("UTF-16") ? std::string_view(open.decoded.owned)
+                                                            : open.decoded.text;
+    TableHints hints;
+    if ((options.time_column && *options.time_column != "none") ||
+        (options.channel && *options.channel == "2"))
+        hints.least_columns = 2;
+    auto table = find_table(open.text, open.decoded.latin1, hints);
+    if (!table) refuse_no_table(file, open.decoded);
+    open.table = std::move(*table);
+    find_main_table(open, hints);
+    refine_contents(open);
+    return open;
+}
+
+const char* delimiter_name(char delimiter) {
+    switch (delimiter) {
+        case '\t':
+            return "tab";
+        case ';':
+            return "semicolon";
+        case ',':
+            return "comma";
+        case '|':
+            return "bar";
+        default:
+            return "blank";
+    }
+}
+
+std::string dialect_text(const OpenTable& open) {
+    const Table& table = open.table;
+    std::string text = table.columns.size() == 1 && table.dialect.delimiter == ';'
+                           ? "one column"
+                           : delimiter_name(table.dialect.delimiter);
+    text += table.dialect.decimal == ',' ? ", decimal comma" : ", decimal point";
+    text += ", " + open.decoded.encoding;
+    if (table.preamble_lines > 0)
+        text +=
+            fmt::format(", {} preamble line{}", table.preamble_lines, table.preamble_lines == 1 ? "" : "s");
+    text += table.header_lines == 0
+                ? ", no header"
+                : fmt::format(", {} header line{}", table.header_lines, table.header_lines == 1 ? "" : "s");
+    return text;
+}
+
+void report_form(const OpenTable& open, Findings& findings) {
+    if (open.table.thousands_or_decimal)
+        add(findings, "decimal_comma_assumed", Severity::caution,
+            "Numbers such as \"1,234\" could have a decimal comma or a comma before the thousands; a decimal "
+            "comma was "
+            "assumed. If they are thousands, export with points as decimal marks; frequency and damping do "
+            "not change.");
+    if (open.table.comma_could_be_decimal)
+        add(findings, "decimal_comma_assumed", Severity::caution,
+            "Each row is two whole numbers with a comma between them; they were read as one number with a "
+            "decimal comma. "
+            "If they are two columns, say --channel 2.");
+    if (open.decoded.trailing_nuls > 0)
+        add(findings, "cut_file", Severity::caution,
+            fmt::format(
+                "The file ends in {} zero bytes: the recorder lost power or its card was taken out too soon. "
+                "What stands before them was read.",
+                open.decoded.trailing_nuls));
+}
+
+// Missing and odd cells of the chosen column, in words.
+void report_absences(const Rows& rows, const Table& table, const std::string& channel, Findings& findings) {
+    const auto line = [&](const Absences& absences) { return table.first_line + absences.first_line; };
+    const std::size_t missing = rows.empty.count + rows.not_a_number.count;
+    if (missing > 0) {
+        const bool empty_first =
+            rows.not_a_number.count == 0 ||
+            (rows.empty.count > 0 && rows.empty.first_line < rows.not_a_number.first_line);
+        add(findings, "missing_values", Severity::caution,
+            fmt::format("{} of {} rows have no value in channel {} (first in line {}); they were left out.",
+                        missing, rows.values.size(), channel,
+                        line(empty_first ? rows.empty : rows.not_a_number)));
+    }
+    if (rows.overflow.count > 0)
+        add(findings, "overflow_markers", Severity::caution,
+            fmt::format("{} rows of channel {} are marked as overloaded (first in line {}); they were left "
+                        "out. Use a "
+                        "larger measuring range.",
+                        rows.overflow.count, channel, line(rows.overflow)));
+    if (rows.text.count > 0)
+        add(findings, "text_in_channel", Severity::caution,
+            fmt::format("{} rows hold text in place of a number in channel {} (first in line {}: \"{}\"); "
+                        "they were left "
+                        "out.",
+                        rows.text.count, channel, line(rows.text), label_text(rows.first_text, false)));
+    if (rows.unreadable_row.count > 0)
+        add(findings, "unreadable_rows", rows.unreadable_row.count > 3 ? Severity::caution : Severity::note,
+            fmt::format("{} lines are no rows of the table (first is line {}); they were left out.",
+                        rows.unreadable_row.count, line(rows.unreadable_row)));
+    if (rows.unreadable_time.count > 0)
+        add(findings, "missing_time_stamps", Severity::caution,
+            fmt::format("{} rows have no readable time (first in line {}); they were left out.",
+                        rows.unreadable_time.count, line(rows.unreadable_time)));
+}
+
+RowPlan plan_for(const Table& table, const TimeChoice& time, std::size_t channel,
+                 const ReadOptions& options) {
+    RowPlan plan;
+    plan.dialect = table.dialect;
+    plan.end_of_line = table.end_of_line;
+    plan.value_column = channel;
+    plan.time_source = options.rate_hz ? TimeSource::none : time.source;
+    plan.time_column = time.column;
+    plan.date_column = time.date_column;
+    plan.stamp_base_ns = time.stamp_base_ns;
+    return plan;
+}
+
+[[noreturn]] void refuse_no_clock(const std::string& file) {
+    throw InputError(
+        Problem{file, "", "there is no time column and nothing says how fast the recording was sampled",
+                "Give the sampling rate with --rate HZ, or name the time column with --time-column."});
+}
+
+double rate_without_times(const OpenTable& open, const ReadOptions& options, Recording& recording) {
+    if (options.rate_hz) return *options.rate_hz;
+    const auto stated = rate_in_preamble(open.table.preamble);
+    if (!stated) refuse_no_clock(recording.origin.file);
+    add(recording.findings, "rate_from_preamble", Severity::note,
+        fmt::format(
+            "There is no time column; the lines above the table state {:.9g} Hz (\"{}\"). Say otherwise with "
+            "--rate.",
+            stated->rate_hz, label_text(stated->line, open.decoded.latin1)));
+    return stated->rate_hz;
+}
+
+Timed place_in_time(const OpenTable& open, const TimeChoice& time, const ReadOptions& options, Rows&& rows,
+                    Recording& recording) {
+    const bool timed = !options.rate_hz && time.source != TimeSource::none;
+    if (!timed)
+        return clock_from_rate(rate_without_times(open, options, recording), 0.0, std::move(rows.values));
+    if (time.source == TimeSource::number && time.seconds_per_unit != 1.0) {
+        const double units_per_second = std::round(1.0 / time.seconds_per_unit);
+        for (double& t : rows.times)
+            t = time.seconds_per_unit < 1.0 ? t / units_per_second : t * time.seconds_per_unit;
+    }
+    if (time.source == TimeSource::stamp && time.without_date) unwrap_midnight(rows.times);
+    return clock_from_stamps(std::move(rows.times), std::move(rows.values), time.rounding_s);
+}
+
+constexpr std::size_t least_rows = 16;
+
+void refuse_short(const Recording& recording, std::size_t rows) {
+    if (recording.samples.size() >= least_rows) return;
+    throw InputError(
+        Problem{recording.origin.file, fmt::format("channel {}", recording.origin.channel),
+                fmt::format("only {} usable values were found in {} rows; at least {} are needed",
+                            recording.samples.size(), rows, least_rows),
+                "Record longer, or check that the right channel was chosen (--channel)."});
+}
+
+void refuse_stopped_clock(const Recording& recording) {
+    const bool stands = recording.samples.size() >= 2 && !(recording.duration_s() > 0.0);
+    if (!stands && std::isfinite(recording.clock.sample_rate_hz)) return;
+    throw InputError(
+        Problem{recording.origin.file, "time column", "the time does not go forward",
+                "Name the right time column with --time-column, or give the sampling rate with --rate HZ."});
+}
+
+}  // namespace
+
+void read_csv(std::string_view bytes, const ReadOptions& options, Recording& recording) {
+    const std::string& file = recording.origin.file;
+    const OpenTable open = open_table(bytes, options, file);
+    report_form(open, recording.findings);
+    const TimeChoice time = choose_time(open.table, open.sample, options);
+    append(recording.findings, time.findings);
+    const SignalChoice signal = choose_signal(open.table, open.rows(), time, options, file);
+    append(recording.findings, signal.findings);
+    if (!options.rate_hz && time.source == TimeSource::none && !rate_in_preamble(open.table.preamble))
+        refuse_no_clock(file);
+    recording.origin.channel = column_name(open.table, signal.column);
+
+    Rows rows = read_rows(open.rows(), plan_for(open.table, time, signal.column, options),
+                          std::max(1U, std::thread::hardware_concurrency()), options.progress);
+    report_absences(rows, open.table, recording.origin.channel, recording.findings);
+    const std::size_t row_count = rows.values.size();
+    Timed timed = place_in_time(open, time, options, std::move(rows), recording);
+    append(recording.findings, timed.findings);
+    recording.samples = std::move(timed.values);
+    recording.clock = std::move(timed.clock);
+    recording.gaps = std::move(timed.gaps);
+    refuse_short(recording, row_count);
+    refuse_stopped_clock(recording);
+
+    const Column& column = open.table.columns[signal.column];
+    ChannelScale scale = scale_channel({column.name, column.unit_text, column.unit}, options);
+    if (scale.factor != 1.0)
+        for (double& sample : recording.samples) sample *= scale.factor;
+    recording.unit = scale.unit;
+    recording.scaled = scale.scaled;
+    recording.quantity = scale.quantity;
+    recording.quantity_known = scale.quantity_known;
+    append(recording.findings, scale.findings);
+}
+
+namespace {
+
+ChannelSummary summarise_column(const OpenTable& open, const TimeChoice& time, std::size_t i) {
+    const Column& column = open.table.columns[i];
+    ChannelSummary summary;
+    summary.name = column_name(open.table, i);
+    summary.unit = column.unit_text;
+    const bool is_time =
+        std::find(time.not_signal.begin(), time.not_signal.end(), i) != time.not_signal.end() ||
+        (time.source != TimeSource::none && (i == time.column)) ||
+        (time.source == TimeSource::date_and_time && i == time.date_column);
+    summary.role = is_time                                   ? "time"
+                   : column.content == ColumnContent::number ? "signal"
+                   : column.content == ColumnContent::empty  ? "empty"
+                                                             : "text";
+    if (column.content != ColumnContent::number) return summary;
+    RowPlan plan = plan_for(open.table, TimeChoice{}, i, ReadOptions{});
+    const Rows rows = read_rows(open.rows(), plan, std::max(1U, std::thread::hardware_concurrency()));
+    double sum = 0.0;
+    summary.minimum = std::numeric_limits<double>::infinity();
+    summary.maximum = -summary.minimum;
+    for (const double value : rows.values) {
+        if (std::isnan(value)) continue;
+        ++summary.values;
+        sum += value;
+        summary.minimum = std::min(summary.minimum, value);
+        summary.maximum = std::max(summary.maximum, value);
+    }
+    summary.missing = rows.values.size() - summary.values;
+    if (summary.values == 0) summary.minimum = summary.maximum = 0.0;
+    if (summary.values > 0) summary.mean = sum / static_cast<double>(summary.values);
+    return summary;
+}
+
+}  // namespace
+
+void summarise_csv(std::string_view bytes, const ReadOptions& options, FileSummary& summary) {
+    const OpenTable open = open_table(bytes, options, summary.file);
+    summary.format = "CSV";
+    summary.dialect = dialect_text(open);
+    report_form(open, summary.findings);
+    const TimeChoice time = choose_time(open.table, open.sample, options);
+    append(summary.findings, time.findings);
+    for (std::size_t i = 0; i < open.table.columns.size(); ++i)
+        summary.channels.push_back(summarise_column(open, time, i));
+}
+
+}  // namespace ringwright

@@ -1,0 +1,112 @@
+#include "recording/health.hpp"
+
+#include <fmt/format.h>
+
+#include <algorithm>
+#include <cmath>
+
+namespace ringwright {
+namespace {
+
+void add(Recording& recording, const char* code, Severity severity, std::string message) {
+    recording.findings.push_back(Finding{code, severity, std::move(message)});
+}
+
+// Steps outward from the edge of a run at the rail. A signal cut off by a rail meets it at speed: the second
+// step away from the edge is no smaller than what its curvature near an apex would give, and the steps do not
+// grow as they do from the apex of a smooth curve (1 : 3 : 5).
+bool steep_edge(double edge, double second, double third, double resolution) {
+    const double first_step = std::abs(second - edge), next_step = std::abs(third - second);
+    return next_step > 3.0 * resolution && first_step > 0.0 &&
+           next_step < 2.9 * std::max(first_step, 0.5 * next_step) &&
+           first_step + next_step > 6.0 * resolution;
+}
+
+// Edges inside the recording, each with two samples beyond it, and a third to see how the steps grow.
+bool runs_into_rail(const std::vector<double>& x, std::size_t begin, std::size_t end, double resolution) {
+    if (begin < 3 || end + 3 > x.size()) return false;
+    const auto grows_like_apex = [](double a, double b, double c, double d) {
+        const double one = std::abs(b - a), two = std::abs(c - b), three = std::abs(d - c);
+        // From an apex the steps stand as 1 : 3 : 5; from a rail the later ones are nearly equal.
+        return two > 2.2 * one && three > 1.5 * two;
+    };
+    return steep_edge(x[begin], x[begin - 1], x[begin - 2], resolution) &&
+           steep_edge(x[end - 1], x[end], x[end + 1], resolution) &&
+           !grows_like_apex(x[begin], x[begin - 1], x[begin - 2], x[begin - 3]) &&
+           !grows_like_apex(x[end - 1], x[end], x[end + 1], x[end + 2]);
+}
+
+void runs_at(const std::vector<double>& x, double rail, double resolution, std::vector<SampleRange>& runs) {
+    for (std::size_t i = 0; i < x.size(); ++i) {
+        if (x[i] != rail) continue;
+        std::size_t end = i + 1;
+        while (end < x.size() && x[end] == rail) ++end;
+        if (end - i >= 3 && runs_into_rail(x, i, end, resolution)) runs.push_back({i, end});
+        i = end;
+    }
+}
+
+std::size_t samples_in(const std::vector<SampleRange>& runs) {
+    std::size_t count = 0;
+    for (const SampleRange& run : runs) count += run.end - run.begin;
+    return count;
+}
+
+void report_clipping(Recording& recording) {
+    if (recording.clipped.empty()) return;
+    const double at = recording.clock.time_of(recording.clipped.front().begin);
+    add(recording, "clipped_samples", Severity::caution,
+        fmt::format("{} samples in {} runs stand at the end of the measuring range (first at {:.6g} s): the "
+                    "true motion "
+                    "went further. Use a larger range or a weaker excitation.",
+                    samples_in(recording.clipped), recording.clipped.size(), at));
+}
+
+}  // namespace
+
+double smallest_step(const std::vector<double>& samples) {
+    double smallest = 0.0;
+    for (std::size_t i = 1; i < samples.size(); ++i) {
+        const double step = std::abs(samples[i] - samples[i - 1]);
+        if (step > 0.0 && (smallest == 0.0 || step < smallest)) smallest = step;
+    }
+    return smallest;
+}
+
+std::vector<SampleRange> clipped_runs(const std::vector<double>& samples, double resolution) {
+    std::vector<SampleRange> runs;
+    if (samples.empty()) return runs;
+    const auto [low, high] = std::minmax_element(samples.begin(), samples.end());
+    if (*low == *high) return runs;
+    runs_at(samples, *high, resolution, runs);
+    runs_at(samples, *low, resolution, runs);
+    std::sort(runs.begin(), runs.end(),
+              [](const SampleRange& a, const SampleRange& b) { return a.begin < b.begin; });
+    return runs;
+}
+
+void examine_health(Recording& recording) {
+    const auto& x = recording.samples;
+    if (x.empty()) return;
+    const auto [low, high] = std::minmax_element(x.begin(), x.end());
+    const double range = *high - *low;
+    if (range == 0.0) {
+        add(recording, "constant_signal", Severity::defect,
+            "Every sample has the same value. Check that the sensor was connected and that this is the right "
+            "channel "
+            "(--channel).");
+        return;
+    }
+    recording.resolution = smallest_step(x);
+    recording.clipped = clipped_runs(x, recording.resolution);
+    report_clipping(recording);
+    const double levels = range / recording.resolution;
+    if (levels < 64.0)
+        add(recording, "few_levels", levels < 16.0 ? Severity::caution : Severity::note,
+            fmt::format(
+                "The signal uses only about {:.0f} steps of the recorder's resolution; small motion is lost "
+                "between them. Use a smaller measuring range.",
+                levels));
+}
+
+}  // namespace ringwright

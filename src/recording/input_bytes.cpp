@@ -1,0 +1,112 @@
+#include "recording/input_bytes.hpp"
+
+#include <fcntl.h>
+#include <openssl/evp.h>
+#include <sys/mman.h>
+#include <sys/stat.h>
+#include <unistd.h>
+
+#include <algorithm>
+#include <array>
+#include <cerrno>
+#include <cstring>
+#include <memory>
+
+#include "ringwright/error.hpp"
+
+namespace ringwright {
+namespace {
+
+class Descriptor {
+  public:
+    explicit Descriptor(int number) : number_(number) {}
+    ~Descriptor() {
+        if (number_ > STDERR_FILENO) ::close(number_);
+    }
+    Descriptor(const Descriptor&) = delete;
+    Descriptor& operator=(const Descriptor&) = delete;
+    [[nodiscard]] int number() const { return number_; }
+
+  private:
+    int number_;
+};
+
+[[noreturn]] void refuse(const std::string& name, const std::string& found, const std::string& remedy) {
+    throw InputError(Problem{name == "-" ? "standard input" : name, "", found, remedy});
+}
+
+[[noreturn]] void refuse_open(const std::string& path, int error) {
+    if (error == ENOENT || error == ENOTDIR)
+        refuse(path, "there is no such file", "Check the name and the folder.");
+    if (error == EACCES || error == EPERM)
+        refuse(path, "the file may not be read",
+               "Ask for the right to read it, or copy it to a folder of yours.");
+    refuse(path, std::string("the file cannot be opened (") + std::strerror(error) + ")",
+           "Check the name and the drive that it is on.");
+}
+
+}  // namespace
+
+InputBytes::InputBytes(const std::string& path) {
+    const bool standard_input = path == "-";
+    if (path.find('\0') != std::string::npos) refuse_open(path, ENOENT);
+    const Descriptor file(standard_input ? STDIN_FILENO : ::open(path.c_str(), O_RDONLY | O_CLOEXEC));
+    if (file.number() < 0) refuse_open(path, errno);
+    struct stat status {};
+    if (::fstat(file.number(), &status) != 0) refuse_open(path, errno);
+    if (S_ISDIR(status.st_mode))
+        refuse(path, "this is a folder, not a recording",
+               "Name the files in it, for example with folder/*.csv.");
+    const bool mappable = S_ISREG(status.st_mode) && status.st_size > 0 && !standard_input;
+    if (mappable) map(file.number(), static_cast<std::size_t>(status.st_size));
+    if (mapping_ == nullptr) read_all(file.number(), path);
+    if (view_.empty())
+        refuse(path, "the file is empty",
+               "Export the recording again; the logger may have been stopped too soon.");
+}
+
+InputBytes::~InputBytes() {
+    if (mapping_ != nullptr) ::munmap(mapping_, mapping_size_);
+}
+
+void InputBytes::map(int descriptor, std::size_t size) {
+    void* mapping = ::mmap(nullptr, size, PROT_READ, MAP_PRIVATE, descriptor, 0);
+    if (mapping == MAP_FAILED) return;
+    mapping_ = mapping;
+    mapping_size_ = size;
+    ::madvise(mapping, size, MADV_SEQUENTIAL);
+    view_ = {static_cast<const char*>(mapping), size};
+}
+
+void InputBytes::read_all(int descriptor, const std::string& name) {
+    constexpr std::size_t block = std::size_t{1} << 18;
+    std::unique_ptr<char[]> buffer(new char[block]);
+    for (;;) {
+        const ssize_t count = ::read(descriptor, buffer.get(), block);
+        if (count < 0 && errno == EINTR) continue;
+        if (count < 0)
+            refuse(name, std::string("reading failed (") + std::strerror(errno) + ")",
+                   "Check the drive or the pipe that it comes from.");
+        if (count == 0) break;
+        owned_.append(buffer.get(), static_cast<std::size_t>(count));
+    }
+    view_ = owned_;
+}
+
+std::string sha256_hex(std::string_view bytes) {
+    std::array<unsigned char, EVP_MAX_MD_SIZE> digest{};
+    unsigned int length = 0;
+    const std::unique_ptr<EVP_MD_CTX, decltype(&EVP_MD_CTX_free)> context(EVP_MD_CTX_new(), &EVP_MD_CTX_free);
+    EVP_DigestInit_ex(context.get(), EVP_sha256(), nullptr);
+    EVP_DigestUpdate(context.get(), bytes.data(), bytes.size());
+    EVP_DigestFinal_ex(context.get(), digest.data(), &length);
+    constexpr std::string_view hex = "0123456789abcdef";
+    std::string text;
+    for (unsigned int i = 0; i < length; ++i) {
+        text += hex[digest[i] >> 4];
+        text += hex[digest[i] & 15];
+    }
+    return text;
+}
+
+}  // namespace ringwright
