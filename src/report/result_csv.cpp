@@ -2,26 +2,13 @@
 
 #include <fmt/format.h>
 
-#include <cmath>
+#include "report/csv_cell.hpp"
 
 namespace ringwright {
 namespace {
 
-std::string number(double value) {
-    return std::isfinite(value) ? fmt::format("{}", value) : "";
-}
-
-/// RFC 4180 quoting. A cell that a spreadsheet would take for a formula gets a leading apostrophe.
-std::string quoted(const std::string& text) {
-    std::string cell = text;
-    if (!cell.empty() && std::string_view("=+-@\t\r").find(cell.front()) != std::string_view::npos)
-        cell.insert(0, 1, '\'');
-    if (cell.find_first_of(",\"\r\n") == std::string::npos) return cell;
-    std::string escaped = "\"";
-    for (const char character : cell)
-        escaped += character == '"' ? std::string("\"\"") : std::string(1, character);
-    return escaped + "\"";
-}
+using report::csv_cell;
+using report::csv_number;
 
 /// What stands before the quantity in each row: where the answer comes from.
 struct Source {
@@ -31,18 +18,18 @@ struct Source {
 };
 
 std::string source_cells(const Source& source) {
-    return fmt::format("{},{},{},{},{},{},{}", source.scope, quoted(source.file), source.release,
-                       source.start, source.end, source.method, quoted(source.model));
+    return fmt::format("{},{},{},{},{},{},{}", source.scope, csv_cell(source.file), source.release,
+                       source.start, source.end, source.method, csv_cell(source.model));
 }
 
 std::string quantity_rows(const Source& source, const Quantities& quantities) {
     std::string rows;
     for (const auto& [quantity, estimate] : quantities)
         rows += fmt::format("{},{},{},{},{},{},{},{},{},ok,\n", source_cells(source), key_of(quantity),
-                            number(estimate.value), unit_of(quantity, source.torsional),
-                            number(estimate.standard_uncertainty), number(estimate.interval.low),
-                            number(estimate.interval.high), number(estimate.degrees_of_freedom),
-                            number(source.confidence_level));
+                            csv_number(estimate.value), unit_of(quantity, source.torsional),
+                            csv_number(estimate.standard_uncertainty), csv_number(estimate.interval.low),
+                            csv_number(estimate.interval.high), csv_number(estimate.degrees_of_freedom),
+                            csv_number(source.confidence_level));
     return rows;
 }
 
@@ -51,7 +38,7 @@ std::string method_rows(Source source, const char* method, const MethodResult& a
     source.model = answer.model;
     if (answer.status == MethodStatus::ok) return quantity_rows(source, answer.quantities);
     return fmt::format("{},,,,,,,,{},not_applicable,{}\n", source_cells(source),
-                       number(source.confidence_level), quoted(answer.reason));
+                       csv_number(source.confidence_level), csv_cell(answer.reason));
 }
 
 }  // namespace
@@ -73,8 +60,8 @@ std::string to_csv(const Identification& identification) {
                       identification.confidence_level};
         for (const EventIdentification& event : recording.events) {
             source.release = std::to_string(++release);
-            source.start = number(event.start_s);
-            source.end = number(event.end_s);
+            source.start = csv_number(event.start_s);
+            source.end = csv_number(event.end_s);
             text += method_rows(source, "logarithmic_decrement", event.logarithmic_decrement);
             text += method_rows(source, "half_power_bandwidth", event.half_power_bandwidth);
             text += method_rows(source, "curve_fit", event.curve_fit);

@@ -1,0 +1,188 @@
+// ringwright identify: frequency, damping and stiffness, each with its interval.
+
+#include <fmt/format.h>
+
+#include <CLI/App.hpp>
+#include <CLI/Config.hpp>
+#include <CLI/Formatter.hpp>
+#include <memory>
+#include <nlohmann/json.hpp>
+
+#include "app/answer_options.hpp"
+#include "app/article_options.hpp"
+#include "app/command.hpp"
+#include "app/in_order.hpp"
+#include "app/messages.hpp"
+#include "app/recording_options.hpp"
+#include "ringwright/error.hpp"
+#include "ringwright/result_csv.hpp"
+#include "ringwright/result_json.hpp"
+#include "ringwright/result_text.hpp"
+
+namespace ringwright::app {
+namespace {
+
+struct IdentifyArguments {
+    const CLI::App* command = nullptr;
+    FileArguments files;
+    RecordingArguments recording;
+    ArticleArguments article;
+    AnswerArguments answer;
+    AnalysisArguments analysis;
+    bool separate = false;
+};
+
+/// Why nothing answered, as one problem to put right.
+Problem why_no_answer(const Identification& identification) {
+    Problem problem{"", "", "no method can answer",
+                    "See ringwright inspect, or give the window with --from and --to"};
+    if (identification.recordings.empty()) return problem;
+    const RecordingIdentification& first = identification.recordings.front();
+    problem.file = first.recording.origin.file == "-" ? "standard input" : first.recording.origin.file;
+    if (first.events.empty()) {
+        problem.found = "no release found: " + without_period(first.reason);
+        return problem;
+    }
+    const EventIdentification& event = first.events.front();
+    problem.place = fmt::format("release at {:.4g} s", event.start_s);
+    problem.found = "no method can answer: " + without_period(event.curve_fit.reason);
+    return problem;
+}
+
+std::string answer_text(const Identification& identification, Format format, bool one_line,
+                        bool with_header) {
+    switch (format) {
+        case Format::json:
+            return to_text(to_json(identification), one_line ? -1 : 2);
+        case Format::csv: {
+            const std::string csv = to_csv(identification);
+            return with_header ? csv : csv.substr(csv.find('\n') + 1);
+        }
+        case Format::text:
+            break;
+    }
+    return to_text(identification);
+}
+
+int identify_together(const IdentifyArguments& arguments, const std::vector<LoadedFile>& files,
+                      const AnalysisOptions& options) {
+    const Format format = format_from(arguments.answer);
+    const Identification identification =
+        identify(read_all(files, read_options(arguments.recording)), options);
+    write_answer(answer_text(identification, format, false, true), arguments.answer.output);
+    if (identification.answered()) return done;
+    say(why_no_answer(identification));
+    return no_answer;
+}
+
+/// The answer for one FILE of several that are not pooled.
+struct SeparateAnswer {
+    std::string text;
+    int status = done;
+    Problem problem;
+};
+
+/// A FILE that cannot be read still has its line, so that lines and FILEs go together.
+std::string unreadable_text(const LoadedFile& file, const Problem& problem, double confidence,
+                            Format format) {
+    if (format != Format::json) return {};
+    return to_text(
+        nlohmann::ordered_json{
+            {"schema", "ringwright.identification.v1"},
+            {"software", software_json()},
+            {"confidence_level", confidence},
+            {"recordings",
+             {{{"file", file.file},
+               {"error", {{"place", problem.place}, {"cause", problem.found}, {"remedy", problem.remedy}}},
+               {"findings", nlohmann::ordered_json::array()},
+               {"events", nlohmann::ordered_json::array()}}}},
+            {"result", {{"event_count", 0}, {"quantities", nlohmann::ordered_json::object()}}}},
+        -1);
+}
+
+SeparateAnswer identify_one(const LoadedFile& file, const ReadOptions& read, const AnalysisOptions& options,
+                            Format format, bool with_header) {
+    try {
+        std::vector<RecordingInput> input;
+        input.push_back({read_recording(file.file, read), file.added_mass});
+        const Identification identification = identify(std::move(input), options);
+        SeparateAnswer answer{answer_text(identification, format, true, with_header), done, {}};
+        if (!identification.answered())
+            answer.status = no_answer, answer.problem = why_no_answer(identification);
+        return answer;
+    } catch (const InputError& error) {
+        return {unreadable_text(file, error.problem(), options.identify.confidence_level, format),
+                unusable_input, error.problem()};
+    } catch (const UsageError& error) {
+        return {"", wrong_usage, error.problem()};
+    }
+}
+
+/// An unreadable FILE (3) weighs more than one without an answer (4); a usage error (2) most.
+int graver(int first, int second) {
+    const auto weight = [](int status) { return status == done ? 0 : 10 - status; };
+    return weight(first) >= weight(second) ? first : second;
+}
+
+int identify_separately(const IdentifyArguments& arguments, const std::vector<LoadedFile>& files,
+                        AnalysisOptions options) {
+    const Format format = format_from(arguments.answer);
+    const ReadOptions read = read_options(arguments.recording);
+    const unsigned jobs = options.jobs;
+    options.jobs = 1;  // The threads go to the files.
+    int status = done;
+    std::string collected;
+    const bool to_file = !arguments.answer.output.empty();
+    in_order<SeparateAnswer>(
+        files.size(), jobs,
+        [&](std::size_t i) { return identify_one(files[i], read, options, format, i == 0); },
+        [&](std::size_t i, const SeparateAnswer& answer) {
+            const std::string text =
+                (format == Format::text && i > 0 && !answer.text.empty() ? "\n" : "") + answer.text;
+            if (to_file)
+                collected += text;
+            else
+                write_answer(text, "");
+            if (answer.status != done) say(answer.problem);
+            status = graver(status, answer.status);
+        });
+    if (to_file) write_answer(collected, arguments.answer.output);
+    return status;
+}
+
+int run_identify(const IdentifyArguments& arguments) {
+    const std::vector<LoadedFile> files = files_from(*arguments.command, arguments.files);
+    const AnalysisOptions options =
+        analysis_options(arguments.recording, arguments.article, arguments.answer, arguments.analysis);
+    refuse_overwriting(arguments.answer.output, arguments.files.files);
+    return arguments.separate ? identify_separately(arguments, files, options)
+                              : identify_together(arguments, files, options);
+}
+
+}  // namespace
+
+void add_identify_command(CLI::App& app, Context& context) {
+    CLI::App* command = app.add_subcommand(
+        "identify", "Natural frequency, damping ratio and stiffness from recordings of a free decay");
+    auto arguments = std::make_shared<IdentifyArguments>();
+    arguments->command = command;
+    add_file_arguments(*command, arguments->files);
+    add_recording_options(*command, arguments->recording);
+    add_article_options(*command, arguments->article);
+    add_answer_options(*command, arguments->answer);
+    add_analysis_options(*command, arguments->analysis);
+    command
+        ->add_flag("--separate", arguments->separate,
+                   "One result for each FILE, in their order; JSON: one document a line")
+        ->group("About the answer");
+    command->footer(
+        "Several FILEs are repeats on one article and are pooled, unless --separate is given.\n"
+        "Example: ringwright identify pluck.csv --mass \"3.20(1) kg\"\n"
+        "Example: ringwright identify bare.csv --added-mass \"0 kg\" loaded.csv --added-mass \"1.000(1) "
+        "kg\"\n"
+        "With --separate the exit status is that of the gravest FILE: 3 before 4 before 0.");
+    command->callback(
+        [arguments, &context] { context.run = [arguments] { return run_identify(*arguments); }; });
+}
+
+}  // namespace ringwright::app

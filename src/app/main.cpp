@@ -1,0 +1,96 @@
+// The program: parses the command line, runs the command, turns exceptions into one message and an exit
+// status.
+
+#include <fmt/format.h>
+
+#include <CLI/App.hpp>
+#include <CLI/Config.hpp>
+#include <CLI/Formatter.hpp>
+#include <csignal>
+#include <cstdio>
+#include <exception>
+#include <new>
+#include <string>
+
+#include "app/command.hpp"
+#include "app/messages.hpp"
+#include "ringwright/error.hpp"
+#include "ringwright/version.hpp"
+
+namespace {
+
+using namespace ringwright;
+
+int guarded(const std::function<int()>& run) {
+    try {
+        return run();
+    } catch (const UsageError& error) {
+        app::say(error.problem());
+        return app::wrong_usage;
+    } catch (const InputError& error) {
+        app::say(error.problem());
+        return app::unusable_input;
+    } catch (const OutputError& error) {
+        app::say(error.problem());
+        return app::unwritable_output;
+    } catch (const std::bad_alloc&) {
+        app::say(
+            {"", "", "the machine has not enough memory for this", "Cut the recording with a smaller file"});
+        return app::unusable_input;
+    }
+}
+
+void set_up(CLI::App& parser, app::Context& context) {
+    parser.set_version_flag("--version", "ringwright " + std::string(version()),
+                            "Print the version and stop");
+    parser.set_help_flag("-h,--help", "Print this help and stop");
+    parser.require_subcommand(1);
+    parser.get_formatter()->column_width(34);
+    parser.footer(
+        "Each command explains itself: ringwright identify --help\nExample: ringwright identify pluck.csv "
+        "--mass \"12.40(5) kg\"");
+    app::add_inspect_command(parser, context);
+    app::add_identify_command(parser, context);
+}
+
+/// Help and version go to standard output through the same path as every answer.
+int answer_parser(const CLI::App& parser, const CLI::ParseError& error) {
+    if (error.get_exit_code() == 0)
+        return guarded([&] {
+            if (error.get_name() == "CallForVersion")
+                app::write_answer(std::string(error.what()) + "\n", "");
+            else
+                app::write_answer(parser.help(), "");
+            return static_cast<int>(app::done);
+        });
+    const auto commands = parser.get_subcommands();
+    const std::string command = commands.empty() ? "" : commands.front()->get_name();
+    app::say({command, "", app::without_period(error.what()),
+              fmt::format("See ringwright{}{} --help", command.empty() ? "" : " ", command)});
+    return app::wrong_usage;
+}
+
+}  // namespace
+
+int main(int argc, char** argv) {
+    // A reader that has seen enough closes its end of the pipe; that is no failure to report.
+    std::signal(SIGPIPE, SIG_IGN);
+    try {
+        CLI::App parser{
+            "Natural frequency, damping ratio and stiffness of springs and dampers from recordings of a free "
+            "decay,\n"
+            "each with its interval."};
+        app::Context context;
+        set_up(parser, context);
+        try {
+            parser.parse(argc, argv);
+        } catch (const CLI::ParseError& error) {
+            return answer_parser(parser, error);
+        }
+        return guarded(context.run);
+    } catch (const std::exception& error) {
+        app::say(
+            {"", "", app::without_period(error.what()), "This is a fault of the program; please report it"});
+        return app::unusable_input;
+    }
+}

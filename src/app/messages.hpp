@@ -1,0 +1,23 @@
+#pragma once
+// What the program says: messages on standard error, answers on standard output or into a file.
+
+#include <string>
+#include <string_view>
+#include <vector>
+
+#include "ringwright/error.hpp"
+
+namespace ringwright::app {
+
+/// One line on standard error: `ringwright: file: place: cause. remedy`.
+void say(const Problem& problem);
+/// The text without line breaks and a full stop at its end.
+[[nodiscard]] std::string without_period(std::string text);
+
+/// Writes the whole text to `output`, safely, or to standard output when `output` is empty or "-". A closed
+/// pipe ends quietly; throws OutputError where the text cannot be written.
+void write_answer(std::string_view text, const std::string& output);
+/// Throws UsageError when `output` is one of the files to be read.
+void refuse_overwriting(const std::string& output, const std::vector<std::string>& inputs);
+
+}  // namespace ringwright::app
