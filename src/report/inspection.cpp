@@ -67,9 +67,8 @@ std::string recording_text(const Recording& recording) {
     text += fmt::format(
         "  channel {}: {}{}\n", printable(recording.origin.channel),
         recording.quantity_known ? std::string(to_text(recording.quantity)) : "quantity not known",
-        recording.unit.symbol.empty() ? "" : " in " + printable(recording.unit.symbol));
-    text += "  " + clock_text(recording) + "\n";
-    return text + "  " + health_text(recording) + "\n";
+        recording.unit.symbol.empty() ? "" : fmt::format(" in {}", printable(recording.unit.symbol)));
+    return text + fmt::format("  {}\n  {}\n", clock_text(recording), health_text(recording));
 }
 
 std::string events_text(const Recording& recording, const EventSearch& search) {
@@ -154,20 +153,22 @@ void put_recording(Json& json, const Inspection& inspection) {
 
 std::string to_text(const Inspection& inspection, std::size_t width) {
     const FileSummary& file = inspection.file;
-    std::string text = fmt::format("{}\n  {}{}, {} bytes\n", printable(file.file), printable(file.format),
-                                   file.dialect.empty() ? "" : ": " + printable(file.dialect), file.bytes);
-    if (!file.sha256.empty()) text += "  SHA-256 " + file.sha256 + "\n";
-    text += "\n" + channels_text(file);
+    std::string text =
+        fmt::format("{}\n  {}{}, {} bytes\n", printable(file.file), printable(file.format),
+                    file.dialect.empty() ? "" : fmt::format(": {}", printable(file.dialect)), file.bytes);
+    if (!file.sha256.empty()) text += fmt::format("  SHA-256 {}\n", file.sha256);
+    text += '\n';
+    text += channels_text(file);
     if (inspection.problem)
-        text += "\n" + report::wrapped("Not read: ", printable(to_text(*inspection.problem)));
+        text += fmt::format("\n{}", report::wrapped("Not read: ", printable(to_text(*inspection.problem))));
     if (inspection.recording) {
         const std::size_t columns = std::clamp<std::size_t>(width, 40, 400);
-        text += "\n" + recording_text(*inspection.recording) + "\n";
-        text += draw(*inspection.recording, inspection.events.events, columns, 10) + "\n";
+        text += fmt::format("\n{}\n{}\n", recording_text(*inspection.recording),
+                            draw(*inspection.recording, inspection.events.events, columns, 10));
         text += events_text(*inspection.recording, inspection.events);
     }
     const std::string findings = all_findings(inspection);
-    return findings.empty() ? text : text + "\n" + findings;
+    return findings.empty() ? text : fmt::format("{}\n{}", text, findings);
 }
 
 Json to_json(const Inspection& inspection) {

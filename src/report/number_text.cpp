@@ -5,25 +5,10 @@
 #include <algorithm>
 #include <cmath>
 
+#include "ringwright/measured_value.hpp"
+
 namespace ringwright::report {
 namespace {
-
-/// Decimal place of the second significant digit of the uncertainty: 2 means hundredths, −1 tens.
-int decimal_places(double uncertainty) {
-    const int exponent = static_cast<int>(std::floor(std::log10(uncertainty)));
-    // 0.0996 rounds to 0.10: one place less than its exponent says.
-    const double digits = std::round(uncertainty / std::pow(10.0, exponent - 1));
-    return digits >= 100.0 ? -exponent : 1 - exponent;
-}
-
-std::string in_plain_decimals(double value, int places) {
-    const double step = std::pow(10.0, -places);
-    const double shown = places < 0 ? std::round(value / step) * step : value;
-    std::string text = fmt::format("{:.{}f}", shown, std::max(places, 0));
-    const bool zero = text.find_first_of("123456789") == std::string::npos;
-    if (zero && text.starts_with('-')) text.erase(0, 1);
-    return text;
-}
 
 bool is_symmetric(const Estimate& estimate) {
     const double above = estimate.interval.high - estimate.value;
@@ -44,12 +29,7 @@ std::string unit_suffix(std::string_view unit) {
 
 std::string rounded(double value, double uncertainty) {
     if (!std::isfinite(value)) return "—";
-    if (!(uncertainty > 0.0) || !std::isfinite(uncertainty)) return fmt::format("{:.6g}", value);
-    const int places = decimal_places(uncertainty);
-    const double size = std::max(std::abs(value), uncertainty);
-    if (places <= 9 && size < 1e7) return in_plain_decimals(value, places);
-    const int exponent = static_cast<int>(std::floor(std::log10(size)));
-    return fmt::format("{:.{}e}", value, std::clamp(places + exponent, 0, 15));
+    return round_to_uncertainty(Estimate{value, uncertainty, {value, value}}).value;
 }
 
 std::string with_interval(const Estimate& estimate, std::string_view unit) {

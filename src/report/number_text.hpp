@@ -9,8 +9,7 @@
 
 namespace ringwright::report {
 
-/// A number rounded so that `uncertainty` has two significant digits; 6 significant digits where it is zero
-/// or not finite. Plain decimals from 1e-4 to 1e7 in the last digit's reach, powers of ten beyond.
+/// The value alone as round_to_uncertainty gives it; a dash where it is not finite.
 [[nodiscard]] std::string rounded(double value, double uncertainty);
 
 /// "(5.0123 ± 0.0022) Hz", or "3.1 Hz, between 2.7 Hz and 4.2 Hz" where the interval is lopsided, or
