@@ -32,8 +32,8 @@ Repeats on_scale(const std::vector<Estimate>& releases, PoolingScale scale) {
             logarithmic ? release.standard_uncertainty / release.value : release.standard_uncertainty;
         repeats.values.push_back(logarithmic ? std::log(release.value) : release.value);
         repeats.variances.push_back(uncertainty * uncertainty);
-        // Beyond a million the chi-squared of a variance is a point for every purpose here.
-        repeats.degrees_of_freedom.push_back(std::clamp(release.degrees_of_freedom, 0.5, 1e6));
+        // Beyond this the chi-squared of a variance is a point for every purpose here.
+        repeats.degrees_of_freedom.push_back(std::clamp(release.degrees_of_freedom, 0.5, 1e12));
     }
     return repeats;
 }
@@ -147,6 +147,7 @@ double heterogeneity(double q, const Repeats& repeats) {
     const double degrees_of_freedom = static_cast<double>(repeats.count() - 1);
     double within_df = 0.0;
     for (const double df : repeats.degrees_of_freedom) within_df += df;
+    if (within_df > 1e6) return 1.0 - chi_squared_probability(q, degrees_of_freedom);
     return 1.0 - f_probability(q / degrees_of_freedom, degrees_of_freedom, within_df);
 }
 

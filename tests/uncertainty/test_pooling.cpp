@@ -123,25 +123,36 @@ TEST_CASE("relations: unit and order do not matter") {
 }
 
 TEST_CASE("coverage of pooled intervals") {
-    // 4,000 series a cell; the sampling error of 95 % is 0.34 points, so that a true 93.0 or 97.0 % shows
-    // outside 91.4–98.3 % once in 1e6 cells. Reach: 93–97 %.
+    // What is to be reached is 93–97 % in every cell. 4,000 series a cell: the sampling error of a share of
+    // 95 % is 0.34 points, and the worst true coverages (93.6 % and 96.4 %, docs/decisions/pooling.md) lie
+    // within the limits by two of them; the seed is fixed.
     constexpr int trials = 4000;
     std::uint64_t seed = 20310;
     for (const int count : {2, 3, 5, 10})
         for (const double between : {0.0, 0.5, 1.0, 2.0, 5.0})
-            for (const int own_df : {3, 5, 10, 0})
+            for (const int own_df : {3, 10, 0})
                 for (const double unevenness : {1.0, 2.0}) {
                     const double share = coverage({count, between, own_df, unevenness}, trials,
                                                   PoolingScale::logarithmic, ++seed);
-                    INFO(fmt::format("releases {} between {} own df {} unevenness {} coverage {:.3f}", count,
-                                     between, own_df, unevenness, share));
-                    CHECK(share > 0.914);
-                    CHECK(share < 0.983);
-                    UNSCOPED_INFO(share);
-                    if (share < 0.93 || share > 0.97)
-                        WARN(fmt::format("n {} b {} df {} un {}: {:.4f}", count, between, own_df, unevenness,
-                                         share));
+                    INFO(fmt::format("releases {}, between {}, own df {}, unevenness {}, coverage {:.4f}",
+                                     count, between, own_df, unevenness, share));
+                    CHECK(share > 0.93);
+                    CHECK(share < 0.97);
                 }
+}
+
+TEST_CASE("table of coverage for docs/decisions/pooling.md", "[.table]") {
+    std::uint64_t seed = 77000;
+    for (const double unevenness : {1.0, 2.0, 3.0})
+        for (const int own_df : {3, 10, 0})
+            for (const int count : {2, 3, 5, 10}) {
+                fmt::print("| {} | {} | {} |", unevenness, own_df == 0 ? "known" : std::to_string(own_df),
+                           count);
+                for (const double between : {0.0, 0.5, 1.0, 2.0, 5.0})
+                    fmt::print(" {:.1f} |", 100.0 * coverage({count, between, own_df, unevenness}, 20000,
+                                                             PoolingScale::logarithmic, ++seed));
+                fmt::print("\n");
+            }
 }
 
 TEST_CASE("false alarms of the heterogeneity test") {
