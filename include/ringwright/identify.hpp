@@ -59,6 +59,7 @@ struct IdentifyOptions {
     std::optional<double> at_amplitude;  ///< SI; amplitude at which an equivalent damping ratio is stated
     bool pictures = false;               ///< fill DecayPicture
     std::uint64_t seed = 20311;  ///< of the bootstrap; the same recording and seed give the same answer
+    int replicates = 200;        ///< of the bootstrap; 0: curve fit only
 };
 
 struct EventIdentification {

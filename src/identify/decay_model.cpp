@@ -2,10 +2,12 @@
 
 #include <algorithm>
 #include <cmath>
+#include <complex>
 #include <numbers>
 
 namespace ringwright::identify {
 
+using Eigen::ArrayXd;
 using Eigen::Index;
 using Eigen::MatrixXd;
 using Eigen::VectorXd;
@@ -72,38 +74,6 @@ void DecayModel::set_parameters(const VectorXd& parameters) {
 
 namespace {
 
-// e^(−s t) C(p,t), e^(−s t) S(p,t) and e^(−s t) ∂S/∂p at one time.
-struct Kernel {
-    double c, s, ds_dp;
-};
-
-// Power series in p t², for |p| t² < 0.05: six terms leave less than 1e-16.
-Kernel near_critical(double decay, double p, double t) {
-    const double t2 = t * t, x = p * t2, e = std::exp(-decay * t);
-    const double c =
-        1.0 - x / 2.0 * (1.0 - x / 12.0 * (1.0 - x / 30.0 * (1.0 - x / 56.0 * (1.0 - x / 90.0))));
-    const double s =
-        t * (1.0 - x / 6.0 * (1.0 - x / 20.0 * (1.0 - x / 42.0 * (1.0 - x / 72.0 * (1.0 - x / 110.0)))));
-    const double ds =
-        -t * t2 / 6.0 * (1.0 - x / 10.0 * (1.0 - x / 28.0 * (1.0 - x / 54.0 * (1.0 - x / 88.0))));
-    return {e * c, e * s, e * ds};
-}
-
-Kernel kernel_at(double decay, double p, double root, double t) {
-    if (std::abs(p) * t * t < 0.05) return near_critical(decay, p, t);
-    double c = 0.0, s = 0.0;
-    if (p > 0.0) {
-        const double e = std::exp(-decay * t);
-        c = e * std::cos(root * t);
-        s = e * std::sin(root * t) / root;
-    } else {  // two decaying exponentials, so that nothing overflows
-        const double slow = std::exp(-(decay - root) * t), fast = std::exp(-(decay + root) * t);
-        c = 0.5 * (slow + fast);
-        s = 0.5 * (slow - fast) / root;
-    }
-    return {c, s, (t * c - s) / (2.0 * p)};
-}
-
 struct OscillatorConstants {
     double omega, decay, p, root, ds_dz, dp_dz;
     explicit OscillatorConstants(const Oscillator& o)
@@ -113,7 +83,89 @@ struct OscillatorConstants {
           root(std::sqrt(std::abs(p))),
           ds_dz(omega * std::cosh(o.asinh_damping)),
           dp_dz(-2.0 * omega * o.damping_ratio() * ds_dz) {}
+    // decay − root without cancellation, beyond critical damping
+    [[nodiscard]] double slow_rate() const { return omega * omega / (decay + root); }
 };
+
+// e^(−s t) C(p,t), e^(−s t) S(p,t) and e^(−s t) ∂S/∂p at every time.
+struct Kernels {
+    ArrayXd c, s, ds_dp;
+};
+
+// Power series in p t², for |p| t² < 0.05: six terms leave less than 1e-16.
+void near_critical(const OscillatorConstants& k, double t, Index i, Kernels& out) {
+    const double t2 = t * t, x = k.p * t2, e = std::exp(-k.decay * t);
+    const double c =
+        1.0 - x / 2.0 * (1.0 - x / 12.0 * (1.0 - x / 30.0 * (1.0 - x / 56.0 * (1.0 - x / 90.0))));
+    const double s =
+        t * (1.0 - x / 6.0 * (1.0 - x / 20.0 * (1.0 - x / 42.0 * (1.0 - x / 72.0 * (1.0 - x / 110.0)))));
+    const double ds =
+        -t * t2 / 6.0 * (1.0 - x / 10.0 * (1.0 - x / 28.0 * (1.0 - x / 54.0 * (1.0 - x / 88.0))));
+    out.c(i) = e * c;
+    out.s(i) = e * s;
+    out.ds_dp(i) = e * ds;
+}
+
+// Fills [begin, end) with e^(−s t)C and e^(−s t)S. With equal steps by recurrence, started afresh every 32
+// samples.
+void ringing(const OscillatorConstants& k, const VectorXd& time, Index begin, Index end, double step,
+             Kernels& out) {
+    const Index fresh = step > 0.0 ? 32 : 1;
+    const std::complex<double> turn = std::polar(std::exp(-k.decay * step), k.root * step);
+    for (Index i = begin; i < end; i += fresh) {
+        const double e = std::exp(-k.decay * time(i));
+        double re = e * std::cos(k.root * time(i)), im = e * std::sin(k.root * time(i));
+        for (Index j = i; j < std::min(i + fresh, end); ++j) {
+            out.c(j) = re;
+            out.s(j) = im / k.root;
+            const double next = re * turn.real() - im * turn.imag();
+            im = re * turn.imag() + im * turn.real();
+            re = next;
+        }
+    }
+}
+
+// Two decaying exponentials, so that nothing overflows.
+void creeping(const OscillatorConstants& k, const VectorXd& time, Index begin, Index end, double step,
+              Kernels& out) {
+    const Index fresh = step > 0.0 ? 32 : 1;
+    const double slow_rate = k.slow_rate(), fast_rate = k.decay + k.root;
+    const double slow_step = std::exp(-slow_rate * step), fast_step = std::exp(-fast_rate * step);
+    for (Index i = begin; i < end; i += fresh) {
+        double slow = std::exp(-slow_rate * time(i)), fast = std::exp(-fast_rate * time(i));
+        for (Index j = i; j < std::min(i + fresh, end); ++j) {
+            out.c(j) = 0.5 * (slow + fast);
+            out.s(j) = 0.5 * (slow - fast) / k.root;
+            slow *= slow_step;
+            fast *= fast_step;
+        }
+    }
+}
+
+// `step` is the common step within each stretch, or 0.
+Kernels kernels_at(const OscillatorConstants& k, const VectorXd& time, double step,
+                   const std::vector<Stretch>& stretches) {
+    const Index n = time.size();
+    Kernels out{ArrayXd(n), ArrayXd(n), ArrayXd(n)};
+    const auto fill = [&](Index begin, Index end) {
+        while (begin < end && std::abs(k.p) * time(begin) * time(begin) < 0.05)
+            near_critical(k, time(begin), begin, out), ++begin;
+        if (begin == end) return;
+        if (k.p > 0.0)
+            ringing(k, time, begin, end, step, out);
+        else
+            creeping(k, time, begin, end, step, out);
+        const Index m = end - begin;
+        out.ds_dp.segment(begin, m) =
+            (time.segment(begin, m).array() * out.c.segment(begin, m) - out.s.segment(begin, m)) /
+            (2.0 * k.p);
+    };
+    if (step == 0.0)
+        fill(0, n);
+    else
+        for (const Stretch& stretch : stretches) fill(stretch.begin, stretch.begin + stretch.length);
+    return out;
+}
 
 // Evaluates `fill(time, out)` at the block centres, or at every sample and averages over the blocks.
 template <typename Fill>
@@ -130,6 +182,10 @@ MatrixXd over_blocks(const DecaySamples& samples, Index columns, Fill fill) {
     return out;
 }
 
+double common_step(const DecaySamples& samples) {
+    return samples.uniform ? samples.step_s : 0.0;
+}
+
 }  // namespace
 
 MatrixXd linear_columns(const DecayModel& model, const DecaySamples& samples) {
@@ -140,11 +196,9 @@ MatrixXd linear_columns(const DecayModel& model, const DecaySamples& samples) {
         if (model.drift) out.col(column++) = time / span;
         for (const Oscillator& o : model.oscillators) {
             const OscillatorConstants k(o);
-            for (Index i = 0; i < time.size(); ++i) {
-                const Kernel kernel = kernel_at(k.decay, k.p, k.root, time(i));
-                out(i, column) = kernel.c;
-                out(i, column + 1) = k.omega * kernel.s;
-            }
+            const Kernels kernels = kernels_at(k, time, common_step(samples), samples.stretches);
+            out.col(column) = kernels.c;
+            out.col(column + 1) = k.omega * kernels.s;
             column += 2;
         }
         for (const double tone : model.tones) {
@@ -163,14 +217,11 @@ MatrixXd derivative_columns(const DecayModel& model, const DecaySamples& samples
         for (const Oscillator& o : model.oscillators) {
             const OscillatorConstants k(o);
             const double a = coefficients(linear), b = coefficients(linear + 1);
-            for (Index i = 0; i < time.size(); ++i) {
-                const double t = time(i);
-                const Kernel kernel = kernel_at(k.decay, k.p, k.root, t);
-                const double by_decay = -t * (a * kernel.c + b * k.omega * kernel.s);
-                const double by_p = -0.5 * a * t * kernel.s + b * k.omega * kernel.ds_dp;
-                out(i, column) = by_decay * k.ds_dz + by_p * k.dp_dz;
-                out(i, column + 1) = by_decay * k.decay + by_p * 2.0 * k.p + b * k.omega * kernel.s;
-            }
+            const Kernels kernels = kernels_at(k, time, common_step(samples), samples.stretches);
+            const ArrayXd by_decay = -time.array() * (a * kernels.c + b * k.omega * kernels.s);
+            const ArrayXd by_p = -0.5 * a * time.array() * kernels.s + b * k.omega * kernels.ds_dp;
+            out.col(column) = by_decay * k.ds_dz + by_p * k.dp_dz;
+            out.col(column + 1) = by_decay * k.decay + by_p * (2.0 * k.p) + b * k.omega * kernels.s;
             column += 2;
             linear += 2;
         }

@@ -52,6 +52,7 @@ struct DecaySamples {
     std::vector<Stretch> stretches;
     Eigen::Index block = 1;
     double step_s = 0.0;  ///< between blocks
+    bool uniform = true;  ///< steps within a stretch are equal
     double scale = 1.0;   ///< values times this are in units of the recording
     Eigen::VectorXd fine_time;
     [[nodiscard]] Eigen::Index size() const { return time.size(); }

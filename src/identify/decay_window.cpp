@@ -63,6 +63,7 @@ DecayWindow cut_window(const Recording& recording, std::size_t begin, std::size_
 DecaySamples block_means(const DecayWindow& window, Index block) {
     DecaySamples samples;
     samples.block = block;
+    samples.uniform = window.time_s.empty();
     samples.step_s = static_cast<double>(block) / window.rate_hz;
     const auto width = static_cast<std::size_t>(block);
     Index count = 0;

@@ -18,27 +18,33 @@ constexpr double left_at_end = 4.6;  // nepers: one per cent of the start
 
 // The record from its first zero crossing on, offset removed and windowed, times from the crossing.
 struct WindowedRecord {
-    VectorXd value;
+    VectorXd value;  // padded with zeros to a multiple of eight
     double first_time = 0.0, step = 0.0;
 
+    // Eight phasors side by side, started afresh now and then, so that the sum is neither slow nor inexact.
     [[nodiscard]] double power(double frequency_hz) const {
+        constexpr Index lanes = 8, fresh = 64 * lanes;
+        using Lanes = Eigen::Array<double, lanes, 1>;
         const double turn = -two_pi * frequency_hz * step;
-        const std::complex<double> rotation = std::polar(1.0, turn);
-        double real = 0.0, imaginary = 0.0;
-        constexpr Index resync = 256;
-        for (Index begin = 0; begin < value.size(); begin += resync) {
-            std::complex<double> phasor = std::polar(1.0, turn * static_cast<double>(begin));
-            double c = phasor.real(), s = phasor.imag();
-            const Index end = std::min(begin + resync, value.size());
-            for (Index i = begin; i < end; ++i) {
-                real += value(i) * c;
-                imaginary += value(i) * s;
-                const double next = c * rotation.real() - s * rotation.imag();
-                s = c * rotation.imag() + s * rotation.real();
-                c = next;
-            }
+        const std::complex<double> rotation = std::polar(1.0, turn * static_cast<double>(lanes));
+        const double rotate_c = rotation.real(), rotate_s = rotation.imag();
+        Lanes real = Lanes::Zero(), imaginary = Lanes::Zero(), c, s;
+        for (Index i = 0; i < value.size(); i += lanes) {
+            if (i % fresh == 0)
+                for (Index lane = 0; lane < lanes; ++lane) {
+                    const double angle = turn * static_cast<double>(i + lane);
+                    c(lane) = std::cos(angle);
+                    s(lane) = std::sin(angle);
+                }
+            const auto v = value.segment<lanes>(i).array();
+            real += v * c;
+            imaginary += v * s;
+            const Lanes next = c * rotate_c - s * rotate_s;
+            s = c * rotate_s + s * rotate_c;
+            c = next;
         }
-        return real * real + imaginary * imaginary;
+        const double re = real.sum(), im = imaginary.sum();
+        return re * re + im * im;
     }
 };
 
@@ -67,7 +73,9 @@ std::optional<WindowedRecord> cut_at_crossing(const DecaySamples& samples,
     WindowedRecord record;
     record.step = samples.step_s;
     record.first_time = share * record.step;
-    record.value = value.tail(count - first);
+    const Index length = count - first;
+    record.value = VectorXd::Zero((length + 7) / 8 * 8);
+    record.value.head(length) = value.tail(length);
     record.value(0) *= 0.5 * (1.0 + share);  // trapezium from the crossing
     const double factor = std::exp(-settings.window_rate * record.step);
     double window = std::exp(-settings.window_rate * record.first_time);
@@ -78,18 +86,23 @@ std::optional<WindowedRecord> cut_at_crossing(const DecaySamples& samples,
     return record;
 }
 
-double peak_near(const WindowedRecord& record, double frequency_hz, double width_hz) {
-    double best = frequency_hz, best_power = record.power(frequency_hz);
+// Highest point near `frequency_hz`: a coarse look when the place is not yet known, then parabolas through
+// three points.
+double peak_near(const WindowedRecord& record, double frequency_hz, double width_hz, bool known) {
+    double best = frequency_hz;
     const double reach = std::min(0.5 * frequency_hz, 2.0 * width_hz);
-    for (int i = -4; i <= 4; ++i) {
-        const double f = frequency_hz + reach * i / 4.0, p = record.power(f);
-        if (p > best_power) {
-            best_power = p;
-            best = f;
+    if (!known) {
+        double best_power = 0.0;
+        for (int i = -4; i <= 4; ++i) {
+            const double f = frequency_hz + reach * i / 4.0, p = record.power(f);
+            if (p > best_power) {
+                best_power = p;
+                best = f;
+            }
         }
     }
-    double h = reach / 4.0;
-    for (int i = 0; i < 4; ++i) {  // parabola through three points, closer each time
+    double h = known ? 0.2 * width_hz : reach / 4.0;
+    for (int i = 0; i < (known ? 2 : 4); ++i) {
         const double left = std::log(record.power(best - h)), middle = std::log(record.power(best)),
                      right = std::log(record.power(best + h));
         const double bend = left - 2.0 * middle + right;
@@ -118,7 +131,7 @@ std::optional<double> crossing(const WindowedRecord& record, double peak_hz, dou
     for (int i = 0; i < 20 && std::abs(outside - inside) > 1e-9 * peak_hz; ++i) {  // regula falsi, Illinois
         const double f = inside - inside_value * (outside - inside) / (outside_value - inside_value);
         const double value = logarithm(f);
-        if (std::abs(value) < 1e-8) return f;
+        if (std::abs(value) < 1e-7) return f;
         if (value < 0.0) {
             outside = f;
             outside_value = value;
@@ -141,7 +154,7 @@ HalfPowerReading read_half_power(const DecaySamples& samples, const HalfPowerSet
         reading.reason = "the decay is too short: fewer than a dozen samples follow its first zero crossing";
         return reading;
     }
-    reading.peak_hz = peak_near(*record, settings.frequency_hz, settings.width_hz);
+    reading.peak_hz = peak_near(*record, settings.frequency_hz, settings.width_hz, settings.peak_known);
     reading.peak_power = record->power(reading.peak_hz);
     const double level = 0.5 * reading.peak_power;
     const std::optional<double> low = crossing(*record, reading.peak_hz, level, settings.width_hz, -1.0),

@@ -14,6 +14,8 @@ struct HalfPowerSettings {
     double window_rate =
         0.0;  ///< of the exponential window, 1/s; its decay rate is taken out of the answer exactly
     double width_hz = 0.0;  ///< full half-power width expected (start of the search)
+    bool peak_known =
+        false;  ///< frequency and width are those read from the data: replicates look there only
 };
 
 /// What the method reads. The record is cut so that it begins at a zero crossing of the offset-free signal:

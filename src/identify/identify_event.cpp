@@ -18,7 +18,6 @@ using namespace identify;
 
 namespace {
 
-constexpr int replicates = 200;
 constexpr double far_beyond_critical = 2.0;
 
 MethodResult curve_fit_result(const CurveFit& fit, double confidence_level) {
@@ -110,7 +109,8 @@ EventIdentification identify_event(const Recording& recording, const Event& even
         result.logarithmic_decrement.reason = result.half_power_bandwidth.reason = fit.reason;
         return result;
     }
-    const MethodBootstrap bootstrap = bootstrap_methods(fit, event, replicates, options.seed);
+    MethodBootstrap bootstrap;
+    if (options.replicates > 0) bootstrap = bootstrap_methods(fit, event, options.replicates, options.seed);
     result.logarithmic_decrement = simple_method_result(bootstrap.readings.decrement, bootstrap.decrement,
                                                         fit, options.confidence_level);
     result.half_power_bandwidth = simple_method_result(bootstrap.readings.half_power, bootstrap.half_power,

@@ -139,6 +139,12 @@ MethodBootstrap bootstrap_methods(const CurveFit& fit, const Event& event, int r
         readings.half_power.reason =
             "the decay is interrupted by gaps or clipped samples, which a spectrum cannot bridge";
 
+    HalfPowerSettings settings = readings.half_power_settings;
+    if (readings.half_power.valid) {
+        settings.frequency_hz = readings.half_power.peak_hz;
+        settings.width_hz = readings.half_power.high_hz - readings.half_power.low_hz;
+        settings.peak_known = true;
+    }
     const FitError fit_error(fit);
     const std::vector<const NoiseDraw*> draws = spread_draws(fit.noise, replicates);
     boost::random::mt19937_64 generator(seed);
@@ -156,7 +162,7 @@ MethodBootstrap bootstrap_methods(const CurveFit& fit, const Event& event, int r
             if (again.valid) collect(result.decrement, again, fit.oscillator(), error);
         }
         if (readings.half_power.valid) {
-            const HalfPowerReading again = read_half_power(samples, readings.half_power_settings);
+            const HalfPowerReading again = read_half_power(samples, settings);
             if (again.valid) collect(result.half_power, again, fit.oscillator(), error);
         }
     }

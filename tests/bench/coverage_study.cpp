@@ -47,12 +47,15 @@ void count(Score& score, const Estimate& e, double truth, double error) {
 }
 
 std::mutex guard;
+int replicates = 200;
 
 void run(const Truth& truth, std::uint64_t seed, Cell& cell) {
     simulated::Deviates deviates(seed);
     auto s = simulated::draw(truth, deviates);
+    IdentifyOptions options;
+    options.replicates = replicates;
     const auto t0 = std::chrono::steady_clock::now();
-    const EventIdentification result = identify_event(s.recording, s.event, {});
+    const EventIdentification result = identify_event(s.recording, s.event, options);
     const double ms =
         std::chrono::duration<double, std::milli>(std::chrono::steady_clock::now() - t0).count();
     const std::scoped_lock lock(guard);
@@ -106,6 +109,8 @@ int main(int argc, char** argv) {
             snrs = list(argv[i + 1]);
         else if (k == "-p")
             phis = list(argv[i + 1]);
+        else if (k == "-b")
+            replicates = std::atoi(argv[i + 1]);
         else if (k == "-hum")
             base.hum_share = std::atof(argv[i + 1]);
         else if (k == "-bits")
