@@ -15,7 +15,7 @@ constexpr double gap_steps = 1.5;
 struct Line {
     double start = 0.0;
     double step = 0.0;
-    double worst = 0.0;  // largest distance of a stamp from the line
+    double worst = 0.0;  // half of the band about the line that holds every stamp
 };
 
 // Least squares of the stamps against their number, about the middle so that nothing cancels.
@@ -34,6 +34,18 @@ Line fitted_line(const std::vector<double>& t) {
     return line;
 }
 
+// Moves the line to the middle of the band that holds every stamp: rounding and truncation then look alike.
+void centre(Line& line, const std::vector<double>& t) {
+    double low = 0.0, high = 0.0;
+    for (std::size_t i = 0; i < t.size(); ++i) {
+        const double distance = t[i] - line.start - line.step * static_cast<double>(i);
+        low = i == 0 ? distance : std::min(low, distance);
+        high = i == 0 ? distance : std::max(high, distance);
+    }
+    line.start += 0.5 * (low + high);
+    line.worst = 0.5 * (high - low);
+}
+
 double worst_distance(const std::vector<double>& t, double start, double step) {
     double worst = 0.0;
     for (std::size_t i = 0; i < t.size(); ++i)
@@ -46,7 +58,7 @@ double worst_distance(const std::vector<double>& t, double start, double step) {
 // of a sampling step, which no method here can feel.
 double tolerance(const std::vector<double>& t, double step, double rounding) {
     const double magnitude = std::max(std::abs(t.front()), std::abs(t.back()));
-    return 0.6 * rounding + 2e-3 * std::abs(step) + 8e-16 * magnitude;
+    return 0.53 * rounding + 2e-3 * std::abs(step) + 8e-16 * magnitude;
 }
 
 double rounded_to_digits(double value, int digits) {
@@ -70,7 +82,7 @@ std::optional<SampleClock> uniform_clock(const std::vector<double>& t, double ro
     Line line = fitted_line(t);
     if (!(line.step > 0.0) || !std::isfinite(line.step)) return std::nullopt;
     const double allowed = tolerance(t, line.step, rounding);
-    line.worst = worst_distance(t, line.start, line.step);
+    centre(line, t);
     if (line.worst > allowed) return std::nullopt;
     SampleClock clock;
     clock.sample_rate_hz = 1.0 / line.step;

@@ -164,6 +164,18 @@ struct Choice {
     Trial trial;
 };
 
+// A quick look at a list of settings: the first words of four rows all differ.
+bool starts_with_labels(const Lines& lines, const Dialect& dialect) {
+    std::vector<std::string_view> cells, seen;
+    for (std::size_t i = 0; i < std::min<std::size_t>(lines.size(), 4); ++i) {
+        split_cells(lines[i], dialect.delimiter, cells);
+        if (cells.empty() || kind_of_cell(cells.front(), dialect) != CellKind::text) return false;
+        if (std::find(seen.begin(), seen.end(), cells.front()) != seen.end()) return false;
+        seen.push_back(cells.front());
+    }
+    return true;
+}
+
 // The dialect that explains most cells; at a tie more columns, then the one that stands first in the list.
 std::optional<Choice> choose_dialect(const Lines& lines) {
     std::optional<Choice> best;
@@ -171,6 +183,7 @@ std::optional<Choice> choose_dialect(const Lines& lines) {
         if (dialect.delimiter != ' ' && lines.front().find(dialect.delimiter) == std::string_view::npos &&
             (dialect.delimiter != ';' || dialect.grouping != '\0'))
             continue;
+        if (starts_with_labels(lines, dialect)) continue;
         Trial trial = TrialRun(lines, dialect).run();
         if (trial.score <= 0.0) continue;
         const bool grouped = dialect.grouping != '\0';

@@ -4,6 +4,7 @@
 #include <sndfile.h>
 
 #include <algorithm>
+#include <array>
 #include <cmath>
 #include <cstring>
 #include <limits>
@@ -27,10 +28,42 @@ void add(Findings& findings, const char* code, Severity severity, std::string me
     findings.push_back(Finding{code, severity, std::move(message)});
 }
 
+std::uint32_t little_endian(std::string_view bytes, std::size_t at) {
+    std::uint32_t value = 0;
+    for (std::size_t i = 4; i-- > 0;) value = (value << 8) | static_cast<unsigned char>(bytes[at + i]);
+    return value;
+}
+
+// Four bytes of a header that are read otherwise than they stand there.
+struct Patch {
+    std::size_t at = 0;
+    std::array<char, 4> bytes{};
+    bool active = false;
+};
+
+// A recorder that lost power leaves a data chunk of length 0: it is read to the end of the file.
+Patch data_length_patch(std::string_view bytes) {
+    Patch patch;
+    if (!bytes.starts_with("RIFF")) return patch;
+    for (std::size_t at = 12; at + 8 <= bytes.size();) {
+        const std::uint32_t size = little_endian(bytes, at + 4);
+        if (bytes.substr(at, 4) == "data") {
+            const std::size_t there = std::min<std::size_t>(bytes.size() - at - 8, 0x7FFFFFF0);
+            patch.active = size == 0 && there > 64;
+            patch.at = at + 4;
+            for (std::size_t i = 0; i < 4; ++i) patch.bytes[i] = static_cast<char>((there >> (8 * i)) & 0xFF);
+            return patch;
+        }
+        at += std::size_t{8} + size + (size & 1U);
+    }
+    return patch;
+}
+
 // The bytes as libsndfile's virtual file.
 struct ByteFile {
     std::string_view bytes;
     sf_count_t at = 0;
+    Patch patch;
 };
 
 sf_count_t file_length(void* user) {
@@ -47,7 +80,11 @@ sf_count_t seek_to(sf_count_t offset, int whence, void* user) {
 sf_count_t read_bytes(void* target, sf_count_t count, void* user) {
     auto* file = static_cast<ByteFile*>(user);
     const sf_count_t available = std::clamp<sf_count_t>(count, 0, file_length(user) - file->at);
-    std::memcpy(target, file->bytes.data() + file->at, static_cast<std::size_t>(available));
+    const auto begin = static_cast<std::size_t>(file->at), size = static_cast<std::size_t>(available);
+    std::memcpy(target, file->bytes.data() + begin, size);
+    for (std::size_t i = 0; file->patch.active && i < 4; ++i)
+        if (const std::size_t place = file->patch.at + i; place >= begin && place < begin + size)
+            static_cast<char*>(target)[place - begin] = file->patch.bytes[i];
     file->at += available;
     return available;
 }
@@ -61,7 +98,7 @@ sf_count_t position(void* user) {
 
 class SoundFile {
   public:
-    SoundFile(std::string_view bytes, const std::string& name) : file_{bytes, 0} {
+    SoundFile(std::string_view bytes, const std::string& name) : file_{bytes, 0, data_length_patch(bytes)} {
         SF_VIRTUAL_IO io{file_length, seek_to, read_bytes, write_nothing, position};
         handle_.reset(sf_open_virtual(&io, SFM_READ, &info_, &file_));
         const bool usable = handle_ && info_.channels > 0 && info_.samplerate > 0 && info_.channels <= 4096;
@@ -177,12 +214,6 @@ std::vector<double> read_track(SoundFile& sound, std::size_t track, const ReadPr
             progress(std::min(1.0, static_cast<double>(samples.size()) / static_cast<double>(claimed)));
     });
     return samples;
-}
-
-std::uint32_t little_endian(std::string_view bytes, std::size_t at) {
-    std::uint32_t value = 0;
-    for (std::size_t i = 4; i-- > 0;) value = (value << 8) | static_cast<unsigned char>(bytes[at + i]);
-    return value;
 }
 
 void report_cut(std::string_view bytes, Findings& findings) {
