@@ -1,11 +1,12 @@
 #include "event/by_hand.hpp"
 
+#include <fmt/format.h>
+
 #include <algorithm>
 #include <cmath>
 #include <span>
 
 #include "event/spectrum.hpp"
-#include "fmt/format.h"
 #include "ringwright/error.hpp"
 
 namespace ringwright::event_search {

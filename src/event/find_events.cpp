@@ -1,3 +1,5 @@
+#include <fmt/format.h>
+
 #include <algorithm>
 #include <cmath>
 #include <numbers>
@@ -5,7 +7,6 @@
 #include "event/by_hand.hpp"
 #include "event/found.hpp"
 #include "event/spectrum.hpp"
-#include "fmt/format.h"
 #include "ringwright/error.hpp"
 #include "ringwright/event.hpp"
 

@@ -67,9 +67,12 @@ std::vector<std::string> quoted_includes(const std::string& text) {
     return includes;
 }
 
+/// Public headers whose code is divided over several sources of a room, none of which has their name.
+const HeaderRooms divided_headers{{"quality_statistics.hpp", "ledger"}};
+
 /// A public header belongs to the room that has a source of its name, or else to the room of its name.
 HeaderRooms rooms_of_headers(const std::vector<SourceFile>& files, const Rooms& rooms) {
-    HeaderRooms of_header;
+    HeaderRooms of_header = divided_headers;
     for (const auto& room : rooms) of_header[room.name + ".hpp"] = room.name;
     for (const auto& file : files) {
         const fs::path path = file.path;
