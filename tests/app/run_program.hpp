@@ -44,21 +44,30 @@ class Bench {
     [[nodiscard]] Outcome run(const std::vector<std::string>& arguments,
                               const std::string& input = "/dev/null",
                               const std::string& redirect = "") const {
-        std::string command = quoted(RINGWRIGHT_PROGRAM);
-        for (const std::string& argument : arguments) command += " " + quoted(argument);
-        command += " <" + quoted(input) + (redirect.empty() ? " >" + quoted(path("out")) : " " + redirect);
-        command += " 2>" + quoted(path("err"));
-        const int status = std::system(command.c_str());
+        std::ostringstream command;
+        command << quoted(RINGWRIGHT_PROGRAM);
+        for (const std::string& argument : arguments) command << ' ' << quoted(argument);
+        command << " <" << quoted(input) << " 2>" << quoted(path("err"));
+        if (redirect.empty())
+            command << " >" << quoted(path("out"));
+        else
+            command << ' ' << redirect;
+        const int status = std::system(command.str().c_str());
         return {WIFEXITED(status) ? WEXITSTATUS(status) : -1, redirect.empty() ? read("out") : "",
                 read("err")};
     }
 
   private:
     static std::string quoted(const std::string& text) {
-        std::string shell = "'";
-        for (const char character : text)
-            shell += character == '\'' ? std::string("'\\''") : std::string(1, character);
-        return shell + "'";
+        std::string shell(1, '\'');
+        for (const char character : text) {
+            if (character == '\'')
+                shell.append("'\\''");
+            else
+                shell.push_back(character);
+        }
+        shell.push_back('\'');
+        return shell;
     }
     std::filesystem::path folder_;
 };
