@@ -8,6 +8,8 @@
 #include <mutex>
 #include <numbers>
 
+#include "ringwright/transform_planner.hpp"
+
 namespace ringwright::event_search {
 namespace {
 
@@ -18,12 +20,6 @@ constexpr std::size_t most_points = std::size_t{1} << 17;
 struct FreeFftw {
     void operator()(void* memory) const { fftw_free(memory); }
 };
-
-/// FFTW's planner is not safe to call from several threads at once.
-std::mutex& planner() {
-    static std::mutex mutex;
-    return mutex;
-}
 
 double peak_between(const Periodogram& spectrum, double low_hz, double high_hz) {
     const std::vector<double>& power = spectrum.power;
@@ -57,12 +53,12 @@ Periodogram periodogram_of(std::span<const double> points, double rate_hz) {
     std::transform(points.begin(), points.end(), input.get(), [mean](double y) { return y - mean; });
     fftw_plan plan = nullptr;
     {
-        const std::lock_guard<std::mutex> lock(planner());
+        const std::lock_guard<std::mutex> lock(transform_planner());
         plan = fftw_plan_dft_r2c_1d(static_cast<int>(size), input.get(), output.get(), FFTW_ESTIMATE);
     }
     fftw_execute(plan);
     {
-        const std::lock_guard<std::mutex> lock(planner());
+        const std::lock_guard<std::mutex> lock(transform_planner());
         fftw_destroy_plan(plan);
     }
     Periodogram spectrum;

@@ -6,14 +6,14 @@
 #include <memory>
 #include <mutex>
 
+#include "ringwright/transform_planner.hpp"
+
 namespace ringwright::identify {
 
 using Eigen::Index;
 using Eigen::VectorXd;
 
 namespace {
-
-std::mutex planner;  // FFTW's planner is the one part that is not re-entrant
 
 struct FreeFftw {
     void operator()(void* p) const { fftw_free(p); }
@@ -29,7 +29,7 @@ PowerSpectrum power_spectrum(const VectorXd& signal, double padding) {
     const std::unique_ptr<fftw_complex, FreeFftw> out(fftw_alloc_complex(static_cast<std::size_t>(bins)));
     fftw_plan plan = nullptr;
     {
-        const std::scoped_lock lock(planner);
+        const std::scoped_lock lock(transform_planner());
         plan = fftw_plan_dft_r2c_1d(static_cast<int>(length), in.get(), out.get(), FFTW_ESTIMATE);
     }
     Eigen::Map<VectorXd> padded(in.get(), length);
@@ -43,7 +43,7 @@ PowerSpectrum power_spectrum(const VectorXd& signal, double padding) {
         const auto& bin = out.get()[i];
         spectrum.power(i) = bin[0] * bin[0] + bin[1] * bin[1];
     }
-    const std::scoped_lock lock(planner);
+    const std::scoped_lock lock(transform_planner());
     fftw_destroy_plan(plan);
     return spectrum;
 }
