@@ -1,5 +1,7 @@
 #include "ringwright/analysis.hpp"
 
+#include <fmt/format.h>
+
 #include <algorithm>
 #include <atomic>
 #include <cmath>
@@ -47,6 +49,18 @@ RecordingIdentification search(RecordingInput input, const EventOptions& options
     return result;
 }
 
+/// JSON holds no infinity, so an interval without an end has no key there; this says why.
+void note_open_intervals(EventIdentification& event) {
+    for (const analysis::Method& method : analysis::methods_in_order_of_preference())
+        for (const auto& [quantity, estimate] : (event.*method.result).quantities) {
+            if (std::isfinite(estimate.interval.low) && std::isfinite(estimate.interval.high)) continue;
+            event.findings.push_back(
+                {"interval_without_end", Severity::caution,
+                 fmt::format("The {} cannot bound the {} on both sides: the decay shows too little of it",
+                             method.name, name_of(quantity))});
+        }
+}
+
 void identify_all(std::vector<RecordingIdentification>& recordings, const AnalysisOptions& options) {
     std::vector<std::pair<const Recording*, EventIdentification*>> work;
     for (RecordingIdentification& recording : recordings)
@@ -54,6 +68,7 @@ void identify_all(std::vector<RecordingIdentification>& recordings, const Analys
     for_each_index(work.size(), options.jobs, [&](std::size_t i) {
         const Event event = work[i].second->event;
         *work[i].second = identify_event(*work[i].first, event, options.identify);
+        note_open_intervals(*work[i].second);
     });
 }
 

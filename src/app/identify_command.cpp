@@ -6,6 +6,7 @@
 #include <CLI/Config.hpp>
 #include <CLI/Formatter.hpp>
 #include <memory>
+#include <new>
 #include <nlohmann/json.hpp>
 
 #include "app/answer_options.hpp"
@@ -115,6 +116,11 @@ SeparateAnswer identify_one(const LoadedFile& file, const ReadOptions& read, con
                 unusable_input, error.problem()};
     } catch (const UsageError& error) {
         return {"", wrong_usage, error.problem()};
+    } catch (const std::bad_alloc&) {
+        const Problem problem{file.file, "", "the machine has not enough memory for this",
+                              "Use fewer --jobs"};
+        return {unreadable_text(file, problem, options.identify.confidence_level, format), unusable_input,
+                problem};
     }
 }
 
