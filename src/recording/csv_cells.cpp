@@ -100,8 +100,9 @@ std::int64_t days_since_1970(int year, int month, int day) {
            day - 1;
 }
 
+// Differences of nanoseconds between these years fit in 64 bits; no recorder is older or newer.
 bool valid_date(int year, int month, int day) {
-    return year >= 1 && month >= 1 && month <= 12 && day >= 1 && day <= 31;
+    return year >= 1900 && year <= 2100 && month >= 1 && month <= 12 && day >= 1 && day <= 31;
 }
 
 constexpr std::int64_t second_ns = 1'000'000'000;

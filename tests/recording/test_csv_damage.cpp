@@ -73,7 +73,7 @@ TEST_CASE("missing and overloaded cells are left out, their times kept") {
 
 TEST_CASE("missing cells at the ends cost nothing") {
     auto rows = good_rows();
-    for (std::size_t i : {0, 1, 3998, 3999})
+    for (const std::size_t i : {0U, 1U, 3998U, 3999U})
         rows[i] = fmt::format("{:.4f},\n", static_cast<double>(i) / bench::rate_hz);
     const Recording recording = read(rows);
     CHECK(recording.size() == 3996);
