@@ -67,7 +67,7 @@ std::size_t first_disturbed(const std::vector<Cycle>& cycles, double noise, doub
 /// Least squares of ln amplitude: a straight line down to cycle `knee`, level after it.
 struct Knee {
     std::size_t at = 0;
-    double fall = 0.0, fall_uncertainty = 0.0, level = 0.0;
+    double fall = 0.0, fall_uncertainty = 0.0, level = 0.0, scatter = 0.0;
     bool seen = false;
 };
 
@@ -109,7 +109,7 @@ Knee find_knee(const std::vector<Cycle>& cycles, std::size_t count) {
         const double level = after.y / after.n;
         const double line_end =
             before.y / before.n + before.slope() * (static_cast<double>(at) - before.x / before.n);
-        if (before.slope() > 0.0 || level > line_end + 0.7) continue;
+        if (before.slope() > 0.0 || level > line_end + 0.7 || level > log_amplitude.front() - 1.0) continue;
         const double cost = before.about_line() + after.about_mean();
         if (cost < least) least = cost, knee.at = at;
     }
@@ -120,6 +120,7 @@ Knee find_knee(const std::vector<Cycle>& cycles, std::size_t count) {
     knee.fall = -line.slope() * length;
     const double spread = line.xx - line.x * line.x / line.n;
     const double variance = line.n > 2.0 ? line.about_line() / (line.n - 2.0) : 0.0;
+    knee.scatter = std::sqrt(variance);
     // Neighbouring cycles overlap by half: two of them are worth little more than one.
     knee.fall_uncertainty = spread > 0.0 ? std::sqrt(2.0 * variance / spread) * length : 0.0;
     if (knee.seen) knee.level = std::exp((until[count].y - line.y) / (until[count].n - line.n));
@@ -139,6 +140,7 @@ Course follow_ringing(std::span<const double> means, const Start& start, std::si
     course.end = knee.seen ? cycles[knee.at].block : course.rest_end;
     course.fall = knee.fall;
     course.fall_uncertainty = knee.fall_uncertainty;
+    course.scatter = knee.scatter;
     if (undisturbed < 6) {
         const double seen = static_cast<double>(course.rest_end - first);
         course.fall = start.fit.shape.decay_rate() * seen;

@@ -12,7 +12,10 @@ struct Course {
     double fall_uncertainty = 0.0;  ///< standard uncertainty of it
     double floor = 0.0;  ///< amplitude of the noise in the band of the mode; 0 when it is not reached
     bool reaches_noise = false;
-    [[nodiscard]] bool falls() const { return fall > 0.05 && fall > 4.0 * fall_uncertainty; }
+    double scatter = 0.0;  ///< of ln amplitude about a straight course
+    [[nodiscard]] bool falls() const {
+        return fall > 0.03 && fall > 4.0 * fall_uncertainty && (scatter < 0.3 || fall > 3.5 * scatter);
+    }
 };
 
 /// Follows the decay from its start to `limit` at most.

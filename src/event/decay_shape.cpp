@@ -87,7 +87,7 @@ double mean_of(std::span<const double> points) {
 
 std::vector<DecayShape> starting_shapes(std::size_t points) {
     const double per_cycle = 2.0 * std::numbers::pi / static_cast<double>(points);
-    const double highest = static_cast<double>(points) / 4.0;
+    const double highest = static_cast<double>(points) / 2.3;
     std::vector<DecayShape> shapes;
     for (double cycles = 0.5; cycles <= highest; cycles += 0.4)
         shapes.push_back({cycles * per_cycle, 0.2 / (1.0 + 2.0 * cycles)});

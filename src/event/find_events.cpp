@@ -22,15 +22,21 @@ namespace {
 constexpr std::size_t shortest_recording = 16;
 /// Amplitude against noise of a decay that is worth reporting.
 constexpr double least_amplitude = 3.0;
+/// The same against all that the rest shows, slow wandering included.
+constexpr double least_amplitude_in_rest = 4.0;
 /// What the decay may leave unexplained over its first cycle, as a share of its height: of a long decay
 /// (other modes ring along), of a short one (it has little else to show), of one that looks like a mere
 /// pulse.
-constexpr double misfit_of_long = 0.16, misfit_of_short = 0.06, misfit_of_pulse = 0.02;
+constexpr double misfit_of_long = 0.125, misfit_of_short = 0.06, misfit_of_pulse = 0.02;
 /// Samples between the start and the noise.
-constexpr std::size_t shortest_decay = 6;
+constexpr std::size_t shortest_decay = 8;
 
 bool shows_position(MeasuredQuantity quantity) {
     return quantity == MeasuredQuantity::displacement || quantity == MeasuredQuantity::angle;
+}
+
+bool shows_acceleration(MeasuredQuantity quantity) {
+    return quantity == MeasuredQuantity::acceleration || quantity == MeasuredQuantity::angular_acceleration;
 }
 
 struct Search {
@@ -123,8 +129,8 @@ double range_of(std::span<const double> values) {
     return *high - *low;
 }
 
-/// Whether the start belongs to a pulse that fell in less than twice the time in which it rose.
-bool on_a_pulse(std::span<const double> values, const Found& found, double height) {
+/// Whether the start belongs to a pulse that fell in less than `ratio` times the time in which it rose.
+bool on_a_pulse(std::span<const double> values, const Found& found, double height, double ratio) {
     const double rest = found.start.fit.offset;
     const double sign = values[found.begin()] > rest ? 1.0 : -1.0;
     const auto above = [&](std::size_t k) { return sign * (values[k] - rest) > 0.1 * height; };
@@ -133,7 +139,44 @@ bool on_a_pulse(std::span<const double> values, const Found& found, double heigh
     while (last + 1 < values.size() && above(last)) ++last;
     for (std::size_t k = first; k < last; ++k)
         if (sign * values[k] > sign * values[peak]) peak = k;
-    return first > 0 && last - peak < 2 * (peak - first);
+    if (first == 0 || found.begin() <= first + 1) return false;
+    // A swing the other way just before makes it the answer to a blow, not the blow.
+    const std::size_t before = 3 * (peak - first) + 3;
+    for (std::size_t k = first > before ? first - before : 0; k < first; ++k)
+        if (sign * (rest - values[k]) > 0.3 * height) return false;
+    return static_cast<double>(last - peak) < ratio * static_cast<double>(peak - first);
+}
+
+/// Whether the recording leaves the decay before its start, as a release or a blow makes it do: a slow pull
+/// that only ends like a decay does not.
+bool abrupt(const Pyramid& pyramid, const Found& found) {
+    const Start& start = found.start;
+    const double cycle = 2.0 * std::numbers::pi / start.fit.shape.undamped_angular_frequency;
+    const std::size_t first = std::max(start.position >> start.level, start.fit_block);
+    const auto near = std::max<std::size_t>(1, static_cast<std::size_t>(0.1 * cycle));
+    const auto far = std::max<std::size_t>(near + 1, static_cast<std::size_t>(0.25 * cycle));
+    if (first < far + 1) return true;
+    double left = 0.0;
+    for (std::size_t k = first - far; k < first - near; ++k) {
+        const double t = static_cast<double>(k) - static_cast<double>(start.fit_block);
+        left +=
+            std::abs(pyramid.level(start.level)[k] - start.fit.value_at(t)) / static_cast<double>(far - near);
+    }
+    return left > std::max(0.3 * start.amplitude, 2.0 * start.fit.residual_rms());
+}
+
+/// Standard deviation about a straight line of all of the rest.
+double spread_of_rest(std::span<const double> values, const Course& course) {
+    constexpr std::size_t shortest = 16, looks = 20000;
+    if (!course.reaches_noise || course.rest_end < course.end + shortest) return 0.0;
+    const std::size_t step = std::max<std::size_t>(1, (course.rest_end - course.end) / looks);
+    double n = 0.0, x1 = 0.0, xx = 0.0, y1 = 0.0, xy = 0.0, yy = 0.0;
+    for (std::size_t k = course.end; k < course.rest_end; k += step) {
+        const double x = static_cast<double>(k - course.end), y = values[k] - values[course.end];
+        n += 1.0, x1 += x, xx += x * x, y1 += y, xy += x * y, yy += y * y;
+    }
+    const double joint = xy - x1 * y1 / n, spread = xx - x1 * x1 / n;
+    return std::sqrt(std::max(0.0, yy - y1 * y1 / n - joint * joint / spread) / (n - 2.0));
 }
 
 /// Whether one free decay explains what follows the start: not a pulse, a filter's answer or a wiggle of
@@ -144,15 +187,24 @@ bool believable(const Search& search, const Found& found) {
     const std::size_t cycle = static_cast<std::size_t>(std::min(found.cycle(), 1e15)) + 8;
     const std::size_t stop = std::min({values.size(), found.begin() + cycle, found.course.rest_end});
     if (found.course.end < found.begin() + shortest_decay) return false;
+    if (!found.course.reaches_noise && start.shape.damping_ratio < 0.5 &&
+        static_cast<double>(found.course.rest_end - found.begin()) < 1.2 * found.cycle())
+        return false;
     const double height = range_of(values.subspan(found.begin(), stop - found.begin()));
     if (start.amplitude > 3.0 * height || start.amplitude < least_amplitude * start.noise_rms) return false;
     const double cycles = static_cast<double>(found.course.end - found.begin()) / found.cycle();
-    const bool cut = !found.course.reaches_noise && found.course.rest_end < values.size();
-    if (cut && cycles < 1.5) return false;
+    const double seen = static_cast<double>(found.course.rest_end - found.begin()) / found.cycle();
+    if (found.course.rest_end < values.size() && start.shape.damping_ratio < 0.5 && seen < 2.0) return false;
+    if (found.course.rest_end < values.size() && !found.course.reaches_noise && seen < 1.5) return false;
     const double noise = rest_rms(values, found.course);
     const double amplitude = std::min(start.amplitude, height);
     double misfit = cycles < 3.0 && noise > 0.0 ? misfit_of_short : misfit_of_long;
-    if (misfit == misfit_of_short && on_a_pulse(values, found, height)) misfit = misfit_of_pulse;
+    if (misfit == misfit_of_short && on_a_pulse(values, found, height, 2.0)) misfit = misfit_of_pulse;
+    // After a blow the acceleration has the other sign: what falls with the sign of the blow is the blow.
+    const bool blow = shows_acceleration(search.recording.quantity) && cycles < 2.0;
+    if (cycles < 2.0 && !abrupt(search.pyramid, found)) return false;
+    if (amplitude < least_amplitude_in_rest * spread_of_rest(values, found.course)) return false;
+    if (blow && on_a_pulse(values, found, height, 3.0)) return false;
     return start.noise_rms < std::max(misfit * amplitude, 2.5 * noise);
 }
 
@@ -169,17 +221,22 @@ void try_onset(Search& search, const Onset& onset) {
     search.found.push_back(std::move(*found));
 }
 
-/// What stands out of the noise of the recording no more than noise does is no event.
+/// Keeps of the weak ones only those that ring like the strongest: what stands out of the noise no more than
+/// noise does, or moves unlike the article, is a hand or a knock.
 void drop_weak(std::vector<Found>& found, std::span<const double> values) {
     constexpr double stands_out = 6.0;
-    double largest = 0.0, noise = 0.0;
-    for (const Found& f : found) {
-        if (f.start.amplitude <= largest) continue;
-        largest = f.start.amplitude;
-        noise = rest_rms(values, f.course);
-    }
+    const auto weaker = [](const Found& a, const Found& b) { return a.start.amplitude < b.start.amplitude; };
+    const auto strongest = std::max_element(found.begin(), found.end(), weaker);
+    if (strongest == found.end()) return;
+    const double largest = strongest->start.amplitude, noise = rest_rms(values, strongest->course);
+    const DecayShape like = strongest->start.shape;
     std::erase_if(found, [&](const Found& f) {
-        return f.start.amplitude < 0.5 * largest && f.start.amplitude < stands_out * noise;
+        const double share = f.start.amplitude / largest;
+        const double tune =
+            std::abs(std::log(f.start.shape.undamped_angular_frequency / like.undamped_angular_frequency));
+        const bool alike = tune < 0.15 && f.start.shape.damping_ratio < 3.0 * like.damping_ratio + 0.05;
+        if (share < 0.5 && f.start.amplitude < stands_out * noise) return true;
+        return (share < 0.2 && !alike) || (share < 0.5 && tune > 0.7);
     });
 }
 
@@ -200,8 +257,49 @@ void drop_pulls(std::vector<Found>& found) {
     found = std::move(kept);
 }
 
-/// A decay that the next hit cuts short: the hit is a second one of the same test unless much was seen.
-void judge_interruptions(std::vector<Found>& found, const Series& series) {
+/// Largest surprise, against the amplitude, when half a cycle is foretold from the cycle before it, from the
+/// end of the first decay to the start of the second.
+double surprise_between(const Pyramid& pyramid, const Found& first, const Found& second) {
+    const std::size_t level = first.start.level;
+    const std::span<const double> means = pyramid.level(level);
+    const auto cycle = static_cast<std::size_t>(
+        std::lround(2.0 * std::numbers::pi / first.start.fit.shape.undamped_angular_frequency));
+    const std::size_t from = first.course.rest_end >> level, to = second.begin() >> level;
+    double largest = 0.0;
+    for (std::size_t k = from > 2 * cycle ? from - 2 * cycle : 0; k < to && k + 2 * cycle < means.size();
+         ++k) {
+        const DecayFit fit = fit_amplitudes(means.subspan(k, cycle), first.start.fit.shape);
+        for (std::size_t i = cycle; i < cycle + cycle / 2; ++i) {
+            const double missed = std::abs(means[k + i] - fit.value_at(static_cast<double>(i)));
+            largest = std::max(largest, missed / std::max(fit.envelope_at(0.0), 1e-300));
+        }
+    }
+    return largest;
+}
+
+/// Whether the first decay simply goes on in the second: as large as was to be expected, at the same
+/// frequency.
+bool goes_on(const Pyramid& pyramid, const Found& first, const Found& second) {
+    constexpr double surprising = 0.4;
+    const double later = static_cast<double>(second.begin() - first.begin());
+    const double expected = first.start.amplitude * std::exp(-first.start.shape.slow_rate() * later);
+    const double tune =
+        second.start.shape.undamped_angular_frequency / first.start.shape.undamped_angular_frequency;
+    if (second.start.amplitude > 1.15 * expected || std::abs(tune - 1.0) > 0.1) return false;
+    return surprise_between(pyramid, first, second) < surprising;
+}
+
+Finding double_hit(double time_s) {
+    return {"double_hit", Severity::caution,
+            fmt::format(
+                "A second disturbance came {:.3g} s into the recording while the first still rang. Only the "
+                "decay after the last one is used; repeat the test if it looks short.",
+                time_s)};
+}
+
+/// A decay that the next one cuts short goes on in it, or is replaced by it when little of it was seen (a
+/// second hit of the same test), or keeps its place with a finding.
+void judge_interruptions(std::vector<Found>& found, const Series& series, const Pyramid& pyramid) {
     std::vector<Found> kept;
     for (std::size_t i = 0; i < found.size(); ++i) {
         const bool cut = i + 1 < found.size() && !found[i].course.reaches_noise &&
@@ -211,21 +309,20 @@ void judge_interruptions(std::vector<Found>& found, const Series& series) {
             kept.push_back(std::move(found[i]));
             continue;
         }
-        const double time_s = static_cast<double>(found[i + 1].begin()) / series.rate_hz();
+        Found& next = found[i + 1];
         const double cycles =
             static_cast<double>(found[i].course.rest_end - found[i].begin()) / found[i].cycle();
-        if (cycles < 12.0 && found[i].course.fall < 1.5) {
-            found[i + 1].findings.push_back(
-                {"double_hit", Severity::caution,
-                 fmt::format(
-                     "A second disturbance came {:.3g} s into the recording while the first still rang. "
-                     "Only the decay after the last one is used; repeat the test if it looks short.",
-                     time_s)});
+        if (goes_on(pyramid, found[i], next)) {
+            found[i].course = next.course;
+            next = std::move(found[i]);
+        } else if (cycles < 12.0 && found[i].course.fall < 1.5) {
+            next.findings.push_back(double_hit(static_cast<double>(next.begin()) / series.rate_hz()));
         } else {
-            found[i].findings.push_back(
-                {"next_event_too_soon", Severity::note,
-                 "The next release or hit came before this decay had reached the noise. Wait longer between "
-                 "them to see the whole decay."});
+            if (found[i].course.fall < 3.0)
+                found[i].findings.push_back({"next_event_too_soon", Severity::note,
+                                             "The next release or hit came before this decay had reached the "
+                                             "noise. Wait longer between "
+                                             "them to see the whole decay."});
             kept.push_back(std::move(found[i]));
         }
     }
@@ -250,6 +347,64 @@ void find_quiet(std::vector<Found>& found, const Pyramid& pyramid) {
     }
 }
 
+void note_clipping(const Search& search, Event& event) {
+    for (const SampleRange& range : search.recording.clipped) {
+        if (range.end > event.begin || range.end + 2 < event.begin) continue;
+        event.findings.push_back(
+            {"clipped_start", Severity::caution,
+             "The first part of the decay is clipped at the sensor's or recorder's limit and is "
+             "left out. Lower the gain or the amplitude to see all of it."});
+        return;
+    }
+}
+
+void note_sampling(const Found& found, Event& event) {
+    const double per_cycle = found.cycle();
+    if (per_cycle >= 8.0) return;
+    event.findings.push_back(
+        {"too_low_sampling_rate", per_cycle < 4.0 ? Severity::defect : Severity::caution,
+         fmt::format("There are only {:.1f} samples a cycle. Record at a higher rate: 20 samples "
+                     "a cycle or more.",
+                     per_cycle)});
+}
+
+/// Share of one line's amplitude in the rest against its own noise; mains at 50 or 60 Hz.
+double line_to_noise(std::span<const double> rest, double cycles_per_sample) {
+    double cosine = 0.0, sine = 0.0, squares = 0.0, mean = 0.0;
+    const auto n = static_cast<double>(rest.size());
+    for (const double y : rest) mean += y / n;
+    for (std::size_t k = 0; k < rest.size(); ++k) {
+        const double angle = 2.0 * std::numbers::pi * cycles_per_sample * static_cast<double>(k);
+        cosine += (rest[k] - mean) * std::cos(angle), sine += (rest[k] - mean) * std::sin(angle);
+        squares += (rest[k] - mean) * (rest[k] - mean);
+    }
+    const double explained = 2.0 * (cosine * cosine + sine * sine) / n;
+    return squares > 0.0 ? explained / squares : 0.0;
+}
+
+/// Mains hum takes at least a third of what the rest after the first decay shows.
+void note_hum(const Search& search, EventSearch& result) {
+    constexpr double hum_share = 0.33;
+    constexpr std::size_t most = 65536;
+    if (search.found.empty()) return;
+    const Course& course = search.found.front().course;
+    const std::size_t begin = course.end, size = std::min(course.rest_end - course.end, most);
+    for (const double mains_hz : {50.0, 60.0}) {
+        const double cycles_per_sample = mains_hz / search.series.rate_hz();
+        if (cycles_per_sample > 0.45 || static_cast<double>(size) * cycles_per_sample < 5.0) continue;
+        const double mode = 1.0 / search.found.front().cycle();
+        if (std::abs(mode / cycles_per_sample - 1.0) < 0.1) continue;
+        if (line_to_noise(search.series.values().subspan(begin, size), cycles_per_sample) < hum_share)
+            continue;
+        result.findings.push_back(
+            {"mains_hum", Severity::note,
+             fmt::format("Most of the noise after the decay is mains hum at {:.0f} Hz. Check "
+                         "earthing and shielding of the sensor's cable.",
+                         mains_hz)});
+        return;
+    }
+}
+
 Event to_event(const Found& found, const Search& search, const EventOptions& options) {
     const Series& series = search.series;
     Event event;
@@ -265,6 +420,8 @@ Event to_event(const Found& found, const Search& search, const EventOptions& opt
     event.kind_known = options.kind.has_value() || found.start.from_rest;
     event.frequency_guess_hz = ringing_frequency(search.pyramid, series.rate_hz(), found, options.near_hz);
     event.findings = found.findings;
+    note_clipping(search, event);
+    note_sampling(found, event);
     return event;
 }
 
@@ -304,9 +461,10 @@ EventSearch search_whole(const Recording& recording, const EventOptions& options
               [](const Found& a, const Found& b) { return a.begin() < b.begin(); });
     drop_weak(search.found, series.values());
     drop_pulls(search.found);
-    judge_interruptions(search.found, series);
+    judge_interruptions(search.found, series, pyramid);
     find_quiet(search.found, pyramid);
     for (const Found& found : search.found) result.events.push_back(to_event(found, search, options));
+    note_hum(search, result);
     if (result.events.empty()) result.reason = reason_for_none(search);
     return result;
 }

@@ -62,13 +62,14 @@ std::vector<Place> places_of(const std::vector<double>& activity) {
 }
 
 /// Whether the points show the shape: neither a sliver of a cycle nor cycles finer than the blocks.
-bool resolved(const DecayFit& fit) {
+bool resolved(const DecayFit& fit, std::size_t level) {
     const auto n = static_cast<double>(fit.points);
     if (!fit.shape.rings()) return fit.shape.slow_rate() * n > 1.0 && fit.shape.slow_rate() < 0.7;
     const double frequency = fit.shape.damped_angular_frequency();
     const bool settles = fit.shape.decay_rate() * n > 2.0;
     const double cycles = frequency * n / (2.0 * std::numbers::pi);
-    return (cycles > 1.2 || settles) && fit.shape.undamped_angular_frequency < 2.0 * std::numbers::pi / 4.5;
+    return (cycles > 1.2 || settles) &&
+           fit.shape.undamped_angular_frequency < 2.0 * std::numbers::pi / (level == 0 ? 2.4 : 4.5);
 }
 
 /// Explained to residual sum of squares of the shape on points eight times finer: a step that hides a ringing
@@ -88,7 +89,7 @@ void try_place(const Pyramid& pyramid, std::size_t level, const Place& place, st
         if (first + shortest_fit > means.size()) break;
         const std::size_t count = std::min(fit_blocks, means.size() - first);
         const std::optional<DecayFit> fit = fit_decay(means.subspan(first, count));
-        if (!fit || !resolved(*fit) || fit->explained_ratio() < least_explained) continue;
+        if (!fit || !resolved(*fit, level) || fit->explained_ratio() < least_explained) continue;
         Onset onset{level, place.block, place.block << level, *fit, first, fit->envelope_at(0.0), 0.0};
         const double explained = (fit->total_sum - fit->residual_sum) / static_cast<double>(count);
         onset.score = std::sqrt(explained) * std::log1p(finely_explained(pyramid, level, first, *fit));

@@ -89,9 +89,10 @@ void refine_release(const Pyramid& pyramid, Start& start, const StartLimits& lim
     double held = 0.0, spread = 0.0;
     const std::size_t flat = before / 2;
     for (std::size_t k = 0; k < flat; ++k) held += points[k] / static_cast<double>(flat);
-    for (std::size_t k = 0; k < flat; ++k) spread = std::max(spread, std::abs(points[k] - held));
+    for (std::size_t k = 0; k < flat; ++k) spread += (points[k] - held) * (points[k] - held);
+    spread = std::sqrt(spread / static_cast<double>(flat));
     const double height = std::abs(held - start.fit.offset);
-    if (spread > 0.1 * height || height < 0.2 * start.amplitude) return;
+    if (spread > 0.06 * height || height < 0.2 * start.amplitude) return;
     ReleaseFit best;
     best.residual_sum = -1.0;
     for (double shift = -0.3; shift <= 0.31; shift += 0.05) {
@@ -101,11 +102,14 @@ void refine_release(const Pyramid& pyramid, Start& start, const StartLimits& lim
     }
     best = descend(points, best);
     const double rms = std::sqrt(best.residual_sum / static_cast<double>(points.size()));
-    const double allowed = std::max({2.0 * start.fit.residual_rms(), 2.0 * spread, 0.01 * height});
+    const double allowed = std::max({2.0 * start.fit.residual_rms(), 2.5 * spread, 0.003 * height});
     if (rms > allowed) return;
     // A block mean is centred half a block after its first value.
     const double block_length = static_cast<double>(std::size_t{1} << start.level);
     const double moment = (static_cast<double>(first) + best.moment + 0.5) * block_length - 0.5;
+    // What fell freely before it touched leaves its hold quadratically too, but long before the decay begins.
+    const double earlier = static_cast<double>(start.position) - moment;
+    if (earlier > 0.15 * cycle * block_length + block_length) return;
     start.position = std::max(static_cast<std::size_t>(std::max(0.0, std::ceil(moment))), limits.earliest);
     start.from_rest = true;
 }

@@ -211,4 +211,40 @@ inline Simulated taps(const Mode& mode, double rate_hz, double duration_s, const
     return simulated;
 }
 
+/// A mass that falls from `height_m` on to a spring and damper which push and cannot pull, held before
+/// `release_s`. Displacement in m downwards from first touch, or what an accelerometer on the mass shows (its
+/// acceleration less that of gravity, upwards positive, m/s²). begins: the first sample of unbroken contact.
+inline Simulated drop(const Mode& mode, double rate_hz, double duration_s, double release_s, double height_m,
+                      ringwright::MeasuredQuantity quantity, const Noise& noise, Generator& generator) {
+    constexpr double gravity = 9.80665;
+    const double w = 2.0 * std::numbers::pi * mode.frequency_hz;
+    const double step = std::min(1.0 / rate_hz / 8.0, 1.0 / (2000.0 * mode.frequency_hz));
+    const int steps = static_cast<int>(std::ceil(1.0 / rate_hz / step));
+    const double h = 1.0 / rate_hz / steps;
+    std::vector<double> samples(static_cast<std::size_t>(duration_s * rate_hz));
+    double x = -height_m, v = 0.0;
+    std::size_t contact_since = 0;
+    bool touching = false;
+    for (std::size_t i = 0; i < samples.size(); ++i) {
+        const double t = static_cast<double>(i) / rate_hz;
+        const double push = x > 0.0 ? std::max(0.0, w * w * x + 2.0 * mode.damping_ratio * w * v) : 0.0;
+        const bool held = t < release_s;
+        const bool accelerometer = quantity == ringwright::MeasuredQuantity::acceleration;
+        samples[i] = accelerometer ? (held ? gravity : push) : x;
+        if (push > 0.0 && !touching) contact_since = i;
+        touching = push > 0.0;
+        for (int j = 0; j < steps && !held; ++j) {
+            const double force = x > 0.0 ? std::max(0.0, w * w * x + 2.0 * mode.damping_ratio * w * v) : 0.0;
+            v += h * (gravity - force);  // symplectic Euler: first order, at 2000 steps a cycle or more
+            x += h * v;
+        }
+    }
+    const double scale = quantity == ringwright::MeasuredQuantity::acceleration ? gravity : gravity / (w * w);
+    add_noise(samples, scale, rate_hz, noise, generator);
+    Simulated simulated = with_samples(std::move(samples), rate_hz, quantity);
+    simulated.begins = {contact_since};
+    simulated.samples_per_cycle = rate_hz / mode.frequency_hz;
+    return simulated;
+}
+
 }  // namespace simulator
