@@ -44,6 +44,7 @@ void set_up(CLI::App& parser, app::Context& context) {
     parser.set_version_flag("--version", "ringwright " + std::string(version()),
                             "Print the version and stop");
     parser.set_help_flag("-h,--help", "Print this help and stop");
+    parser.name("ringwright");
     parser.require_subcommand(1);
     parser.get_formatter()->column_width(34);
     parser.footer(
@@ -60,7 +61,7 @@ int answer_parser(const CLI::App& parser, const CLI::ParseError& error) {
             if (error.get_name() == "CallForVersion")
                 app::write_answer(std::string(error.what()) + "\n", "");
             else
-                app::write_answer(parser.help(), "");
+                app::write_answer(parser.help() + "\n", "");
             return static_cast<int>(app::done);
         });
     const auto commands = parser.get_subcommands();

@@ -41,7 +41,8 @@ void say(const Problem& problem) {
     std::string line = "ringwright: " + to_text(shown);
     std::ranges::replace_if(
         line, [](char character) { return static_cast<unsigned char>(character) < 0x20; }, '?');
-    line += shown.remedy.empty() ? "\n" : ".\n";
+    const bool closed = shown.remedy.empty() || shown.remedy.ends_with('?') || shown.remedy.ends_with('!');
+    line += closed ? "\n" : ".\n";
     std::fwrite(line.data(), 1, line.size(), stderr);
 }
 
