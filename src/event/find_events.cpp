@@ -43,6 +43,7 @@ struct Search {
     const Recording& recording;
     const Series& series;
     const Pyramid& pyramid;
+    std::optional<TestKind> kind;  ///< as the user said
     std::vector<Found> found;
     bool steady = false;  ///< something rang and did not fall
 };
@@ -71,6 +72,7 @@ bool taken(const Search& search, const Onset& onset) {
 StartLimits limits_for(const Search& search, const Onset& onset) {
     StartLimits limits;
     limits.displacement = shows_position(search.recording.quantity);
+    limits.drop = search.kind == TestKind::drop;
     limits.latest = search.series.size();
     for (const Found& other : search.found) {
         if (other.begin() > onset.position) {
@@ -455,7 +457,7 @@ EventSearch search_whole(const Recording& recording, const EventOptions& options
         return result;
     }
     const Pyramid pyramid(series.values());
-    Search search{recording, series, pyramid, {}, false};
+    Search search{recording, series, pyramid, options.kind, {}, false};
     for (const Onset& onset : find_onsets(pyramid)) try_onset(search, onset);
     std::sort(search.found.begin(), search.found.end(),
               [](const Found& a, const Found& b) { return a.begin() < b.begin(); });

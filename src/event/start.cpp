@@ -138,7 +138,10 @@ const Trial* first_guess(const std::vector<Trial>& trials, double noise, double 
     const double allowed = (damped ? late_when_damped : late) * cycle;
     const bool much_later =
         static_cast<double>(strict->first) > static_cast<double>(tolerant->first) + allowed;
-    return much_later ? tolerant : strict;
+    // Bounces keep the time of flight, not that of the mode: a start that shifts the frequency takes them in.
+    const double shift =
+        tolerant->fit.shape.undamped_angular_frequency / strict->fit.shape.undamped_angular_frequency;
+    return much_later && std::abs(shift - 1.0) < 0.04 ? tolerant : strict;
 }
 
 /// The first cycle or so fitted by itself, from a little after the first guess of the start.
@@ -224,13 +227,16 @@ std::optional<Start> locate_start(const Pyramid& pyramid, const Onset& onset, co
     const std::vector<Trial> trials = trials_over(means, stretch, shape);
     if (trials.empty()) return {};
     const double noise = rest_variance(means, start.level, limits.rest).value_or(noise_variance(trials));
-    const Trial* best = first_guess(trials, noise, onset.amplitude, stretch.first);
+    const double strict_misfit = tolerated_in_cycle * onset.amplitude;
+    const Trial* best = limits.drop
+                            ? cheapest(trials, std::max(noise, strict_misfit * strict_misfit), stretch.first)
+                            : first_guess(trials, noise, onset.amplitude, stretch.first);
     start.fit = best->fit;
     start.fit_block = best->first;
     start.shape = at_level(best->fit.shape, start.level, 0);
     start.amplitude = best->fit.envelope_at(0.0);
     refine_position(pyramid, start, limits, std::sqrt(noise));
-    if (limits.displacement) refine_release(pyramid, start, limits);
+    if (limits.displacement && !limits.drop) refine_release(pyramid, start, limits);
     const double ahead =
         (static_cast<double>(start.position) - static_cast<double>(start.fit_block << start.level)) /
         static_cast<double>(std::size_t{1} << start.level);

@@ -20,9 +20,10 @@ struct Start {
 };
 
 struct StartLimits {
-    std::size_t earliest = 0;         ///< the start is not before this position (clipping, the event before)
-    std::size_t latest = 0;           ///< the decay is not looked at beyond this position (the event after)
-    bool displacement = true;         ///< a release from rest leaves a plateau quadratically
+    std::size_t earliest = 0;  ///< the start is not before this position (clipping, the event before)
+    std::size_t latest = 0;    ///< the decay is not looked at beyond this position (the event after)
+    bool displacement = true;  ///< a release from rest leaves a plateau quadratically
+    bool drop = false;  ///< bounces may come first: they are nearly a decay, and must not be taken for it
     std::optional<SampleRange> rest;  ///< positions that show the noise alone, once they are known
 };
 
