@@ -97,6 +97,25 @@ std::optional<SampleClock> uniform_clock(const std::vector<double>& t, double ro
     return clock;
 }
 
+// Many samples share each stamp: the places where the stamp changes are the clock, and the rate is the number
+// of samples between the first and the last of them over the time between.
+std::optional<SampleClock> staircase_clock(const std::vector<double>& t, double rounding) {
+    std::size_t first = 0, last = 0;
+    for (std::size_t i = 1; i < t.size(); ++i) {
+        if (t[i] == t[i - 1]) continue;
+        if (t[i] < t[i - 1] + 0.9 * rounding) return std::nullopt;
+        if (first == 0) first = i;
+        last = i;
+    }
+    if (last == first || !(rounding > 0.0)) return std::nullopt;
+    SampleClock clock;
+    clock.sample_rate_hz = static_cast<double>(last - first) / (t[last] - t[first]);
+    clock.start_s = t[first] - static_cast<double>(first) / clock.sample_rate_hz;
+    if (rounding * clock.sample_rate_hz < 8.0) return std::nullopt;  // fewer: a line through all is as good
+    if (worst_distance(t, clock.start_s, 1.0 / clock.sample_rate_hz) > 1.1 * rounding) return std::nullopt;
+    return clock;
+}
+
 double median_of(std::vector<double> values) {
     if (values.empty()) return 0.0;
     const auto middle = values.begin() + static_cast<std::ptrdiff_t>(values.size() / 2);
@@ -151,8 +170,9 @@ class Straightener {
                 keep(i, time);
             } else if (time == t_[kept_ - 1]) {
                 if (disorder_.repeated++ == 0) disorder_.first_repeated = t_[i];
-            } else if (runs_on(i, shift)) {
-                shift += t_[kept_ - 1] + step_ - time;
+            } else if (const double shifted = shift + t_[kept_ - 1] + step_ - time;
+                       runs_on(i, shift) && t_[i] + shifted > t_[kept_ - 1]) {
+                shift = shifted;
                 if (disorder_.set_back++ == 0) disorder_.first_set_back = t_[i];
                 keep(i, t_[i] + shift);
             } else {
@@ -282,6 +302,18 @@ void report_jitter(Timed& timed, double step, double rounding) {
                     100.0 * share, step));
 }
 
+// The rate then hangs on the places where the stamp changes: a sample or so at the ends.
+void report_coarse(Timed& timed, double rounding) {
+    const auto count = static_cast<double>(timed.values.size());
+    add(timed.findings, "coarse_time_stamps", Severity::caution,
+        fmt::format(
+            "The times are written in steps of {:.3g} s only, so that many rows share one; the sampling rate "
+            "of "
+            "{:.6g} Hz was taken from the places where they change and is certain to about {:.2g} %. Give it "
+            "with --rate if it is known.",
+            rounding, timed.clock.sample_rate_hz, 100.0 * 2.0 / count));
+}
+
 }  // namespace
 
 void unwrap_midnight(std::vector<double>& times_s) {
@@ -298,7 +330,9 @@ void unwrap_midnight(std::vector<double>& times_s) {
 Timed clock_from_stamps(std::vector<double> times_s, std::vector<double> values, double rounding_s) {
     Timed timed;
     drop_unstamped(times_s, values);
-    auto uniform = uniform_clock(times_s, rounding_s);
+    auto uniform = staircase_clock(times_s, rounding_s);
+    const bool coarse = uniform.has_value();
+    if (!coarse) uniform = uniform_clock(times_s, rounding_s);
     double step = uniform ? 1.0 / uniform->sample_rate_hz : 0.0;
     if (!uniform) {
         step = median_forward_step(times_s);
@@ -308,6 +342,7 @@ Timed clock_from_stamps(std::vector<double> times_s, std::vector<double> values,
     timed.values = std::move(values);
     if (uniform) {
         timed.clock = *uniform;
+        if (coarse) report_coarse(timed, rounding_s);
         step = 1.0 / uniform->sample_rate_hz;
     } else {
         timed.clock.times_s = std::move(times_s);

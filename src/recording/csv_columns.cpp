@@ -139,6 +139,7 @@ class TimeChooser {
             choose_named();
         else
             choose_alone();
+        mark_counters();
         if (choice_.source == TimeSource::number) number_unit();
         if (choice_.source == TimeSource::stamp || choice_.source == TimeSource::date_and_time) stamp_base();
         return std::move(choice_);
@@ -163,6 +164,26 @@ class TimeChooser {
             if (time_unit || (!motion && (label_names_time(column(i).name) || counter)))
                 choice_.not_signal.push_back(i);
         }
+    }
+
+    [[nodiscard]] bool is_not_signal(std::size_t i) const {
+        return std::find(choice_.not_signal.begin(), choice_.not_signal.end(), i) != choice_.not_signal.end();
+    }
+
+    // A nameless column that goes up by one from row to row, where others are left to be the signal.
+    void mark_counters() {
+        std::vector<std::size_t> counters;
+        std::size_t left = 0;
+        for (std::size_t i = 0; i < count(); ++i) {
+            if (!is_number(i) || is_not_signal(i)) continue;
+            ++left;
+            if (column(i).unit || quantity_from_label(column(i).name)) continue;
+            const bool counts = course_of(numbers_in(sample_.first, i, table_.dialect)).counts &&
+                                course_of(numbers_in(sample_.last, i, table_.dialect)).counts;
+            if (counts && runs_like_a_clock(table_, sample_, i)) counters.push_back(i);
+        }
+        if (counters.size() < left)
+            choice_.not_signal.insert(choice_.not_signal.end(), counters.begin(), counters.end());
     }
 
     void take_number(std::size_t i) {
@@ -261,17 +282,31 @@ class TimeChooser {
     void number_unit() {
         const auto& unit = column(choice_.column).unit;
         const auto values = numbers_in(sample_.first, choice_.column, table_.dialect);
-        int decimals = -18;
-        for (const auto* rows : {&sample_.first, &sample_.last})
-            for (const Cells& cells : *rows)
-                if (choice_.column < cells.size() && number_in_cell(cells[choice_.column], table_.dialect))
-                    decimals =
-                        std::max(decimals, decimals_in_cell(cells[choice_.column], table_.dialect.decimal));
+        const int decimals = decimals_of_times();
         if (unit && unit->dimension == Dimension::time)
             choice_.seconds_per_unit = unit->si_factor;
         else if (!options_.rate_hz)
             guess_unit(course_of(values));
         choice_.rounding_s = decimals <= -18 ? 0.0 : std::pow(10.0, -decimals) * choice_.seconds_per_unit;
+    }
+
+    // Fixed notation: the most decimals seen, since trailing zeros may be cut. With exponents the digits are
+    // counted from the front, so that the largest times have the fewest decimals. -18 when there is no time.
+    [[nodiscard]] int decimals_of_times() const {
+        int fixed = -18, scientific = 30;
+        bool exponents = false;
+        for (const auto* rows : {&sample_.first, &sample_.middle, &sample_.last})
+            for (const Cells& cells : *rows) {
+                if (choice_.column >= cells.size()) continue;
+                const std::string_view cell = cells[choice_.column];
+                if (!number_in_cell(cell, table_.dialect)) continue;
+                const int decimals = decimals_in_cell(cell, table_.dialect.decimal);
+                fixed = std::max(fixed, decimals);
+                if (cell.find_first_of("eE") == std::string_view::npos) continue;
+                exponents = true;
+                scientific = std::min(scientific, decimals);
+            }
+        return exponents ? scientific : fixed;
     }
 
     void assume(double seconds, const char* name, Severity severity, double step) {
@@ -314,12 +349,13 @@ bool measures_motion(const Column& column) {
 }
 
 // Samples of a column from places all over the rows, whole where that is not too much to read.
-double clarity_of_column(const Table& table, std::string_view rows, std::size_t column, std::size_t budget) {
+ChannelMerit merit_of_column(const Table& table, std::string_view rows, std::size_t column,
+                             std::size_t budget) {
     RowPlan plan;
     plan.dialect = table.dialect;
     plan.end_of_line = table.end_of_line;
     plan.value_column = column;
-    if (rows.size() <= budget) return signal_clarity(read_rows(rows, plan, 1).values);
+    if (rows.size() <= budget) return merit_of(read_rows(rows, plan, 1).values);
     constexpr std::size_t places = 32;
     std::vector<double> values;
     for (std::size_t i = 0; i < places; ++i) {
@@ -329,7 +365,7 @@ double clarity_of_column(const Table& table, std::string_view rows, std::size_t 
         const Rows part = read_rows(rows.substr(begin, end - begin), plan, 1);
         values.insert(values.end(), part.values.begin(), part.values.end());
     }
-    return signal_clarity(values);
+    return merit_of(values);
 }
 
 class SignalChooser {
@@ -365,17 +401,12 @@ class SignalChooser {
     [[nodiscard]] std::size_t clearest(const std::vector<std::size_t>& among) const {
         constexpr std::size_t whole_budget = std::size_t{48} << 20;
         const std::size_t budget = std::max<std::size_t>(whole_budget / among.size(), std::size_t{64} << 10);
-        std::size_t best = among.front();
-        double best_clarity = -1.0;
-        for (const std::size_t i : among) {
-            const double clarity = clarity_of_column(table_, rows_, i, budget);
-            // The first stays unless another is clearer by a margin, so that equals keep their order.
-            if (clarity > best_clarity * 1.25 + 1e-12) {
-                best = i;
-                best_clarity = clarity;
-            }
-        }
-        return best;
+        std::vector<ChannelMerit> merits;
+        for (const std::size_t i : among) merits.push_back(merit_of_column(table_, rows_, i, budget));
+        const std::string& unit = table_.columns[among.front()].unit_text;
+        const bool one_unit = std::all_of(among.begin(), among.end(),
+                                          [&](std::size_t i) { return table_.columns[i].unit_text == unit; });
+        return among[best_channel(merits, one_unit)];
     }
 
     void report(SignalChoice& choice, const char* reason, bool certain) const {

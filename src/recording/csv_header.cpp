@@ -178,7 +178,9 @@ Cells cells_for(std::string_view raw, bool latin1, const Dialect& dialect, std::
     for (const char delimiter : {dialect.delimiter, '\t', ';', ',', '|'}) {
         if (delimiter == ' ') continue;
         Cells cells = split_text(line, delimiter);
-        if (cells.size() == count + 1 && cells.back().empty()) cells.pop_back();
+        // One name more than columns: the rows end in a separator with nothing behind it.
+        if (cells.size() == count + 1 && (cells.back().empty() || delimiter == dialect.delimiter))
+            cells.pop_back();
         if (cells.size() == count) return cells;
         if (count > 1 && cells.size() > 1 && cells.size() + 1 == count && delimiter == dialect.delimiter) {
             cells.emplace_back();
@@ -202,10 +204,22 @@ std::string without_brackets(const std::string& cell) {
     return cell;
 }
 
+// "Unit;s;mm": the first cell says what the row holds.
+bool says_units(const std::string& cell) {
+    const std::string word = folded(cell);
+    for (const std::string_view known :
+         {"unit", "units", "einheit", "einheiten", "unité", "unités", "unidad", "unidades", "unità"})
+        if (word == known ||
+            (word.size() == known.size() + 1 && word.starts_with(known) && word.back() == ':'))
+            return true;
+    return false;
+}
+
 // A row of units: every cell a unit or empty, or in brackets.
 bool is_unit_row(const Cells& cells) {
     std::size_t units = 0;
     for (const std::string& cell : cells) {
+        if (&cell == &cells.front() && says_units(cell)) continue;
         if (cell.empty() || cell == "-" || cell == "--") continue;
         const std::string text = without_brackets(cell);
         const bool known = find_unit(text).has_value();
@@ -243,7 +257,7 @@ int eloquence(const Cells& cells) {
 void take_units(const Cells& cells, std::vector<Column>& columns) {
     for (std::size_t i = 0; i < columns.size() && i < cells.size(); ++i) {
         const std::string text = without_brackets(cells[i]);
-        if (text.empty() || text == "-" || text == "--") continue;
+        if (text.empty() || text == "-" || text == "--" || (i == 0 && says_units(text))) continue;
         columns[i].unit_text = text;
         columns[i].unit = find_unit(text);
     }

@@ -133,6 +133,41 @@ void refine_contents(OpenTable& open) {
     }
 }
 
+bool is_whole(std::string_view cell, bool may_be_negative) {
+    if (may_be_negative && !cell.empty() && cell.front() == '-') cell.remove_prefix(1);
+    return !cell.empty() && cell.find_first_not_of("0123456789") == std::string_view::npos;
+}
+
+// "0,0005,1,2500": commas between the columns and in the numbers. Whole numbers everywhere, and in each
+// second column some that begin with a zero.
+bool commas_have_two_meanings(const OpenTable& open) {
+    const std::size_t width = open.table.columns.size();
+    if (open.table.dialect.delimiter != ',' || width < 4 || width % 2 != 0 || open.sample.first.size() < 8)
+        return false;
+    std::vector<bool> leading_zero(width, false);
+    for (const auto& cells : open.sample.first) {
+        if (cells.size() != width) return false;
+        for (std::size_t i = 0; i < width; ++i) {
+            if (!is_whole(cells[i], i % 2 == 0)) return false;
+            if (i % 2 == 1 && cells[i].size() != open.sample.first.front()[i].size()) return false;
+            if (cells[i].size() > 1 && cells[i].front() == '0') leading_zero[i] = true;
+        }
+    }
+    bool any = false;
+    for (std::size_t i = 0; i < width; ++i) {
+        if (leading_zero[i] && i % 2 == 0) return false;
+        any = any || leading_zero[i];
+    }
+    return any;
+}
+
+void refuse_two_meanings(const OpenTable& open, const std::string& file) {
+    if (!commas_have_two_meanings(open)) return;
+    throw InputError(Problem{file, fmt::format("line {}", open.table.first_line),
+                             "commas stand both between the columns and in the numbers",
+                             "Export with semicolons or tabs between the columns, or with decimal points."});
+}
+
 OpenTable open_table(std::string_view bytes, const ReadOptions& options, const std::string& file) {
     OpenTable open;
     open.decoded = decode_text(bytes);
@@ -148,6 +183,7 @@ OpenTable open_table(std::string_view bytes, const ReadOptions& options, const s
     open.table = std::move(*table);
     find_main_table(open, hints);
     refine_contents(open);
+    refuse_two_meanings(open, file);
     return open;
 }
 

@@ -114,8 +114,9 @@ bool label_names_time(std::string_view label) {
 }
 
 bool label_names_counter(std::string_view label) {
-    static constexpr std::array<std::string_view, 12> words = {
-        "index", "idx", "sample", "samples", "nr", "no", "n", "count", "point", "row", "messpunkt", "scan"};
+    static constexpr std::array<std::string_view, 18> words = {
+        "index", "idx", "sample",    "samples", "nr",     "no",  "n",    "count",    "counter",
+        "point", "row", "messpunkt", "scan",    "zähler", "lfd", "satz", "compteur", "contador"};
     const std::string text = folded(label);
     return text == "#" || has_any_word(text, words);
 }

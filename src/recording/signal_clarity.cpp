@@ -2,6 +2,7 @@
 
 #include <algorithm>
 #include <cmath>
+#include <limits>
 #include <span>
 
 namespace ringwright {
@@ -55,6 +56,32 @@ double signal_clarity(const std::vector<double>& samples) {
     const double over_noise = loudest / std::max(sample_noise(x), floor);
     const double over_usual = loudest / std::max(median_of(levels), floor);
     return std::min(over_noise, 1e3) * std::min(over_usual, 1e2);
+}
+
+ChannelMerit merit_of(const std::vector<double>& samples) {
+    ChannelMerit merit;
+    merit.clarity = signal_clarity(samples);
+    if (merit.clarity == 0.0) return merit;
+    double low = std::numeric_limits<double>::infinity(), high = -low;
+    for (const double x : samples) {  // NaN fails both comparisons
+        if (x < low) low = x;
+        if (x > high) high = x;
+    }
+    merit.range = high - low;
+    return merit;
+}
+
+std::size_t best_channel(const std::vector<ChannelMerit>& merits, bool one_unit) {
+    std::size_t best = 0;
+    double best_score = 0.0;
+    for (std::size_t i = 0; i < merits.size(); ++i) {
+        const double score = merits[i].clarity * (one_unit ? merits[i].range : 1.0);
+        // The first stays unless another is better by a margin, so that equals keep their order.
+        if (!(score > 1.25 * best_score)) continue;
+        best = i;
+        best_score = score;
+    }
+    return best;
 }
 
 }  // namespace ringwright

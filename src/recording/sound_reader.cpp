@@ -174,16 +174,9 @@ std::size_t clearest_track(SoundFile& sound) {
         for (std::size_t f = 0; f < frames; ++f)
             for (std::size_t c = 0; c < tracks.size(); ++c) tracks[c].push_back(block[f * tracks.size() + c]);
     });
-    std::size_t best = 0;
-    double best_clarity = -1.0;
-    for (std::size_t c = 0; c < tracks.size(); ++c) {
-        const double clarity = signal_clarity(tracks[c]);
-        if (clarity > 1.25 * best_clarity + 1e-12) {
-            best = c;
-            best_clarity = clarity;
-        }
-    }
-    return best;
+    std::vector<ChannelMerit> merits;
+    for (const auto& track : tracks) merits.push_back(merit_of(track));
+    return best_channel(merits, true);
 }
 
 std::size_t choose_track(SoundFile& sound, const ReadOptions& options, Findings& findings) {

@@ -29,8 +29,8 @@ TEST_CASE("the rate comes from all stamps, however they were rounded") {
     CHECK(clock_of(1.0 / 3.0, 3000, 0.01).clock.sample_rate_hz == Approx(3.0).epsilon(1e-6));
     CHECK(clock_of(2.000277970813e-05, 1439, 0.0).clock.sample_rate_hz == Approx(49993.0).epsilon(2e-7));
     CHECK(clock_of(0.001, 5000, 1e-6, 1.7e9).clock.sample_rate_hz == Approx(1000.0).epsilon(1e-9));
-    // Whole seconds on 100 Hz sampling, as some loggers stamp: half a second over 100 s.
-    CHECK(clock_of(0.01, 10000, 1.0).clock.sample_rate_hz == Approx(100.0).epsilon(5e-3));
+    // Whole seconds on 100 Hz sampling, as some loggers stamp: a sample at either end of 9,900.
+    CHECK(clock_of(0.01, 10000, 1.0).clock.sample_rate_hz == Approx(100.0).epsilon(2.0 / 9900.0));
     CHECK(clock_of(0.01, 1000, 0.0, 10.0).clock.start_s == 10.0);
 }
 

@@ -69,6 +69,14 @@ TEST_CASE("headers, delimiters and decimal marks are recognised") {
         {"French", {"temps (s);déplacement (mm)\n", ";", ','}},
         {"Spanish", {"tiempo (s);desplazamiento (mm)\n", ";", ','}},
         {"old line ends", {"time (s),disp (mm)\r", ",", '.', "\r"}},
+        {"one blank line below the units", {"Time,Channel A\n(ms),(mm)\n\n", ",", '.', "\n", "", 1000.0, 4}},
+        {"a word before the units", {"Name;Zeit;Weg\nEinheit;ms;mm\n;", ";", ',', "\n;", "", 1000.0, 4}},
+        {"a comma inside a quoted name", {"Time (s),\"Weg, links (mm)\"\n"}},
+        {"words for units", {"Elapsed Time;Position\nseconds;millimeters\n", ";"}},
+        {"a line that names the separator", {"sep=;\nZeit [s];Weg [mm]\n", ";", ','}},
+        {"comment signs before header", {"% recorded on bench 3\n% t [s]   x [mm]\n", "   "}},
+        {"names end before an empty column",
+         {"Time\t10:15:30\nX_Value [s]\tlaser [mm]\tComment\n", "\t", '.', "\n", "\t"}},
         {"times printed to the millisecond only", {"time (s),disp (mm)\n", ",", '.', "\n", "", 1.0, 3}},
     };
     for (const Dress& dress : dresses) {
@@ -201,6 +209,45 @@ TEST_CASE("thousands are told from decimals where that is possible, and said whe
     const Recording assumed = read_recording_from_memory(open, "open.csv");
     CHECK(has_finding(assumed.findings, "decimal_comma_assumed"));
     CHECK(assumed.samples.front() == Approx(4.53e-3).epsilon(1e-12));
+}
+
+TEST_CASE("commas with two meanings are refused") {
+    try {
+        (void)read_recording_from_memory(table({"Zeit [s],Weg [mm]\n", ",", ','}), "commas.csv");
+        FAIL("it was accepted");
+    } catch (const InputError& error) {
+        CHECK(error.problem().place == "line 2");
+        CHECK(error.problem().remedy.find("semicolons") != std::string::npos);
+    }
+}
+
+TEST_CASE("numbers with exponents keep their digits, not their decimals") {
+    std::string text = "Time(s),Disp(mm)\n";
+    for (int i = 0; i < 4000; ++i)
+        text += fmt::format("{:.2e},{:.8e}\n", i / bench::rate_hz, bench::position(i / bench::rate_hz));
+    check_dress(text);
+}
+
+TEST_CASE("stamps far coarser than the sampling are told") {
+    std::string text = "Time,x (mm)\n";
+    for (int i = 0; i < 8000; ++i)
+        text += fmt::format("2031-04-02 10:00:{:02d},{:.4f}\n", (i + 700) / 2000,
+                            bench::position(i / bench::rate_hz));
+    const Recording recording = read_recording_from_memory(text, "coarse.csv");
+    CHECK(recording.size() == 8000);
+    CHECK(has_finding(recording.findings, "coarse_time_stamps"));
+    // 6,000 samples between the first and the last change of the stamp, each certain to a sample.
+    CHECK(recording.clock.sample_rate_hz == Approx(2000.0).epsilon(2.0 / 6000.0));
+}
+
+TEST_CASE("of axes in one unit the one that moves is taken") {
+    std::string text = "Time [s];Acc X [g];Acc Y [g];Acc Z [g];Temp [°C]\n";
+    for (int i = 0; i < 4000; ++i) {
+        const double x = bench::position(i / bench::rate_hz);
+        text += fmt::format("{:.4f};{:.6f};{:.4f};{:.6f};21.3\n", i / bench::rate_hz, 0.01 * x, x,
+                            1.0 + 0.001 * x);
+    }
+    CHECK(read_recording_from_memory(text, "axes.csv").origin.channel == "Acc Y");
 }
 
 TEST_CASE("the channel is chosen and the choice is told") {
