@@ -345,10 +345,10 @@ void read_csv(std::string_view bytes, const ReadOptions& options, Recording& rec
     report_form(open, recording.findings);
     const TimeChoice time = choose_time(open.table, open.sample, options);
     append(recording.findings, time.findings);
-    const SignalChoice signal = choose_signal(open.table, open.rows(), time, options, file);
-    append(recording.findings, signal.findings);
     if (!options.rate_hz && time.source == TimeSource::none && !rate_in_preamble(open.table.preamble))
         refuse_no_clock(file);
+    const SignalChoice signal = choose_signal(open.table, open.rows(), time, options, file);
+    append(recording.findings, signal.findings);
     recording.origin.channel = column_name(open.table, signal.column);
 
     Rows rows = read_rows(open.rows(), plan_for(open.table, time, signal.column, options),

@@ -13,6 +13,7 @@ namespace {
 
 constexpr std::size_t window_rows = 24;
 constexpr std::size_t longest_row = std::size_t{1} << 20;
+constexpr std::size_t most_columns = 4096;  // a longer row is a recording laid on its side, or damage
 constexpr std::size_t header_reach = 6;
 constexpr double good_share = 0.85;  // of the rows of a window that must have the form of the first
 
@@ -95,6 +96,7 @@ class TrialRun {
         split_cells(lines_.front(), dialect_.delimiter, cells_);
         width_ = cells_.size();
         if (width_ > 2 && cells_.back().empty() && dialect_.delimiter != ' ') --width_;
+        if (width_ > most_columns) return {};
         counts_.resize(width_);
         std::size_t strays = 0;
         for (const std::string_view line : lines_) {
