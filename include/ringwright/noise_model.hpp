@@ -102,7 +102,7 @@ struct NoiseOptions {
     std::uint64_t seed = 1;
 };
 
-/// Chooses the order by the corrected Akaike criterion (Hurvich & Tsai 1989) on the restricted likelihood and
+/// Chooses the order by the Bayesian information criterion (Schwarz 1978) on the restricted likelihood and
 /// estimates the partial autocorrelations. Precondition: rows − columns ≥ 3.
 [[nodiscard]] NoiseFit fit_noise(const RestrictedLikelihood& likelihood, const NoiseOptions& options = {});
 

@@ -20,6 +20,7 @@ using Eigen::VectorXd;
 namespace {
 
 constexpr Index fewest_rows = 12;
+constexpr std::size_t fewest_decay_samples = 16;
 constexpr int noise_rounds = 4;
 constexpr double settled = 0.02;  // change of the parameters between rounds, in standard uncertainties
 
@@ -150,6 +151,11 @@ void reblock(CurveFit& fit) {
 
 CurveFit fit_decay(const Recording& recording, const Event& event, const CurveFitOptions& options) {
     CurveFit fit;
+    if (event.end - event.begin < fewest_decay_samples) {
+        fit.reason = fmt::format("the decay is over after {} samples; at least {} are needed. Sample faster",
+                                 event.end - event.begin, fewest_decay_samples);
+        return fit;
+    }
     const std::size_t end = end_of_fit(event);
     fit.window = cut_window(recording, event.begin, end);
     if (!start_fit(fit, event, options)) return fit;

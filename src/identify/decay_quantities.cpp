@@ -45,7 +45,7 @@ double slow_decay_rate(const Oscillator& o) {
     return o.angular_frequency() / (2.0 * o.damping_ratio());
 }
 
-constexpr double far_beyond_critical = 2.0;
+constexpr double critical = 1.0;  // beyond it the slow decay rate is a quantity of its own
 
 constexpr std::array basic{
     Derived{Quantity::natural_frequency, natural_frequency, true},
@@ -245,7 +245,7 @@ void bend_interval(Estimate& estimate, const Derived& derived, const CurveFit& f
 }
 
 bool exists(const Derived& derived, const Oscillator& o) {
-    if (derived.quantity == Quantity::slow_decay_rate) return o.damping_ratio() > far_beyond_critical;
+    if (derived.quantity == Quantity::slow_decay_rate) return o.damping_ratio() > critical;
     if (derived.quantity == Quantity::damped_frequency) return std::abs(o.damping_ratio()) < 1.0;
     return true;
 }
@@ -267,6 +267,24 @@ double loss_factor_of(double zeta) {
 }
 double quality_factor_of(double zeta) {
     return 0.5 / zeta;
+}
+
+// Far beyond critical damping, or with much noise, the fast pole has no end: then frequency and damping ratio are not told.
+void drop_undetermined(Quantities& quantities) {
+    constexpr double widest_ratio = 30.0;
+    const auto ratio = quantities.find(Quantity::damping_ratio);
+    const auto frequency = quantities.find(Quantity::natural_frequency);
+    const bool ratio_open =
+        ratio == quantities.end() || ratio->second.interval.high > 3.0 + 10.0 * std::abs(ratio->second.value);
+    const bool frequency_open = frequency == quantities.end() || !(frequency->second.interval.low > 0.0) ||
+                                frequency->second.interval.high > widest_ratio * frequency->second.interval.low;
+    if (!ratio_open && !frequency_open) return;
+    for (const Quantity q : {Quantity::damping_ratio, Quantity::natural_frequency, Quantity::decay_rate,
+                             Quantity::damped_frequency})
+        quantities.erase(q);
+    const auto slow = quantities.find(Quantity::slow_decay_rate);
+    if (slow != quantities.end() && slow->second.interval.high > widest_ratio * slow->second.interval.low)
+        quantities.erase(slow);
 }
 
 void add_functions_of_damping(Quantities& quantities) {
@@ -305,6 +323,7 @@ Quantities decay_quantities(const CurveFit& fit, std::size_t index, double confi
         if (!std::isfinite(estimate.interval.low) || !std::isfinite(estimate.interval.high)) continue;
         quantities[derived.quantity] = estimate;
     }
+    drop_undetermined(quantities);
     add_functions_of_damping(quantities);
     return quantities;
 }

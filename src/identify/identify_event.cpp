@@ -1,5 +1,6 @@
 #include <fmt/format.h>
 
+#include <algorithm>
 #include <cmath>
 #include <numbers>
 
@@ -80,6 +81,13 @@ MethodResult simple_method_result(const Reading& reading, const MethodErrors& er
     return result;
 }
 
+// Long decays need fewer replicates' worth of time; the degrees of freedom own up to their number.
+int affordable_replicates(int wanted, Eigen::Index samples) {
+    constexpr int fewest = 80;
+    constexpr double sample_budget = 1e6;
+    return std::min(wanted, std::max(fewest, static_cast<int>(sample_budget / static_cast<double>(samples))));
+}
+
 void explain_missing(const CurveFit& fit, const MethodResult& result, Findings& findings) {
     if (result.status != MethodStatus::ok) return;
     const bool ratio_told = result.quantities.contains(Quantity::damping_ratio);
@@ -110,7 +118,7 @@ EventIdentification identify_event(const Recording& recording, const Event& even
         return result;
     }
     MethodBootstrap bootstrap;
-    if (options.replicates > 0) bootstrap = bootstrap_methods(fit, event, options.replicates, options.seed);
+    if (options.replicates > 0) bootstrap = bootstrap_methods(fit, affordable_replicates(options.replicates, fit.samples.size()), options.seed);
     result.logarithmic_decrement = simple_method_result(bootstrap.readings.decrement, bootstrap.decrement,
                                                         fit, options.confidence_level);
     result.half_power_bandwidth = simple_method_result(bootstrap.readings.half_power, bootstrap.half_power,

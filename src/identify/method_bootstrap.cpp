@@ -117,9 +117,8 @@ void summarise(MethodErrors& errors, int replicates) {
 
 }  // namespace
 
-MethodBootstrap bootstrap_methods(const CurveFit& fit, const Event& event, int replicates,
+MethodBootstrap bootstrap_methods(const CurveFit& fit, int replicates,
                                   std::uint64_t seed) {
-    (void)event;
     MethodBootstrap result;
     const Setup setup = set_up(fit);
     MethodReadings& readings = result.readings;

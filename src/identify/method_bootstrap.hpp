@@ -38,7 +38,6 @@ struct MethodBootstrap {
 
 /// Runs both methods on the samples of a valid fit, then on `replicates` decays with the fitted parameters
 /// and noise drawn from the noise model (its own uncertainty included). Preconditions: fit.valid.
-[[nodiscard]] MethodBootstrap bootstrap_methods(const CurveFit& fit, const Event& event, int replicates,
-                                                std::uint64_t seed);
+[[nodiscard]] MethodBootstrap bootstrap_methods(const CurveFit& fit, int replicates, std::uint64_t seed);
 
 }  // namespace ringwright::identify

@@ -20,6 +20,7 @@ namespace {
 
 constexpr double two_pi = 2.0 * std::numbers::pi;
 constexpr int most_components = 4;
+constexpr double most_damping_of_added_mode = 0.2;  // a broader one stands for something else
 constexpr double false_alarm = 1e-3;  // a recording, for each component looked for
 
 Stretch longest_stretch(const DecaySamples& samples) {
@@ -85,7 +86,7 @@ std::optional<CurveFit> with_mode(const CurveFit& fit, double omega) {
         trial.fit = fit_projected(trial.fit.model, trial.samples, trial.noise.noise);
         if (!trial.fit.model.parameters().allFinite()) continue;
         const Oscillator& added = trial.fit.model.oscillators.back();
-        if (added.damping_ratio() <= 0.0 || added.damping_ratio() > 0.5) continue;
+        if (added.damping_ratio() <= 0.0 || added.damping_ratio() > most_damping_of_added_mode) continue;
         if (!settle(trial)) continue;
         if (!best || criterion_of(trial) < criterion_of(*best)) best = std::move(trial);
     }

@@ -221,11 +221,15 @@ VectorXd to_partial(const VectorXd& unbounded) {
     return unbounded.array().tanh().max(-largest_partial).min(largest_partial);
 }
 
-// −2 log posterior for a flat prior on each partial autocorrelation (the prior of their inverse hyperbolic
-// tangents is then 1 − κ²).
+// Prior of each partial autocorrelation, (1 − κ²)^−(1 + prior_exponent). The restricted likelihood of slow noise in a
+// short record still leans towards less correlation than there is; this exponent was chosen by the coverage study (AR(1),
+// φ = 0.95, three cycles: 91 % of 95 % intervals held with a flat prior, 94 % with this one; no change for white noise).
+constexpr double prior_exponent = 0.25;
+
+// −2 log posterior as a function of the inverse hyperbolic tangents of the partial autocorrelations.
 double minus_two_log_posterior(const WhitenedFit& fit, const VectorXd& partial) {
     if (!fit.valid) return std::numeric_limits<double>::infinity();
-    return fit.criterion - 2.0 * (1.0 - partial.array().square()).log().sum();
+    return fit.criterion + 2.0 * prior_exponent * (1.0 - partial.array().square()).log().sum();
 }
 
 double minus_two_log_posterior(const RestrictedLikelihood& likelihood, const VectorXd& unbounded) {
@@ -352,7 +356,7 @@ NoiseFit fit_noise(const RestrictedLikelihood& likelihood, const NoiseOptions& o
         if (!fit.valid) continue;
         const double parameters = static_cast<double>(order) + 1.0;
         const double criterion =
-            fit.criterion + 2.0 * parameters * spare / std::max(1.0, spare - parameters - 1.0);
+            fit.criterion + std::log(spare) * parameters;
         if (criterion < best_criterion) {
             best_criterion = criterion;
             best = current;
