@@ -90,13 +90,12 @@ std::string events_text(const Recording& recording, const EventSearch& search) {
 }
 
 std::string all_findings(const Inspection& inspection) {
-    report::GatheredFindings gathered;
+    report::GatheredFindings gathered("event");
     gathered.add(inspection.file.findings, "");
     if (inspection.recording) gathered.add(inspection.recording->findings, "");
     gathered.add(inspection.events.findings, "");
     std::size_t number = 0;
-    for (const Event& event : inspection.events.events)
-        gathered.add(event.findings, fmt::format("event {}", ++number));
+    for (const Event& event : inspection.events.events) gathered.add(event.findings, ++number);
     return gathered.text();
 }
 

@@ -74,13 +74,30 @@ std::vector<std::string> method_row(std::string release, std::string start, cons
     return row;
 }
 
+/// What the agreement of the methods suggests, said once for all releases where it is the same.
+std::string readings_text(const RecordingIdentification& recording, std::size_t number) {
+    std::vector<std::pair<std::string, std::vector<std::size_t>>> readings;
+    for (const EventIdentification& event : recording.events) {
+        ++number;
+        const std::string& reading = event.agreement.reading;
+        if (reading.empty()) continue;
+        auto same = std::ranges::find_if(readings, [&](const auto& entry) { return entry.first == reading; });
+        if (same == readings.end()) same = readings.insert(readings.end(), {reading, {}});
+        same->second.push_back(number);
+    }
+    std::string text;
+    for (const auto& [reading, numbers] : readings)
+        text += report::wrapped(fmt::format("  {}: ", report::numbered_places("release", numbers)), reading);
+    return text;
+}
+
 std::string methods_table(const RecordingIdentification& recording, std::size_t& number,
                           double confidence_level) {
     TextTable table{
         {Align::right, Align::right, Align::left, Align::left, Align::left, Align::left}, {}, true};
     table.rows.push_back(
         {"release", "start / s", "method", "natural frequency / Hz", "damping ratio", "decay rate / (1/s)"});
-    std::string below;
+    const std::string readings = readings_text(recording, number);
     for (const EventIdentification& event : recording.events) {
         ++number;
         bool first = true;
@@ -90,12 +107,13 @@ std::string methods_table(const RecordingIdentification& recording, std::size_t&
                                             event.*method.result));
             first = false;
         }
-        if (!event.agreement.reading.empty())
-            below += report::wrapped(fmt::format("  release {}: ", number), event.agreement.reading);
     }
-    return fmt::format("  {} found; ± and [ ] are {:.4g} % intervals\n\n",
-                       plural(recording.events.size(), "release", "releases"), 100.0 * confidence_level) +
-           report::to_text(table, 2) + (below.empty() ? "" : "\n" + below);
+    std::string text =
+        fmt::format("  {} found; ± and [ ] are {:.4g} % intervals\n\n",
+                    plural(recording.events.size(), "release", "releases"), 100.0 * confidence_level);
+    text += report::to_text(table, 2);
+    if (!readings.empty()) text += fmt::format("\n{}", readings);
+    return text;
 }
 
 bool worth_a_budget(Quantity quantity) {
@@ -113,7 +131,15 @@ bool worth_a_budget(Quantity quantity) {
 }
 
 std::string degrees_of_freedom_text(double degrees_of_freedom) {
-    return std::isfinite(degrees_of_freedom) ? fmt::format("{:.3g}", degrees_of_freedom) : "∞";
+    if (!std::isfinite(degrees_of_freedom)) return "∞";
+    return degrees_of_freedom < 100.0 ? fmt::format("{:.3g}", degrees_of_freedom)
+                                      : fmt::format("{:.0f}", degrees_of_freedom);
+}
+
+/// Two significant digits and the unit.
+std::string two_digits(double value, std::string_view unit) {
+    const std::string number = value < 1e-4 ? fmt::format("{:.2g}", value) : report::rounded(value, value);
+    return unit == "1" ? number : fmt::format("{} {}", number, unit);
 }
 
 }  // namespace
@@ -142,12 +168,9 @@ std::string budget_text(const Identification& identification) {
     for (const BudgetLine& line : result.budget) {
         if (!worth_a_budget(line.quantity)) continue;
         const std::string_view name = name_of(line.quantity);
-        const std::string unit = line.unit == "1" ? "" : " " + line.unit;
-        const std::string_view result_unit = unit_of(line.quantity, result.torsional);
         table.rows.push_back({name == last ? "" : std::string(name), line.source,
-                              fmt::format("{:.2g}{}", line.standard_uncertainty, unit),
-                              fmt::format("{:.2g}{}", line.contribution,
-                                          result_unit == "1" ? "" : fmt::format(" {}", result_unit)),
+                              two_digits(line.standard_uncertainty, line.unit),
+                              two_digits(line.contribution, unit_of(line.quantity, result.torsional)),
                               fmt::format("{:.1f} %", 100.0 * line.share),
                               degrees_of_freedom_text(line.degrees_of_freedom)});
         last = name;
@@ -164,9 +187,8 @@ std::string findings_text(const Identification& identification) {
         gathered.add(recording.findings,
                      name_files ? report::printable(recording.recording.origin.file) : "");
         for (const EventIdentification& event : recording.events) {
-            const std::string place = fmt::format("release {}", ++number);
-            gathered.add(event.event.findings, place);
-            gathered.add(event.findings, place);
+            gathered.add(event.event.findings, ++number);
+            gathered.add(event.findings, number);
         }
     }
     gathered.add(identification.result.findings, "");

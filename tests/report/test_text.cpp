@@ -68,12 +68,14 @@ TEST_CASE("results as they are copied into a test record") {
 
 TEST_CASE("a finding that recurs is said once, the grave ones first") {
     GatheredFindings gathered;
-    gathered.add({{"hum", Severity::note, "Hum at 50 Hz"}}, "release 1");
+    gathered.add({{"hum", Severity::note, "Hum at 50 Hz"}}, std::size_t{1});
     gathered.add({{"hum", Severity::note, "Hum at 50 Hz"}, {"clipped", Severity::defect, "Clipped"}},
-                 "release 2");
+                 std::size_t{2});
     CHECK(gathered.text() ==
-          "Findings\n  defect   release 2: Clipped\n  note     release 1, release 2: Hum at 50 Hz\n");
+          "Findings\n  defect   release 2: Clipped\n  note     releases 1, 2: Hum at 50 Hz\n");
     CHECK(GatheredFindings().text().empty());
+    CHECK(numbered_places("release", {3}) == "release 3");
+    CHECK(numbered_places("release", {1, 2, 3, 4, 6, 8, 9}) == "releases 1 to 4, 6, 8, 9");
 }
 
 TEST_CASE("a drawing never skips a spike") {
