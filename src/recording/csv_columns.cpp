@@ -253,6 +253,7 @@ class TimeChooser {
         choice_.column = i;
         const auto stamp = stamp_of(i);
         choice_.without_date = stamp && !stamp->has_date;
+        choice_.from_zero = true;
         if (!choice_.without_date) return;
         for (std::size_t j = 0; j < count(); ++j) {
             const auto date = j == i ? std::nullopt : stamp_of(j);
@@ -327,8 +328,9 @@ class TimeChooser {
         const char* names[] = {"seconds", "milliseconds", "microseconds", "nanoseconds"};
         for (int i = 0; i < 4; ++i) {
             const double scale = std::pow(1000.0, -i);
-            if (course.first >= since_1970[i] && course.first < 4.2 * since_1970[i])
-                return assume(scale, names[i], Severity::note, course.step);
+            if (course.first < since_1970[i] || course.first >= 4.2 * since_1970[i]) continue;
+            choice_.from_zero = true;
+            return assume(scale, names[i], Severity::note, course.step);
         }
         const double slowest = label_names_time(column(choice_.column).name) ? 0.1 : 0.05;
         if (course.step <= slowest * (1.0 + 1e-6)) return assume(1.0, "seconds", Severity::note, course.step);

@@ -25,6 +25,7 @@ struct TimeChoice {
     double seconds_per_unit = 1.0;
     double rounding_s = 0.0;  ///< step of the last digit written
     std::int64_t stamp_base_ns = 0;
+    bool from_zero = false;               ///< counts since 1970 and clock times: the first row is time 0
     bool without_date = false;            ///< clock times that begin again at midnight
     std::vector<std::size_t> not_signal;  ///< columns that hold times or running numbers
     Findings findings;

@@ -304,17 +304,25 @@ double rate_without_times(const OpenTable& open, const ReadOptions& options, Rec
     return stated->rate_hz;
 }
 
+void start_at_zero(std::vector<double>& times) {
+    const auto first = std::find_if(times.begin(), times.end(), [](double t) { return !std::isnan(t); });
+    if (first == times.end()) return;
+    const double zero = *first;
+    for (double& t : times) t -= zero;
+}
+
 Timed place_in_time(const OpenTable& open, const TimeChoice& time, const ReadOptions& options, Rows&& rows,
                     Recording& recording) {
     const bool timed = !options.rate_hz && time.source != TimeSource::none;
     if (!timed)
         return clock_from_rate(rate_without_times(open, options, recording), 0.0, std::move(rows.values));
+    if (time.source == TimeSource::stamp && time.without_date) unwrap_midnight(rows.times);
+    if (time.from_zero) start_at_zero(rows.times);
     if (time.source == TimeSource::number && time.seconds_per_unit != 1.0) {
         const double units_per_second = std::round(1.0 / time.seconds_per_unit);
         for (double& t : rows.times)
             t = time.seconds_per_unit < 1.0 ? t / units_per_second : t * time.seconds_per_unit;
     }
-    if (time.source == TimeSource::stamp && time.without_date) unwrap_midnight(rows.times);
     return clock_from_stamps(std::move(rows.times), std::move(rows.values), time.rounding_s);
 }
 

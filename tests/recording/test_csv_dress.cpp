@@ -127,6 +127,7 @@ TEST_CASE("dates and clock times make a clock") {
     for (const std::string* text : {&iso, &zone, &apart, &clock, &german}) {
         INFO(text->substr(0, 80));
         check_dress(*text);
+        CHECK(read_recording_from_memory(*text, "stamps.csv").clock.start_s == 0.0);
     }
 }
 
@@ -160,6 +161,7 @@ TEST_CASE("without a header the unit of the time is judged and the judgement is 
     for (int i = 0; i < 4000; ++i)
         epoch += fmt::format("{:.1f};{:.4f}\n", 1.9e12 + 0.5 * i, bench::position(i / bench::rate_hz));
     check_dress(epoch);
+    CHECK(read_recording_from_memory(epoch, "epoch.csv").clock.start_s == 0.0);
 }
 
 TEST_CASE("without a time column the rate is asked for") {
