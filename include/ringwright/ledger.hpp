@@ -131,6 +131,8 @@ class Ledger {
 [[nodiscard]] std::string canonical_text(const LedgerEntry& entry);
 /// SHA-256 as lower-case hex.
 [[nodiscard]] std::string sha256_of(std::string_view bytes);
+/// The same of a file, read piece by piece; empty when it cannot be read.
+[[nodiscard]] std::string sha256_of_file(const std::string& path);
 
 /// The recordings and figures that a result names. Throws InputError (`name` stands for the file) when it is
 /// no ringwright.identification.v1.

@@ -2,6 +2,8 @@
 #include <openssl/evp.h>
 
 #include <array>
+#include <fstream>
+#include <memory>
 #include <stdexcept>
 
 #include "ledger/documents.hpp"
@@ -18,6 +20,27 @@ void append(std::string& text, std::string_view name, std::string_view bytes) {
 
 std::string number_or_nothing(std::optional<std::int64_t> number) {
     return number ? fmt::format("{}", *number) : std::string();
+}
+
+using Digest = std::unique_ptr<EVP_MD_CTX, decltype(&EVP_MD_CTX_free)>;
+
+void require(int success) {
+    if (success != 1) throw std::runtime_error("SHA-256 is not available");
+}
+
+Digest new_digest() {
+    Digest digest(EVP_MD_CTX_new(), EVP_MD_CTX_free);
+    require(digest && EVP_DigestInit_ex(digest.get(), EVP_sha256(), nullptr) == 1 ? 1 : 0);
+    return digest;
+}
+
+std::string hex_of(const Digest& digest) {
+    std::array<unsigned char, EVP_MAX_MD_SIZE> bytes{};
+    unsigned int length = 0;
+    require(EVP_DigestFinal_ex(digest.get(), bytes.data(), &length));
+    std::string text;
+    for (unsigned int i = 0; i < length; ++i) text += fmt::format("{:02x}", bytes[i]);
+    return text;
 }
 
 }  // namespace
@@ -45,13 +68,19 @@ std::string canonical_text(const LedgerEntry& entry) {
 }
 
 std::string sha256_of(std::string_view bytes) {
-    std::array<unsigned char, EVP_MAX_MD_SIZE> digest{};
-    unsigned int length = 0;
-    if (EVP_Digest(bytes.data(), bytes.size(), digest.data(), &length, EVP_sha256(), nullptr) != 1)
-        throw std::runtime_error("SHA-256 is not available");
-    std::string text;
-    for (unsigned int i = 0; i < length; ++i) text += fmt::format("{:02x}", digest[i]);
-    return text;
+    const Digest digest = new_digest();
+    require(EVP_DigestUpdate(digest.get(), bytes.data(), bytes.size()));
+    return hex_of(digest);
+}
+
+std::string sha256_of_file(const std::string& path) {
+    std::ifstream file(path, std::ios::binary);
+    if (!file) return "";
+    const Digest digest = new_digest();
+    std::string piece(1 << 20, '\0');
+    while (file.read(piece.data(), static_cast<std::streamsize>(piece.size())) || file.gcount() > 0)
+        require(EVP_DigestUpdate(digest.get(), piece.data(), static_cast<std::size_t>(file.gcount())));
+    return file.bad() ? "" : hex_of(digest);
 }
 
 }  // namespace ringwright

@@ -33,7 +33,9 @@ LedgerRecording recording_of(const ordered_json& object) {
     recording.file = text_of(object, "file");
     recording.sha256 = text_of(object, "sha256");
     recording.channel = text_of(object, "channel");
-    recording.added_mass = text_of(object, "added_mass");
+    const auto added = object.find("added_mass");
+    recording.added_mass = added != object.end() && added->is_object() ? text_of(*added, "as_written")
+                                                                       : text_of(object, "added_mass");
     const auto bytes = object.find("bytes");
     if (bytes != object.end() && bytes->is_number_unsigned()) recording.bytes = bytes->get<std::uint64_t>();
     return recording;

@@ -1,0 +1,117 @@
+// ringwright verify: identify, judged against the limits in a test sheet.
+
+#include <fmt/format.h>
+
+#include <CLI/App.hpp>
+#include <CLI/Config.hpp>
+#include <CLI/Formatter.hpp>
+#include <memory>
+#include <nlohmann/json.hpp>
+
+#include "app/command.hpp"
+#include "app/filing.hpp"
+#include "app/judging.hpp"
+#include "app/messages.hpp"
+#include "app/no_answer.hpp"
+#include "app/test_arguments.hpp"
+#include "ringwright/error.hpp"
+#include "ringwright/result_json.hpp"
+#include "ringwright/result_text.hpp"
+#include "ringwright/verdict_report.hpp"
+
+namespace ringwright::app {
+namespace {
+
+struct VerifyArguments {
+    TestArguments test;
+    std::string sheet, rule, ledger;
+};
+
+DecisionOptions decision_from(const TestSheet& sheet, const std::string& rule) {
+    DecisionOptions options = sheet.decision;
+    if (rule.empty()) return options;
+    const auto named = decision_rule_from_text(rule);
+    if (!named)
+        throw UsageError({"--rule", "", fmt::format("\"{}\" is no decision rule", rule),
+                          "Give \"simple acceptance\", \"guarded acceptance\" or \"guarded rejection\""});
+    options.rule = *named;
+    return options;
+}
+
+Verdict judge_result(const PooledResult& result, const TestSheet& sheet, const std::string& rule) {
+    require_same_motion(sheet, result.torsional);
+    Verdict verdict =
+        judge(result.quantities, limits_of(sheet), decision_from(sheet, rule), uncertainty_parts(result));
+    for (const Finding& finding : sheet_findings(sheet, today())) {
+        const bool said = finding.code == "no_limits" || (finding.code == "rule_not_stated" && !rule.empty());
+        if (!said) verdict.findings.push_back(finding);
+    }
+    return verdict;
+}
+
+nlohmann::ordered_json verdict_document(const Identification& identification, const Verdict& verdict,
+                                        const TestSheet& sheet) {
+    nlohmann::ordered_json json = to_json(identification);
+    json["test_sheet"] = nlohmann::ordered_json::parse(sheet_facts_json(sheet));
+    json["verdict"] = to_json(verdict, identification.result.torsional);
+    return json;
+}
+
+std::string answer_text(const Identification& identification, const Verdict& verdict,
+                        const nlohmann::ordered_json& document, Format format) {
+    if (format == Format::json) return to_text(document);
+    if (format == Format::csv) return to_csv(verdict, identification.result.torsional);
+    return fmt::format("{}\n{}", to_text(identification), to_text(verdict, identification.result.torsional));
+}
+
+int status_of(Decision decision) {
+    if (decision == Decision::conforms) return done;
+    return decision == Decision::does_not_conform ? limit_not_met : undecided;
+}
+
+std::vector<std::string> input_names(const PreparedTest& test, const VerifyArguments& arguments) {
+    std::vector<std::string> names{arguments.sheet};
+    if (!arguments.ledger.empty()) names.push_back(arguments.ledger);
+    for (const LoadedFile& file : test.files) names.push_back(file.file);
+    return names;
+}
+
+int run_verify(const VerifyArguments& arguments) {
+    const Format format = format_from(arguments.test.answer);
+    const TestSheet sheet = read_test_sheet(arguments.sheet);
+    (void)decision_from(sheet, arguments.rule);
+    const PreparedTest test = prepare(arguments.test, sheet);
+    refuse_overwriting(arguments.test.answer.output, input_names(test, arguments));
+    const Identification identification = run(test);
+    const Verdict verdict = judge_result(identification.result, sheet, arguments.rule);
+    const auto document = verdict_document(identification, verdict, sheet);
+    if (identification.answered() && !arguments.ledger.empty())
+        file_result(arguments.ledger, to_text(document, -1), sheet, given_options(*arguments.test.command),
+                    recordings_of(identification));
+    write_answer(answer_text(identification, verdict, document, format), arguments.test.answer.output);
+    if (identification.answered()) return status_of(verdict.decision);
+    say(why_no_answer(identification));
+    return no_answer;
+}
+
+}  // namespace
+
+void add_verify_command(CLI::App& app, Context& context) {
+    CLI::App* command = app.add_subcommand("verify", "The same, judged against the limits in a test sheet");
+    auto arguments = std::make_shared<VerifyArguments>();
+    add_test_options(*command, arguments->test);
+    command->add_option("--sheet", arguments->sheet, "Test sheet with the limits; options win over it")
+        ->type_name("SHEET.toml")
+        ->required();
+    command->add_option("--rule", arguments->rule, "Decision rule, in place of the sheet's")
+        ->type_name("RULE");
+    command->add_option("--ledger", arguments->ledger, "File the result in this ledger")->type_name("FILE");
+    command->footer(
+        "Exit status: 0 every limit is met, 1 a limit is not met, 5 the uncertainty is too large to decide.\n"
+        "Example: ringwright verify pluck.csv --sheet sash-0417.toml --ledger shop.ledger\n"
+        "A sheet to start from: ringwright sheet --template");
+    command->callback(
+        [arguments, &context] { context.run = [arguments] { return run_verify(*arguments); }; });
+}
+
+}  // namespace ringwright::app
