@@ -127,7 +127,7 @@ class Ledger {
 };
 
 /// Text that a hash covers: `name length` and the bytes themselves for every field, so that no two entries
-/// have the same (docs/formats/ledger.md).
+/// have the same (docs/ledger.md).
 [[nodiscard]] std::string canonical_text(const LedgerEntry& entry);
 /// SHA-256 as lower-case hex.
 [[nodiscard]] std::string sha256_of(std::string_view bytes);

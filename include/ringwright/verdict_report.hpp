@@ -9,7 +9,7 @@
 
 namespace ringwright {
 
-/// The value of the key `verdict` in ringwright.identification.v1 (docs/formats/verdict.md). SI units; what
+/// The value of the key `verdict` in ringwright.identification.v1 (docs/judging.md). SI units; what
 /// does not exist has no key.
 [[nodiscard]] nlohmann::ordered_json to_json(const Verdict& verdict, bool torsional);
 /// The verdict as a table of limits, then what each decision says, then the overall decision.

@@ -30,5 +30,9 @@ struct Context {
 
 void add_identify_command(CLI::App& app, Context& context);
 void add_inspect_command(CLI::App& app, Context& context);
+void add_verify_command(CLI::App& app, Context& context);
+void add_compare_command(CLI::App& app, Context& context);
+void add_sheet_command(CLI::App& app, Context& context);
+void add_ledger_command(CLI::App& app, Context& context);
 
 }  // namespace ringwright::app

@@ -12,9 +12,12 @@
 #include "app/answer_options.hpp"
 #include "app/article_options.hpp"
 #include "app/command.hpp"
+#include "app/filing.hpp"
 #include "app/in_order.hpp"
 #include "app/messages.hpp"
+#include "app/no_answer.hpp"
 #include "app/recording_options.hpp"
+#include "app/test_arguments.hpp"
 #include "ringwright/error.hpp"
 #include "ringwright/result_csv.hpp"
 #include "ringwright/result_json.hpp"
@@ -31,23 +34,15 @@ struct IdentifyArguments {
     AnswerArguments answer;
     AnalysisArguments analysis;
     bool separate = false;
+    std::string sheet, ledger;
+    std::optional<TestSheet> read_sheet;
 };
 
-/// Why nothing answered, as one problem to put right.
-Problem why_no_answer(const Identification& identification) {
-    Problem problem{"", "", "no method can answer",
-                    "See ringwright inspect, or give the window with --from and --to"};
-    if (identification.recordings.empty()) return problem;
-    const RecordingIdentification& first = identification.recordings.front();
-    problem.file = first.recording.origin.file == "-" ? "standard input" : first.recording.origin.file;
-    if (first.events.empty()) {
-        problem.found = "no release found: " + without_period(first.reason);
-        return problem;
-    }
-    const EventIdentification& event = first.events.front();
-    problem.place = fmt::format("release at {:.4g} s", event.start_s);
-    problem.found = "no method can answer: " + without_period(event.curve_fit.reason);
-    return problem;
+/// The result as it is filed: with what the sheet says of article and test.
+std::string filed_text(const Identification& identification, const std::optional<TestSheet>& sheet) {
+    nlohmann::ordered_json json = to_json(identification);
+    if (sheet) json["test_sheet"] = nlohmann::ordered_json::parse(sheet_facts_json(*sheet));
+    return to_text(json, -1);
 }
 
 std::string answer_text(const Identification& identification, Format format, bool one_line,
@@ -70,6 +65,9 @@ int identify_together(const IdentifyArguments& arguments, const std::vector<Load
     const Format format = format_from(arguments.answer);
     const Identification identification =
         identify(read_all(files, read_options(arguments.recording)), options);
+    if (identification.answered() && !arguments.ledger.empty())
+        file_result(arguments.ledger, filed_text(identification, arguments.read_sheet), arguments.read_sheet,
+                    given_options(*arguments.command), recordings_of(identification));
     write_answer(answer_text(identification, format, false, true), arguments.answer.output);
     if (identification.answered()) return done;
     say(why_no_answer(identification));
@@ -81,6 +79,8 @@ struct SeparateAnswer {
     std::string text;
     int status = done;
     Problem problem;
+    std::string to_file = {};  ///< for the ledger; empty without an answer
+    std::vector<LedgerRecording> recordings = {};
 };
 
 /// A FILE that cannot be read still has its line, so that lines and FILEs go together.
@@ -101,15 +101,20 @@ std::string unreadable_text(const LoadedFile& file, const Problem& problem, doub
         -1);
 }
 
-SeparateAnswer identify_one(const LoadedFile& file, const ReadOptions& read, const AnalysisOptions& options,
-                            Format format, bool with_header) {
+SeparateAnswer identify_one(const IdentifyArguments& arguments, const LoadedFile& file,
+                            const ReadOptions& read, const AnalysisOptions& options, Format format,
+                            bool with_header) {
     try {
         std::vector<RecordingInput> input;
         input.push_back({read_recording(file.file, read), file.added_mass});
         const Identification identification = identify(std::move(input), options);
         SeparateAnswer answer{answer_text(identification, format, true, with_header), done, {}};
-        if (!identification.answered())
+        if (!identification.answered()) {
             answer.status = no_answer, answer.problem = why_no_answer(identification);
+        } else if (!arguments.ledger.empty()) {
+            answer.to_file = filed_text(identification, arguments.read_sheet);
+            answer.recordings = recordings_of(identification);
+        }
         return answer;
     } catch (const InputError& error) {
         return {unreadable_text(file, error.problem(), options.identify.confidence_level, format),
@@ -141,8 +146,11 @@ int identify_separately(const IdentifyArguments& arguments, const std::vector<Lo
     const bool to_file = !arguments.answer.output.empty();
     in_order<SeparateAnswer>(
         files.size(), jobs,
-        [&](std::size_t i) { return identify_one(files[i], read, options, format, i == 0); },
+        [&](std::size_t i) { return identify_one(arguments, files[i], read, options, format, i == 0); },
         [&](std::size_t i, const SeparateAnswer& answer) {
+            if (!answer.to_file.empty())
+                file_result(arguments.ledger, answer.to_file, arguments.read_sheet,
+                            given_options(*arguments.command), answer.recordings);
             const std::string text =
                 (format == Format::text && i > 0 && !answer.text.empty() ? "\n" : "") + answer.text;
             if (to_file)
@@ -156,8 +164,22 @@ int identify_separately(const IdentifyArguments& arguments, const std::vector<Lo
     return status;
 }
 
-int run_identify(const IdentifyArguments& arguments) {
-    const std::vector<LoadedFile> files = files_from(*arguments.command, arguments.files);
+/// The FILEs of the command line, else those of the sheet.
+std::vector<LoadedFile> all_files(const IdentifyArguments& arguments) {
+    std::vector<LoadedFile> files = files_from(*arguments.command, arguments.files);
+    if (files.empty() && arguments.read_sheet) files = files_from(*arguments.read_sheet);
+    if (files.empty())
+        throw UsageError(
+            {"identify", "", "FILE is required", "Name a recording, or a --sheet that names them"});
+    return files;
+}
+
+int run_identify(IdentifyArguments arguments) {
+    if (!arguments.sheet.empty()) {
+        arguments.read_sheet = read_test_sheet(arguments.sheet);
+        fill_from_sheet(*arguments.read_sheet, arguments.recording, arguments.article);
+    }
+    const std::vector<LoadedFile> files = all_files(arguments);
     const AnalysisOptions options =
         analysis_options(arguments.recording, arguments.article, arguments.answer, arguments.analysis);
     refuse_overwriting(arguments.answer.output, arguments.files.files);
@@ -173,6 +195,7 @@ void add_identify_command(CLI::App& app, Context& context) {
     auto arguments = std::make_shared<IdentifyArguments>();
     arguments->command = command;
     add_file_arguments(*command, arguments->files);
+    arguments->files.file_option->required(false);
     add_recording_options(*command, arguments->recording);
     add_article_options(*command, arguments->article);
     add_answer_options(*command, arguments->answer);
@@ -180,6 +203,14 @@ void add_identify_command(CLI::App& app, Context& context) {
     command
         ->add_flag("--separate", arguments->separate,
                    "One result for each FILE, in their order; JSON: one document a line")
+        ->group("About the answer");
+    command
+        ->add_option("--sheet", arguments->sheet,
+                     "Test sheet with article, recording and recordings; options win over it")
+        ->type_name("SHEET.toml")
+        ->group("About the article");
+    command->add_option("--ledger", arguments->ledger, "File the result in this ledger")
+        ->type_name("FILE")
         ->group("About the answer");
     command->footer(
         "Several FILEs are repeats on one article and are pooled, unless --separate is given.\n"

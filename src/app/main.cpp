@@ -52,6 +52,10 @@ void set_up(CLI::App& parser, app::Context& context) {
         "--mass \"12.40(5) kg\"");
     app::add_inspect_command(parser, context);
     app::add_identify_command(parser, context);
+    app::add_verify_command(parser, context);
+    app::add_compare_command(parser, context);
+    app::add_sheet_command(parser, context);
+    app::add_ledger_command(parser, context);
 }
 
 /// Help and version go to standard output through the same path as every answer.
