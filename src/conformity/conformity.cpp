@@ -38,10 +38,19 @@ Decision decide_value(const Limit& limit, double value, double guard_band, Decis
 
 /// A probability for people: per cent, and never "0 %" or "100 %" where it is neither.
 std::string percent(double probability) {
-    if (probability <= 0.0) return "0 %";
     if (probability < 1e-4) return "less than 0.01 %";
-    if (probability > 1.0 - 1e-4 && probability < 1.0) return "more than 99.99 %";
+    if (probability > 1.0 - 1e-4) return "more than 99.99 %";
     return fmt::format("{:.4g} %", 100.0 * probability);
+}
+
+/// The probability of conformity with Student's t in place of the normal distribution.
+double probability_by_student(const Limit& limit, const Estimate& estimate) {
+    if (!(estimate.standard_uncertainty > 0.0)) return within(limit, estimate.value) ? 1.0 : 0.0;
+    const auto below = [&](double end) {
+        return student_t_probability((end - estimate.value) / estimate.standard_uncertainty,
+                                     estimate.degrees_of_freedom);
+    };
+    return (limit.upper ? below(*limit.upper) : 1.0) - (limit.lower ? below(*limit.lower) : 0.0);
 }
 
 std::string reading_of(const LimitDecision& decided) {
@@ -64,16 +73,18 @@ LimitDecision not_measured(const Limit& limit) {
     return decided;
 }
 
-/// Says so where the probability rests on few degrees of freedom.
+/// Says so where few degrees of freedom would make the probability another one.
 void note_few_degrees_of_freedom(const LimitDecision& decided, Findings& findings) {
-    constexpr double few = 10.0;
-    if (!decided.estimate || decided.estimate->degrees_of_freedom >= few) return;
+    constexpr double worth_saying = 0.001;
+    if (!decided.estimate || !decided.probability_of_conformity) return;
+    const double heavier = probability_by_student(decided.limit, *decided.estimate);
+    if (std::abs(heavier - *decided.probability_of_conformity) < worth_saying) return;
     findings.push_back(
         {"few_degrees_of_freedom", Severity::caution,
-         fmt::format("The uncertainty of the {} rests on {:.3g} degrees of freedom; its probability of "
-                     "conformity assumes a normal distribution and is rather too far from one half. More "
-                     "releases would mend that.",
-                     name_of(decided.limit.quantity), decided.estimate->degrees_of_freedom)});
+         fmt::format(
+             "The uncertainty of the {} rests on {:.3g} degrees of freedom. Its probability of conformity "
+             "assumes a normal distribution; by Student's t it is {}. More releases would mend that.",
+             name_of(decided.limit.quantity), decided.estimate->degrees_of_freedom, percent(heavier))});
 }
 
 void note_narrow_limits(const LimitDecision& decided, Findings& findings) {

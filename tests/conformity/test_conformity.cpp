@@ -188,3 +188,16 @@ TEST_CASE("rules and decisions go to text and back") {
         CHECK(decision_from_text(to_text(decision)) == decision);
     CHECK_FALSE(decision_rule_from_text("generous acceptance"));
 }
+
+TEST_CASE("few degrees of freedom are said where they matter") {
+    // At 2 degrees of freedom P(T < 3) = 0.9523 (worked from the closed form 1/2 + t/(2√(2 + t²))); normal
+    // 0.9987.
+    const auto codes = [](double value) {
+        const Quantities quantities{{Quantity::damping_ratio, estimate(value, 0.1, 2.0)}};
+        return judge(quantities, {limit({}, 1.0)}, {}).findings;
+    };
+    REQUIRE(codes(0.7).size() == 1);
+    CHECK(codes(0.7).front().code == "few_degrees_of_freedom");
+    CHECK(codes(0.7).front().message.find("95.23 %") != std::string::npos);
+    CHECK(codes(-99.0).empty());
+}
