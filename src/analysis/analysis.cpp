@@ -75,7 +75,6 @@ void identify_all(std::vector<RecordingIdentification>& recordings, const Analys
 void release_samples(std::vector<RecordingIdentification>& recordings) {
     for (RecordingIdentification& recording : recordings) {
         recording.recording.samples = {};
-        recording.recording.clock.times_s.shrink_to_fit();
     }
 }
 
