@@ -269,15 +269,17 @@ double quality_factor_of(double zeta) {
     return 0.5 / zeta;
 }
 
-// Far beyond critical damping, or with much noise, the fast pole has no end: then frequency and damping ratio are not told.
+// Far beyond critical damping, or with much noise, the fast pole has no end: then frequency and damping ratio
+// are not told.
 void drop_undetermined(Quantities& quantities) {
     constexpr double widest_ratio = 30.0;
     const auto ratio = quantities.find(Quantity::damping_ratio);
     const auto frequency = quantities.find(Quantity::natural_frequency);
     const bool ratio_open =
         ratio == quantities.end() || ratio->second.interval.high > 3.0 + 10.0 * std::abs(ratio->second.value);
-    const bool frequency_open = frequency == quantities.end() || !(frequency->second.interval.low > 0.0) ||
-                                frequency->second.interval.high > widest_ratio * frequency->second.interval.low;
+    const bool frequency_open =
+        frequency == quantities.end() || !(frequency->second.interval.low > 0.0) ||
+        frequency->second.interval.high > widest_ratio * frequency->second.interval.low;
     if (!ratio_open && !frequency_open) return;
     for (const Quantity q : {Quantity::damping_ratio, Quantity::natural_frequency, Quantity::decay_rate,
                              Quantity::damped_frequency})

@@ -11,8 +11,9 @@ using Eigen::Index;
 
 namespace {
 
-constexpr double gap_in_steps = 2.5;     // a longer step is a gap
-constexpr double finest_turn = 2.0 * std::numbers::pi / 24.0;   // of the fastest pole, a block: loses 0.6 % of information
+constexpr double gap_in_steps = 2.5;  // a longer step is a gap
+constexpr double finest_turn =
+    2.0 * std::numbers::pi / 24.0;  // of the fastest pole, a block: loses 0.6 % of information
 constexpr double coarsest_turn = 2.0 * std::numbers::pi / 8.0;  // loses 5 %
 constexpr double enough_blocks = 8000.0;
 constexpr std::size_t shortest_run = 4;  // samples; shorter runs between clipped ones tell nothing

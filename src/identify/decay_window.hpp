@@ -27,8 +27,9 @@ struct DecayWindow {
 /// Block means over whole blocks of each run; the scale is the largest departure from the median.
 [[nodiscard]] DecaySamples block_means(const DecayWindow& window, Eigen::Index block);
 
-/// Largest block for which the fastest pole still turns by no more than 2π/24 (loss of information below 1 %), or smaller
-/// where fewer than `fewest` blocks would be left; above 8000 blocks coarser, down to 2π/8 (5 %).
+/// Largest block for which the fastest pole still turns by no more than 2π/24 (loss of information below 1
+/// %), or smaller where fewer than `fewest` blocks would be left; above 8000 blocks coarser, down to 2π/8 (5
+/// %).
 [[nodiscard]] Eigen::Index block_for(const DecayWindow& window, double fastest_rate, double fewest = 500.0);
 
 }  // namespace ringwright::identify

@@ -118,7 +118,9 @@ EventIdentification identify_event(const Recording& recording, const Event& even
         return result;
     }
     MethodBootstrap bootstrap;
-    if (options.replicates > 0) bootstrap = bootstrap_methods(fit, affordable_replicates(options.replicates, fit.samples.size()), options.seed);
+    if (options.replicates > 0)
+        bootstrap = bootstrap_methods(fit, affordable_replicates(options.replicates, fit.samples.size()),
+                                      options.seed);
     result.logarithmic_decrement = simple_method_result(bootstrap.readings.decrement, bootstrap.decrement,
                                                         fit, options.confidence_level);
     result.half_power_bandwidth = simple_method_result(bootstrap.readings.half_power, bootstrap.half_power,

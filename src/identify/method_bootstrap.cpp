@@ -117,8 +117,7 @@ void summarise(MethodErrors& errors, int replicates) {
 
 }  // namespace
 
-MethodBootstrap bootstrap_methods(const CurveFit& fit, int replicates,
-                                  std::uint64_t seed) {
+MethodBootstrap bootstrap_methods(const CurveFit& fit, int replicates, std::uint64_t seed) {
     MethodBootstrap result;
     const Setup setup = set_up(fit);
     MethodReadings& readings = result.readings;

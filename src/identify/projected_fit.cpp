@@ -98,8 +98,8 @@ ProjectedFit fit_projected(const DecayModel& start, const DecaySamples& samples,
     Projection projection(start, samples, noise);
     Eigen::LevenbergMarquardt<Projection> solver(projection);
     solver.parameters.maxfev = most_evaluations;
-    solver.parameters.xtol = 1e-10;
-    solver.parameters.ftol = 1e-12;
+    solver.parameters.xtol = 1e-9;
+    solver.parameters.ftol = 1e-10;
     solver.parameters.factor = 1.0;
     VectorXd parameters = start.parameters();
     const auto status = solver.minimize(parameters);

@@ -20,8 +20,9 @@ namespace {
 
 constexpr double two_pi = 2.0 * std::numbers::pi;
 constexpr int most_components = 4;
+constexpr int trial_evaluations = 25;
 constexpr double most_damping_of_added_mode = 0.2;  // a broader one stands for something else
-constexpr double false_alarm = 1e-3;  // a recording, for each component looked for
+constexpr double false_alarm = 1e-3;                // a recording, for each component looked for
 
 Stretch longest_stretch(const DecaySamples& samples) {
     return *std::ranges::max_element(samples.stretches, {}, &Stretch::length);
@@ -73,8 +74,8 @@ double needed_gain(const CurveFit& fit, double parameters) {
 std::optional<CurveFit> with_tone(const CurveFit& fit, double omega) {
     CurveFit trial = fit;
     trial.fit.model.tones.push_back(std::log(omega));
-    trial.fit = fit_projected(trial.fit.model, trial.samples, trial.noise.noise);
-    if (!settle(trial)) return std::nullopt;
+    trial.fit = fit_projected(trial.fit.model, trial.samples, trial.noise.noise, trial_evaluations);
+    if (!trial.fit.model.parameters().allFinite() || !estimate_noise(trial, 0, 1)) return std::nullopt;
     return trial;
 }
 
@@ -83,11 +84,11 @@ std::optional<CurveFit> with_mode(const CurveFit& fit, double omega) {
     for (const double damping : {0.003, 0.03}) {
         CurveFit trial = fit;
         trial.fit.model.oscillators.push_back(Oscillator::from(damping, omega));
-        trial.fit = fit_projected(trial.fit.model, trial.samples, trial.noise.noise);
+        trial.fit = fit_projected(trial.fit.model, trial.samples, trial.noise.noise, trial_evaluations);
         if (!trial.fit.model.parameters().allFinite()) continue;
         const Oscillator& added = trial.fit.model.oscillators.back();
         if (added.damping_ratio() <= 0.0 || added.damping_ratio() > most_damping_of_added_mode) continue;
-        if (!settle(trial)) continue;
+        if (!estimate_noise(trial, 0, 1)) continue;
         if (!best || criterion_of(trial) < criterion_of(*best)) best = std::move(trial);
     }
     return best;
@@ -124,11 +125,12 @@ void add_components(CurveFit& fit, const CurveFitOptions& options) {
         const double tone_gain = tone ? before - criterion_of(*tone) - needed_gain(fit, 3.0) : -1.0;
         const double mode_gain = mode ? before - criterion_of(*mode) - needed_gain(fit, 4.0) : -1.0;
         if (tone_gain <= 0.0 && mode_gain <= 0.0) return;
+        CurveFit accepted = mode_gain > tone_gain ? std::move(*mode) : std::move(*tone);
+        if (!settle(accepted)) return;
+        fit = std::move(accepted);
         if (mode_gain > tone_gain) {
-            fit = std::move(*mode);
             fit.findings.push_back(mode_finding(fit.fit.model.oscillators.back()));
         } else {
-            fit = std::move(*tone);
             fit.findings.push_back(tone_finding(std::exp(fit.fit.model.tones.back()) / two_pi));
         }
     }

@@ -221,9 +221,10 @@ VectorXd to_partial(const VectorXd& unbounded) {
     return unbounded.array().tanh().max(-largest_partial).min(largest_partial);
 }
 
-// Prior of each partial autocorrelation, (1 − κ²)^−(1 + prior_exponent). The restricted likelihood of slow noise in a
-// short record still leans towards less correlation than there is; this exponent was chosen by the coverage study (AR(1),
-// φ = 0.95, three cycles: 91 % of 95 % intervals held with a flat prior, 94 % with this one; no change for white noise).
+// Prior of each partial autocorrelation, (1 − κ²)^−(1 + prior_exponent). The restricted likelihood of slow
+// noise in a short record still leans towards less correlation than there is; this exponent was chosen by the
+// coverage study (AR(1), φ = 0.95, three cycles: 91 % of 95 % intervals held with a flat prior, 94 % with
+// this one; no change for white noise).
 constexpr double prior_exponent = 0.25;
 
 // −2 log posterior as a function of the inverse hyperbolic tangents of the partial autocorrelations.
@@ -355,8 +356,7 @@ NoiseFit fit_noise(const RestrictedLikelihood& likelihood, const NoiseOptions& o
         const WhitenedFit fit = likelihood.evaluate(to_partial(current));
         if (!fit.valid) continue;
         const double parameters = static_cast<double>(order) + 1.0;
-        const double criterion =
-            fit.criterion + std::log(spare) * parameters;
+        const double criterion = fit.criterion + std::log(spare) * parameters;
         if (criterion < best_criterion) {
             best_criterion = criterion;
             best = current;
