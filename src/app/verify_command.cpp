@@ -85,10 +85,10 @@ int run_verify(const VerifyArguments& arguments) {
     const Identification identification = run(test);
     const Verdict verdict = judge_result(identification.result, sheet, arguments.rule);
     const auto document = verdict_document(identification, verdict, sheet);
+    write_answer(answer_text(identification, verdict, document, format), arguments.test.answer.output);
     if (identification.answered() && !arguments.ledger.empty())
         file_result(arguments.ledger, to_text(document, -1), sheet, given_options(*arguments.test.command),
                     recordings_of(identification));
-    write_answer(answer_text(identification, verdict, document, format), arguments.test.answer.output);
     if (identification.answered()) return status_of(verdict.decision);
     say(why_no_answer(identification));
     return no_answer;
