@@ -6,6 +6,7 @@
 
 #include "event/by_hand.hpp"
 #include "event/found.hpp"
+#include "event/rivals.hpp"
 #include "event/spectrum.hpp"
 #include "ringwright/error.hpp"
 #include "ringwright/event.hpp"
@@ -28,8 +29,10 @@ constexpr double least_amplitude_in_rest = 4.0;
 /// (other modes ring along), of a short one (it has little else to show), of one that looks like a mere
 /// pulse.
 constexpr double misfit_of_long = 0.125, misfit_of_short = 0.06, misfit_of_pulse = 0.02;
-/// Samples between the start and the noise.
-constexpr std::size_t shortest_decay = 8;
+/// Samples between the start and the noise: position moves smoothly, acceleration may jump.
+constexpr std::size_t shortest_decay = 8, shortest_decay_of_position = 5;
+/// The same of an acceleration that does not ring on: fewer are what a knock leaves.
+constexpr std::size_t shortest_blow = 14;
 
 bool shows_position(MeasuredQuantity quantity) {
     return quantity == MeasuredQuantity::displacement || quantity == MeasuredQuantity::angle;
@@ -153,6 +156,7 @@ bool on_a_pulse(std::span<const double> values, const Found& found, double heigh
 /// that only ends like a decay does not.
 bool abrupt(const Pyramid& pyramid, const Found& found) {
     const Start& start = found.start;
+    if (start.from_rest) return true;
     const double cycle = 2.0 * std::numbers::pi / start.fit.shape.undamped_angular_frequency;
     const std::size_t first = std::max(start.position >> start.level, start.fit_block);
     const auto near = std::max<std::size_t>(1, static_cast<std::size_t>(0.1 * cycle));
@@ -188,7 +192,9 @@ bool believable(const Search& search, const Found& found) {
     const std::span<const double> values = search.series.values();
     const std::size_t cycle = static_cast<std::size_t>(std::min(found.cycle(), 1e15)) + 8;
     const std::size_t stop = std::min({values.size(), found.begin() + cycle, found.course.rest_end});
-    if (found.course.end < found.begin() + shortest_decay) return false;
+    const bool position = shows_position(search.recording.quantity);
+    if (found.course.end < found.begin() + (position ? shortest_decay_of_position : shortest_decay))
+        return false;
     if (!found.course.reaches_noise && start.shape.damping_ratio < 0.5 &&
         static_cast<double>(found.course.rest_end - found.begin()) < 1.2 * found.cycle())
         return false;
@@ -204,7 +210,9 @@ bool believable(const Search& search, const Found& found) {
     if (misfit == misfit_of_short && on_a_pulse(values, found, height, 2.0)) misfit = misfit_of_pulse;
     // After a blow the acceleration has the other sign: what falls with the sign of the blow is the blow.
     const bool blow = shows_acceleration(search.recording.quantity) && cycles < 2.0;
+    if (blow && found.course.end < found.begin() + shortest_blow) return false;
     if (cycles < 2.0 && !abrupt(search.pyramid, found)) return false;
+    if (cycles < 2.0 && is_hand_or_pulse(search.pyramid, found)) return false;
     if (amplitude < least_amplitude_in_rest * spread_of_rest(values, found.course)) return false;
     if (blow && on_a_pulse(values, found, height, 3.0)) return false;
     return start.noise_rms < std::max(misfit * amplitude, 2.5 * noise);
@@ -242,12 +250,23 @@ void drop_weak(std::vector<Found>& found, std::span<const double> values) {
     });
 }
 
+/// What rings no more than a few times has to stand out of all that the recording shows elsewhere.
+void drop_wanderings(std::vector<Found>& found, const Pyramid& pyramid) {
+    constexpr double few_cycles = 3.0, stands_out = 3.0;
+    const std::vector<Found> all = found;
+    std::erase_if(found, [&](const Found& f) {
+        const double cycles = static_cast<double>(f.end() - f.begin()) / f.cycle();
+        return cycles < few_cycles && swing_against_elsewhere(pyramid, f, all) < stands_out;
+    });
+}
+
 /// A slow pull to a plateau that the next release leaves is no decay.
 bool is_pull_to(const Found& pull, const Found& release) {
-    if (!release.start.from_rest) return false;
+    const double away = std::abs(pull.start.fit.offset - release.start.fit.offset);
+    const bool leads_to_it = release.start.from_rest || away > 0.5 * release.start.amplitude;
     const double speed =
         pull.start.shape.undamped_angular_frequency / release.start.shape.undamped_angular_frequency;
-    return speed < 0.7;
+    return leads_to_it && speed < 0.7;
 }
 
 void drop_pulls(std::vector<Found>& found) {
@@ -462,6 +481,7 @@ EventSearch search_whole(const Recording& recording, const EventOptions& options
     std::sort(search.found.begin(), search.found.end(),
               [](const Found& a, const Found& b) { return a.begin() < b.begin(); });
     drop_weak(search.found, series.values());
+    drop_wanderings(search.found, pyramid);
     drop_pulls(search.found);
     judge_interruptions(search.found, series, pyramid);
     find_quiet(search.found, pyramid);

@@ -4,6 +4,8 @@
 #include <array>
 #include <cmath>
 #include <numbers>
+#include <optional>
+#include <vector>
 
 namespace ringwright::event_search {
 namespace {
@@ -72,44 +74,107 @@ ReleaseFit descend(std::span<const double> points, ReleaseFit best) {
     return best;
 }
 
+/// The blocks in which a release is looked for: a flat stretch, then the decay.
+struct Window {
+    std::size_t first = 0, before = 0, end = 0;  ///< `before` blocks lie before the start as it was found
+    double held = 0.0, spread = 0.0;             ///< mean and standard deviation of the flat stretch
+};
+
+/// The longest flat stretch of three lengths before the start; nothing when none is flat, or when it lies
+/// where the decay ends.
+std::optional<Window> window_before(std::span<const double> means, const Start& start, double cycle,
+                                    std::size_t earliest) {
+    constexpr double flat_share = 0.06, height_share = 0.2;
+    const std::size_t block = start.position >> start.level;
+    const auto after = static_cast<std::size_t>(
+        std::clamp(std::max(1.5 * cycle, 2.0 / start.fit.shape.slow_rate()), 12.0, 120.0));
+    for (const double cycles : {1.2, 0.6, 0.4}) {
+        Window window;
+        window.before = static_cast<std::size_t>(std::clamp(cycles * cycle, 6.0, 40.0));
+        if (block < window.before + earliest) continue;
+        window.first = block - window.before;
+        window.end = std::min({block + after, start.fit_block + start.fit.points, means.size()});
+        if (window.end < block + 8) continue;
+        const std::span<const double> flat = means.subspan(window.first, window.before / 2);
+        const auto n = static_cast<double>(flat.size());
+        for (const double y : flat) window.held += y / n;
+        for (const double y : flat) window.spread += (y - window.held) * (y - window.held) / (n - 1.0);
+        window.spread = std::sqrt(window.spread);
+        const double height = std::abs(window.held - start.fit.offset);
+        const double allowed = std::max(flat_share * height, 1.5 * start.fit.residual_rms());
+        if (window.spread < allowed && height > height_share * start.amplitude) return window;
+    }
+    return {};
+}
+
+ReleaseFit best_release(std::span<const double> points, const Window& window, const DecayShape& shape,
+                        double cycle) {
+    std::vector<ReleaseFit> fits;
+    for (double shift = -0.5; shift <= 1.21; shift += 0.05) {
+        const double moment = static_cast<double>(window.before) + shift * cycle;
+        if (moment < 0.5 * static_cast<double>(window.before) ||
+            moment + 6.0 > static_cast<double>(points.size()))
+            continue;
+        fits.push_back(fit_levels(points, moment, shape));
+        for (const double damping : {0.15, 0.5, 1.0, 2.5})
+            fits.push_back(fit_levels(points, moment, {shape.undamped_angular_frequency, damping}));
+    }
+    if (fits.empty()) return descend(points, fit_levels(points, static_cast<double>(window.before), shape));
+    const auto better = [](const ReleaseFit& a, const ReleaseFit& b) {
+        return a.residual_sum < b.residual_sum;
+    };
+    const std::size_t kept = std::min<std::size_t>(3, fits.size());
+    std::partial_sort(fits.begin(), fits.begin() + static_cast<std::ptrdiff_t>(kept), fits.end(), better);
+    ReleaseFit best = descend(points, fits.front());
+    for (std::size_t i = 1; i < kept; ++i) best = std::min(best, descend(points, fits[i]), better);
+    return best;
+}
+
+/// Sum of squares about the flat stretch up to the start and about the decay as it was found from there on.
+double unjoined_sum(std::span<const double> means, const Window& window, const Start& start) {
+    double sum = 0.0;
+    for (std::size_t k = window.first; k < window.end; ++k) {
+        const double t = static_cast<double>(k) - static_cast<double>(start.fit_block);
+        const double expected = k < window.first + window.before ? window.held : start.fit.value_at(t);
+        sum += (means[k] - expected) * (means[k] - expected);
+    }
+    return sum;
+}
+
+/// Takes the decay over from the release where that lies far from the start as it was found.
+void refit_after(std::span<const double> means, const Window& window, const ReleaseFit& release,
+                 Start& start) {
+    const auto block = window.first + static_cast<std::size_t>(std::ceil(std::max(0.0, release.moment)));
+    if (block + 8 > window.end) return;
+    start.fit_block = block;
+    start.fit = fit_amplitudes(means.subspan(block, window.end - block), release.shape);
+    start.shape = at_level(release.shape, start.level, 0);
+    start.noise_rms = std::sqrt(release.residual_sum / static_cast<double>(window.end - window.first));
+}
+
 }  // namespace
 
 void refine_release(const Pyramid& pyramid, Start& start, const StartLimits& limits) {
+    constexpr double far = 0.15;       // of a cycle
+    constexpr double tolerated = 2.5;  // block means blur the corner at the release
     const std::span<const double> means = pyramid.level(start.level);
     const double cycle = 2.0 * std::numbers::pi / start.fit.shape.undamped_angular_frequency;
-    const auto before = static_cast<std::size_t>(std::clamp(0.6 * cycle, 6.0, 24.0));
-    const std::size_t block = start.position >> start.level;
-    if (block < before + (limits.earliest >> start.level)) return;
-    const std::size_t first = block - before;
-    const auto after = static_cast<std::size_t>(
-        std::clamp(std::max(1.5 * cycle, 2.0 / start.fit.shape.slow_rate()), 12.0, 120.0));
-    const std::size_t end = std::min({block + after, start.fit_block + start.fit.points, means.size()});
-    if (end < block + 8) return;
-    const std::span<const double> points = means.subspan(first, end - first);
-    double held = 0.0, spread = 0.0;
-    const std::size_t flat = before / 2;
-    for (std::size_t k = 0; k < flat; ++k) held += points[k] / static_cast<double>(flat);
-    for (std::size_t k = 0; k < flat; ++k) spread += (points[k] - held) * (points[k] - held);
-    spread = std::sqrt(spread / static_cast<double>(flat));
-    const double height = std::abs(held - start.fit.offset);
-    if (spread > 0.06 * height || height < 0.2 * start.amplitude) return;
-    ReleaseFit best;
-    best.residual_sum = -1.0;
-    for (double shift = -0.3; shift <= 0.31; shift += 0.05) {
-        const ReleaseFit tried =
-            fit_levels(points, static_cast<double>(before) + shift * cycle, start.fit.shape);
-        if (best.residual_sum < 0.0 || tried.residual_sum < best.residual_sum) best = tried;
-    }
-    best = descend(points, best);
-    const double rms = std::sqrt(best.residual_sum / static_cast<double>(points.size()));
-    const double allowed = std::max({2.0 * start.fit.residual_rms(), 2.5 * spread, 0.003 * height});
-    if (rms > allowed) return;
+    const std::optional<Window> window = window_before(means, start, cycle, limits.earliest >> start.level);
+    if (!window) return;
+    const std::span<const double> points = means.subspan(window->first, window->end - window->first);
+    const ReleaseFit best = best_release(points, *window, start.fit.shape, cycle);
+    const double unjoined = unjoined_sum(means, *window, start);
+    const double smallest = 0.003 * (window->held - start.fit.offset);
+    const double least = smallest * smallest * static_cast<double>(points.size());
+    if (best.residual_sum > std::max(tolerated * unjoined, least)) return;
     // A block mean is centred half a block after its first value.
     const double block_length = static_cast<double>(std::size_t{1} << start.level);
-    const double moment = (static_cast<double>(first) + best.moment + 0.5) * block_length - 0.5;
-    // What fell freely before it touched leaves its hold quadratically too, but long before the decay begins.
+    const double moment = (static_cast<double>(window->first) + best.moment + 0.5) * block_length - 0.5;
     const double earlier = static_cast<double>(start.position) - moment;
-    if (earlier > 0.15 * cycle * block_length + block_length) return;
+    const bool moves_far = std::abs(earlier) > far * cycle * block_length + block_length;
+    // What fell freely before it touched leaves its hold quadratically too, but long before the decay begins.
+    if (moves_far && earlier > 0.0 && best.residual_sum > 0.8 * unjoined) return;
+    if (moves_far) refit_after(means, *window, best, start);
     start.position = std::max(static_cast<std::size_t>(std::max(0.0, std::ceil(moment))), limits.earliest);
     start.from_rest = true;
 }

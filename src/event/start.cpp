@@ -86,32 +86,76 @@ std::vector<Trial> trials_over(std::span<const double> means, const Stretch& str
     return trials;
 }
 
-/// The noise variance of one block: the least of the trials that have enough points to show it.
-double noise_variance(const std::vector<Trial>& trials) {
-    double least = -1.0;
+/// How many neighbouring residuals are worth one independent one, (1 + ρ)/(1 − ρ) with the correlation ρ of
+/// neighbours; 1 for white noise.
+double correlation_length(std::span<const double> means, const Trial& trial) {
+    double last = 0.0, products = 0.0, squares = 0.0;
+    for (std::size_t k = 0; k < trial.fit.points; ++k) {
+        const double r = means[trial.first + k] - trial.fit.value_at(static_cast<double>(k));
+        products += r * last, squares += r * r, last = r;
+    }
+    const double rho = squares > 0.0 ? std::clamp(products / squares, 0.0, 0.95) : 0.0;
+    return (1.0 + rho) / (1.0 - rho);
+}
+
+double explained_sum(const Trial& trial) {
+    return trial.fit.total_sum - trial.fit.residual_sum;
+}
+
+/// The noise variance of one block: the least of the trials that have enough points to show it and that hold
+/// enough of the decay. Five numbers fitted to correlated noise take more of it away than five to white
+/// noise.
+double noise_variance(std::span<const double> means, const std::vector<Trial>& trials, bool drop) {
+    constexpr double least_share = 0.15, parameters = 5.0;
+    double most = 0.0, least = -1.0;
+    for (const Trial& trial : trials) most = std::max(most, explained_sum(trial));
     for (const Trial& trial : trials) {
         const std::size_t enough = std::max<std::size_t>(20, trials.front().fit.points);
-        if (trial.fit.points < enough) continue;
-        const double variance = trial.fit.residual_rms() * trial.fit.residual_rms();
+        if (trial.fit.points < enough || explained_sum(trial) < least_share * most) continue;
+        const auto n = static_cast<double>(trial.fit.points);
+        // What a bounce leaves unexplained is correlated, and is no noise.
+        const double freedom = n - parameters * (drop ? 1.0 : correlation_length(means, trial));
+        const double variance = trial.fit.residual_sum / std::max(freedom, 0.2 * n);
         if (least < 0.0 || variance < least) least = variance;
     }
     return std::max(least, 0.0);
 }
 
-/// The variance about a straight line of what the rest shows on this level; nothing when it is too short.
-std::optional<double> rest_variance(std::span<const double> values, std::size_t level,
-                                    const std::optional<SampleRange>& rest) {
+/// What the rest after the decay shows on one level.
+struct RestNoise {
+    double variance = 0.0;     ///< about a straight line
+    double independent = 0.0;  ///< number of blocks over their correlation length
+};
+
+/// Nothing when the rest is too short.
+std::optional<RestNoise> noise_of_rest(std::span<const double> values, std::size_t level,
+                                       const std::optional<SampleRange>& rest) {
     if (!rest) return {};
     constexpr std::size_t fewest = 12, most = 4096;
     const std::size_t begin = (rest->begin >> level) + 1, end = std::min(rest->end >> level, begin + most);
     if (end < begin + fewest) return {};
     const auto n = static_cast<double>(end - begin);
-    double y1 = 0.0, x1 = 0.0, yy = 0.0, xy = 0.0, xx = 0.0;
+    double y1 = 0.0, x1 = 0.0, yy = 0.0, xy = 0.0, xx = 0.0, steps = 0.0;
     for (std::size_t k = begin; k < end; ++k) {
         const double x = static_cast<double>(k - begin) - 0.5 * (n - 1.0), y = values[k] - values[begin];
         x1 += x, y1 += y, yy += y * y, xy += x * y, xx += x * x;
+        if (k > begin) steps += (values[k] - values[k - 1]) * (values[k] - values[k - 1]);
     }
-    return std::max(0.0, (yy - y1 * y1 / n - xy * xy / xx) / (n - 2.0));
+    const double about_line = std::max(0.0, yy - y1 * y1 / n - xy * xy / xx);
+    const double rho = about_line > 0.0 ? std::clamp(1.0 - 0.5 * steps / about_line, 0.0, 0.98) : 0.0;
+    const double length = (1.0 + rho) / (1.0 - rho);
+    return RestNoise{about_line / std::max(n - 2.0 * length, 0.3 * n), n / length};
+}
+
+/// The noise variance of one block: of the rest where it is long, else of the rest or the trials, whichever
+/// shows more.
+double block_noise(std::span<const double> means, std::size_t level, const std::vector<Trial>& trials,
+                   const StartLimits& limits) {
+    constexpr double long_rest = 30.0;
+    const double fitted = noise_variance(means, trials, limits.drop);
+    const std::optional<RestNoise> rest = noise_of_rest(means, level, limits.rest);
+    if (!rest) return fitted;
+    return rest->independent < long_rest && !limits.drop ? std::max(rest->variance, fitted) : rest->variance;
 }
 
 const Trial* cheapest(const std::vector<Trial>& trials, double variance, std::size_t from) {
@@ -191,8 +235,8 @@ void refine_position(const Pyramid& pyramid, Start& start, const StartLimits& li
     const DecayShape shape = at_level(start.shape, 0, fine);
     const std::size_t guess = start.fit_block * ratio;
     const std::size_t end = std::min(values.size(), (start.fit_block + start.fit.points) * ratio);
-    const double rest =
-        std::sqrt(rest_variance(values, fine, limits.rest).value_or(noise_block_rms * noise_block_rms));
+    const std::optional<RestNoise> shown = noise_of_rest(values, fine, limits.rest);
+    const double rest = shown ? std::sqrt(shown->variance) : noise_block_rms;
     const std::optional<Local> local = choose_origin(values, guess, ratio, end, shape, rest);
     start.position = std::max(guess << fine, limits.earliest);
     start.noise_rms = start.fit.residual_rms();
@@ -226,7 +270,7 @@ std::optional<Start> locate_start(const Pyramid& pyramid, const Onset& onset, co
     if (stretch.end < stretch.first + 12) return {};
     const std::vector<Trial> trials = trials_over(means, stretch, shape);
     if (trials.empty()) return {};
-    const double noise = rest_variance(means, start.level, limits.rest).value_or(noise_variance(trials));
+    const double noise = block_noise(means, start.level, trials, limits);
     const double strict_misfit = tolerated_in_cycle * onset.amplitude;
     const Trial* best = limits.drop
                             ? cheapest(trials, std::max(noise, strict_misfit * strict_misfit), stretch.first)

@@ -1,0 +1,158 @@
+#include "event/rivals.hpp"
+
+#include <algorithm>
+#include <cmath>
+#include <numbers>
+
+namespace ringwright::event_search {
+namespace {
+
+/// Height at the share u of its duration, 0 before it.
+using Path = double (*)(double u);
+
+double straight(double u) {
+    return std::clamp(u, 0.0, 1.0);
+}
+double half_cosine(double u) {
+    return 0.5 - 0.5 * std::cos(std::numbers::pi * std::clamp(u, 0.0, 1.0));
+}
+/// Flash and Hogan, J. Neurosci. 5 (1985) 1688, equation 3.
+double least_jerk(double u) {
+    const double x = std::clamp(u, 0.0, 1.0);
+    return x * x * x * (10.0 - 15.0 * x + 6.0 * x * x);
+}
+double half_sine(double u) {
+    return std::sin(std::numbers::pi * std::clamp(u, 0.0, 1.0));
+}
+double half_sine_squared(double u) {
+    return half_sine(u) * half_sine(u);
+}
+
+/// Residual sum of squares of a + b·path((k − begin)/duration).
+double sum_about(std::span<const double> points, Path path, double begin, double duration) {
+    double g1 = 0.0, gg = 0.0, y1 = 0.0, gy = 0.0, yy = 0.0;
+    for (std::size_t k = 0; k < points.size(); ++k) {
+        const double g = path((static_cast<double>(k) - begin) / duration), y = points[k] - points[0];
+        g1 += g, gg += g * g, y1 += y, gy += g * y, yy += y * y;
+    }
+    const auto n = static_cast<double>(points.size());
+    const double spread = gg - g1 * g1 / n, joint = gy - g1 * y1 / n;
+    return yy - y1 * y1 / n - (spread > 1e-9 * n ? joint * joint / spread : 0.0);
+}
+
+struct PathFit {
+    Path path = straight;
+    double begin = 0.0, duration = 1.0, sum = -1.0;  ///< residual sum of squares
+};
+
+void improve(std::span<const double> points, PathFit& best, double begin, double duration) {
+    const double sum = sum_about(points, best.path, begin, duration);
+    if (best.sum < 0.0 || sum < best.sum) best = {best.path, begin, duration, sum};
+}
+
+/// The least over begin and duration: a grid, then a pattern search.
+PathFit fit_path(std::span<const double> points, Path path) {
+    const auto n = static_cast<double>(points.size());
+    PathFit best{path};
+    for (double d = 0.1 * n; d < 2.0 * n; d *= 1.3)
+        for (double b = -0.9 * d; b < 0.9 * n; b += 0.1 * d) improve(points, best, b, d);
+    for (double step = 0.05; step > 1e-3;) {
+        const PathFit from = best;
+        for (const double way : {step, -step}) {
+            improve(points, best, from.begin + way * from.duration, from.duration);
+            improve(points, best, from.begin, from.duration * (1.0 + way));
+            improve(points, best, from.begin + way * from.duration, from.duration * (1.0 - way));
+            improve(points, best, from.begin - 0.5 * way * from.duration, from.duration * (1.0 + way));
+        }
+        if (!(best.sum < from.sum)) step *= 0.5;
+    }
+    return best;
+}
+
+PathFit fit_best_path(std::span<const double> points) {
+    PathFit best = fit_path(points, straight);
+    for (const Path path : {half_cosine, least_jerk, half_sine, half_sine_squared}) {
+        const PathFit fit = fit_path(points, path);
+        if (fit.sum < best.sum) best = fit;
+    }
+    return best;
+}
+
+/// Number of points over the correlation length of what the path leaves unexplained.
+double independent_values(std::span<const double> points, const PathFit& fit) {
+    std::vector<double> heights(points.size());
+    double g1 = 0.0, gg = 0.0, y1 = 0.0, gy = 0.0;
+    for (std::size_t k = 0; k < points.size(); ++k) {
+        const double g = heights[k] = fit.path((static_cast<double>(k) - fit.begin) / fit.duration);
+        g1 += g, gg += g * g, y1 += points[k], gy += g * points[k];
+    }
+    const auto n = static_cast<double>(points.size());
+    const double spread = gg - g1 * g1 / n;
+    const double height = spread > 0.0 ? (gy - g1 * y1 / n) / spread : 0.0;
+    double last = 0.0, products = 0.0, squares = 0.0;
+    for (std::size_t k = 0; k < points.size(); ++k) {
+        const double r = points[k] - y1 / n - height * (heights[k] - g1 / n);
+        products += r * last, squares += r * r, last = r;
+    }
+    const double rho = squares > 0.0 ? std::clamp(products / squares, 0.0, 0.95) : 0.0;
+    return n * (1.0 - rho) / (1.0 + rho);
+}
+
+}  // namespace
+
+bool is_hand_or_pulse(const Pyramid& pyramid, const Found& found) {
+    constexpr double plainly_better = 0.9, surprising = 12.0;
+    const auto length = static_cast<double>(std::max<std::size_t>(8, found.end() - found.begin()));
+    const double before = std::min(std::max(1.5 * length, 1.5 * found.cycle()), 4.0 * length);
+    std::size_t level = 0;
+    while (level + 1 < pyramid.levels() &&
+           (length + before) / std::ldexp(1.0, static_cast<int>(level)) > 240.0)
+        ++level;
+    const std::span<const double> means = pyramid.level(level);
+    const std::size_t begin = (found.begin() + (std::size_t{1} << level) - 1) >> level;
+    const auto back = static_cast<std::size_t>(before) >> level;
+    const std::size_t first = std::max(begin > back ? begin - back : 0, found.quiet_end >> level);
+    const auto ahead = static_cast<std::size_t>(2.0 * length) >> level;
+    const std::size_t end =
+        std::min({begin + std::max<std::size_t>(8, ahead), means.size(), found.course.rest_end >> level});
+    if (begin + 6 > end || begin < first + 4) return false;
+    const DecayShape shape = at_level(found.start.shape, 0, level);
+    const double decay = fit_best_path(means.subspan(first, begin - first)).sum +
+                         fit_amplitudes(means.subspan(begin, end - begin), shape).residual_sum;
+    const std::span<const double> whole = means.subspan(first, end - first);
+    const PathFit rival = fit_best_path(whole);
+    if (rival.sum > plainly_better * decay) return false;
+    // Twice the gain in log likelihood of as many independent values as the residuals amount to.
+    const double gain = std::log(decay / std::max(rival.sum, 1e-12 * decay));
+    return independent_values(whole, rival) * gain > surprising;
+}
+
+double swing_against_elsewhere(const Pyramid& pyramid, const Found& found, const std::vector<Found>& all) {
+    constexpr double plenty = 1e9;
+    constexpr std::size_t fewest = 40;
+    const std::size_t level = found.start.level;
+    const std::span<const double> means = pyramid.level(level);
+    const double cycle = found.cycle() / std::ldexp(1.0, static_cast<int>(level));
+    const double length = static_cast<double>((found.end() - found.begin()) >> level);
+    const auto lag = static_cast<std::size_t>(
+        std::clamp(std::min(0.5 * cycle, length), 2.0, 0.1 * static_cast<double>(means.size()) + 2.0));
+    const auto inside = [&](std::size_t k) {
+        return std::any_of(all.begin(), all.end(), [&](const Found& f) {
+            return k + lag >= f.begin() >> level && k <= f.end() >> level;
+        });
+    };
+    std::vector<double> swings;
+    for (std::size_t k = 0; k + lag < means.size(); ++k)
+        if (!inside(k)) swings.push_back(std::abs(means[k + lag] - means[k]));
+    if (swings.size() < fewest) return plenty;
+    const auto quartile = swings.begin() + static_cast<std::ptrdiff_t>(swings.size() * 3 / 4);
+    std::nth_element(swings.begin(), quartile, swings.end());
+    double largest = 0.0;
+    const std::size_t end = std::min(means.size(), (found.end() >> level) + 1);
+    for (std::size_t k = found.begin() >> level; k < end && k + lag < means.size(); ++k)
+        largest = std::max(largest, std::abs(means[k + lag] - means[k]));
+    largest = std::max(largest, std::min(found.start.amplitude, 2.0 * largest));
+    return *quartile > 0.0 ? largest / *quartile : plenty;
+}
+
+}  // namespace ringwright::event_search
