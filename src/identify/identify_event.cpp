@@ -40,6 +40,13 @@ MethodResult curve_fit_result(const CurveFit& fit, double confidence_level) {
         result.modes.clear();
         return result;
     }
+    const auto ratio = result.quantities.find(Quantity::damping_ratio);
+    if (ratio != result.quantities.end() && ratio->second.interval.high < 0.0) {
+        result.reason = "the oscillation grows instead of dying away; something drives it";
+        result.quantities.clear();
+        result.modes.clear();
+        return result;
+    }
     result.status = MethodStatus::ok;
     return result;
 }
@@ -113,8 +120,8 @@ EventIdentification identify_event(const Recording& recording, const Event& even
     const CurveFit fit = fit_decay(recording, event, fit_options);
     result.curve_fit = curve_fit_result(fit, options.confidence_level);
     result.findings = fit.findings;
-    if (!fit.valid) {
-        result.logarithmic_decrement.reason = result.half_power_bandwidth.reason = fit.reason;
+    if (result.curve_fit.status != MethodStatus::ok) {
+        result.logarithmic_decrement.reason = result.half_power_bandwidth.reason = result.curve_fit.reason;
         return result;
     }
     MethodBootstrap bootstrap;

@@ -2,7 +2,8 @@
 
 #include <Eigen/QR>
 #include <cmath>
-#include <unsupported/Eigen/NonLinearOptimization>
+
+#include "ringwright/least_squares.hpp"
 
 namespace ringwright::identify {
 
@@ -23,7 +24,7 @@ bool usable(const DecayModel& model) {
     return model.parameters().allFinite();
 }
 
-// The functor that Eigen's Levenberg–Marquardt asks for.
+// Whitened residuals of the best linear part, as a function of the nonlinear parameters.
 class Projection {
   public:
     Projection(DecayModel model, const DecaySamples& samples, const AutoregressiveNoise& noise)
@@ -31,22 +32,18 @@ class Projection {
         whiten(noise_, samples_.stretches, response_);
     }
 
-    [[nodiscard]] int inputs() const { return static_cast<int>(model_.nonlinear_count()); }
-    [[nodiscard]] int values() const { return static_cast<int>(samples_.size()); }
-
-    int operator()(const VectorXd& parameters, VectorXd& residual) {
+    void residual_at(const VectorXd& parameters, VectorXd& residual) {
         DecayModel trial = model_;
         trial.set_parameters(parameters);
         if (!usable(trial)) {  // a wall, so that the step is shortened
             residual.setConstant(1e3 * (1.0 + response_.norm()));
-            return 0;
+            return;
         }
         project(trial);
         residual = residual_;
-        return 0;
     }
 
-    int df(const VectorXd& parameters, MatrixXd& jacobian) {
+    void jacobian_at(const VectorXd& parameters, MatrixXd& jacobian) {
         DecayModel trial = model_;
         trial.set_parameters(parameters);
         project(trial);
@@ -56,7 +53,6 @@ class Projection {
         jacobian.topRows(model_.linear_count()).setZero();
         jacobian.applyOnTheLeft(factor_.householderQ());
         jacobian = -jacobian;
-        return 0;
     }
 
     [[nodiscard]] ProjectedFit at(const VectorXd& parameters) {
@@ -94,18 +90,18 @@ ProjectedFit solve_linear(const DecayModel& model, const DecaySamples& samples,
 
 ProjectedFit fit_projected(const DecayModel& start, const DecaySamples& samples,
                            const AutoregressiveNoise& noise, int most_evaluations) {
-    namespace lm = Eigen::LevenbergMarquardtSpace;
     Projection projection(start, samples, noise);
-    Eigen::LevenbergMarquardt<Projection> solver(projection);
-    solver.parameters.maxfev = most_evaluations;
-    solver.parameters.xtol = 1e-9;
-    solver.parameters.ftol = 1e-10;
-    solver.parameters.factor = 1.0;
-    VectorXd parameters = start.parameters();
-    const auto status = solver.minimize(parameters);
-    ProjectedFit fit = projection.at(parameters);
-    fit.converged =
-        status != lm::ImproperInputParameters && status != lm::TooManyFunctionEvaluation && usable(fit.model);
+    LeastSquaresProblem problem;
+    problem.residual_count = samples.size();
+    problem.residuals = [&](const VectorXd& at, VectorXd& residual) { projection.residual_at(at, residual); };
+    problem.jacobian = [&](const VectorXd& at, MatrixXd& jacobian) { projection.jacobian_at(at, jacobian); };
+    LeastSquaresOptions options;
+    options.max_evaluations = most_evaluations;
+    options.tolerance = 1e-10;
+    const LeastSquaresFit found = fit_least_squares(problem, start.parameters(), options);
+    if (!found.parameters.allFinite()) return projection.at(start.parameters());
+    ProjectedFit fit = projection.at(found.parameters);
+    fit.converged = found.converged && usable(fit.model);
     return fit;
 }
 

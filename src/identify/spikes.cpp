@@ -16,8 +16,10 @@ using Eigen::VectorXd;
 namespace {
 
 constexpr double spike_limit = 7.0;  // robust standard deviations: 1e-11 a sample for Gaussian noise
-constexpr double largest_share = 0.01;
+constexpr double largest_share = 0.002;
+constexpr double always_allowed = 4.0;
 constexpr std::size_t longest_spike = 3;  // samples
+constexpr std::size_t alone = 20;         // samples to the next one
 
 VectorXd residual_at_full_rate(const CurveFit& fit) {
     DecaySamples full;
@@ -41,19 +43,24 @@ double robust_deviation(const VectorXd& residual) {
     return *middle / 0.6744897501960817;
 }
 
+// Runs of at most three samples beyond the limit that stand alone: where many stand together, the model is
+// wrong there and nothing is a spike.
 std::vector<std::size_t> find_spikes(const VectorXd& residual, double limit) {
-    std::vector<std::size_t> spikes;
+    std::vector<SampleRange> runs;
     const auto n = static_cast<std::size_t>(residual.size());
-    for (std::size_t i = 0; i < n;) {
-        if (std::abs(residual(static_cast<Index>(i))) <= limit) {
-            ++i;
-            continue;
-        }
-        std::size_t end = i;
-        while (end < n && std::abs(residual(static_cast<Index>(end))) > limit) ++end;
-        if (i > 0 && end - i <= longest_spike)
-            for (std::size_t j = i; j < end; ++j) spikes.push_back(j);
-        i = end;
+    for (std::size_t i = 0; i < n; ++i) {
+        if (std::abs(residual(static_cast<Index>(i))) <= limit) continue;
+        if (!runs.empty() && runs.back().end == i)
+            runs.back().end = i + 1;
+        else
+            runs.push_back({i, i + 1});
+    }
+    std::vector<std::size_t> spikes;
+    for (std::size_t r = 0; r < runs.size(); ++r) {
+        const bool crowded = (r > 0 && runs[r].begin - runs[r - 1].end < alone) ||
+                             (r + 1 < runs.size() && runs[r + 1].begin - runs[r].end < alone);
+        if (crowded || runs[r].begin == 0 || runs[r].end - runs[r].begin > longest_spike) continue;
+        for (std::size_t i = runs[r].begin; i < runs[r].end; ++i) spikes.push_back(i);
     }
     return spikes;
 }
@@ -64,8 +71,8 @@ bool replace_spikes(CurveFit& fit) {
     const VectorXd residual = residual_at_full_rate(fit);
     const double limit = spike_limit * robust_deviation(residual);
     const std::vector<std::size_t> spikes = find_spikes(residual, limit);
-    if (spikes.empty() ||
-        static_cast<double>(spikes.size()) > largest_share * static_cast<double>(residual.size()))
+    if (spikes.empty() || static_cast<double>(spikes.size()) >
+                              always_allowed + largest_share * static_cast<double>(residual.size()))
         return false;
     const auto n = residual.size();
     for (const std::size_t spike : spikes) {
