@@ -122,6 +122,23 @@ Index misfitting_start(const CurveFit& fit) {
     return drop;
 }
 
+// A plucked displacement leaves its plateau as x₀ω²t²/2, so the noise hides the release for a while of about
+// √(2σ/x₀)/ω. Samples of the plateau would pull the fit; that stretch, at most 3 % of a period, is left out
+// where the recording goes back before the release.
+std::size_t hidden_release(const CurveFit& fit, const Recording& recording, const Event& event) {
+    constexpr double largest_share = 0.03;
+    const bool displaced =
+        recording.quantity == MeasuredQuantity::displacement || recording.quantity == MeasuredQuantity::angle;
+    if (event.begin == 0 || event.by_hand || !displaced) return 0;
+    const double omega = fit.oscillator().angular_frequency();
+    const double amplitude = start_amplitude(fit.fit.model, fit.fit.coefficients, 0);
+    const double rows = std::max<double>(1.0, static_cast<double>(fit.samples.size()));
+    const double noise = std::sqrt(fit.fit.residual_sum / rows * static_cast<double>(fit.samples.block));
+    const double hidden = std::sqrt(2.0 * noise / std::max(amplitude, noise)) / omega;
+    const double period = 2.0 * std::numbers::pi / omega;
+    return static_cast<std::size_t>(std::ceil(std::min(hidden, largest_share * period) * fit.window.rate_hz));
+}
+
 bool start_fit(CurveFit& fit, const Event& event, const CurveFitOptions& options) {
     const double guess = options.near_hz.value_or(event.frequency_guess_hz);
     const double span = static_cast<double>(event.end - event.begin) / fit.window.rate_hz;
@@ -159,6 +176,9 @@ CurveFit fit_decay(const Recording& recording, const Event& event, const CurveFi
     const std::size_t end = end_of_fit(event);
     fit.window = cut_window(recording, event.begin, end);
     if (!start_fit(fit, event, options)) return fit;
+    const std::size_t hidden = hidden_release(fit, recording, event);
+    if (hidden > 0 && event.begin + hidden + fewest_decay_samples < event.end)
+        fit.window = cut_window(recording, event.begin + hidden, end);
     reblock(fit);
     fit.reason = "the samples do not determine a decay (too few, or too much noise)";
     for (int attempt = 0; attempt < 4; ++attempt) {

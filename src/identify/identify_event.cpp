@@ -67,6 +67,13 @@ Estimate estimate_from(double value, double deviation, double degrees_of_freedom
     return estimate;
 }
 
+// Degrees of freedom of the curve fit's damping ratio: what the noise model cost holds for all methods.
+double damping_freedom(const CurveFit& fit) {
+    Eigen::VectorXd gradient = Eigen::VectorXd::Zero(fit.map.rows());
+    gradient(fit.linear_count()) = 1.0;
+    return spread_of(fit, gradient).degrees_of_freedom;
+}
+
 // Bias removed, scatter from the replicates; their number limits the degrees of freedom.
 template <typename Reading>
 MethodResult simple_method_result(const Reading& reading, const MethodErrors& errors, const CurveFit& fit,
@@ -79,7 +86,7 @@ MethodResult simple_method_result(const Reading& reading, const MethodErrors& er
     const double frequency = reading.natural_frequency_hz * std::exp(-errors.bias[0]);
     const double ratio = reading.damping_ratio - errors.bias[1];
     const double freedom =
-        1.0 / (1.0 / fit.noise.degrees_of_freedom + 1.0 / static_cast<double>(errors.errors.size() - 1));
+        1.0 / (1.0 / damping_freedom(fit) + 1.0 / static_cast<double>(errors.errors.size() - 1));
     result.quantities =
         quantities_from(estimate_from(frequency, errors.deviation[0], freedom, confidence_level, true),
                         estimate_from(ratio, errors.deviation[1], freedom, confidence_level, false),

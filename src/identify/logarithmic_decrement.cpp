@@ -15,7 +15,7 @@ using Eigen::VectorXd;
 
 namespace {
 
-constexpr double smallest_ratio = 4.0;  // of a difference to its own standard deviation
+constexpr double smallest_ratio = 5.0;  // of a difference to its own standard deviation
 constexpr std::size_t fewest_extremes = 3;
 constexpr double half_window = 0.125;  // cycles to each side of the vertex
 
@@ -51,68 +51,32 @@ std::optional<Extreme> vertex_near(const DecaySamples& samples, double centre, d
     return Extreme{centre + x * half_width, c(0) + x * (c(1) + x * c(2)), last - first};
 }
 
-// The vertex, the window centred on it by two further passes.
-std::optional<Extreme> refine(const DecaySamples& samples, double time, double half_width) {
+// The vertex, the window centred on it by two further passes; nothing when it lies farther than `reach` from
+// where it should be.
+std::optional<Extreme> refine(const DecaySamples& samples, double expected, double half_width, double reach) {
     std::optional<Extreme> extreme;
+    double time = expected;
     for (int pass = 0; pass < 3; ++pass) {
         extreme = vertex_near(samples, time, half_width);
-        if (!extreme) return std::nullopt;
+        if (!extreme || std::abs(extreme->time - expected) > reach) return std::nullopt;
         time = extreme->time;
     }
-    if (time - half_width < samples.time(0) - 0.3 * half_width ||
-        time + half_width > samples.time(samples.size() - 1) + 0.3 * half_width)
-        return std::nullopt;
     return extreme;
 }
 
-// The first extreme: where the samples, less their mean over a whole cycle, turn for the first time.
-std::optional<double> first_extreme_time(const DecaySamples& samples, double half_period) {
-    const double start = samples.time(0) + half_window * half_period;
-    double best_time = 0.0, best = -1.0;
-    double mean = 0.0;
-    Index count = 0;
-    for (Index i = 0; i < samples.size() && samples.time(i) < samples.time(0) + 2.0 * half_period;
-         ++i, ++count)
-        mean += samples.value(i);
-    mean /= static_cast<double>(std::max<Index>(1, count));
-    for (Index i = 0; i < samples.size() && samples.time(i) < start + 1.1 * half_period; ++i) {
-        if (samples.time(i) < start) continue;
-        if (std::abs(samples.value(i) - mean) > best) {
-            best = std::abs(samples.value(i) - mean);
-            best_time = samples.time(i);
-        }
-    }
-    if (best <= 0.0) return std::nullopt;
-    return best_time;
-}
-
-std::vector<Extreme> find_extremes(const DecaySamples& samples, double half_period, double noise) {
+std::vector<Extreme> find_extremes(const DecaySamples& samples, const DecrementSettings& settings) {
     std::vector<Extreme> extremes;
-    const double half_width = 2.0 * half_window * half_period;
-    const std::optional<double> first = first_extreme_time(samples, half_period);
-    if (!first) return extremes;
-    double time = *first;
-    for (;;) {
-        const std::optional<Extreme> extreme = refine(samples, time, half_width);
-        if (!extreme || std::abs(extreme->time - time) > 0.45 * half_period) {
-            if (extremes.empty() &&
-                time < *first + 0.5 * half_period) {  // the first one may be cut by the start
-                time += half_period;
-                continue;
-            }
-            break;
-        }
-        if (!extremes.empty()) {
-            const double difference = std::abs(extreme->value - extremes.back().value);
-            const double deviation = noise * std::sqrt(2.0 / static_cast<double>(extreme->samples)) * 1.5;
-            if (difference < smallest_ratio * deviation) break;
-            if (extremes.size() >= 2) {  // signs alternate
-                const double last = extremes.back().value - extremes[extremes.size() - 2].value;
-                if (last * (extreme->value - extremes.back().value) >= 0.0) break;
-            }
+    const double half_width = 2.0 * half_window * settings.half_period_s;
+    for (int i = 0; i < settings.extremes; ++i) {
+        const double expected = settings.first_time_s + i * settings.half_period_s;
+        const std::optional<Extreme> extreme =
+            refine(samples, expected, half_width, 0.4 * settings.half_period_s);
+        if (!extreme) break;
+        if (extremes.size() >= 2) {  // signs alternate
+            const double last = extremes.back().value - extremes[extremes.size() - 2].value;
+            if (last * (extreme->value - extremes.back().value) >= 0.0) break;
         }
         extremes.push_back(*extreme);
-        time = extreme->time + half_period;
     }
     return extremes;
 }
@@ -138,9 +102,35 @@ VectorXd solve_weighted(const MatrixXd& design, const VectorXd& response, const 
 
 }  // namespace
 
-DecrementReading read_decrement(const DecaySamples& samples, double frequency_hz, double noise) {
+DecrementSettings choose_decrement_settings(const DecaySamples& samples, const Oscillator& oscillator,
+                                            double cosine_amplitude, double sine_amplitude, double noise) {
+    DecrementSettings settings;
+    const double pi = std::numbers::pi, turn = 2.0 * pi * oscillator.damped_frequency_hz();
+    const double decay = oscillator.decay_rate();
+    settings.half_period_s = pi / turn;
+    const double half_width = 2.0 * half_window * settings.half_period_s;
+    // e^(−st)(A cos + B' sin) turns where (B' √p − A s) cos = (A √p + B' s) sin.
+    const double sine = sine_amplitude * oscillator.angular_frequency() / turn;
+    double first =
+        std::atan2(sine * turn - cosine_amplitude * decay, cosine_amplitude * turn + sine * decay) / turn;
+    while (first < samples.time(0) + half_width) first += settings.half_period_s;
+    settings.first_time_s = first;
+    const double size =
+        std::hypot(cosine_amplitude, sine) * (1.0 + std::exp(-decay * settings.half_period_s));
+    const double per_extreme = std::max(1.0, 2.0 * half_width / samples.step_s);
+    const double deviation = 1.5 * noise * std::sqrt(2.0 / per_extreme);
+    const double last_time = samples.time(samples.size() - 1) - half_width;
+    for (double time = first; time <= last_time; time += settings.half_period_s) {
+        const double difference = size * std::exp(-decay * (time - settings.half_period_s));
+        if (settings.extremes > 0 && difference < smallest_ratio * deviation) break;
+        ++settings.extremes;
+    }
+    return settings;
+}
+
+DecrementReading read_decrement(const DecaySamples& samples, const DecrementSettings& settings) {
     DecrementReading reading;
-    const std::vector<Extreme> extremes = find_extremes(samples, 0.5 / frequency_hz, noise);
+    const std::vector<Extreme> extremes = find_extremes(samples, settings);
     if (extremes.size() < fewest_extremes) {
         reading.reason =
             fmt::format("only {} extreme{} stand{} above the noise; at least {} are needed", extremes.size(),

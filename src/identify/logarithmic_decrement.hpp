@@ -25,9 +25,22 @@ struct DecrementReading {
     std::vector<double> extreme_time;    ///< s
 };
 
-/// Reads the decrement. `frequency_hz` is the damped frequency to within about 15 %, `noise` the standard
-/// deviation of the samples. Differences below four times their own standard deviation are not used: beyond
-/// that the logarithm is biased.
-[[nodiscard]] DecrementReading read_decrement(const DecaySamples& samples, double frequency_hz, double noise);
+/// Where the extremes are looked for: chosen once from the data and kept for all replicates of the bootstrap,
+/// so that the noise has no say in which are used.
+struct DecrementSettings {
+    double first_time_s = 0.0;   ///< of the first extreme
+    double half_period_s = 0.0;  ///< between extremes
+    int extremes = 0;            ///< how many stand well above the noise
+};
+
+/// First extreme whose parabola fits into the samples, and as many as keep the difference of neighbours above
+/// five times its own standard deviation: beyond that the logarithm is biased. `offset` and the oscillation
+/// are those of a fit, `noise` the standard deviation of the samples.
+[[nodiscard]] DecrementSettings choose_decrement_settings(const DecaySamples& samples,
+                                                          const Oscillator& oscillator,
+                                                          double cosine_amplitude, double sine_amplitude,
+                                                          double noise);
+
+[[nodiscard]] DecrementReading read_decrement(const DecaySamples& samples, const DecrementSettings& settings);
 
 }  // namespace ringwright::identify

@@ -128,7 +128,11 @@ MethodBootstrap bootstrap_methods(const CurveFit& fit, int replicates, std::uint
     }
     DecaySamples samples = fit.samples;
     samples.value -= setup.interference;
-    readings.decrement = read_decrement(samples, setup.frequency_hz, setup.noise);
+    const Eigen::Index column = fit.fit.model.first_oscillator_column();
+    const DecrementSettings decrement_settings =
+        choose_decrement_settings(samples, fit.oscillator(), fit.fit.coefficients(column),
+                                  fit.fit.coefficients(column + 1), setup.noise);
+    readings.decrement = read_decrement(samples, decrement_settings);
     readings.half_power_settings = choose_half_power_settings(
         samples, setup.frequency_hz, fit.oscillator().decay_rate(), time_to_noise(fit, setup.noise));
     if (samples.stretches.size() == 1)
@@ -156,7 +160,7 @@ MethodBootstrap bootstrap_methods(const CurveFit& fit, int replicates, std::uint
         samples.value = setup.model + noise;
         const std::array<double, 2> error = fit_error(noise);
         if (readings.decrement.valid) {
-            const DecrementReading again = read_decrement(samples, setup.frequency_hz, setup.noise);
+            const DecrementReading again = read_decrement(samples, decrement_settings);
             if (again.valid) collect(result.decrement, again, fit.oscillator(), error);
         }
         if (readings.half_power.valid) {
