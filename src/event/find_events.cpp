@@ -218,13 +218,28 @@ bool believable(const Search& search, const Found& found) {
     return start.noise_rms < std::max(misfit * amplitude, 2.5 * noise);
 }
 
+/// Whether the recording is still for two cycles before the start: no drive that has long been running.
+bool starts_from_quiet(const Pyramid& pyramid, const Found& found) {
+    constexpr double still = 0.25;  // of the amplitude
+    const Start& start = found.start;
+    const std::span<const double> means = pyramid.level(start.level);
+    const double cycle = 2.0 * std::numbers::pi / start.fit.shape.undamped_angular_frequency;
+    const std::size_t end = start.position >> start.level;
+    const auto near = static_cast<std::size_t>(std::ceil(0.2 * cycle)),
+               far = static_cast<std::size_t>(std::ceil(2.2 * cycle));
+    if (end < far) return false;
+    return range_of(means.subspan(end - far, far - near)) <
+           2.0 * still * start.amplitude + 4.0 * start.fit.residual_rms();
+}
+
 void try_onset(Search& search, const Onset& onset) {
     if (taken(search, onset)) return;
     const StartLimits limits = limits_for(search, onset);
     if (limits.latest <= onset.position + 12) return;
     std::optional<Found> found = follow_onset(search, onset, limits);
     if (!found || !believable(search, *found)) return;
-    if (!found->course.falls()) {
+    const bool still = found->course.fall > 0.0 && starts_from_quiet(search.pyramid, *found);
+    if (!found->course.falls() && !still) {
         search.steady = true;
         return;
     }
@@ -263,10 +278,9 @@ void drop_wanderings(std::vector<Found>& found, const Pyramid& pyramid) {
 /// A slow pull to a plateau that the next release leaves is no decay.
 bool is_pull_to(const Found& pull, const Found& release) {
     const double away = std::abs(pull.start.fit.offset - release.start.fit.offset);
-    const bool leads_to_it = release.start.from_rest || away > 0.5 * release.start.amplitude;
     const double speed =
         pull.start.shape.undamped_angular_frequency / release.start.shape.undamped_angular_frequency;
-    return leads_to_it && speed < 0.7;
+    return away > 0.4 * release.start.amplitude && speed < 0.7;
 }
 
 void drop_pulls(std::vector<Found>& found) {

@@ -54,8 +54,8 @@ void improve(std::span<const double> points, PathFit& best, double begin, double
 PathFit fit_path(std::span<const double> points, Path path) {
     const auto n = static_cast<double>(points.size());
     PathFit best{path};
-    for (double d = 0.1 * n; d < 2.0 * n; d *= 1.3)
-        for (double b = -0.9 * d; b < 0.9 * n; b += 0.1 * d) improve(points, best, b, d);
+    for (double d = 0.15 * n; d < 2.0 * n; d *= 1.15)
+        for (double b = -0.9 * d; b < 0.9 * n; b += 0.06 * d) improve(points, best, b, d);
     for (double step = 0.05; step > 1e-3;) {
         const PathFit from = best;
         for (const double way : {step, -step}) {
@@ -106,7 +106,7 @@ bool is_hand_or_pulse(const Pyramid& pyramid, const Found& found) {
     const double before = std::min(std::max(1.5 * length, 1.5 * found.cycle()), 4.0 * length);
     std::size_t level = 0;
     while (level + 1 < pyramid.levels() &&
-           (length + before) / std::ldexp(1.0, static_cast<int>(level)) > 240.0)
+           (length + before) / std::ldexp(1.0, static_cast<int>(level)) > 140.0)
         ++level;
     const std::span<const double> means = pyramid.level(level);
     const std::size_t begin = (found.begin() + (std::size_t{1} << level) - 1) >> level;
