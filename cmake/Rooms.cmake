@@ -39,8 +39,9 @@ set(ringwright_analysis_libraries fmt::fmt Threads::Threads)
 set(ringwright_conformity_libraries Boost::headers Eigen3::Eigen fmt::fmt)
 set(ringwright_ledger_libraries SQLiteCpp sqlite3 OpenSSL::Crypto Boost::headers Eigen3::Eigen fmt::fmt
     nlohmann_json::nlohmann_json)
-set(ringwright_report_libraries fmt::fmt nlohmann_json::nlohmann_json PkgConfig::CAIRO PkgConfig::PANGO
-    PkgConfig::PLPLOT Boost::headers)
+set(ringwright_report_libraries fmt::fmt nlohmann_json::nlohmann_json Boost::headers)
+set(ringwright_drawing_libraries fmt::fmt nlohmann_json::nlohmann_json OpenSSL::Crypto PkgConfig::CAIRO PkgConfig::PANGO
+    PkgConfig::PLPLOT)
 
 function(ringwright_room name)
   cmake_parse_arguments(room "" "" "USES" ${ARGN})
@@ -63,9 +64,22 @@ endfunction()
 # `ringwright`: all rooms as one name, for callers who link the library.
 function(ringwright_umbrella target)
   add_library(${target} INTERFACE)
-  target_link_libraries(${target} INTERFACE ringwright_report ringwright_ledger ringwright_conformity
+  target_link_libraries(${target} INTERFACE ringwright_drawing ringwright_report ringwright_ledger ringwright_conformity
     ringwright_analysis ringwright_property ringwright_identify ringwright_uncertainty ringwright_event
     ringwright_recording ringwright_value)
+endfunction()
+
+# The drawing room as a module beside the program, loaded by it when it draws (docs/decisions/drawing-module.md).
+function(ringwright_drawing_module target)
+  # What the module takes in has to be position-independent.
+  foreach(room value recording drawing)
+    set_target_properties(ringwright_${room} PROPERTIES POSITION_INDEPENDENT_CODE ON)
+  endforeach()
+  add_library(${target} MODULE ${PROJECT_SOURCE_DIR}/src/drawing/drawing_module.cpp)
+  set_target_properties(${target} PROPERTIES PREFIX "" OUTPUT_NAME ringwright_drawing
+    LIBRARY_OUTPUT_DIRECTORY ${CMAKE_RUNTIME_OUTPUT_DIRECTORY})
+  target_link_options(${target} PRIVATE -Wl,--as-needed -Wl,--exclude-libs,ALL -Wl,--no-undefined)
+  target_link_libraries(${target} PRIVATE ringwright_drawing ringwright_flags)
 endfunction()
 
 # The program: build/ringwright, a thin client of the library.
@@ -76,6 +90,9 @@ function(ringwright_program target library)
   endif()
   add_executable(${target} ${sources})
   set_target_properties(${target} PROPERTIES OUTPUT_NAME ringwright)
+  # The drawing libraries stay out of the program: a third of the time of a short command went into loading them.
+  target_link_options(${target} PRIVATE -Wl,--as-needed)
+  add_dependencies(${target} ringwright_drawing_module)
   target_include_directories(${target} PRIVATE ${PROJECT_SOURCE_DIR}/src)
   target_compile_definitions(${target} PRIVATE RINGWRIGHT_VERSION="${PROJECT_VERSION}")
   target_link_libraries(${target} PRIVATE ${library} ringwright_flags fmt::fmt nlohmann_json::nlohmann_json)

@@ -42,6 +42,8 @@ struct Agreement {
 /// What the pictures of one event need. Times in s on the recording's clock, values in units of the samples.
 struct DecayPicture {
     std::vector<double> time_s, observed, fitted, envelope, residual;
+    double offset =
+        0.0;  ///< level about which the decay swings; the lower envelope is its mirror image there
     std::vector<double> half_cycle, log_amplitude,
         log_amplitude_line;                      ///< points used by the logarithmic decrement
     std::vector<double> frequency_hz, spectrum;  ///< magnitude around the mode

@@ -22,6 +22,7 @@ void add_decay(DecayPicture& picture, const Recording& recording, const CurveFit
     picture.residual = to_vector(fit.residual * scale);
     const double amplitude = start_amplitude(fit.fit.model, fit.fit.coefficients, 0);
     const double offset = fit.fit.coefficients(0);
+    picture.offset = offset * scale;
     picture.envelope = to_vector(
         scale * (offset + amplitude * (-fit.oscillator().slowest_rate() * fit.samples.time.array()).exp()));
 }
