@@ -85,7 +85,9 @@ void add_answer_options(CLI::App& command, AnswerArguments& arguments) {
         ->type_name("text|json|csv")
         ->capture_default_str()
         ->group(group);
-    command.add_option("-o,--output", arguments.output, "Write the answer to this file")
+    command
+        .add_option("-o,--output", arguments.output,
+                    "Write the answer to this file; a name that ends in .html, .pdf, .svg or .png is drawn")
         ->type_name("FILE")
         ->group(group);
 }

@@ -34,5 +34,6 @@ void add_verify_command(CLI::App& app, Context& context);
 void add_compare_command(CLI::App& app, Context& context);
 void add_sheet_command(CLI::App& app, Context& context);
 void add_ledger_command(CLI::App& app, Context& context);
+void add_report_command(CLI::App& app, Context& context);
 
 }  // namespace ringwright::app

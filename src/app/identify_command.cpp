@@ -12,6 +12,7 @@
 #include "app/answer_options.hpp"
 #include "app/article_options.hpp"
 #include "app/command.hpp"
+#include "app/drawing.hpp"
 #include "app/filing.hpp"
 #include "app/in_order.hpp"
 #include "app/messages.hpp"
@@ -33,23 +34,30 @@ struct IdentifyArguments {
     ArticleArguments article;
     AnswerArguments answer;
     AnalysisArguments analysis;
+    DrawingArguments drawing;
     bool separate = false;
     std::string sheet, ledger;
     std::optional<TestSheet> read_sheet;
 };
 
-/// The result as it is filed: with what the sheet says of article and test.
-std::string filed_text(const Identification& identification, const std::optional<TestSheet>& sheet) {
+/// The result with what the sheet says of article and test, and the options that give it again.
+nlohmann::ordered_json document_of(const Identification& identification, const IdentifyArguments& arguments) {
     nlohmann::ordered_json json = to_json(identification);
-    if (sheet) json["test_sheet"] = nlohmann::ordered_json::parse(sheet_facts_json(*sheet));
-    return to_text(json, -1);
+    if (arguments.read_sheet)
+        json["test_sheet"] = nlohmann::ordered_json::parse(sheet_facts_json(*arguments.read_sheet));
+    json["options"] = given_options(*arguments.command);
+    return json;
 }
 
-std::string answer_text(const Identification& identification, Format format, bool one_line,
-                        bool with_header) {
+std::string filed_text(const Identification& identification, const IdentifyArguments& arguments) {
+    return to_text(document_of(identification, arguments), -1);
+}
+
+std::string answer_text(const Identification& identification, const IdentifyArguments& arguments,
+                        Format format, bool one_line, bool with_header) {
     switch (format) {
         case Format::json:
-            return to_text(to_json(identification), one_line ? -1 : 2);
+            return to_text(document_of(identification, arguments), one_line ? -1 : 2);
         case Format::csv: {
             const std::string csv = to_csv(identification);
             return with_header ? csv : csv.substr(csv.find('\n') + 1);
@@ -60,15 +68,25 @@ std::string answer_text(const Identification& identification, Format format, boo
     return to_text(identification);
 }
 
+std::string drawn_text(const Identification& identification, const IdentifyArguments& arguments,
+                       DrawnForm form) {
+    return drawn_answer({filed_text(identification, arguments), "", sample_figures(identification), {}},
+                        arguments.drawing, form);
+}
+
 int identify_together(const IdentifyArguments& arguments, const std::vector<LoadedFile>& files,
-                      const AnalysisOptions& options) {
+                      AnalysisOptions options) {
     const Format format = format_from(arguments.answer);
+    const auto form = drawn_form_of(arguments.answer.output);
+    options.identify.pictures = options.keep_samples = form.has_value();
     const Identification identification =
         identify(read_all(files, read_options(arguments.recording)), options);
-    write_answer(answer_text(identification, format, false, true), arguments.answer.output);
     if (identification.answered() && !arguments.ledger.empty())
-        file_result(arguments.ledger, filed_text(identification, arguments.read_sheet), arguments.read_sheet,
+        file_result(arguments.ledger, filed_text(identification, arguments), arguments.read_sheet,
                     given_options(*arguments.command), recordings_of(identification));
+    write_answer(form ? drawn_text(identification, arguments, *form)
+                      : answer_text(identification, arguments, format, false, true),
+                 arguments.answer.output);
     if (identification.answered()) return done;
     say(why_no_answer(identification));
     return no_answer;
@@ -108,11 +126,11 @@ SeparateAnswer identify_one(const IdentifyArguments& arguments, const LoadedFile
         std::vector<RecordingInput> input;
         input.push_back({read_recording(file.file, read), file.added_mass});
         const Identification identification = identify(std::move(input), options);
-        SeparateAnswer answer{answer_text(identification, format, true, with_header), done, {}};
+        SeparateAnswer answer{answer_text(identification, arguments, format, true, with_header), done, {}};
         if (!identification.answered()) {
             answer.status = no_answer, answer.problem = why_no_answer(identification);
         } else if (!arguments.ledger.empty()) {
-            answer.to_file = filed_text(identification, arguments.read_sheet);
+            answer.to_file = filed_text(identification, arguments);
             answer.recordings = recordings_of(identification);
         }
         return answer;
@@ -148,15 +166,15 @@ int identify_separately(const IdentifyArguments& arguments, const std::vector<Lo
         files.size(), jobs,
         [&](std::size_t i) { return identify_one(arguments, files[i], read, options, format, i == 0); },
         [&](std::size_t i, const SeparateAnswer& answer) {
+            if (!answer.to_file.empty())
+                file_result(arguments.ledger, answer.to_file, arguments.read_sheet,
+                            given_options(*arguments.command), answer.recordings);
             const std::string text =
                 (format == Format::text && i > 0 && !answer.text.empty() ? "\n" : "") + answer.text;
             if (to_file)
                 collected += text;
             else
                 write_answer(text, "");
-            if (!answer.to_file.empty())
-                file_result(arguments.ledger, answer.to_file, arguments.read_sheet,
-                            given_options(*arguments.command), answer.recordings);
             if (answer.status != done) say(answer.problem);
             status = graver(status, answer.status);
         });
@@ -175,6 +193,10 @@ std::vector<LoadedFile> all_files(const IdentifyArguments& arguments) {
 }
 
 int run_identify(IdentifyArguments arguments) {
+    const bool drawn = require_drawable(arguments.answer.output, arguments.drawing);
+    if (drawn && arguments.separate)
+        throw UsageError({"--separate", "", "a report or figure is of one result",
+                          "Leave --separate out, or give one FILE at a time"});
     if (!arguments.sheet.empty()) {
         arguments.read_sheet = read_test_sheet(arguments.sheet);
         fill_from_sheet(*arguments.read_sheet, arguments.recording, arguments.article);
@@ -200,6 +222,7 @@ void add_identify_command(CLI::App& app, Context& context) {
     add_article_options(*command, arguments->article);
     add_answer_options(*command, arguments->answer);
     add_analysis_options(*command, arguments->analysis);
+    add_drawing_options(*command, arguments->drawing);
     command
         ->add_flag("--separate", arguments->separate,
                    "One result for each FILE, in their order; JSON: one document a line")

@@ -56,6 +56,7 @@ void set_up(CLI::App& parser, app::Context& context) {
     app::add_compare_command(parser, context);
     app::add_sheet_command(parser, context);
     app::add_ledger_command(parser, context);
+    app::add_report_command(parser, context);
 }
 
 /// Help and version go to standard output through the same path as every answer.

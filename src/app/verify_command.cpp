@@ -9,6 +9,7 @@
 #include <nlohmann/json.hpp>
 
 #include "app/command.hpp"
+#include "app/drawing.hpp"
 #include "app/filing.hpp"
 #include "app/judging.hpp"
 #include "app/messages.hpp"
@@ -24,6 +25,7 @@ namespace {
 
 struct VerifyArguments {
     TestArguments test;
+    DrawingArguments drawing;
     std::string sheet, rule, ledger;
 };
 
@@ -50,10 +52,11 @@ Verdict judge_result(const PooledResult& result, const TestSheet& sheet, const s
 }
 
 nlohmann::ordered_json verdict_document(const Identification& identification, const Verdict& verdict,
-                                        const TestSheet& sheet) {
+                                        const TestSheet& sheet, const CLI::App& command) {
     nlohmann::ordered_json json = to_json(identification);
     json["test_sheet"] = nlohmann::ordered_json::parse(sheet_facts_json(sheet));
     json["verdict"] = to_json(verdict, identification.result.torsional);
+    json["options"] = given_options(command);
     return json;
 }
 
@@ -80,15 +83,21 @@ int run_verify(const VerifyArguments& arguments) {
     const Format format = format_from(arguments.test.answer);
     const TestSheet sheet = read_test_sheet(arguments.sheet);
     (void)decision_from(sheet, arguments.rule);
-    const PreparedTest test = prepare(arguments.test, sheet);
+    const bool drawn = require_drawable(arguments.test.answer.output, arguments.drawing);
+    PreparedTest test = prepare(arguments.test, sheet);
+    test.options.identify.pictures = test.options.keep_samples = drawn;
     refuse_overwriting(arguments.test.answer.output, input_names(test, arguments));
     const Identification identification = run(test);
     const Verdict verdict = judge_result(identification.result, sheet, arguments.rule);
-    const auto document = verdict_document(identification, verdict, sheet);
-    write_answer(answer_text(identification, verdict, document, format), arguments.test.answer.output);
+    const auto document = verdict_document(identification, verdict, sheet, *arguments.test.command);
     if (identification.answered() && !arguments.ledger.empty())
         file_result(arguments.ledger, to_text(document, -1), sheet, given_options(*arguments.test.command),
                     recordings_of(identification));
+    const std::string& output = arguments.test.answer.output;
+    write_answer(drawn ? drawn_answer({to_text(document, -1), "", sample_figures(identification), {}},
+                                      arguments.drawing, *drawn_form_of(output))
+                       : answer_text(identification, verdict, document, format),
+                 output);
     if (identification.answered()) return status_of(verdict.decision);
     say(why_no_answer(identification));
     return no_answer;
@@ -100,6 +109,7 @@ void add_verify_command(CLI::App& app, Context& context) {
     CLI::App* command = app.add_subcommand("verify", "The same, judged against the limits in a test sheet");
     auto arguments = std::make_shared<VerifyArguments>();
     add_test_options(*command, arguments->test);
+    add_drawing_options(*command, arguments->drawing);
     command->add_option("--sheet", arguments->sheet, "Test sheet with the limits; options win over it")
         ->type_name("SHEET.toml")
         ->required();

@@ -1,0 +1,41 @@
+#pragma once
+// Answers that are drawn: reports and figures, by the drawing module, which is loaded on first use.
+
+#include <optional>
+#include <string>
+#include <vector>
+
+#include "ringwright/figures.hpp"
+#include "ringwright/report_document.hpp"
+
+namespace CLI {
+class App;
+}
+
+namespace ringwright::app {
+
+/// What is to be drawn and how.
+struct DrawingArguments {
+    std::string figure, paper = "a4";
+};
+void add_drawing_options(CLI::App& command, DrawingArguments& arguments);
+
+/// The form of a drawn answer that a file name asks for by its ending.
+enum class DrawnForm { html, pdf, svg, png };
+/// Nothing when the ending asks for none of them.
+[[nodiscard]] std::optional<DrawnForm> drawn_form_of(const std::string& output);
+
+/// True when `output` asks for a drawn answer. Throws UsageError for a figure named without one.
+bool require_drawable(const std::string& output, const DrawingArguments& arguments);
+
+/// The figures that need the samples, out of an identification made with pictures and kept samples.
+[[nodiscard]] std::vector<NamedFigure> sample_figures(const Identification& identification);
+
+/// Draws the whole report, or the one figure that is named, in the form that `output` asks for, and returns
+/// its bytes. SVG and PNG hold one figure: the one named, else the first of the report. Throws UsageError
+/// where the figure is not there (and names those that are) or the paper is not known, OutputError where the
+/// drawing module is missing.
+[[nodiscard]] std::string drawn_answer(const ReportInput& input, const DrawingArguments& arguments,
+                                       DrawnForm form);
+
+}  // namespace ringwright::app
