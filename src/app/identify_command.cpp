@@ -81,12 +81,12 @@ int identify_together(const IdentifyArguments& arguments, const std::vector<Load
     options.identify.pictures = options.keep_samples = form.has_value();
     const Identification identification =
         identify(read_all(files, read_options(arguments.recording)), options);
-    if (identification.answered() && !arguments.ledger.empty())
-        file_result(arguments.ledger, filed_text(identification, arguments), arguments.read_sheet,
-                    given_options(*arguments.command), recordings_of(identification));
     write_answer(form ? drawn_text(identification, arguments, *form)
                       : answer_text(identification, arguments, format, false, true),
                  arguments.answer.output);
+    if (identification.answered() && !arguments.ledger.empty())
+        file_result(arguments.ledger, filed_text(identification, arguments), arguments.read_sheet,
+                    given_options(*arguments.command), recordings_of(identification));
     if (identification.answered()) return done;
     say(why_no_answer(identification));
     return no_answer;
@@ -166,15 +166,15 @@ int identify_separately(const IdentifyArguments& arguments, const std::vector<Lo
         files.size(), jobs,
         [&](std::size_t i) { return identify_one(arguments, files[i], read, options, format, i == 0); },
         [&](std::size_t i, const SeparateAnswer& answer) {
-            if (!answer.to_file.empty())
-                file_result(arguments.ledger, answer.to_file, arguments.read_sheet,
-                            given_options(*arguments.command), answer.recordings);
             const std::string text =
                 (format == Format::text && i > 0 && !answer.text.empty() ? "\n" : "") + answer.text;
             if (to_file)
                 collected += text;
             else
                 write_answer(text, "");
+            if (!answer.to_file.empty())
+                file_result(arguments.ledger, answer.to_file, arguments.read_sheet,
+                            given_options(*arguments.command), answer.recordings);
             if (answer.status != done) say(answer.problem);
             status = graver(status, answer.status);
         });

@@ -56,6 +56,25 @@ std::string find_recording(const LedgerRecording& wanted, const std::vector<std:
                       "Name the folders to search: ringwright ledger replay N FOLDER…"});
 }
 
+/// A result that was added later came without its options: what it says of article and confidence stands for
+/// them.
+void fill_from_result(const LedgerEntry& entry, TestArguments& arguments) {
+    if (!entry.arguments.empty()) return;
+    const auto result = nlohmann::ordered_json::parse(entry.result_json, nullptr, false);
+    if (!result.is_object()) return;
+    const std::pair<const char*, std::string*> stated[] = {
+        {"/article/mass/as_written", &arguments.article.mass},
+        {"/article/inertia/as_written", &arguments.article.inertia},
+        {"/article/spring_mass/as_written", &arguments.article.spring_mass}};
+    for (const auto& [place, text] : stated) {
+        const nlohmann::ordered_json::json_pointer pointer(place);
+        if (result.contains(pointer) && result[pointer].is_string())
+            *text = result[pointer].get<std::string>();
+    }
+    if (result.contains("confidence_level") && result["confidence_level"].is_number())
+        arguments.answer.confidence = fmt::format("{}", result["confidence_level"].get<double>());
+}
+
 /// The analysis as it was asked for: its options, its sheet, its recordings.
 PreparedTest prepare_replay(const LedgerEntry& entry, const std::vector<std::string>& folders) {
     CLI::App parser;
@@ -71,6 +90,7 @@ PreparedTest prepare_replay(const LedgerEntry& entry, const std::vector<std::str
                           fmt::format("its options cannot be used here ({})", without_period(error.what())),
                           "Use the version that filed it"});
     }
+    fill_from_result(entry, arguments);
     if (!entry.sheet_text.empty())
         fill_from_sheet(read_test_sheet_from_memory(entry.sheet_text, entry.sheet_name), arguments.recording,
                         arguments.article);

@@ -90,14 +90,14 @@ int run_verify(const VerifyArguments& arguments) {
     const Identification identification = run(test);
     const Verdict verdict = judge_result(identification.result, sheet, arguments.rule);
     const auto document = verdict_document(identification, verdict, sheet, *arguments.test.command);
-    if (identification.answered() && !arguments.ledger.empty())
-        file_result(arguments.ledger, to_text(document, -1), sheet, given_options(*arguments.test.command),
-                    recordings_of(identification));
     const std::string& output = arguments.test.answer.output;
     write_answer(drawn ? drawn_answer({to_text(document, -1), "", sample_figures(identification), {}},
                                       arguments.drawing, *drawn_form_of(output))
                        : answer_text(identification, verdict, document, format),
                  output);
+    if (identification.answered() && !arguments.ledger.empty())
+        file_result(arguments.ledger, to_text(document, -1), sheet, given_options(*arguments.test.command),
+                    recordings_of(identification));
     if (identification.answered()) return status_of(verdict.decision);
     say(why_no_answer(identification));
     return no_answer;

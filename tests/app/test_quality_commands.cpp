@@ -199,10 +199,11 @@ TEST_CASE("ledger: filed, listed, charted, checked, exported, superseded, replay
     CHECK(run({"replay", "2"}).status == 3);
     CHECK(run({"replay", "2", bench.path("archive")}).status == 0);
 
-    const Outcome result =
-        bench.run({"identify", bench.path("run0-0.csv"), "--format", "json", "-o", bench.path("one.json")});
+    const Outcome result = bench.run({"identify", bench.path("run0-0.csv"), "--mass", "3.3 kg", "--format",
+                                      "json", "-o", bench.path("one.json")});
     REQUIRE(result.status == 0);
     CHECK(run({"add", bench.path("one.json"), "--sheet", bench.path("sheet-0.toml")}).status == 0);
+    CHECK(run({"replay", "5"}).status == 0);
     CHECK(run({"supersede", "5", "--reason", "loose cable"}).status == 0);
     CHECK(run({"supersede", "5", "--reason", "again"}).status == 3);
     CHECK(json::parse(run({"chart", "--format", "json"}).out)["values"].size() == 4);

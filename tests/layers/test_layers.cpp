@@ -167,3 +167,16 @@ TEST_CASE("the reader of includes sees a bad one") {
     CHECK(faults("src/value/error.cpp", "#include \"ringwright/unknown.hpp\"\n") == 1);
     CHECK(faults("include/ringwright/unknown.hpp", "") == 1);
 }
+
+TEST_CASE("every page that a source names is there") {
+    const std::regex page(R"(\bdocs/[a-z/_-]+\.md)");
+    std::size_t named = 0;
+    for (const auto& file : source_files())
+        for (std::sregex_iterator found(file.text.begin(), file.text.end(), page), end; found != end;
+             ++found) {
+            INFO(file.path << " names " << found->str());
+            CHECK(fs::exists(project / found->str()));
+            ++named;
+        }
+    CHECK(named > 0);
+}
