@@ -22,6 +22,7 @@ namespace {
 constexpr Index fewest_rows = 12;
 constexpr std::size_t fewest_decay_samples = 16;
 constexpr int noise_rounds = 4;
+constexpr int most_attempts = 5;  // at the window: spikes, start and end each ask for another fit
 constexpr double settled = 0.02;  // change of the parameters between rounds, in standard uncertainties
 
 // How far behind the decay the fit reads on: the noise there is the same noise, and a short decay needs it.
@@ -139,6 +140,23 @@ std::size_t hidden_release(const CurveFit& fit, const Recording& recording, cons
     return static_cast<std::size_t>(std::ceil(std::min(hidden, largest_share * period) * fit.window.rate_hz));
 }
 
+// Whether what is read behind the decay has the same noise as the decay: an F test of the innovations' mean
+// squares (one false alarm in a thousand). A mass that sticks, or a coarse sensor at rest, is quieter; a hand
+// on the bench is louder.
+bool same_noise_behind(const CurveFit& fit, const Event& event) {
+    constexpr double false_alarm = 1e-3;
+    constexpr Index fewest = 20;
+    const double end_s = static_cast<double>(event.end - fit.window.begin) / fit.window.rate_hz;
+    const Index split =
+        std::upper_bound(fit.samples.time.begin(), fit.samples.time.end(), end_s) - fit.samples.time.begin();
+    const Index behind = fit.samples.size() - split;
+    if (split < fewest || behind < fewest) return true;
+    const double ratio = fit.innovations.tail(behind).squaredNorm() / static_cast<double>(behind) /
+                         (fit.innovations.head(split).squaredNorm() / static_cast<double>(split));
+    const double below = f_probability(ratio, static_cast<double>(behind), static_cast<double>(split));
+    return below > false_alarm / 2.0 && below < 1.0 - false_alarm / 2.0;
+}
+
 bool start_fit(CurveFit& fit, const Event& event, const CurveFitOptions& options) {
     const double guess = options.near_hz.value_or(event.frequency_guess_hz);
     const double span = static_cast<double>(event.end - event.begin) / fit.window.rate_hz;
@@ -173,7 +191,7 @@ CurveFit fit_decay(const Recording& recording, const Event& event, const CurveFi
                                  event.end - event.begin, fewest_decay_samples);
         return fit;
     }
-    const std::size_t end = end_of_fit(event);
+    std::size_t end = end_of_fit(event);
     fit.window = cut_window(recording, event.begin, end);
     if (!start_fit(fit, event, options)) return fit;
     const std::size_t hidden = hidden_release(fit, recording, event);
@@ -181,14 +199,20 @@ CurveFit fit_decay(const Recording& recording, const Event& event, const CurveFi
         fit.window = cut_window(recording, event.begin + hidden, end);
     reblock(fit);
     fit.reason = "the samples do not determine a decay (too few, or too much noise)";
-    for (int attempt = 0; attempt < 4; ++attempt) {
+    for (int attempt = 0; attempt < most_attempts; ++attempt) {
         if (fit.samples.size() < fewest_rows || !settle(fit)) return fit;
         if (replace_spikes(fit)) {
             reblock(fit);
             continue;
         }
+        if (end > event.end && !same_noise_behind(fit, event)) {
+            end = event.end;
+            fit.window = cut_window(recording, fit.window.begin, end);
+            reblock(fit);
+            continue;
+        }
         const Index drop = misfitting_start(fit);
-        if (drop == 0 || attempt == 3) break;
+        if (drop == 0 || attempt == most_attempts - 1) break;
         const auto samples = static_cast<std::size_t>(drop * fit.samples.block);
         fit.window = cut_window(recording, fit.window.begin + samples, end);
         reblock(fit);

@@ -87,12 +87,14 @@ TEST_CASE("weight on a spring without a damper") {
 }
 
 TEST_CASE("the same weight rubbing on metal") {
-    // Quick fit 1.479 Hz; apparent ζ runs from 0.010 to 0.08 as it slows down.
+    // Quick fit 1.479 Hz; apparent ζ runs from 0.010 to 0.08 as it slows down. A viscous decay is not what this is, so the
+    // value lies somewhere near the start's; what must hold is that the interval reaches the range.
     const auto found = identified("spring_weight/rubbing.txt");
     REQUIRE(found.answered());
     CHECK(frequency_of(found) == Approx(1.479).epsilon(0.01));
-    CHECK(damping_of(found) > 0.008);
-    CHECK(damping_of(found) < 0.08);
+    const Interval ratio = found.result.quantities.at(Quantity::damping_ratio).interval;
+    CHECK(ratio.high > 0.010);
+    CHECK(ratio.low < 0.08);
 }
 
 TEST_CASE("pendulum tuned to a period of 14 to 16 s") {
