@@ -7,6 +7,7 @@
 #include "event/by_hand.hpp"
 #include "event/found.hpp"
 #include "event/rivals.hpp"
+#include "event/second_hit.hpp"
 #include "event/spectrum.hpp"
 #include "ringwright/error.hpp"
 #include "ringwright/event.hpp"
@@ -90,14 +91,40 @@ StartLimits limits_for(const Search& search, const Onset& onset) {
     return limits;
 }
 
+/// The onset of the last hit, where a second one follows within the first cycles of the decay.
+std::optional<Onset> last_hit(const Pyramid& pyramid, const Onset& onset, std::size_t level,
+                              std::size_t first, const DecayShape& shape) {
+    const std::optional<std::size_t> after = after_second_hit(pyramid.level(level), first, shape);
+    if (!after) return {};
+    Onset hit = onset;
+    hit.fit.shape = at_level(shape, level, onset.level);
+    hit.position = *after << level;
+    hit.block = hit.position >> onset.level;
+    hit.fit_block = hit.block;
+    return hit;
+}
+
+std::optional<Start> locate_last_start(const Search& search, const Onset& onset, const StartLimits& limits) {
+    if (limits.drop) return locate_start(search.pyramid, onset, limits);
+    const std::optional<Onset> hit =
+        last_hit(search.pyramid, onset, onset.level, onset.fit_block, onset.fit.shape);
+    std::optional<Start> start = locate_start(search.pyramid, hit.value_or(onset), limits);
+    if (!start) return {};
+    const std::size_t first = std::max(start->position >> start->level, start->fit_block);
+    const std::optional<Onset> later = last_hit(search.pyramid, onset, start->level, first, start->fit.shape);
+    if (!later) return start;
+    const std::optional<Start> again = locate_start(search.pyramid, *later, limits);
+    return again && again->position > start->position ? again : start;
+}
+
 /// Start and course, the start a second time with the noise that the rest shows.
 std::optional<Found> follow_onset(const Search& search, const Onset& onset, StartLimits limits) {
-    std::optional<Start> start = locate_start(search.pyramid, onset, limits);
+    std::optional<Start> start = locate_last_start(search, onset, limits);
     if (!start || start->position + 8 > limits.latest) return {};
     Course course = follow_decay(search.pyramid, *start, limits.latest);
     if (course.reaches_noise) {
         limits.rest = SampleRange{course.end, course.rest_end};
-        if (std::optional<Start> again = locate_start(search.pyramid, onset, limits)) {
+        if (std::optional<Start> again = locate_last_start(search, onset, limits)) {
             if (again->position + 8 <= limits.latest) {
                 start = again;
                 course = follow_decay(search.pyramid, *start, limits.latest);
@@ -332,6 +359,17 @@ Finding double_hit(double time_s) {
                 time_s)};
 }
 
+/// Whether the first is over within a cycle, unlike the second, which follows within a few of its cycles.
+bool is_first_hit(const Found& first, const Found& second) {
+    constexpr double near = 4.0;
+    const double tune = std::log(first.start.shape.undamped_angular_frequency /
+                                 second.start.shape.undamped_angular_frequency);
+    const bool follows =
+        static_cast<double>(second.begin() - first.begin()) < near * second.cycle() && !first.start.from_rest;
+    const bool brief = static_cast<double>(first.course.rest_end - first.begin()) < second.cycle();
+    return follows && brief && std::abs(tune) > 0.7;
+}
+
 /// A decay that the next one cuts short goes on in it, or is replaced by it when little of it was seen (a
 /// second hit of the same test), or keeps its place with a finding.
 void judge_interruptions(std::vector<Found>& found, const Series& series, const Pyramid& pyramid) {
@@ -340,11 +378,16 @@ void judge_interruptions(std::vector<Found>& found, const Series& series, const 
         const bool cut = i + 1 < found.size() && !found[i].course.reaches_noise &&
                          static_cast<double>(found[i + 1].begin()) <
                              static_cast<double>(found[i].course.rest_end) + 2.0 * found[i].cycle();
-        if (!cut) {
+        const bool first_hit = i + 1 < found.size() && is_first_hit(found[i], found[i + 1]);
+        if (!cut && !first_hit) {
             kept.push_back(std::move(found[i]));
             continue;
         }
         Found& next = found[i + 1];
+        if (is_first_hit(found[i], next)) {
+            next.findings.push_back(double_hit(static_cast<double>(next.begin()) / series.rate_hz()));
+            continue;
+        }
         const double cycles =
             static_cast<double>(found[i].course.rest_end - found[i].begin()) / found[i].cycle();
         if (goes_on(pyramid, found[i], next)) {
@@ -362,6 +405,22 @@ void judge_interruptions(std::vector<Found>& found, const Series& series, const 
         }
     }
     found = std::move(kept);
+}
+
+/// Whether the start is where clipping ended.
+bool starts_clipped(const Search& search, std::size_t position) {
+    return std::any_of(search.recording.clipped.begin(), search.recording.clipped.end(),
+                       [&](const SampleRange& range) {
+                           const std::size_t end = search.series.position_of(range.end);
+                           return end <= position && position <= end + 2;
+                       });
+}
+
+void note_double_hits(std::vector<Found>& found, const Search& search) {
+    if (search.kind == TestKind::drop) return;
+    for (Found& f : found)
+        if (f.findings.empty() && !starts_clipped(search, f.begin()) && rings_before(search.pyramid, f.start))
+            f.findings.push_back(double_hit(static_cast<double>(f.begin()) / search.series.rate_hz()));
 }
 
 /// The undisturbed stretch before each event: the rest after the one before it, or the head of the recording.
@@ -498,6 +557,7 @@ EventSearch search_whole(const Recording& recording, const EventOptions& options
     drop_wanderings(search.found, pyramid);
     drop_pulls(search.found);
     judge_interruptions(search.found, series, pyramid);
+    note_double_hits(search.found, search);
     find_quiet(search.found, pyramid);
     for (const Found& found : search.found) result.events.push_back(to_event(found, search, options));
     note_hum(search, result);

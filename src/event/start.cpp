@@ -225,6 +225,22 @@ std::optional<Local> choose_origin(std::span<const double> values, std::size_t g
     return {};
 }
 
+/// Whether one decay fits from the first value of the recording, less than a quarter of a cycle before, as
+/// well as from `first` but for what noise may cost: then it was running when the recording began.
+bool fits_from_first(std::span<const double> values, const Local& local, std::size_t first, double floor) {
+    constexpr double share_of_cycle = 0.25, cost_of_value = 3.0, cost_of_fit = 8.0;
+    const DecayShape& shape = local.fit.shape;
+    const double time = std::max(2.0 * std::numbers::pi / shape.undamped_angular_frequency,
+                                 shape.rings() ? 0.0 : 2.0 / shape.slow_rate());
+    if (first == 0 || static_cast<double>(first) > share_of_cycle * time) return false;
+    const std::size_t end = local.origin + local.fit.points;
+    const std::optional<DecayFit> whole = fit_decay(values.subspan(0, end), shape);
+    const std::optional<DecayFit> part = fit_decay(values.subspan(first, end - first), shape);
+    if (!whole || !part) return false;
+    const double allowed = cost_of_value * static_cast<double>(first) + cost_of_fit;
+    return whole->residual_sum < part->residual_sum + allowed * floor * floor;
+}
+
 /// The start among single values (or fine blocks): back from the fitted stretch for as long as the decay
 /// explains them.
 void refine_position(const Pyramid& pyramid, Start& start, const StartLimits& limits,
@@ -255,6 +271,7 @@ void refine_position(const Pyramid& pyramid, Start& start, const StartLimits& li
         gain += price - r * r;
         if (gain > best) best = gain, first = k;
     }
+    if (earliest == 0 && fits_from_first(values, *local, first, floor)) first = 0;
     start.position = std::max(first << fine, limits.earliest);
 }
 

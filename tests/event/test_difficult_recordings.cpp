@@ -1,0 +1,150 @@
+// The search where it is hard: noise 20 dB below the amplitude, white and coloured, second hits, and what
+// must be refused. Truth from the simulator; seeds are written at each case.
+
+#include <catch2/catch.hpp>
+
+#include "event/simulator.hpp"
+#include "ringwright/event.hpp"
+
+using namespace ringwright;
+using simulator::Generator;
+using simulator::Mode;
+using simulator::Noise;
+using simulator::Simulated;
+
+namespace {
+
+constexpr double rate_hz = 250.0;  // 50 samples a cycle of the 5 Hz mode
+
+/// Seven time constants of the slow term, between 4 and 40 cycles.
+double record_s(const Mode& mode) {
+    const double w = 2.0 * std::numbers::pi * mode.frequency_hz, z = mode.damping_ratio;
+    const double slow = z < 1.0 ? z * w : w / (z + std::sqrt(z * z - 1.0));
+    return std::min(std::max(7.0 / slow, 4.0 / mode.frequency_hz), 40.0 / mode.frequency_hz);
+}
+
+double begin_error_cycles(const Simulated& truth, const Event& event, std::size_t which = 0) {
+    return (static_cast<double>(event.begin) - static_cast<double>(truth.begins[which])) /
+           truth.samples_per_cycle;
+}
+
+bool has_finding(const Event& event, const std::string& code) {
+    return std::any_of(event.findings.begin(), event.findings.end(),
+                       [&](const Finding& finding) { return finding.code == code; });
+}
+
+}  // namespace
+
+TEST_CASE("noise of a tenth of the amplitude neither hides nor splits a running decay") {
+    for (const double damping : {0.002, 0.03, 0.1, 0.3, 0.7, 1.0, 1.5}) {
+        for (const double phi : {0.0, 0.9}) {
+            for (const std::uint64_t seed : {301U, 302U}) {
+                INFO("damping ratio " << damping << ", phi " << phi << ", seed " << seed);
+                Generator generator(seed);
+                const Mode mode{5.0, damping};
+                const auto truth =
+                    simulator::running_decay(mode, rate_hz, record_s(mode), 0.3, Noise{20.0, phi}, generator);
+                const EventSearch search = find_events(truth.recording);
+                REQUIRE(search.events.size() == 1);
+                CHECK(search.events[0].begin == 0);
+            }
+        }
+    }
+}
+
+TEST_CASE("noise of a tenth of the amplitude neither hides nor splits a release") {
+    for (const double damping : {0.002, 0.03, 0.1, 0.3, 0.7, 1.0}) {
+        for (const double phi : {0.0, 0.9}) {
+            INFO("damping ratio " << damping << ", phi " << phi);
+            Generator generator(311);
+            const Mode mode{5.0, damping};
+            const simulator::Pull pull{1.0, 1.5, 0.8, record_s(mode), 0.002, 1};
+            const auto truth = simulator::plucks(mode, rate_hz, pull, MeasuredQuantity::displacement,
+                                                 Noise{20.0, phi}, generator);
+            const EventSearch search = find_events(truth.recording);
+            REQUIRE(search.events.size() == 1);
+            // Plateau and decay part by one standard deviation after 7 % of a cycle, by three after 13 %;
+            // coloured noise of 20 samples' memory hides twice that.
+            CHECK(begin_error_cycles(truth, search.events[0]) > (phi > 0.0 ? -0.3 : -0.15));
+            CHECK(begin_error_cycles(truth, search.events[0]) < 0.07);
+        }
+    }
+}
+
+TEST_CASE("three releases in noise of a tenth of the amplitude are three") {
+    for (const double damping : {0.0005, 0.02, 0.3, 0.7}) {
+        INFO("damping ratio " << damping);
+        Generator generator(321);
+        const Mode mode{5.0, damping};
+        const simulator::Pull pull{1.0, 1.5, 0.8, record_s(mode), 0.002, 3};
+        const auto truth =
+            simulator::plucks(mode, rate_hz, pull, MeasuredQuantity::displacement, Noise{20.0}, generator);
+        const EventSearch search = find_events(truth.recording);
+        REQUIRE(search.events.size() == 3);
+        for (std::size_t k = 0; k < 3; ++k)  // as above
+            CHECK(std::abs(begin_error_cycles(truth, search.events[k], k)) < 0.15);
+    }
+}
+
+TEST_CASE("of two hits the decay after the second is used, and it is said") {
+    for (const auto quantity : {MeasuredQuantity::acceleration, MeasuredQuantity::displacement}) {
+        for (const double gap_cycles : {0.8, 1.3, 1.6, 2.3, 3.0}) {
+            INFO("gap of " << gap_cycles << " cycles");
+            Generator generator(331);
+            const auto truth = simulator::taps({20.0, 0.02}, 2000.0, 4.0, {0.5, 0.5 + gap_cycles / 20.0},
+                                               0.004, quantity, Noise{50.0}, generator);
+            const EventSearch search = find_events(truth.recording);
+            REQUIRE(search.events.size() == 1);
+            // Displacement leaves the decay as the cube of the time before the end of contact.
+            CHECK(std::abs(begin_error_cycles(truth, search.events[0], 1)) < 0.06);
+            CHECK(has_finding(search.events[0], "double_hit"));
+        }
+    }
+}
+
+TEST_CASE("a single tap or release is no double hit") {
+    Generator generator(341);
+    const auto tap = simulator::taps({20.0, 0.02}, 2000.0, 4.0, {0.5}, 0.006, MeasuredQuantity::acceleration,
+                                     Noise{40.0}, generator);
+    const auto release =
+        simulator::plucks({5.0, 0.02}, rate_hz, {}, MeasuredQuantity::displacement, Noise{40.0}, generator);
+    for (const Simulated& truth : {tap, release}) {
+        const EventSearch search = find_events(truth.recording);
+        REQUIRE(search.events.size() == 1);
+        CHECK_FALSE(has_finding(search.events[0], "double_hit"));
+    }
+}
+
+TEST_CASE("a hand's path, a pulse and wandering noise are refused") {
+    Generator generator(351);
+    Recording recording;
+    recording.clock.sample_rate_hz = 500.0;
+    recording.samples = simulator::coloured_noise(generator, 4000, 0.01, 0.0);
+    const auto add = [&](std::size_t first, std::size_t last, const auto& height) {
+        for (std::size_t i = first; i < recording.samples.size(); ++i)
+            recording.samples[i] +=
+                height(std::min(1.0, static_cast<double>(i - first) / static_cast<double>(last - first)));
+    };
+    SECTION("a slow pull along half a cosine") {
+        add(1000, 2000, [](double u) { return 0.5 - 0.5 * std::cos(std::numbers::pi * u); });
+    }
+    SECTION("a slow pull at constant speed") {
+        add(1000, 2000, [](double u) { return u; });
+    }
+    SECTION("half a sine of displacement") {
+        add(1000, 1100, [](double u) { return std::sin(std::numbers::pi * u); });
+    }
+    SECTION("first-order noise") {
+        const double phi = GENERATE(0.9, 0.95);
+        recording.samples = simulator::coloured_noise(generator, 8000, 1.0, phi);
+    }
+    SECTION("acceleration spikes of a few samples") {
+        recording.quantity = MeasuredQuantity::acceleration;
+        for (const std::size_t at : {1000U, 2000U, 2700U})
+            for (std::size_t i = 0; i < 6; ++i)
+                recording.samples[at + i] += std::exp(-0.7 * static_cast<double>(i));
+    }
+    const EventSearch search = find_events(recording);
+    CHECK(search.events.empty());
+    CHECK_FALSE(search.reason.empty());
+}
