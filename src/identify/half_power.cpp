@@ -62,11 +62,11 @@ std::optional<WindowedRecord> cut_at_crossing(const DecaySamples& samples,
     const Index count =
         std::upper_bound(samples.time.begin(), samples.time.end(), settings.end_s) - samples.time.begin();
     if (count < 16) return std::nullopt;
-    const double offset = offset_of(samples, settings.frequency_hz, count);
+    const double offset = offset_of(samples, settings.cycle_hz, count);
     const VectorXd value = samples.value.head(count).array() - offset;
     Index first = 1;
     while (first < count && !(value(first - 1) * value(first) <= 0.0 && value(first) != 0.0)) ++first;
-    if (first + 12 > count || samples.time(first) - samples.time(0) > 0.8 / settings.frequency_hz)
+    if (first + 12 > count || samples.time(first) - samples.time(0) > 0.8 / settings.cycle_hz)
         return std::nullopt;
     const double share =
         value(first) / (value(first) - value(first - 1));  // of the step, from crossing to sample
@@ -102,7 +102,7 @@ double peak_near(const WindowedRecord& record, double frequency_hz, double width
         }
     }
     double h = known ? 0.2 * width_hz : reach / 4.0;
-    for (int i = 0; i < (known ? 2 : 4); ++i) {
+    for (int i = 0; i < (known ? 3 : 4); ++i) {
         const double left = std::log(record.power(best - h)), middle = std::log(record.power(best)),
                      right = std::log(record.power(best + h));
         const double bend = left - 2.0 * middle + right;
@@ -182,6 +182,7 @@ HalfPowerReading read_half_power(const DecaySamples& samples, const HalfPowerSet
 HalfPowerSettings choose_half_power_settings(const DecaySamples& samples, double frequency_hz,
                                              double decay_rate, double end_s) {
     HalfPowerSettings settings;
+    settings.cycle_hz = frequency_hz;
     settings.frequency_hz = frequency_hz;
     settings.end_s = std::min(end_s, samples.time(samples.size() - 1));
     const double length = std::max(samples.step_s, settings.end_s - 0.25 / frequency_hz);

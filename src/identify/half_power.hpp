@@ -9,6 +9,7 @@ namespace ringwright::identify {
 
 /// How the spectrum is taken: chosen once from the data and kept for all replicates of the bootstrap.
 struct HalfPowerSettings {
+    double cycle_hz = 0.0;      ///< damped frequency: the offset is a mean over whole cycles of it
     double frequency_hz = 0.0;  ///< where the peak is, to within about 20 %
     double end_s = 0.0;         ///< the record is cut here
     double window_rate =

@@ -146,6 +146,7 @@ MethodBootstrap bootstrap_methods(const CurveFit& fit, int replicates, std::uint
         settings.frequency_hz = readings.half_power.peak_hz;
         settings.width_hz = readings.half_power.high_hz - readings.half_power.low_hz;
         settings.peak_known = true;
+        readings.half_power = read_half_power(samples, settings);  // as the replicates will be read
     }
     const FitError fit_error(fit);
     const std::vector<const NoiseDraw*> draws = spread_draws(fit.noise, replicates);
