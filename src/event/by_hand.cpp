@@ -6,6 +6,7 @@
 #include <cmath>
 #include <span>
 
+#include "event/health.hpp"
 #include "event/spectrum.hpp"
 #include "ringwright/error.hpp"
 
@@ -74,6 +75,18 @@ std::optional<Found> decay_from_first(const Pyramid& pyramid, std::size_t size) 
     return best;
 }
 
+/// Clipping anywhere in the window: what the user chose is fitted as it stands.
+std::optional<Finding> clipping_in(const Recording& recording, const Event& event) {
+    for (const SampleRange& range : recording.clipped) {
+        if (range.end <= event.begin || range.begin >= event.rest_end) continue;
+        return Finding{"clipped_samples", Severity::caution,
+                       fmt::format("The window holds clipped samples, the first {:.4g} s into the recording. "
+                                   "Begin it after the last of them, or lower the gain or the amplitude.",
+                                   recording.clock.time_of(range.begin) - recording.clock.time_of(0))};
+    }
+    return {};
+}
+
 }  // namespace
 
 EventSearch search_by_hand(const Recording& recording, const EventOptions& options) {
@@ -88,13 +101,21 @@ EventSearch search_by_hand(const Recording& recording, const EventOptions& optio
     const std::size_t first = series.position_of(window.begin), last = series.position_of(window.end);
     const std::span<const double> values = series.values().subspan(first, last - first);
     const Pyramid pyramid(values);
-    if (const std::optional<Found> found = decay_from_first(pyramid, values.size())) {
-        event.end = std::clamp(series.sample_at(first + found->end()), event.begin + 1, window.end);
-        event.noise_level = found->start.noise_rms;
-        event.start_amplitude = found->start.amplitude;
-        event.frequency_guess_hz = ringing_frequency(pyramid, series.rate_hz(), *found, options.near_hz);
+    const std::optional<Found> decay = decay_from_first(pyramid, values.size());
+    if (decay) {
+        event.end = std::clamp(series.sample_at(first + decay->end()), event.begin + 1, window.end);
+        event.noise_level = decay->start.noise_rms;
+        event.start_amplitude = decay->start.amplitude;
+        event.frequency_guess_hz = ringing_frequency(pyramid, series.rate_hz(), *decay, options.near_hz);
     }
+    if (const auto finding = clipping_in(recording, event)) event.findings.push_back(*finding);
     EventSearch result;
+    if (decay) {
+        if (const auto finding = sampling_finding(decay->cycle())) event.findings.push_back(*finding);
+        const std::span<const double> rest = values.subspan(decay->end(), values.size() - decay->end());
+        if (const auto finding = hum_finding(rest, series.rate_hz(), 1.0 / decay->cycle()))
+            result.findings.push_back(*finding);
+    }
     result.events.push_back(event);
     return result;
 }

@@ -240,6 +240,19 @@ DecayFit fit_amplitudes(std::span<const double> points, const DecayShape& shape)
     return fit;
 }
 
+double roughly_explained(std::span<const double> points) {
+    const double per_cycle = 2.0 * std::numbers::pi / static_cast<double>(points.size());
+    const double highest = static_cast<double>(points.size()) / 2.3;
+    double best = 0.0;
+    for (double cycles = 0.5; cycles <= highest; cycles += 0.6)
+        best = std::max(
+            best,
+            fit_amplitudes(points, {cycles * per_cycle, 0.25 / (1.0 + 2.0 * cycles)}).explained_ratio());
+    for (double cycles = 0.4; cycles <= highest; cycles *= 2.0)
+        best = std::max(best, fit_amplitudes(points, {cycles * per_cycle, 0.5}).explained_ratio());
+    return best;
+}
+
 std::optional<DecayFit> fit_decay(std::span<const double> points, const std::optional<DecayShape>& start) {
     if (points.size() < 8) return {};
     if (start) {

@@ -49,6 +49,8 @@ struct DecayFit {
 
 /// The fit with the shape held.
 [[nodiscard]] DecayFit fit_amplitudes(std::span<const double> points, const DecayShape& shape);
+/// (explained)/(residual sum of squares) of the best among a coarse grid of shapes: what a fit can hope for.
+[[nodiscard]] double roughly_explained(std::span<const double> points);
 /// Shape and amplitudes, by variable projection from `start`, or from the best of a grid of shapes when none
 /// is given. Nothing with fewer than 8 points or for a constant.
 [[nodiscard]] std::optional<DecayFit> fit_decay(std::span<const double> points,

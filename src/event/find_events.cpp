@@ -6,6 +6,7 @@
 
 #include "event/by_hand.hpp"
 #include "event/found.hpp"
+#include "event/health.hpp"
 #include "event/rivals.hpp"
 #include "event/second_hit.hpp"
 #include "event/spectrum.hpp"
@@ -121,6 +122,8 @@ std::optional<Start> locate_last_start(const Search& search, const Onset& onset,
 std::optional<Found> follow_onset(const Search& search, const Onset& onset, StartLimits limits) {
     std::optional<Start> start = locate_last_start(search, onset, limits);
     if (!start || start->position + 8 > limits.latest) return {};
+    // What does not stand out of the noise is not worth following through a long recording.
+    if (start->amplitude < 0.8 * least_amplitude * start->noise_rms) return {};
     Course course = follow_decay(search.pyramid, *start, limits.latest);
     if (course.reaches_noise) {
         limits.rest = SampleRange{course.end, course.rest_end};
@@ -452,51 +455,15 @@ void note_clipping(const Search& search, Event& event) {
     }
 }
 
-void note_sampling(const Found& found, Event& event) {
-    const double per_cycle = found.cycle();
-    if (per_cycle >= 8.0) return;
-    event.findings.push_back(
-        {"too_low_sampling_rate", per_cycle < 4.0 ? Severity::defect : Severity::caution,
-         fmt::format("There are only {:.1f} samples a cycle. Record at a higher rate: 20 samples "
-                     "a cycle or more.",
-                     per_cycle)});
-}
-
-/// Share of one line's amplitude in the rest against its own noise; mains at 50 or 60 Hz.
-double line_to_noise(std::span<const double> rest, double cycles_per_sample) {
-    double cosine = 0.0, sine = 0.0, squares = 0.0, mean = 0.0;
-    const auto n = static_cast<double>(rest.size());
-    for (const double y : rest) mean += y / n;
-    for (std::size_t k = 0; k < rest.size(); ++k) {
-        const double angle = 2.0 * std::numbers::pi * cycles_per_sample * static_cast<double>(k);
-        cosine += (rest[k] - mean) * std::cos(angle), sine += (rest[k] - mean) * std::sin(angle);
-        squares += (rest[k] - mean) * (rest[k] - mean);
-    }
-    const double explained = 2.0 * (cosine * cosine + sine * sine) / n;
-    return squares > 0.0 ? explained / squares : 0.0;
-}
-
-/// Mains hum takes at least a third of what the rest after the first decay shows.
+/// Mains hum in the rest after the first decay.
 void note_hum(const Search& search, EventSearch& result) {
-    constexpr double hum_share = 0.33;
-    constexpr std::size_t most = 65536;
     if (search.found.empty()) return;
     const Course& course = search.found.front().course;
-    const std::size_t begin = course.end, size = std::min(course.rest_end - course.end, most);
-    for (const double mains_hz : {50.0, 60.0}) {
-        const double cycles_per_sample = mains_hz / search.series.rate_hz();
-        if (cycles_per_sample > 0.45 || static_cast<double>(size) * cycles_per_sample < 5.0) continue;
-        const double mode = 1.0 / search.found.front().cycle();
-        if (std::abs(mode / cycles_per_sample - 1.0) < 0.1) continue;
-        if (line_to_noise(search.series.values().subspan(begin, size), cycles_per_sample) < hum_share)
-            continue;
-        result.findings.push_back(
-            {"mains_hum", Severity::note,
-             fmt::format("Most of the noise after the decay is mains hum at {:.0f} Hz. Check "
-                         "earthing and shielding of the sensor's cable.",
-                         mains_hz)});
-        return;
-    }
+    const std::span<const double> rest =
+        search.series.values().subspan(course.end, course.rest_end - course.end);
+    const std::optional<Finding> hum =
+        hum_finding(rest, search.series.rate_hz(), 1.0 / search.found.front().cycle());
+    if (hum) result.findings.push_back(*hum);
 }
 
 Event to_event(const Found& found, const Search& search, const EventOptions& options) {
@@ -515,7 +482,7 @@ Event to_event(const Found& found, const Search& search, const EventOptions& opt
     event.frequency_guess_hz = ringing_frequency(search.pyramid, series.rate_hz(), found, options.near_hz);
     event.findings = found.findings;
     note_clipping(search, event);
-    note_sampling(found, event);
+    if (const auto finding = sampling_finding(found.cycle())) event.findings.push_back(*finding);
     return event;
 }
 

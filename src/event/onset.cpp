@@ -81,8 +81,18 @@ double finely_explained(const Pyramid& pyramid, std::size_t level, std::size_t f
     return fit_amplitudes(values, at_level(fit.shape, level, level - finer)).explained_ratio();
 }
 
+/// Whether even the best of a coarse grid of shapes explains little: most places of a noisy recording.
+bool hopeless(std::span<const double> means, const Place& place) {
+    constexpr double little = 0.6;
+    constexpr std::size_t skipped = 3;
+    const std::size_t first = place.block + skipped;
+    if (first + shortest_fit > means.size()) return false;
+    return roughly_explained(means.subspan(first, std::min(fit_blocks, means.size() - first))) < little;
+}
+
 void try_place(const Pyramid& pyramid, std::size_t level, const Place& place, std::vector<Onset>& onsets) {
     const std::span<const double> means = pyramid.level(level);
+    if (hopeless(means, place)) return;
     std::optional<Onset> best;
     for (const std::size_t skipped : {std::size_t{0}, std::size_t{3}, std::size_t{7}}) {
         const std::size_t first = place.block + skipped;
