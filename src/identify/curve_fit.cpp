@@ -6,6 +6,7 @@
 #include <algorithm>
 #include <cmath>
 #include <numbers>
+#include <vector>
 
 #include "identify/curve_fit_steps.hpp"
 #include "identify/start_values.hpp"
@@ -182,6 +183,31 @@ void reblock(CurveFit& fit) {
     fit.fit = fit_projected(fit.fit.model, fit.samples, fit.noise.noise);
 }
 
+// The mode meant comes first: the one nearest `near_hz`, else the one with the most energy (A²/4ζω).
+bool put_mode_first(CurveFit& fit, std::optional<double> near_hz) {
+    std::vector<Oscillator>& modes = fit.fit.model.oscillators;
+    const auto rank = [&](std::size_t i) {
+        if (near_hz)
+            return std::abs(std::log(modes[i].angular_frequency() / (2.0 * std::numbers::pi * *near_hz)));
+        const double amplitude = start_amplitude(fit.fit.model, fit.fit.coefficients, i);
+        return -amplitude * amplitude / std::max(modes[i].slowest_rate(), 1e-300);
+    };
+    std::size_t first = 0;
+    for (std::size_t i = 1; i < modes.size(); ++i)
+        if (rank(i) < rank(first)) first = i;
+    constexpr double near_enough = 0.22;  // of the logarithm: 25 %
+    if (near_hz && rank(first) > near_enough) {
+        fit.reason = fmt::format("no mode was found near {:g} Hz; the nearest rings at {:.4g} Hz", *near_hz,
+                                 modes[first].angular_frequency() / (2.0 * std::numbers::pi));
+        return false;
+    }
+    if (first != 0) {
+        std::swap(modes[0], modes[first]);
+        fit.fit = solve_linear(fit.fit.model, fit.samples, fit.noise.noise);
+    }
+    return true;
+}
+
 }  // namespace
 
 CurveFit fit_decay(const Recording& recording, const Event& event, const CurveFitOptions& options) {
@@ -218,6 +244,8 @@ CurveFit fit_decay(const Recording& recording, const Event& event, const CurveFi
         reblock(fit);
     }
     add_components(fit, options);
+    if (!put_mode_first(fit, options.near_hz)) return fit;
+    describe_components(fit);
     fit.valid = estimate_noise(fit, options.noise_draws, options.seed);
     if (fit.valid) fit.reason.clear();
     return fit;

@@ -18,5 +18,7 @@ bool replace_spikes(CurveFit& fit);
 /// Adds steady tones (hum) and further modes that the residuals show, each where the likelihood gains what
 /// chance alone reaches in one recording in a thousand.
 void add_components(CurveFit& fit, const CurveFitOptions& options);
+/// A finding for each tone and each mode beside the one that comes first.
+void describe_components(CurveFit& fit);
 
 }  // namespace ringwright::identify

@@ -2,6 +2,7 @@
 
 #include <algorithm>
 #include <cmath>
+#include <limits>
 #include <numbers>
 #include <numeric>
 
@@ -18,12 +19,37 @@ constexpr double coarsest_turn = 2.0 * std::numbers::pi / 8.0;  // loses 5 %
 constexpr double enough_blocks = 8000.0;
 constexpr std::size_t shortest_run = 4;  // samples; shorter runs between clipped ones tell nothing
 
+// Highest and lowest value that is still below the rails; a rail that was never met is infinite.
+struct Rails {
+    double low = -std::numeric_limits<double>::infinity(), high = std::numeric_limits<double>::infinity();
+};
+
+Rails rails_of(const Recording& recording) {
+    Rails rails;
+    if (recording.clipped.empty()) return rails;
+    double lowest = rails.high, highest = rails.low;
+    for (const double v : recording.samples) {
+        lowest = std::min(lowest, v);
+        highest = std::max(highest, v);
+    }
+    const double middle = 0.5 * (lowest + highest),
+                 slack = 0.5 * recording.resolution + 1e-9 * (highest - lowest);
+    for (const SampleRange& range : recording.clipped) {
+        const double v = recording.samples[range.begin];
+        if (v > middle) rails.high = std::min(rails.high, v - slack);
+        if (v < middle) rails.low = std::max(rails.low, v + slack);
+    }
+    return rails;
+}
+
+// Clipped samples and their neighbours are left out, single ones at a rail that no run was made of included.
 std::vector<char> usable_samples(const Recording& recording, std::size_t begin, std::size_t end) {
     std::vector<char> usable(end - begin, 1);
-    for (const SampleRange& range : recording.clipped) {
-        const std::size_t from = std::max(range.begin > 0 ? range.begin - 1 : 0, begin);
-        const std::size_t to = std::min(range.end + 1, end);
-        for (std::size_t i = from; i < to; ++i) usable[i - begin] = 0;
+    const Rails rails = rails_of(recording);
+    if (!std::isfinite(rails.low) && !std::isfinite(rails.high)) return usable;
+    for (std::size_t i = begin; i < end; ++i) {
+        if (recording.samples[i] < rails.high && recording.samples[i] > rails.low) continue;
+        for (std::size_t j = std::max(i, begin + 1) - 1; j < std::min(i + 2, end); ++j) usable[j - begin] = 0;
     }
     return usable;
 }

@@ -128,12 +128,14 @@ void add_components(CurveFit& fit, const CurveFitOptions& options) {
         CurveFit accepted = mode_gain > tone_gain ? std::move(*mode) : std::move(*tone);
         if (!settle(accepted)) return;
         fit = std::move(accepted);
-        if (mode_gain > tone_gain) {
-            fit.findings.push_back(mode_finding(fit.fit.model.oscillators.back()));
-        } else {
-            fit.findings.push_back(tone_finding(std::exp(fit.fit.model.tones.back()) / two_pi));
-        }
     }
+}
+
+void describe_components(CurveFit& fit) {
+    const std::vector<Oscillator>& modes = fit.fit.model.oscillators;
+    for (std::size_t i = 1; i < modes.size(); ++i) fit.findings.push_back(mode_finding(modes[i]));
+    for (const double tone : fit.fit.model.tones)
+        fit.findings.push_back(tone_finding(std::exp(tone) / two_pi));
 }
 
 }  // namespace ringwright::identify
