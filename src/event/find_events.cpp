@@ -266,8 +266,19 @@ void try_onset(Search& search, const Onset& onset) {
     if (taken(search, onset)) return;
     const StartLimits limits = limits_for(search, onset);
     if (limits.latest <= onset.position + 12) return;
-    std::optional<Found> found = follow_onset(search, onset, limits);
+    // Most onsets of a noisy recording fail within a short look; only the others are followed to the end.
+    constexpr double short_look = 300.0;  // cycles
+    const double cycle = 2.0 * std::numbers::pi / onset.fit.shape.undamped_angular_frequency *
+                         static_cast<double>(std::size_t{1} << onset.level);
+    StartLimits near = limits;
+    near.latest = std::min(limits.latest,
+                           onset.position + static_cast<std::size_t>(std::min(short_look * cycle, 1e15)));
+    std::optional<Found> found = follow_onset(search, onset, near);
     if (!found || !believable(search, *found)) return;
+    if (near.latest < limits.latest) {
+        found->course = follow_decay(search.pyramid, found->start, limits.latest);
+        if (!believable(search, *found)) return;
+    }
     const bool still = found->course.fall > 0.0 && starts_from_quiet(search.pyramid, *found);
     if (!found->course.falls() && !still) {
         search.steady = true;

@@ -80,7 +80,7 @@ struct Window {
     double held = 0.0, spread = 0.0;             ///< mean and standard deviation of the flat stretch
 };
 
-/// The longest flat stretch of three lengths before the start; nothing when none is flat, or when it lies
+/// The longer flat stretch of two lengths before the start; nothing when none is flat, or when it lies
 /// where the decay ends.
 std::optional<Window> window_before(std::span<const double> means, const Start& start, double cycle,
                                     std::size_t earliest) {
@@ -88,7 +88,7 @@ std::optional<Window> window_before(std::span<const double> means, const Start& 
     const std::size_t block = start.position >> start.level;
     const auto after = static_cast<std::size_t>(
         std::clamp(std::max(1.5 * cycle, 2.0 / start.fit.shape.slow_rate()), 12.0, 120.0));
-    for (const double cycles : {1.2, 0.6, 0.4}) {
+    for (const double cycles : {1.2, 0.6}) {
         Window window;
         window.before = static_cast<std::size_t>(std::clamp(cycles * cycle, 6.0, 40.0));
         if (block < window.before + earliest) continue;
