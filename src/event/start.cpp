@@ -111,9 +111,10 @@ double noise_variance(std::span<const double> means, const std::vector<Trial>& t
     for (const Trial& trial : trials) most = std::max(most, explained_sum(trial));
     for (const Trial& trial : trials) {
         const std::size_t enough = std::max<std::size_t>(20, trials.front().fit.points);
-        if (trial.fit.points < enough || explained_sum(trial) < least_share * most) continue;
+        if (trial.fit.points < enough || explained_sum(trial) < (drop ? 0.0 : least_share) * most) continue;
         const auto n = static_cast<double>(trial.fit.points);
-        // What a bounce leaves unexplained is correlated, and is no noise.
+        // What a bounce leaves unexplained is correlated, and is no noise; the bounces hold most of the
+        // motion.
         const double freedom = n - parameters * (drop ? 1.0 : correlation_length(means, trial));
         const double variance = trial.fit.residual_sum / std::max(freedom, 0.2 * n);
         if (least < 0.0 || variance < least) least = variance;
