@@ -62,6 +62,8 @@ bool has(const Findings& findings, std::string_view code) {
 
 std::string suggestion(const CurveFit& fit, const MethodBootstrap& bootstrap, const Findings& findings) {
     if (has(findings, "clipped_samples")) return "samples are clipped; lower the gain and repeat the test";
+    if (has(findings, "dry_friction"))
+        return "the decay quickens as it gets smaller, as dry friction makes it";
     if (has(findings, "second_mode"))
         return "another mode rings along; place the sensor or the tap so that it is not excited";
     const DecrementReading& decrement = bootstrap.readings.decrement;

@@ -2,6 +2,7 @@
 
 #include <fmt/format.h>
 
+#include <Eigen/Cholesky>
 #include <algorithm>
 #include <cmath>
 #include <numbers>
@@ -21,6 +22,7 @@ namespace {
 constexpr double two_pi = 2.0 * std::numbers::pi;
 constexpr int most_components = 4;
 constexpr int trial_evaluations = 25;
+constexpr double least_fall = 0.3;                  // nepers over the recording; what falls less is a tone
 constexpr double most_damping_of_added_mode = 0.2;  // a broader one stands for something else
 constexpr double false_alarm = 1e-3;                // a recording, for each component looked for
 
@@ -71,11 +73,31 @@ double needed_gain(const CurveFit& fit, double parameters) {
     return chi_squared_quantile(1.0 - false_alarm / searched, parameters);
 }
 
+// A tone is steady when its two amplitudes are the same in both halves of the samples; what a wrong damping
+// law leaves over is not.
+bool steady(const CurveFit& trial) {
+    constexpr double largest_change = 0.5;  // of the mean amplitude
+    const Eigen::MatrixXd columns = linear_columns(trial.fit.model, trial.samples);
+    const Index column =
+        trial.fit.model.first_oscillator_column() +
+        static_cast<Index>(2 * (trial.fit.model.oscillators.size() + trial.fit.model.tones.size())) - 2;
+    const Eigen::MatrixXd pair = columns.middleCols(column, 2);
+    const VectorXd rest = trial.residual + pair * trial.fit.coefficients.segment(column, 2);
+    const Index half = rest.size() / 2;
+    const auto amplitudes = [&](Index begin, Index count) -> Eigen::Vector2d {
+        const Eigen::MatrixXd part = pair.middleRows(begin, count);
+        return (part.transpose() * part).ldlt().solve(part.transpose() * rest.segment(begin, count));
+    };
+    const Eigen::Vector2d first = amplitudes(0, half), second = amplitudes(half, rest.size() - half);
+    return (first - second).norm() < largest_change * 0.5 * (first + second).norm();
+}
+
 std::optional<CurveFit> with_tone(const CurveFit& fit, double omega) {
     CurveFit trial = fit;
     trial.fit.model.tones.push_back(std::log(omega));
     trial.fit = fit_projected(trial.fit.model, trial.samples, trial.noise.noise, trial_evaluations);
     if (!trial.fit.model.parameters().allFinite() || !estimate_noise(trial, 0, 1)) return std::nullopt;
+    if (!steady(trial)) return std::nullopt;
     return trial;
 }
 
@@ -88,7 +110,8 @@ std::optional<CurveFit> with_mode(const CurveFit& fit, double omega) {
         if (!trial.fit.model.parameters().allFinite()) continue;
         const Oscillator& added = trial.fit.model.oscillators.back();
         if (added.damping_ratio() <= 0.0 || added.damping_ratio() > most_damping_of_added_mode) continue;
-        if (!estimate_noise(trial, 0, 1)) continue;
+        const double falls = added.slowest_rate() * trial.samples.time.maxCoeff();
+        if (falls < least_fall || !estimate_noise(trial, 0, 1)) continue;
         if (!best || criterion_of(trial) < criterion_of(*best)) best = std::move(trial);
     }
     return best;
@@ -110,6 +133,21 @@ Finding mode_finding(const Oscillator& added) {
             added.angular_frequency() / two_pi, added.damping_ratio())};
 }
 
+// Viscous damping with dry friction decays as (A + F) e^(−s t) − F: a viscous decay less a steady tone at its
+// own frequency.
+bool at_the_mode(const CurveFit& with_added_tone) {
+    const Oscillator& o = with_added_tone.oscillator();
+    const double away = std::abs(with_added_tone.fit.model.tones.back() - o.log_frequency);
+    return away < std::max(0.03, 2.0 * o.damping_ratio());
+}
+
+Finding friction_finding() {
+    return {"dry_friction", Severity::caution,
+            "The decay quickens as it gets smaller, as dry friction makes it. A viscous damping ratio "
+            "describes it only on "
+            "average over this record and depends on the amplitude."};
+}
+
 }  // namespace
 
 void add_components(CurveFit& fit, const CurveFitOptions& options) {
@@ -125,6 +163,10 @@ void add_components(CurveFit& fit, const CurveFitOptions& options) {
         const double tone_gain = tone ? before - criterion_of(*tone) - needed_gain(fit, 3.0) : -1.0;
         const double mode_gain = mode ? before - criterion_of(*mode) - needed_gain(fit, 4.0) : -1.0;
         if (tone_gain <= 0.0 && mode_gain <= 0.0) return;
+        if (tone_gain >= mode_gain && at_the_mode(*tone)) {
+            fit.findings.push_back(friction_finding());
+            return;
+        }
         CurveFit accepted = mode_gain > tone_gain ? std::move(*mode) : std::move(*tone);
         if (!settle(accepted)) return;
         fit = std::move(accepted);
