@@ -6,6 +6,8 @@
 #include <cmath>
 #include <optional>
 
+#include "ringwright/counting.hpp"
+
 namespace ringwright {
 namespace {
 
@@ -216,21 +218,21 @@ class Straightener {
 void report(const Disorder& disorder, Findings& findings) {
     if (disorder.repeated > 0)
         add(findings, "repeated_time_stamps", Severity::caution,
-            fmt::format(
-                "{} rows repeat the time stamp of the row before (first at {:.6g} s); they were left out.",
-                disorder.repeated, disorder.first_repeated));
+            fmt::format("{} the time stamp of the row before (first at {:.6g} s) and {} left out.",
+                        counted(disorder.repeated, "row repeats", "rows repeat"), disorder.first_repeated,
+                        disorder.repeated == 1 ? "was" : "were"));
     if (disorder.backward > 0)
         add(findings, "backward_time_stamps", Severity::caution,
             fmt::format(
-                "{} rows have a time stamp that runs backward or far ahead (first at {:.6g} s); they were "
-                "left out.",
-                disorder.backward, disorder.first_backward));
+                "{} a time stamp that runs backward or far ahead (first at {:.6g} s) and {} left out.",
+                counted(disorder.backward, "row has", "rows have"), disorder.first_backward,
+                disorder.backward == 1 ? "was" : "were"));
     if (disorder.set_back > 0)
         add(findings, "clock_set_back", Severity::defect,
             fmt::format(
-                "The clock jumps back {} times (first to {:.6g} s) and runs on from there; what follows was "
+                "The clock jumps back {} (first to {:.6g} s) and runs on from there; what follows was "
                 "placed one step after what went before. Give the stretch that matters with --from and --to.",
-                disorder.set_back, disorder.first_set_back));
+                counted(disorder.set_back, "time"), disorder.first_set_back));
 }
 
 // Rows without a value are left out; with a uniform clock the times of the others are then written out.
@@ -275,9 +277,9 @@ void find_gaps(Timed& timed, double step, double rounding) {
     if (timed.gaps.empty()) return;
     add(timed.findings, "gaps", Severity::caution,
         fmt::format(
-            "Time is lost at {} places, {:.4g} s in all (the longest: {:.4g} s after {:.6g} s). The times as "
+            "Time is lost at {}, {:.4g} s in all (the longest: {:.4g} s after {:.6g} s). The times as "
             "recorded are used.",
-            timed.gaps.size(), lost, longest, longest_at));
+            counted(timed.gaps.size(), "place"), lost, longest, longest_at));
 }
 
 // Scatter of the steps that are no gaps, as a share of the usual step.

@@ -25,11 +25,14 @@ std::optional<double> plain_number(const char* first, const char* last, char dec
     return value;
 }
 
-// "1,234,567.8" with the grouping marks taken out, where they stand before each third digit.
+// "1,234,567.8" with the grouping marks taken out, where they stand before each third digit. No group of
+// thousands begins with a zero: "0,013" is a decimal.
 std::optional<double> grouped_number(std::string_view cell, const Dialect& dialect) {
     std::array<char, 64> digits{};
     std::size_t used = 0, since_mark = 0;
     bool marked = false, whole = true;
+    const std::size_t lead = cell.find_first_not_of("+-");
+    if (lead == std::string_view::npos || cell[lead] == '0') return std::nullopt;
     for (const char c : cell) {
         if (used == digits.size()) return std::nullopt;
         if (whole && c == dialect.grouping) {

@@ -12,8 +12,11 @@
 #include "recording/csv_columns.hpp"
 #include "recording/csv_rows.hpp"
 #include "recording/csv_table.hpp"
+#include "recording/csv_thousands.hpp"
 #include "recording/preamble_rate.hpp"
+#include "recording/quantity_words.hpp"
 #include "recording/text_encoding.hpp"
+#include "ringwright/counting.hpp"
 #include "ringwright/error.hpp"
 
 namespace ringwright {
@@ -33,14 +36,35 @@ struct OpenTable {
     std::string_view text;
     Table table;
     RowSample sample;
+    ThousandsMarks thousands;
     [[nodiscard]] std::string_view rows() const { return text.substr(table.begin); }
 };
 
-[[noreturn]] void refuse_no_table(const std::string& file, const DecodedText& decoded) {
+std::size_t most_cells_in_a_row(std::string_view text) {
+    LineReader reader(text);
+    std::string_view line;
+    std::size_t most = 0;
+    while (reader.next(line)) {
+        const auto digits =
+            std::count_if(line.begin(), line.end(), [](char c) { return c >= '0' && c <= '9'; });
+        for (const char delimiter : {',', ';', '\t', '|', ' '}) {
+            const auto cells = 1 + std::count(line.begin(), line.end(), delimiter);
+            if (digits >= cells) most = std::max(most, static_cast<std::size_t>(cells));
+        }
+    }
+    return most;
+}
+
+[[noreturn]] void refuse_no_table(const std::string& file, const DecodedText& decoded,
+                                  std::string_view text) {
     if (decoded.binary)
         throw InputError(Problem{file, "",
                                  "this is neither a sound file nor text, so no recording can be read from it",
                                  "Export the recording as CSV or WAV."});
+    if (const std::size_t columns = most_cells_in_a_row(text); columns > most_columns)
+        throw InputError(
+            Problem{file, "", fmt::format("a row has {} columns; at most {} are read", columns, most_columns),
+                    "Export the time and the channels that matter, one row for each sample."});
     throw InputError(
         Problem{file, "", "no table of numbers was found in the text",
                 "Export the recording as CSV: one row for each sample, with a time column or --rate."});
@@ -96,10 +120,40 @@ std::size_t lines_in(std::string_view text, char end_of_line) {
     return static_cast<std::size_t>(std::count(text.begin(), text.end(), end_of_line));
 }
 
+// The first rows may hold no thousands: a release from rest that later swings far, or the time itself.
+void take_thousands_marks(OpenTable& open) {
+    open.thousands = find_thousands_marks(open.rows(), open.table);
+    if (!open.thousands.consistent()) return;
+    open.table.dialect.grouping = open.thousands.mark;
+    open.table.thousands_or_decimal = false;
+}
+
+// Numbers that need a mark taken out which cannot be told from a decimal mark.
+void refuse_unclear_thousands(const OpenTable& open, const std::string& file) {
+    const ThousandsMarks& found = open.thousands;
+    if (found.grouped == 0 || found.consistent()) return;
+    const std::string place = fmt::format("line {}", open.table.first_line + found.grouped_line);
+    if (found.misplaced > 0)
+        throw InputError(
+            Problem{file, place,
+                    fmt::format("\"{}\" could have a mark before the thousands, but \"{}\" in line "
+                                "{} has the same mark elsewhere",
+                                found.grouped_text, found.misplaced_text,
+                                open.table.first_line + found.misplaced_line),
+                    "Export without marks before the thousands."});
+    throw InputError(Problem{
+        file, place,
+        fmt::format(
+            "\"{}\" could have a decimal mark or a mark before the thousands, and no other number tells",
+            found.grouped_text),
+        "Export without marks before the thousands, with some decimals in each number."});
+}
+
 // A short list of numbers in the preamble can look like the table: where words follow it soon and more rows
 // come behind them, or where the middle of the file has another form, the search goes on there.
 void find_main_table(OpenTable& open, const TableHints& hints) {
     for (int attempt = 0; attempt < 8; ++attempt) {
+        take_thousands_marks(open);
         open.sample = sample_rows(open.rows(), open.table);
         const bool other_form = !rows_have_form(open.sample.middle, open.table);
         const std::size_t skipped = next_start(open.rows(), open.table, other_form);
@@ -171,7 +225,7 @@ void refuse_two_meanings(const OpenTable& open, const std::string& file) {
 OpenTable open_table(std::string_view bytes, const ReadOptions& options, const std::string& file) {
     OpenTable open;
     open.decoded = decode_text(bytes);
-    if (open.decoded.binary) refuse_no_table(file, open.decoded);
+    if (open.decoded.binary) refuse_no_table(file, open.decoded, {});
     open.text = open.decoded.encoding.starts_with("UTF-16") ? std::string_view(open.decoded.owned)
                                                             : open.decoded.text;
     TableHints hints;
@@ -179,11 +233,12 @@ OpenTable open_table(std::string_view bytes, const ReadOptions& options, const s
         (options.channel && *options.channel == "2"))
         hints.least_columns = 2;
     auto table = find_table(open.text, open.decoded.latin1, hints);
-    if (!table) refuse_no_table(file, open.decoded);
+    if (!table) refuse_no_table(file, open.decoded, open.text);
     open.table = std::move(*table);
     find_main_table(open, hints);
     refine_contents(open);
     refuse_two_meanings(open, file);
+    refuse_unclear_thousands(open, file);
     return open;
 }
 
@@ -208,6 +263,7 @@ std::string dialect_text(const OpenTable& open) {
                            ? "one column"
                            : delimiter_name(table.dialect.delimiter);
     text += table.dialect.decimal == ',' ? ", decimal comma" : ", decimal point";
+    if (table.dialect.grouping != '\0') text += ", marks before the thousands";
     text += ", " + open.decoded.encoding;
     if (table.preamble_lines > 0)
         text +=
@@ -232,10 +288,13 @@ void report_form(const OpenTable& open, Findings& findings) {
             "If they are two columns, say --channel 2.");
     if (open.decoded.trailing_nuls > 0)
         add(findings, "cut_file", Severity::caution,
-            fmt::format(
-                "The file ends in {} zero bytes: the recorder lost power or its card was taken out too soon. "
-                "What stands before them was read.",
-                open.decoded.trailing_nuls));
+            fmt::format("The file ends in {}: the recorder lost power or its card was taken out too soon. "
+                        "What stands before them was read.",
+                        counted(open.decoded.trailing_nuls, "zero byte")));
+}
+
+const char* were(std::size_t count) {
+    return count == 1 ? "was" : "were";
 }
 
 // Missing and odd cells of the chosen column, in words.
@@ -247,30 +306,33 @@ void report_absences(const Rows& rows, const Table& table, const std::string& ch
             rows.not_a_number.count == 0 ||
             (rows.empty.count > 0 && rows.empty.first_line < rows.not_a_number.first_line);
         add(findings, "missing_values", Severity::caution,
-            fmt::format("{} of {} rows have no value in channel {} (first in line {}); they were left out.",
-                        missing, rows.values.size(), channel,
-                        line(empty_first ? rows.empty : rows.not_a_number)));
+            fmt::format("{} of {} {} no value in channel {} (first in line {}) and {} left out.", missing,
+                        counted(rows.values.size(), "row"), missing == 1 ? "has" : "have", channel,
+                        line(empty_first ? rows.empty : rows.not_a_number), were(missing)));
     }
     if (rows.overflow.count > 0)
         add(findings, "overflow_markers", Severity::caution,
-            fmt::format("{} rows of channel {} are marked as overloaded (first in line {}); they were left "
-                        "out. Use a "
+            fmt::format("{} of channel {} {} marked as overloaded (first in line {}) and left out. Use a "
                         "larger measuring range.",
-                        rows.overflow.count, channel, line(rows.overflow)));
+                        counted(rows.overflow.count, "row"), channel, were(rows.overflow.count),
+                        line(rows.overflow)));
     if (rows.text.count > 0)
         add(findings, "text_in_channel", Severity::caution,
-            fmt::format("{} rows hold text in place of a number in channel {} (first in line {}: \"{}\"); "
-                        "they were left "
+            fmt::format("{} text in place of a number in channel {} (first in line {}: \"{}\") and {} left "
                         "out.",
-                        rows.text.count, channel, line(rows.text), label_text(rows.first_text, false)));
+                        counted(rows.text.count, "row holds", "rows hold"), channel, line(rows.text),
+                        label_text(rows.first_text, false), were(rows.text.count)));
     if (rows.unreadable_row.count > 0)
         add(findings, "unreadable_rows", rows.unreadable_row.count > 3 ? Severity::caution : Severity::note,
-            fmt::format("{} lines are no rows of the table (first is line {}); they were left out.",
-                        rows.unreadable_row.count, line(rows.unreadable_row)));
+            fmt::format("{} (first is line {}) and {} left out.",
+                        counted(rows.unreadable_row.count, "line is no row of the table",
+                                "lines are no rows of the table"),
+                        line(rows.unreadable_row), were(rows.unreadable_row.count)));
     if (rows.unreadable_time.count > 0)
         add(findings, "missing_time_stamps", Severity::caution,
-            fmt::format("{} rows have no readable time (first in line {}); they were left out.",
-                        rows.unreadable_time.count, line(rows.unreadable_time)));
+            fmt::format("{} no readable time (first in line {}) and {} left out.",
+                        counted(rows.unreadable_time.count, "row has", "rows have"),
+                        line(rows.unreadable_time), were(rows.unreadable_time.count)));
 }
 
 RowPlan plan_for(const Table& table, const TimeChoice& time, std::size_t channel,
@@ -286,7 +348,37 @@ RowPlan plan_for(const Table& table, const TimeChoice& time, std::size_t channel
     return plan;
 }
 
-[[noreturn]] void refuse_no_clock(const std::string& file) {
+constexpr std::size_t least_rows = 16;
+
+bool named_as_time(const Column& column) {
+    if (column.unit) return column.unit->dimension == Dimension::time;
+    return label_names_time(column.name) && !quantity_from_label(column.name);
+}
+
+// Where a column is named as the time, the cause is another than that there is none.
+void refuse_useless_time(const OpenTable& open, const std::string& file) {
+    const auto& columns = open.table.columns;
+    const auto time = std::find_if(columns.begin(), columns.end(), named_as_time);
+    if (time == columns.end() || columns.size() < 2) return;
+    if (open.sample.first.size() < least_rows)
+        throw InputError(Problem{file, "",
+                                 fmt::format("the table has only {} of numbers; at least {} are needed",
+                                             counted(open.sample.first.size(), "row"), least_rows),
+                                 "Record longer, or check that the export is whole."});
+    for (std::size_t i = 0; i < columns.size(); ++i)
+        if (columns[i].content == ColumnContent::empty)
+            throw InputError(Problem{file, "column " + column_name(open.table, i),
+                                     "no row holds a number, only marks for missing values or nothing",
+                                     "Check the sensor and the export of this channel."});
+    if (time->content == ColumnContent::number)
+        throw InputError(
+            Problem{file, "column " + time->name, "the time does not go forward: it is the same in every row",
+                    "Name the right time column with --time-column, or give the sampling rate with --rate "
+                    "HZ."});
+}
+
+[[noreturn]] void refuse_no_clock(const OpenTable& open, const std::string& file) {
+    refuse_useless_time(open, file);
     throw InputError(
         Problem{file, "", "there is no time column and nothing says how fast the recording was sampled",
                 "Give the sampling rate with --rate HZ, or name the time column with --time-column."});
@@ -295,7 +387,7 @@ RowPlan plan_for(const Table& table, const TimeChoice& time, std::size_t channel
 double rate_without_times(const OpenTable& open, const ReadOptions& options, Recording& recording) {
     if (options.rate_hz) return *options.rate_hz;
     const auto stated = rate_in_preamble(open.table.preamble);
-    if (!stated) refuse_no_clock(recording.origin.file);
+    if (!stated) refuse_no_clock(open, recording.origin.file);
     add(recording.findings, "rate_from_preamble", Severity::note,
         fmt::format(
             "There is no time column; the lines above the table state {:.9g} Hz (\"{}\"). Say otherwise with "
@@ -311,6 +403,19 @@ void start_at_zero(std::vector<double>& times) {
     for (double& t : times) t -= zero;
 }
 
+// Single rows out of order are mended later; here most of them are.
+void refuse_backward_time(const std::vector<double>& times, const std::string& column,
+                          const std::string& file) {
+    std::size_t falls = 0, rises = 0;
+    for (std::size_t i = 1; i < times.size(); ++i) {
+        falls += times[i] < times[i - 1] ? 1 : 0;
+        rises += times[i] > times[i - 1] ? 1 : 0;
+    }
+    if (falls <= rises) return;
+    throw InputError(Problem{file, "column " + column, "the time runs backward from row to row",
+                             "Sort the rows by time, or name the right time column with --time-column."});
+}
+
 Timed place_in_time(const OpenTable& open, const TimeChoice& time, const ReadOptions& options, Rows&& rows,
                     Recording& recording) {
     const bool timed = !options.rate_hz && time.source != TimeSource::none;
@@ -323,18 +428,47 @@ Timed place_in_time(const OpenTable& open, const TimeChoice& time, const ReadOpt
         for (double& t : rows.times)
             t = time.seconds_per_unit < 1.0 ? t / units_per_second : t * time.seconds_per_unit;
     }
+    refuse_backward_time(rows.times, column_name(open.table, time.column), recording.origin.file);
     return clock_from_stamps(std::move(rows.times), std::move(rows.values), time.rounding_s);
 }
 
-constexpr std::size_t least_rows = 16;
+// Why rows have no usable value, the commonest cause first. Empty where no row lacks one.
+struct Loss {
+    std::string cause, remedy;
+};
 
-void refuse_short(const Recording& recording, std::size_t rows) {
+Loss commonest_loss(const Rows& rows, std::size_t first_line) {
+    const struct {
+        const Absences* absences;
+        const char* what;
+        const char* remedy;
+    } kinds[] = {
+        {&rows.overflow, "marked as overloaded or beyond 9e37", "Use a larger measuring range"},
+        {&rows.text, "text", "Export numbers in this channel"},
+        {&rows.not_a_number, "marked as missing", "Check the sensor and the export of this channel"},
+        {&rows.empty, "empty", "Check the sensor and the export of this channel"},
+        {&rows.unreadable_time, "without a readable time", "Check the time column (--time-column)"},
+    };
+    const auto* most = std::max_element(std::begin(kinds), std::end(kinds), [](const auto& a, const auto& b) {
+        return a.absences->count < b.absences->count;
+    });
+    if (most->absences->count == 0) return {};
+    return {fmt::format("{} are {} (first in line {})", most->absences->count, most->what,
+                        first_line + most->absences->first_line),
+            most->remedy};
+}
+
+void refuse_short(const Recording& recording, std::size_t rows, const Loss& loss) {
     if (recording.samples.size() >= least_rows) return;
-    throw InputError(
-        Problem{recording.origin.file, fmt::format("channel {}", recording.origin.channel),
-                fmt::format("only {} usable values were found in {} rows; at least {} are needed",
-                            recording.samples.size(), rows, least_rows),
-                "Record longer, or check that the right channel was chosen (--channel)."});
+    const std::string found = fmt::format("only {} found in {}; at least {} are needed",
+                                          counted(recording.samples.size(), "usable value") +
+                                              (recording.samples.size() == 1 ? " was" : " were"),
+                                          counted(rows, "row"), least_rows);
+    const bool few_rows = rows < least_rows || loss.cause.empty();
+    throw InputError(Problem{recording.origin.file, fmt::format("channel {}", recording.origin.channel),
+                             few_rows ? found : found + ". Of the rows " + loss.cause,
+                             (few_rows ? std::string("Record longer") : loss.remedy) +
+                                 ", or check that the right channel was chosen (--channel)."});
 }
 
 void refuse_stopped_clock(const Recording& recording) {
@@ -354,7 +488,7 @@ void read_csv(std::string_view bytes, const ReadOptions& options, Recording& rec
     const TimeChoice time = choose_time(open.table, open.sample, options);
     append(recording.findings, time.findings);
     if (!options.rate_hz && time.source == TimeSource::none && !rate_in_preamble(open.table.preamble))
-        refuse_no_clock(file);
+        refuse_no_clock(open, file);
     const SignalChoice signal = choose_signal(open.table, open.rows(), time, options, file);
     append(recording.findings, signal.findings);
     recording.origin.channel = column_name(open.table, signal.column);
@@ -363,12 +497,13 @@ void read_csv(std::string_view bytes, const ReadOptions& options, Recording& rec
                           std::max(1U, std::thread::hardware_concurrency()), options.progress);
     report_absences(rows, open.table, recording.origin.channel, recording.findings);
     const std::size_t row_count = rows.values.size();
+    const Loss loss = commonest_loss(rows, open.table.first_line);
     Timed timed = place_in_time(open, time, options, std::move(rows), recording);
     append(recording.findings, timed.findings);
     recording.samples = std::move(timed.values);
     recording.clock = std::move(timed.clock);
     recording.gaps = std::move(timed.gaps);
-    refuse_short(recording, row_count);
+    refuse_short(recording, row_count, loss);
     refuse_stopped_clock(recording);
 
     const Column& column = open.table.columns[signal.column];

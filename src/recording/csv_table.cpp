@@ -13,7 +13,6 @@ namespace {
 
 constexpr std::size_t window_rows = 24;
 constexpr std::size_t longest_row = std::size_t{1} << 20;
-constexpr std::size_t most_columns = 4096;  // a longer row is a recording laid on its side, or damage
 constexpr std::size_t header_reach = 6;
 constexpr double good_share = 0.85;  // of the rows of a window that must have the form of the first
 
@@ -248,8 +247,9 @@ bool is_one_decimal_comma_column(const Lines& lines, const Choice& choice, bool&
     if (choice.dialect.delimiter != ',' || choice.trial.columns.size() != 2 || lines.size() < 4) return false;
     const CommaEvidence evidence = comma_evidence(lines);
     if (!evidence.whole_numbers) return false;
-    uncertain = !evidence.leading_zero;
-    return evidence.leading_zero || (evidence.same_width && !evidence.first_rises);
+    const bool one_column = evidence.leading_zero || (evidence.same_width && !evidence.first_rises);
+    uncertain = one_column && !evidence.leading_zero;
+    return one_column;
 }
 
 bool has_digit(std::string_view line) {

@@ -29,6 +29,9 @@ class LineReader {
     std::size_t offset_ = 0;
 };
 
+/// A longer row is a recording laid on its side, or damage.
+inline constexpr std::size_t most_columns = 4096;
+
 enum class CellKind { number, stamp, missing, text };
 [[nodiscard]] CellKind kind_of_cell(std::string_view cell, const Dialect& dialect);
 

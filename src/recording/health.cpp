@@ -5,6 +5,8 @@
 #include <algorithm>
 #include <cmath>
 
+#include "ringwright/counting.hpp"
+
 namespace ringwright {
 namespace {
 
@@ -56,10 +58,10 @@ void report_clipping(Recording& recording) {
     if (recording.clipped.empty()) return;
     const double at = recording.clock.time_of(recording.clipped.front().begin);
     add(recording, "clipped_samples", Severity::caution,
-        fmt::format("{} samples in {} runs stand at the end of the measuring range (first at {:.6g} s): the "
-                    "true motion "
-                    "went further. Use a larger range or a weaker excitation.",
-                    samples_in(recording.clipped), recording.clipped.size(), at));
+        fmt::format("{} at the end of the measuring range, in {} (first at {:.6g} s): the true motion went "
+                    "further. Use a larger range or a weaker excitation.",
+                    counted(samples_in(recording.clipped), "sample stands", "samples stand"),
+                    counted(recording.clipped.size(), "run"), at));
 }
 
 }  // namespace

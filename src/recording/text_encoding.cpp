@@ -66,12 +66,14 @@ int utf16_by_zeros(std::string_view bytes) {
     return 0;
 }
 
+// A run of zero bytes counts as one control byte: a logger whose card lost a piece of the file leaves one.
 bool looks_binary(std::string_view text) {
     const std::string_view head = text.substr(0, 65536);
-    std::size_t control = 0;
-    for (const char c : head) {
-        const auto byte = static_cast<unsigned char>(c);
-        if (byte == 0) return true;
+    std::size_t control = 0, zeros = 0;
+    for (std::size_t i = 0; i < head.size(); ++i) {
+        const auto byte = static_cast<unsigned char>(head[i]);
+        if (byte == 0 && ++zeros > head.size() / 2) return true;
+        if (byte == 0 && i > 0 && head[i - 1] == '\0') continue;
         if (byte < 32 && byte != '\n' && byte != '\r' && byte != '\t' && byte != '\f' && byte != 0x1A &&
             byte != 0x1B)
             ++control;

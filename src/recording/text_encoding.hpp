@@ -14,7 +14,7 @@ struct DecodedText {
     std::string_view text;
     std::string owned;
     bool latin1 = false;
-    bool binary = false;            ///< holds NUL or control bytes: no text at all
+    bool binary = false;            ///< holds many control bytes or runs of NULs: no text at all
     std::size_t trailing_nuls = 0;  ///< dropped at the end: a logger that lost power
 };
 

@@ -9,6 +9,7 @@
 #include "report/csv_cell.hpp"
 #include "report/finding_text.hpp"
 #include "report/text_table.hpp"
+#include "ringwright/counting.hpp"
 #include "ringwright/result_json.hpp"
 
 namespace ringwright {
@@ -58,8 +59,8 @@ std::string health_text(const Recording& recording) {
     std::size_t clipped = 0;
     for (const SampleRange& range : recording.clipped) clipped += range.end - range.begin;
     if (clipped == 0 && recording.gaps.empty()) return "no clipped samples, no gaps";
-    return fmt::format("{} clipped samples in {} runs, {} gaps", clipped, recording.clipped.size(),
-                       recording.gaps.size());
+    return fmt::format("{} in {}, {}", counted(clipped, "clipped sample"),
+                       counted(recording.clipped.size(), "run"), counted(recording.gaps.size(), "gap"));
 }
 
 std::string recording_text(const Recording& recording) {

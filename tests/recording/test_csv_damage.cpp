@@ -99,7 +99,8 @@ TEST_CASE("gaps, repeated, backward and stray stamps are mended and told") {
         const Recording recording = read(rows);
         CHECK(recording.size() == 4000);
         CHECK(recording.clock.uniform());
-        CHECK(message_of(recording.findings, "repeated_time_stamps").find("1 rows") != std::string::npos);
+        CHECK(message_of(recording.findings, "repeated_time_stamps").find("1 row repeats") !=
+              std::string::npos);
     }
     SECTION("a stamp that runs backward") {
         rows[500] = rows[100];
@@ -130,6 +131,15 @@ TEST_CASE("gaps, repeated, backward and stray stamps are mended and told") {
         CHECK(recording.clock.uniform());
         CHECK(message_of(recording.findings, "unreadable_rows").find("2 lines") != std::string::npos);
         CHECK(message_of(recording.findings, "unreadable_rows").find("line 2002") != std::string::npos);
+    }
+    SECTION("a line of zero bytes") {
+        rows.insert(rows.begin() + 900, std::string(64, '\0') + "\n");
+        const Recording recording = read(rows);
+        CHECK(recording.size() == 4000);
+        CHECK(recording.clock.uniform());
+        CHECK(message_of(recording.findings, "unreadable_rows").find("1 line is no row") !=
+              std::string::npos);
+        CHECK(message_of(recording.findings, "unreadable_rows").find("line 902") != std::string::npos);
     }
     SECTION("zero bytes where the power failed") {
         const Recording recording = read(rows, std::string(512, '\0'));
@@ -197,6 +207,50 @@ TEST_CASE("a time column that stands still is refused") {
     std::string text = "time (s),x (mm)\n";
     for (int i = 0; i < 100; ++i) text += fmt::format("1.0,{}\n", i % 7);
     CHECK_THROWS_AS(read_recording_from_memory(text, "still.csv"), InputError);
+}
+
+namespace {
+
+Problem refusal_of(const std::string& text) {
+    try {
+        (void)read_recording_from_memory(text, "refused.csv");
+    } catch (const InputError& error) {
+        return error.problem();
+    }
+    FAIL("it was accepted: " << text.substr(0, 60));
+    return {};
+}
+
+bool holds(const std::string& text, const char* part) {
+    return text.find(part) != std::string::npos;
+}
+
+}  // namespace
+
+TEST_CASE("what is refused is refused for its true cause") {
+    std::string backward = "time,x\n", missing = "time,x\n", still = "time,x\n", infinite = "time,x\n", wide;
+    for (int i = 0; i < 400; ++i) {
+        const double x = std::sin(0.2 * i);
+        backward += fmt::format("{:.3f},{:.5f}\n", 8.0 - 0.01 * i, x);
+        missing += fmt::format("{:.3f},NaN\n", 0.01 * i);
+        still += fmt::format("1.0,{:.5f}\n", x);
+        infinite += fmt::format("{:.3f},{}\n", 0.01 * i, i % 3 == 0 ? "1e308" : "inf");
+    }
+    for (int row = 0; row < 40; ++row) {
+        for (int i = 0; i < 5000; ++i) wide += std::to_string(row) + ",";
+        wide += "1\n";
+    }
+    CHECK(holds(refusal_of(backward).found, "runs backward"));
+    CHECK(refusal_of(backward).place == "column time");
+    CHECK(holds(refusal_of(missing).found, "no row holds a number"));
+    CHECK(refusal_of(missing).place == "column x");
+    CHECK(holds(refusal_of(still).found, "does not go forward"));
+    CHECK(refusal_of(still).place == "column time");
+    CHECK(holds(refusal_of("time,x\n0,1\n").found, "only 1 row"));
+    CHECK(holds(refusal_of(infinite).found, "overloaded"));
+    CHECK(holds(refusal_of(infinite).remedy, "range"));
+    CHECK(holds(refusal_of(wide).found, "5001 columns"));
+    CHECK(holds(refusal_of(wide).found, "4096"));
 }
 
 TEST_CASE("a constant channel is read and called so") {

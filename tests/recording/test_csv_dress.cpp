@@ -213,6 +213,68 @@ TEST_CASE("thousands are told from decimals where that is possible, and said whe
     CHECK(assumed.samples.front() == Approx(4.53e-3).epsilon(1e-12));
 }
 
+// Found by hand: a release from rest in micrometres, and times in milliseconds, pass 1000 far down.
+TEST_CASE("marks before the thousands that first stand far down are taken out") {
+    const auto grouped = [](double value, const char* group, char mark) {
+        std::string text = bench::number(std::abs(value), 2, mark);
+        for (std::size_t at = text.find(mark); at > 3 && at != std::string::npos;)
+            text.insert(at -= 3, group);
+        return (value < 0.0 ? "-" : "") + text;
+    };
+    std::string german = "Zeit (ms);Weg (µm)\n", english = "Time (ms),Disp (µm)\n", swiss = german;
+    for (int i = 0; i < 3000; ++i) {
+        const double t = 5.0 * i, x = i < 600 ? 0.1 * (i % 7) : 1000.0 * bench::position(i / 2000.0);
+        german += grouped(t, ".", ',') + ";" + grouped(x, ".", ',') + "\n";
+        english += "\"" + grouped(t, ",", '.') + "\",\"" + grouped(x, ",", '.') + "\"\n";
+        swiss += grouped(t, "'", '.') + ";" + grouped(x, "'", '.') + "\n";
+    }
+    for (const std::string* text : {&german, &english, &swiss}) {
+        const Recording recording = read_recording_from_memory(*text, "late.csv");
+        INFO(text->substr(0, 20));
+        REQUIRE(recording.samples.size() == 3000);
+        CHECK(recording.clock.sample_rate_hz == Approx(200.0).epsilon(1e-9));
+        for (const std::size_t i : {0U, 700U, 1500U, 2999U}) {
+            const double truth = i < 600 ? 0.1e-6 * static_cast<double>(i % 7)
+                                         : 1e-3 * bench::position(static_cast<double>(i) / 2000.0);
+            CHECK(std::abs(recording.samples[i] - truth) < 0.0051e-6);  // 0.01 µm printed
+        }
+        CHECK(recording.findings.empty());
+    }
+}
+
+TEST_CASE("a mark that is no clear thousands mark is refused with its line") {
+    std::string whole = "ms;x\n", mixed = "t (ms);x (mm)\n";
+    for (int i = 0; i < 600; ++i) {
+        const bool late = i >= 300;
+        whole += fmt::format("{};{}\n", i, late ? "1,234" : std::to_string(i % 9));
+        mixed += fmt::format("{}.5;{}\n", i, !late ? "0.25" : i % 2 == 0 ? "1,234" : "12,5");
+    }
+    for (const std::string* text : {&whole, &mixed}) {
+        try {
+            (void)read_recording_from_memory(*text, "unclear.csv");
+            FAIL("it was accepted");
+        } catch (const InputError& error) {
+            CHECK(error.problem().place == "line 302");
+            CHECK(error.problem().found.find("1,234") != std::string::npos);
+            CHECK(error.problem().remedy.find("thousands") != std::string::npos);
+        }
+    }
+}
+
+TEST_CASE("numbers that say what they are raise no doubt") {
+    std::string decimals = "Uhrzeit;Weg [mm]\n", whole = "t[us],a[mg]\n";
+    for (int i = 0; i < 600; ++i) {
+        // No group of thousands begins with a zero.
+        decimals += fmt::format("23:59:57,{:03d};{}0,{:03d}\n", i, i % 3 == 0 ? "-" : "", 13 + i % 80);
+        whole += fmt::format("{},{}\n", 1250 * i, (i * 7) % 11 - 5);
+    }
+    for (const std::string* text : {&decimals, &whole}) {
+        const Recording recording = read_recording_from_memory(*text, "clear.csv");
+        CHECK(recording.samples.size() == 600);
+        CHECK_FALSE(has_finding(recording.findings, "decimal_comma_assumed"));
+    }
+}
+
 TEST_CASE("commas with two meanings are refused") {
     try {
         (void)read_recording_from_memory(table({"Zeit [s],Weg [mm]\n", ",", ','}), "commas.csv");
