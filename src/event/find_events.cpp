@@ -367,10 +367,12 @@ bool goes_on(const Pyramid& pyramid, const Found& first, const Found& second) {
 
 Finding double_hit(double time_s) {
     return {"double_hit", Severity::caution,
-            fmt::format(
-                "A second disturbance came {:.3g} s into the recording while the first still rang. Only the "
-                "decay after the last one is used; repeat the test if it looks short.",
-                time_s)};
+            fmt::format("The motion before {:.3g} s is not part of the same free decay: a second hit while "
+                        "the first still "
+                        "rang, or another mode that dies away. Only what follows is used; look at the "
+                        "recording, and give "
+                        "the window with --from if the decay began before.",
+                        time_s)};
 }
 
 /// Whether the first is over within a cycle, unlike the second, which follows within a few of its cycles.

@@ -74,7 +74,7 @@ std::optional<std::size_t> after_second_hit(std::span<const double> means, std::
         }
     }
     // One hit surprises for as long as it lies in the cycle or the half cycle after it.
-    if (last == 0 || surprised > 3 * cycle || followed < calm_cycles * cycle) return {};
+    if (last == 0 || surprised > 2 * cycle || followed < calm_cycles * cycle) return {};
     return last > cycle ? last - cycle : last;
 }
 

@@ -179,14 +179,18 @@ HalfPowerReading read_half_power(const DecaySamples& samples, const HalfPowerSet
     return reading;
 }
 
+double window_rate_for(double frequency_hz, double decay_rate, double end_s) {
+    const double length = std::max(0.25 / frequency_hz, end_s - 0.25 / frequency_hz);
+    return std::max(0.0, left_at_end / length - decay_rate);
+}
+
 HalfPowerSettings choose_half_power_settings(const DecaySamples& samples, double frequency_hz,
                                              double decay_rate, double end_s) {
     HalfPowerSettings settings;
     settings.cycle_hz = frequency_hz;
     settings.frequency_hz = frequency_hz;
     settings.end_s = std::min(end_s, samples.time(samples.size() - 1));
-    const double length = std::max(samples.step_s, settings.end_s - 0.25 / frequency_hz);
-    settings.window_rate = std::max(0.0, left_at_end / length - decay_rate);
+    settings.window_rate = window_rate_for(frequency_hz, decay_rate, settings.end_s);
     settings.width_hz = 2.0 * (decay_rate + settings.window_rate) / two_pi;
     return settings;
 }

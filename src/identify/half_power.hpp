@@ -35,8 +35,11 @@ struct HalfPowerReading {
 [[nodiscard]] HalfPowerReading read_half_power(const DecaySamples& samples,
                                                const HalfPowerSettings& settings);
 
-/// Settings for these samples: the exponential window brings what is left at `end_s` down to one per cent
-/// where the decay alone does not. `decay_rate` is a first idea of ζω_n.
+/// Rate of the exponential window that brings what is left at `end_s` down to one per cent where a decay of
+/// `decay_rate` alone does not.
+[[nodiscard]] double window_rate_for(double frequency_hz, double decay_rate, double end_s);
+
+/// Settings for these samples; `decay_rate` is a first idea of ζω_n.
 [[nodiscard]] HalfPowerSettings choose_half_power_settings(const DecaySamples& samples, double frequency_hz,
                                                            double decay_rate, double end_s);
 

@@ -165,7 +165,12 @@ MethodBootstrap bootstrap_methods(const CurveFit& fit, int replicates, std::uint
             if (again.valid) collect(result.decrement, again, fit.oscillator(), error);
         }
         if (readings.half_power.valid) {
-            const HalfPowerReading again = read_half_power(samples, settings);
+            // The window was chosen by a decay rate that has its own error.
+            HalfPowerSettings chosen_anew = settings;
+            const double rate =
+                (fit.oscillator().damping_ratio() + error[1]) * fit.oscillator().angular_frequency();
+            chosen_anew.window_rate = window_rate_for(settings.cycle_hz, rate, settings.end_s);
+            const HalfPowerReading again = read_half_power(samples, chosen_anew);
             if (again.valid) collect(result.half_power, again, fit.oscillator(), error);
         }
     }
