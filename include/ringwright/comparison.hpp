@@ -54,8 +54,9 @@ struct Comparison {
 
 /// Compares two estimates. Difference d with u² = u₁² + u₂² − 2 c₁c₂ (JCGM 100, 5.2.2, the common
 /// contributions c fully correlated), degrees of freedom after Welch–Satterthwaite (Welch 1947; JCGM 100,
-/// G.4.1), interval d ± t·u, p-value of Student's t at d/u. Ratio: the same on the logarithm, so its interval
-/// is lopsided. Assumes that releases before and after are independent.
+/// G.4.1) of what does not cancel, the common part itself taken as known with infinite degrees of freedom;
+/// interval d ± t·u, p-value of Student's t at d/u. Ratio: the same on the logarithm, so its interval is
+/// lopsided. Assumes that releases before and after are independent.
 [[nodiscard]] QuantityComparison compare(const Estimate& before, const Estimate& after,
                                          double confidence_level,
                                          const std::optional<EquivalenceMargin>& margin = std::nullopt,

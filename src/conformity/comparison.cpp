@@ -18,9 +18,14 @@ struct Part {
     double degrees_of_freedom = 0.0;
 };
 
+/// The common part (a weighed mass, a calibrated sensor) is held as well known as it is stated: infinite
+/// degrees of freedom. By Welch–Satterthwaite u⁴/ν is then own⁴/ν_own, which gives the degrees of freedom of
+/// what is left when the common part cancels.
 Part part_of(const Estimate& estimate, double common, double scale) {
-    const double own_square = estimate.standard_uncertainty * estimate.standard_uncertainty - common * common;
-    return {std::sqrt(std::max(0.0, own_square)) / scale, common / scale, estimate.degrees_of_freedom};
+    const double square = estimate.standard_uncertainty * estimate.standard_uncertainty;
+    const double own_square = std::max(0.0, square - common * common);
+    const double share = square > 0.0 ? own_square / square : 1.0;
+    return {std::sqrt(own_square) / scale, common / scale, estimate.degrees_of_freedom * share * share};
 }
 
 /// Welch–Satterthwaite over the parts that are each one's own.

@@ -94,6 +94,18 @@ TEST_CASE("exact values and values that are not positive") {
     CHECK_FALSE(compare(estimate(-1.0, 0.1), estimate(1.0, 0.1), 0.95).ratio);
 }
 
+// A stiffness from few releases and a weighed mass: the mass gives the whole its many degrees of freedom, but
+// it cancels, and the difference has those of the releases alone. Welch–Satterthwaite worked by hand: u² = 1
+// + 9, ν = 2·u⁴/1⁴ = 200. Tolerance: rounding of u² − c², which loses one digit of sixteen.
+TEST_CASE("a common part that cancels takes its degrees of freedom along") {
+    const auto plain = compare(estimate(3079.0, 1.0, 2.0), estimate(3082.0, 1.0, 2.0), 0.95);
+    const auto weighed = compare(estimate(3079.0, std::sqrt(10.0), 200.0),
+                                 estimate(3082.0, std::sqrt(10.0), 200.0), 0.95, std::nullopt, {3.0, 3.0});
+    CHECK(weighed.difference.degrees_of_freedom == Approx(4.0).epsilon(1e-12));
+    CHECK(weighed.p_value == Approx(plain.p_value).epsilon(1e-12));
+    CHECK(weighed.difference.interval.high == Approx(plain.difference.interval.high).epsilon(1e-12));
+}
+
 TEST_CASE("only what both results hold is compared, and the rest is said") {
     const Quantities before{{Quantity::damping_ratio, estimate(0.27, 0.01)},
                             {Quantity::stiffness, estimate(1.0, 0.1)}};
