@@ -136,10 +136,10 @@ std::optional<RestNoise> noise_of_rest(std::span<const double> values, std::size
     const std::size_t begin = (rest->begin >> level) + 1, end = std::min(rest->end >> level, begin + most);
     if (end < begin + fewest) return {};
     const auto n = static_cast<double>(end - begin);
-    double y1 = 0.0, x1 = 0.0, yy = 0.0, xy = 0.0, xx = 0.0, steps = 0.0;
+    double y1 = 0.0, yy = 0.0, xy = 0.0, xx = 0.0, steps = 0.0;
     for (std::size_t k = begin; k < end; ++k) {
         const double x = static_cast<double>(k - begin) - 0.5 * (n - 1.0), y = values[k] - values[begin];
-        x1 += x, y1 += y, yy += y * y, xy += x * y, xx += x * x;
+        y1 += y, yy += y * y, xy += x * y, xx += x * x;
         if (k > begin) steps += (values[k] - values[k - 1]) * (values[k] - values[k - 1]);
     }
     const double about_line = std::max(0.0, yy - y1 * y1 / n - xy * xy / xx);
