@@ -174,7 +174,7 @@ Findings findings_of_series(const std::vector<Release>& releases, double confide
         findings.push_back(
             {"repeatability_not_tested", Severity::note,
              "One release only: how well the test repeats was not tested, and the interval holds for "
-             "this release. Record three or more"});
+             "this release. Record three or more."});
     for (const Quantity quantity : {Quantity::natural_frequency, Quantity::damping_ratio}) {
         const Findings found = examine_repeats(series_of(releases, quantity), confidence_level);
         findings.insert(findings.end(), found.begin(), found.end());
