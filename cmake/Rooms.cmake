@@ -78,7 +78,10 @@ function(ringwright_drawing_module target)
   add_library(${target} MODULE ${PROJECT_SOURCE_DIR}/src/drawing/drawing_module.cpp)
   set_target_properties(${target} PROPERTIES PREFIX "" OUTPUT_NAME ringwright_drawing
     LIBRARY_OUTPUT_DIRECTORY ${CMAKE_RUNTIME_OUTPUT_DIRECTORY})
-  target_link_options(${target} PRIVATE -Wl,--as-needed -Wl,--exclude-libs,ALL -Wl,--no-undefined)
+  target_link_options(${target} PRIVATE -Wl,--as-needed -Wl,--exclude-libs,ALL)
+  if(NOT RINGWRIGHT_SANITIZE AND NOT RINGWRIGHT_FUZZ)  # clang links the sanitizers' runtime into programs alone
+    target_link_options(${target} PRIVATE -Wl,--no-undefined)
+  endif()
   target_link_libraries(${target} PRIVATE ringwright_drawing ringwright_flags)
 endfunction()
 
