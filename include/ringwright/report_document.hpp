@@ -11,15 +11,17 @@ namespace ringwright {
 enum class PaperSize { a4, letter };
 
 struct ReportInput {
-    std::string
-        result_json;   ///< ringwright.identification.v1, with its "verdict" and "sheet" where there are
-    std::string file;  ///< what the result is called in messages
-    std::vector<NamedFigure> figures;          ///< those that need the samples: recording, decay …
-    std::vector<std::string> missing_figures;  ///< a sentence for each that could not be drawn, and why
+    std::string result_json;  ///< ringwright.identification.v1 (with its "verdict" and "test_sheet" where
+                              ///< there are), ringwright.comparison.v1, ringwright.chart.v1 or
+                              ///< ringwright.gauge.v1
+    std::string file;         ///< what the result is called in messages
+    std::vector<NamedFigure> figures;           ///< those that need the samples: recording, decay …
+    std::vector<std::string> missing_figures;   ///< a sentence for each that could not be drawn, and why
+    std::vector<std::string> differences = {};  ///< a sentence for each number that did not come out again
 };
 
-/// Figures that need nothing but the result itself: "methods", "verdict". Throws InputError when the text is
-/// no ringwright.identification.v1.
+/// Figures that need nothing but the result itself: "methods", "verdict"; "comparison"; "chart"; "gauge".
+/// Throws InputError when the text is no result of a schema named above.
 [[nodiscard]] std::vector<NamedFigure> figures_of_result(const std::string& result_json,
                                                          const std::string& file);
 

@@ -6,6 +6,7 @@
 #include <CLI/Config.hpp>
 #include <CLI/Formatter.hpp>
 #include <algorithm>
+#include <utility>
 
 #include "ringwright/error.hpp"
 
@@ -53,40 +54,51 @@ Article article_from(const ArticleArguments& arguments) {
             positive_value(arguments.spring_mass, "--spring-mass", Dimension::mass)};
 }
 
+CLI::Option* add_added_mass_option(CLI::App& command, std::vector<std::string>& added_masses) {
+    return command
+        .add_option("--added-mass", added_masses,
+                    "Mass added to the article for the FILE before it; two or more "
+                    "different ones give stiffness and mass")
+        ->type_name("VALUE")
+        ->allow_extra_args(false)
+        ->group(group);
+}
+
 void add_file_arguments(CLI::App& command, FileArguments& arguments) {
     arguments.file_option =
         command.add_option("FILE", arguments.files, "Recordings, CSV or sound files; - is standard input")
             ->required()
             ->type_name("")
             ->allow_extra_args(true);
-    arguments.added_mass_option =
-        command
-            .add_option("--added-mass", arguments.added_masses,
-                        "Mass added to the article for the FILE before it; two or more "
-                        "different ones give stiffness and mass")
-            ->type_name("VALUE")
-            ->allow_extra_args(false)
-            ->group(group);
+    arguments.added_mass_option = add_added_mass_option(command, arguments.added_masses);
+}
+
+void load_sides(const CLI::App& command, const CLI::Option* added_mass_option,
+                const std::vector<std::string>& added_masses, std::vector<FileSide>& sides) {
+    std::size_t next_mass = 0;
+    LoadedFile* last = nullptr;
+    for (const CLI::Option* option : command.parse_order()) {
+        if (option == added_mass_option && next_mass < added_masses.size()) {
+            const std::string& text = added_masses[next_mass++];
+            if (last == nullptr || last->added_mass)
+                throw UsageError({"--added-mass", "", fmt::format("{} follows no FILE of its own", text),
+                                  "Example: a.csv --added-mass \"0 kg\" b.csv --added-mass \"1.000(1) kg\""});
+            last->added_mass = added_mass_from(text);
+        }
+        for (FileSide& side : sides)
+            if (option == side.option && side.loaded.size() < side.files.size())
+                last = &side.loaded.emplace_back(LoadedFile{side.files[side.loaded.size()], std::nullopt});
+    }
+    std::ptrdiff_t from_standard_input = 0;
+    for (const FileSide& side : sides) from_standard_input += std::ranges::count(side.files, "-");
+    if (from_standard_input > 1)
+        throw UsageError({"FILE", "", "standard input is named twice", "Name - once"});
 }
 
 std::vector<LoadedFile> files_from(const CLI::App& command, const FileArguments& arguments) {
-    std::vector<LoadedFile> loaded;
-    std::size_t next_mass = 0;
-    for (const CLI::Option* option : command.parse_order()) {
-        if (option == arguments.file_option) {
-            if (loaded.size() < arguments.files.size())
-                loaded.push_back({arguments.files[loaded.size()], std::nullopt});
-        } else if (option == arguments.added_mass_option && next_mass < arguments.added_masses.size()) {
-            const std::string& text = arguments.added_masses[next_mass++];
-            if (loaded.empty() || loaded.back().added_mass)
-                throw UsageError({"--added-mass", "", fmt::format("{} follows no FILE of its own", text),
-                                  "Example: a.csv --added-mass \"0 kg\" b.csv --added-mass \"1.000(1) kg\""});
-            loaded.back().added_mass = added_mass_from(text);
-        }
-    }
-    if (std::ranges::count(arguments.files, "-") > 1)
-        throw UsageError({"FILE", "", "standard input is named twice", "Name - once"});
-    return loaded;
+    std::vector<FileSide> sides{{arguments.file_option, arguments.files}};
+    load_sides(command, arguments.added_mass_option, arguments.added_masses, sides);
+    return std::move(sides.front().loaded);
 }
 
 }  // namespace ringwright::app

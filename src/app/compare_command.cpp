@@ -9,6 +9,8 @@
 #include <nlohmann/json.hpp>
 
 #include "app/command.hpp"
+#include "app/drawing.hpp"
+#include "app/filing.hpp"
 #include "app/judging.hpp"
 #include "app/messages.hpp"
 #include "app/no_answer.hpp"
@@ -22,12 +24,16 @@ namespace ringwright::app {
 namespace {
 
 struct CompareArguments {
-    std::vector<std::string> before, after, within;
+    const CLI::App* command = nullptr;
+    CLI::Option *before_option = nullptr, *after_option = nullptr, *added_mass_option = nullptr;
+    std::vector<std::string> before, after, added_masses, within;
     RecordingArguments recording;
     ArticleArguments article;
     AnswerArguments answer;
     AnalysisArguments analysis;
+    DrawingArguments drawing;
     std::string sheet;
+    std::optional<TestSheet> read_sheet;
 };
 
 /// "5 %" or "damping_ratio=5 %" or "natural_frequency=0.1": a number without % is in SI units.
@@ -56,12 +62,12 @@ void take_margin(const std::string& text, ComparisonOptions& options) {
     options.margins[*quantity] = margin;
 }
 
-Identification identify_side(const CompareArguments& arguments, const std::vector<std::string>& files) {
+Identification identify_side(const CompareArguments& arguments, const std::vector<LoadedFile>& files) {
     RecordingArguments recording = arguments.recording;
     ArticleArguments article = arguments.article;
-    if (!arguments.sheet.empty()) fill_from_sheet(read_test_sheet(arguments.sheet), recording, article);
+    if (arguments.read_sheet) fill_from_sheet(*arguments.read_sheet, recording, article);
     PreparedTest test;
-    for (const std::string& file : files) test.files.push_back({file, std::nullopt});
+    test.files = files;
     test.read = read_options(recording);
     test.options = analysis_options(recording, article, arguments.answer, arguments.analysis);
     return run(test);
@@ -69,24 +75,31 @@ Identification identify_side(const CompareArguments& arguments, const std::vecto
 
 nlohmann::ordered_json side_json(const Identification& identification) {
     nlohmann::ordered_json recordings = nlohmann::ordered_json::array();
-    for (const RecordingIdentification& identified : identification.recordings)
-        recordings.push_back({{"file", identified.recording.origin.file},
-                              {"sha256", identified.recording.origin.sha256},
-                              {"channel", identified.recording.origin.channel}});
+    for (const LedgerRecording& recording : recordings_of(identification)) {
+        nlohmann::ordered_json json{{"file", recording.file}, {"sha256", recording.sha256}};
+        if (recording.bytes) json["bytes"] = *recording.bytes;
+        json["channel"] = recording.channel;
+        if (!recording.added_mass.empty()) json["added_mass"] = recording.added_mass;
+        recordings.push_back(std::move(json));
+    }
     return {{"recordings", recordings},
             {"method", identification.result.method},
             {"event_count", identification.result.event_count}};
 }
 
-std::string document_text(const Comparison& comparison, const Identification& before,
-                          const Identification& after) {
-    return to_text(nlohmann::ordered_json{{"schema", "ringwright.comparison.v1"},
-                                          {"software", software_json()},
-                                          {"confidence_level", comparison.options.confidence_level},
-                                          {"before", side_json(before)},
-                                          {"after", side_json(after)},
-                                          {"quantities", to_json(comparison, before.result.torsional)},
-                                          {"findings", to_json(comparison.findings)}});
+nlohmann::ordered_json document_of(const CompareArguments& arguments, const Comparison& comparison,
+                                   const Identification& before, const Identification& after) {
+    nlohmann::ordered_json json{{"schema", "ringwright.comparison.v1"},
+                                {"software", software_json()},
+                                {"confidence_level", comparison.options.confidence_level},
+                                {"before", side_json(before)},
+                                {"after", side_json(after)},
+                                {"quantities", to_json(comparison, before.result.torsional)},
+                                {"findings", to_json(comparison.findings)}};
+    if (arguments.read_sheet)
+        json["test_sheet"] = nlohmann::ordered_json::parse(sheet_facts_json(*arguments.read_sheet));
+    json["options"] = given_options(*arguments.command);
+    return json;
 }
 
 void note_single_releases(const PooledResult& result, const char* side, Findings& findings) {
@@ -117,29 +130,41 @@ std::string sides_text(const Identification& before, const Identification& after
     return fmt::format("Before\n{}\nAfter\n{}\n", result_lines(before), result_lines(after));
 }
 
-std::string answer_text(const Comparison& comparison, const Identification& before,
-                        const Identification& after, Format format) {
-    if (format == Format::json) return document_text(comparison, before, after);
+std::string answer_text(const CompareArguments& arguments, const Comparison& comparison,
+                        const Identification& before, const Identification& after) {
+    const Format format = format_from(arguments.answer);
+    const auto document = [&] { return document_of(arguments, comparison, before, after); };
+    if (const auto form = drawn_form_of(arguments.answer.output))
+        return drawn_answer({to_text(document(), -1), "", {}, {}}, arguments.drawing, *form);
+    if (format == Format::json) return to_text(document());
     if (format == Format::csv) return to_csv(comparison, before.result.torsional);
     return sides_text(before, after) + to_text(comparison, before.result.torsional);
 }
 
-int run_compare(const CompareArguments& arguments) {
-    const Format format = format_from(arguments.answer);
+int run_compare(CompareArguments arguments) {
+    (void)format_from(arguments.answer);
+    (void)require_drawable(arguments.answer.output, arguments.drawing);
     ComparisonOptions checked;
     for (const std::string& text : arguments.within) take_margin(text, checked);
     std::vector<std::string> inputs = arguments.before;
     inputs.insert(inputs.end(), arguments.after.begin(), arguments.after.end());
+    if (!arguments.sheet.empty()) {
+        inputs.push_back(arguments.sheet);
+        arguments.read_sheet = read_test_sheet(arguments.sheet);
+    }
     refuse_overwriting(arguments.answer.output, inputs);
-    const Identification before = identify_side(arguments, arguments.before);
-    const Identification after = identify_side(arguments, arguments.after);
+    std::vector<FileSide> sides{{arguments.before_option, arguments.before},
+                                {arguments.after_option, arguments.after}};
+    load_sides(*arguments.command, arguments.added_mass_option, arguments.added_masses, sides);
+    const Identification before = identify_side(arguments, sides[0].loaded);
+    const Identification after = identify_side(arguments, sides[1].loaded);
     for (const Identification* side : {&before, &after})
         if (!side->answered()) {
             say(why_no_answer(*side));
             return no_answer;
         }
     const Comparison comparison = compare_sides(arguments, before, after);
-    write_answer(answer_text(comparison, before, after, format), arguments.answer.output);
+    write_answer(answer_text(arguments, comparison, before, after), arguments.answer.output);
     return done;
 }
 
@@ -148,12 +173,14 @@ int run_compare(const CompareArguments& arguments) {
 void add_compare_command(CLI::App& app, Context& context) {
     CLI::App* command = app.add_subcommand("compare", "Did service change the article, and by how much");
     auto arguments = std::make_shared<CompareArguments>();
-    command->add_option("--before", arguments->before, "Recordings before, pooled")
-        ->type_name("FILE…")
-        ->required();
-    command->add_option("--after", arguments->after, "Recordings after, pooled")
-        ->type_name("FILE…")
-        ->required();
+    arguments->command = command;
+    arguments->before_option = command->add_option("--before", arguments->before, "Recordings before, pooled")
+                                   ->type_name("FILE…")
+                                   ->required();
+    arguments->after_option = command->add_option("--after", arguments->after, "Recordings after, pooled")
+                                  ->type_name("FILE…")
+                                  ->required();
+    arguments->added_mass_option = add_added_mass_option(*command, arguments->added_masses);
     command
         ->add_option("--within", arguments->within,
                      "Also ask whether they are the same within \"5 %\", or of one quantity: "
@@ -166,10 +193,13 @@ void add_compare_command(CLI::App& app, Context& context) {
     add_article_options(*command, arguments->article);
     add_answer_options(*command, arguments->answer);
     add_analysis_options(*command, arguments->analysis);
+    add_drawing_options(*command, arguments->drawing, "comparison");
     command->footer(
         "A quantity that did not change is called changed in one minus the confidence level of comparisons.\n"
         "Example: ringwright compare --before old-1.csv old-2.csv --after new-1.csv new-2.csv --within \"5 "
-        "%\"");
+        "%\"\n"
+        "With added masses: --before a.csv --added-mass \"0 kg\" --before b.csv --added-mass \"1 kg\" "
+        "--after …");
     command->callback(
         [arguments, &context] { context.run = [arguments] { return run_compare(*arguments); }; });
 }

@@ -82,20 +82,19 @@ std::string one_figure(const ReportInput& input, const std::string& name, DrawnF
     figures.insert(figures.end(), input.figures.begin(), input.figures.end());
     const bool judged = std::ranges::find(figures, "verdict", &NamedFigure::name) != figures.end();
     const bool decay = std::ranges::find(figures, "decay-1", &NamedFigure::name) != figures.end();
-    const std::string first = judged ? "verdict" : decay ? "decay-1" : "methods";
+    const std::string first = judged            ? "verdict"
+                              : decay           ? "decay-1"
+                              : figures.empty() ? ""
+                                                : figures.front().name;
     return drawing().draw_figure(figure_named(figures, name.empty() ? first : name).figure,
                                  image_format_from(form), {});
 }
 
 }  // namespace
 
-void add_drawing_options(CLI::App& command, DrawingArguments& arguments) {
+void add_drawing_options(CLI::App& command, DrawingArguments& arguments, const std::string& names) {
     constexpr const char* group = "About the answer";
-    command
-        .add_option(
-            "--figure", arguments.figure,
-            "Draw this figure alone: methods, verdict, recording-1, decay-1, decrement-1, spectrum-1, "
-            "autocorrelation-1, course-1 (the number is the release's)")
+    command.add_option("--figure", arguments.figure, "Draw this figure alone: " + names)
         ->type_name("NAME")
         ->group(group);
     command.add_option("--paper", arguments.paper, "Paper of a report as PDF")
@@ -123,6 +122,13 @@ bool require_drawable(const std::string& output, const DrawingArguments& argumen
         throw UsageError({"--figure", "", "there is no file to draw it in",
                           "Give -o with a name that ends in .svg, .pdf or .png"});
     return drawn;
+}
+
+void refuse_drawn(const std::string& output) {
+    if (drawn_form_of(output))
+        throw UsageError({"-o", "",
+                          fmt::format("\"{}\" asks for a drawing, and this answer has none", output),
+                          "Give another ending, such as .txt or .json"});
 }
 
 std::vector<NamedFigure> sample_figures(const Identification& identification) {

@@ -18,7 +18,12 @@ namespace ringwright::app {
 struct DrawingArguments {
     std::string figure, paper = "a4";
 };
-void add_drawing_options(CLI::App& command, DrawingArguments& arguments);
+/// --figure, with help that names the figures that there are, and --paper.
+void add_drawing_options(CLI::App& command, DrawingArguments& arguments, const std::string& names);
+inline constexpr const char* identification_figures =
+    "methods, verdict, recording-1, decay-1, decrement-1, spectrum-1, autocorrelation-1, course-1 (the "
+    "number "
+    "is the release's)";
 
 /// The form of a drawn answer that a file name asks for by its ending.
 enum class DrawnForm { html, pdf, svg, png };
@@ -27,6 +32,9 @@ enum class DrawnForm { html, pdf, svg, png };
 
 /// True when `output` asks for a drawn answer. Throws UsageError for a figure named without one.
 bool require_drawable(const std::string& output, const DrawingArguments& arguments);
+
+/// Throws UsageError when `output` asks for a drawn answer of a command that has none.
+void refuse_drawn(const std::string& output);
 
 /// The figures that need the samples, out of an identification made with pictures and kept samples.
 [[nodiscard]] std::vector<NamedFigure> sample_figures(const Identification& identification);

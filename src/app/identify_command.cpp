@@ -222,7 +222,7 @@ void add_identify_command(CLI::App& app, Context& context) {
     add_article_options(*command, arguments->article);
     add_answer_options(*command, arguments->answer);
     add_analysis_options(*command, arguments->analysis);
-    add_drawing_options(*command, arguments->drawing);
+    add_drawing_options(*command, arguments->drawing, identification_figures);
     command
         ->add_flag("--separate", arguments->separate,
                    "One result for each FILE, in their order; JSON: one document a line")

@@ -11,6 +11,8 @@
 #include "app/filing.hpp"
 #include "app/ledger_options.hpp"
 #include "app/messages.hpp"
+#include "app/result_report.hpp"
+#include "app/test_arguments.hpp"
 #include "ringwright/error.hpp"
 #include "ringwright/ledger_report.hpp"
 #include "ringwright/result_json.hpp"
@@ -23,8 +25,10 @@ constexpr const char* result_schema = "ringwright.identification.v1";
 struct EntryArguments {
     std::string result, sheet, reason, head, format = "csv";
     std::int64_t number = 0;
+    std::vector<std::string> folders;
     FilterArguments filter;
     AnswerArguments answer;
+    DrawingArguments drawing;
 };
 using Shared = std::shared_ptr<EntryArguments>;
 
@@ -59,6 +63,7 @@ int run_supersede(const std::string& path, const EntryArguments& arguments) {
 }
 
 int run_list(const std::string& path, const EntryArguments& arguments) {
+    refuse_drawn(arguments.answer.output);
     const Format format = format_from(arguments.answer);
     const auto entries = Ledger::open_to_read(path).list(filter_from(arguments.filter));
     std::string text = list_text(entries);
@@ -68,9 +73,33 @@ int run_list(const std::string& path, const EntryArguments& arguments) {
     return done;
 }
 
+/// The result with what the entry holds beside it, where it was filed without.
+nlohmann::ordered_json whole_result(const LedgerEntry& entry, const std::optional<TestSheet>& sheet) {
+    auto result = nlohmann::ordered_json::parse(entry.result_json);
+    if (sheet && !result.contains("test_sheet"))
+        result["test_sheet"] = nlohmann::ordered_json::parse(sheet_facts_json(*sheet));
+    if (!entry.arguments.empty() && !result.contains("options")) result["options"] = entry.arguments;
+    return result;
+}
+
+int draw_entry(const std::string& path, const LedgerEntry& entry, const EntryArguments& arguments) {
+    const std::string name = fmt::format("entry {} of {}", arguments.number, path);
+    if (entry.result_json.empty())
+        throw InputError({path, fmt::format("entry {}", arguments.number),
+                          "it withdraws another entry and holds no result", "Show it as text"});
+    std::optional<TestSheet> sheet;
+    if (!entry.sheet_text.empty()) sheet = read_test_sheet_from_memory(entry.sheet_text, entry.sheet_name);
+    draw_result({whole_result(entry, sheet), name, path, arguments.folders, sheet}, arguments.drawing,
+                arguments.answer.output);
+    return done;
+}
+
 int run_show(const std::string& path, const EntryArguments& arguments) {
     const Format format = format_from(arguments.answer);
+    const bool drawn = require_drawable(arguments.answer.output, arguments.drawing);
+    refuse_overwriting(arguments.answer.output, {path});
     const LedgerEntry entry = Ledger::open_to_read(path).get(arguments.number);
+    if (drawn) return draw_entry(path, entry, arguments);
     std::string text = entry_text(entry);
     if (format == Format::json) text = entry_as_json(entry) + "\n";
     if (format == Format::csv) text = figures_csv_header() + entry_as_figures_csv(entry);
@@ -88,6 +117,7 @@ void hold_against_head(LedgerCheck& check, const std::string& head, const Ledger
 }
 
 int run_check(const std::string& path, const EntryArguments& arguments) {
+    refuse_drawn(arguments.answer.output);
     const Format format = format_from(arguments.answer);
     const Ledger ledger = Ledger::open_to_read(path);
     LedgerCheck check = ledger.check();
@@ -170,6 +200,10 @@ void add_ledger_entry_commands(CLI::App& ledger, Context& context, const LedgerL
     add("show", "One entry", run_show, [](CLI::App& part, EntryArguments& arguments) {
         part.add_option("ENTRY", arguments.number, "Its number")->type_name("N")->required();
         add_answer_options(part, arguments.answer);
+        add_drawing_options(part, arguments.drawing, identification_figures);
+        part.add_option("--recordings", arguments.folders,
+                        "Folder in which the recordings are looked for as well")
+            ->type_name("FOLDER");
     });
     add("check", "Walk the chain; exit status 1 when an entry was altered or removed", run_check,
         [](CLI::App& part, EntryArguments& arguments) {

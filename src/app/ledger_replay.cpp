@@ -7,7 +7,6 @@
 #include <CLI/Config.hpp>
 #include <CLI/Formatter.hpp>
 #include <algorithm>
-#include <cmath>
 #include <filesystem>
 #include <memory>
 #include <nlohmann/json.hpp>
@@ -15,6 +14,7 @@
 #include "app/filing.hpp"
 #include "app/ledger_options.hpp"
 #include "app/messages.hpp"
+#include "app/same_figures.hpp"
 #include "app/test_arguments.hpp"
 #include "ringwright/error.hpp"
 #include "ringwright/result_json.hpp"
@@ -24,9 +24,6 @@ namespace ringwright::app {
 namespace {
 
 namespace fs = std::filesystem;
-
-/// Another machine's mathematics library may round the last digits otherwise.
-constexpr double rounding = 1e-9;
 
 struct ReplayArguments {
     std::int64_t number = 0;
@@ -107,14 +104,6 @@ PreparedTest prepare_replay(const LedgerEntry& entry, const std::vector<std::str
     test.options =
         analysis_options(arguments.recording, arguments.article, arguments.answer, arguments.analysis);
     return test;
-}
-
-enum class Match { exact, but_for_rounding, different };
-
-Match match_of(double filed, double replayed) {
-    if (filed == replayed) return Match::exact;
-    const double scale = std::max(std::abs(filed), std::abs(replayed));
-    return std::abs(filed - replayed) <= rounding * scale ? Match::but_for_rounding : Match::different;
 }
 
 struct ReplayedFigure {

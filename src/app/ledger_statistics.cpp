@@ -14,6 +14,7 @@
 #include "app/filing.hpp"
 #include "app/ledger_options.hpp"
 #include "app/messages.hpp"
+#include "app/result_report.hpp"
 #include "ringwright/error.hpp"
 #include "ringwright/ledger_report.hpp"
 #include "ringwright/result_json.hpp"
@@ -25,6 +26,7 @@ namespace {
 struct StatisticsArguments {
     FilterArguments filter;
     AnswerArguments answer;
+    DrawingArguments drawing;
     std::string rules = "usual", lower, upper;
 };
 
@@ -79,8 +81,29 @@ std::vector<RunRule> rules_from(const std::string& text) {
     throw UsageError({"--rules", "", fmt::format("\"{}\" is no set of rules", text), "Give usual or all"});
 }
 
+nlohmann::ordered_json chart_document(const LedgerChart& chart, const FilterArguments& filter) {
+    nlohmann::ordered_json json = to_json(chart);
+    json["software"] = software_json();
+    json["confidence_level"] = chart.confidence_level;
+    json["filter"] = nlohmann::ordered_json::object();
+    for (const auto& [key, text] :
+         {std::pair{"article_type", filter.article_type}, std::pair{"serial", filter.serial},
+          std::pair{"operator", filter.test_operator}, std::pair{"decision", filter.decision},
+          std::pair{"since", filter.since}, std::pair{"until", filter.until}})
+        if (!text.empty()) json["filter"][key] = text;
+    return json;
+}
+
+int draw_statistics(const std::string& path, const nlohmann::ordered_json& document,
+                    const StatisticsArguments& arguments) {
+    draw_result({document, path, path, {}, std::nullopt}, arguments.drawing, arguments.answer.output);
+    return done;
+}
+
 int run_chart(const std::string& path, const StatisticsArguments& arguments) {
     const Format format = format_from(arguments.answer);
+    const bool drawn = require_drawable(arguments.answer.output, arguments.drawing);
+    refuse_overwriting(arguments.answer.output, {path});
     LedgerChart chart;
     chart.rules = rules_from(arguments.rules);
     chart.quantity = quantity_from(arguments.filter);
@@ -90,7 +113,9 @@ int run_chart(const std::string& path, const StatisticsArguments& arguments) {
     chart.confidence_level = confidence_from(arguments.answer);
     if (!arguments.filter.serial.empty())
         chart.trend = linear_trend(years_of(chart.values), chart.chart.values, chart.confidence_level);
-    write_answer(format == Format::text ? to_text(chart) : to_text(to_json(chart)), arguments.answer.output);
+    const auto document = [&] { return chart_document(chart, arguments.filter); };
+    if (drawn) return draw_statistics(path, document(), arguments);
+    write_answer(format == Format::text ? to_text(chart) : to_text(document()), arguments.answer.output);
     return done;
 }
 
@@ -128,6 +153,7 @@ std::optional<Limit> limit_from(const StatisticsArguments& arguments, Quantity q
 }
 
 int run_capability(const std::string& path, const StatisticsArguments& arguments) {
+    refuse_drawn(arguments.answer.output);
     const Format format = format_from(arguments.answer);
     const Quantity quantity = quantity_from(arguments.filter);
     const auto given = limit_from(arguments, quantity);
@@ -179,8 +205,18 @@ std::vector<std::vector<std::vector<double>>> balanced(const Cells& cells, std::
     return table;
 }
 
+nlohmann::ordered_json readings_json(const Cells& cells) {
+    nlohmann::ordered_json readings = nlohmann::ordered_json::array();
+    for (const auto& [serial, by_operator] : cells)
+        for (const auto& [name, values] : by_operator)
+            readings.push_back({{"serial", serial}, {"operator", name}, {"values", values}});
+    return readings;
+}
+
 int run_gauge(const std::string& path, const StatisticsArguments& arguments) {
     const Format format = format_from(arguments.answer);
+    const bool drawn = require_drawable(arguments.answer.output, arguments.drawing);
+    refuse_overwriting(arguments.answer.output, {path});
     const Quantity quantity = quantity_from(arguments.filter);
     const auto values = values_from(path, arguments, "study");
     Cells cells;
@@ -194,11 +230,14 @@ int run_gauge(const std::string& path, const StatisticsArguments& arguments) {
     const GaugeAnswer answer = gauge_study(table, level);
     if (!answer.study) too_few(path, "study", without_period(note + answer.reason));
     nlohmann::ordered_json json{{"schema", "ringwright.gauge.v1"},
+                                {"software", software_json()},
                                 {"quantity", key_of(quantity)},
                                 {"unit", values.front().unit},
                                 {"confidence_level", level}};
     json.update(to_json(*answer.study));
+    json["readings"] = readings_json(cells);
     if (!note.empty()) json["note"] = note;
+    if (drawn) return draw_statistics(path, json, arguments);
     const std::string text = gauge_text(*answer.study, quantity, values.front().unit, level);
     write_answer(format == Format::text ? (note.empty() ? text : fmt::format("{}\n  {}\n", text, note))
                                         : to_text(json),
@@ -225,6 +264,7 @@ void add_ledger_statistics_commands(CLI::App& ledger, Context& context, const Le
     };
     const auto [chart, chart_arguments] =
         add("chart", "Individuals and moving ranges, signals, and the trend of one --serial", run_chart);
+    add_drawing_options(*chart, chart_arguments->drawing, "chart");
     chart->add_option("--rules", chart_arguments->rules, "Which patterns are signals: usual or all")
         ->type_name("usual|all")
         ->capture_default_str();
@@ -234,7 +274,9 @@ void add_ledger_statistics_commands(CLI::App& ledger, Context& context, const Le
     capable->add_option("--min", capability_arguments->lower, "Lower limit, with its unit")
         ->type_name("VALUE");
     capable->add_option("--max", capability_arguments->upper, "Upper limit")->type_name("VALUE");
-    add("gauge", "Repeatability, reproducibility and articles, by analysis of variance", run_gauge);
+    const auto [gauge, gauge_arguments] =
+        add("gauge", "Repeatability, reproducibility and articles, by analysis of variance", run_gauge);
+    add_drawing_options(*gauge, gauge_arguments->drawing, "gauge");
 }
 
 }  // namespace ringwright::app

@@ -11,7 +11,7 @@
 #include "app/command.hpp"
 #include "app/drawing.hpp"
 #include "app/messages.hpp"
-#include "app/run_again.hpp"
+#include "app/result_report.hpp"
 #include "ringwright/error.hpp"
 #include "ringwright/result_json.hpp"
 
@@ -25,18 +25,13 @@ struct ReportArguments {
 };
 
 int run_report(const ReportArguments& arguments) {
-    const auto form = drawn_form_of(arguments.output);
-    if (!form)
+    if (!drawn_form_of(arguments.output))
         throw UsageError({"-o", "", fmt::format("\"{}\" asks for no form that is known", arguments.output),
                           "Give a name that ends in .html, .pdf, .svg or .png"});
-    const auto result = read_result_json(arguments.result, "ringwright.identification.v1");
+    const auto result = read_result_json(arguments.result, "");
     refuse_overwriting(arguments.output, {arguments.result});
-    const RunAgain again = run_again(result, arguments.result, arguments.folders);
-    ReportInput input{result.dump(), arguments.result, {}, again.missing};
-    if (again.identification) input.figures = sample_figures(*again.identification);
-    write_answer(drawn_answer(input, arguments.drawing, *form), arguments.output);
-    for (const std::string& missing : again.missing)
-        say({arguments.result, "", without_period(missing), "Name the folder with it: --recordings FOLDER"});
+    draw_result({result, arguments.result, arguments.result, arguments.folders, std::nullopt},
+                arguments.drawing, arguments.output);
     return done;
 }
 
@@ -47,7 +42,8 @@ void add_report_command(CLI::App& app, Context& context) {
         app.add_subcommand("report", "The report of a result as HTML or PDF, or one figure of it");
     auto arguments = std::make_shared<ReportArguments>();
     command
-        ->add_option("RESULT", arguments->result, "Result that identify or verify wrote with --format json")
+        ->add_option("RESULT", arguments->result,
+                     "What identify, verify, compare, ledger chart or ledger gauge wrote as JSON")
         ->type_name("RESULT.json")
         ->required();
     command
@@ -55,7 +51,8 @@ void add_report_command(CLI::App& app, Context& context) {
                      "Where to write it; the ending says in which form: .html, .pdf, .svg or .png")
         ->type_name("FILE")
         ->required();
-    add_drawing_options(*command, arguments->drawing);
+    add_drawing_options(*command, arguments->drawing,
+                        std::string(identification_figures) + ", comparison, chart, gauge");
     command
         ->add_option("--recordings", arguments->folders,
                      "Folder in which the recordings are looked for as well")

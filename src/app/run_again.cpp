@@ -13,8 +13,12 @@
 #include "app/article_options.hpp"
 #include "app/messages.hpp"
 #include "app/recording_options.hpp"
+#include "app/same_figures.hpp"
+#include "app/test_arguments.hpp"
 #include "ringwright/error.hpp"
+#include "ringwright/ledger.hpp"
 #include "ringwright/measured_value.hpp"
+#include "ringwright/result_json.hpp"
 
 namespace ringwright::app {
 namespace {
@@ -34,6 +38,12 @@ std::string text_of(const Json& object, const char* key) {
     return found != object.end() && found->is_string() ? found->get<std::string>() : "";
 }
 
+/// The object under the key; an empty one when there is none.
+Json object_of(const Json& json, const char* key) {
+    const auto found = json.find(key);
+    return found != json.end() && found->is_object() ? *found : Json::object();
+}
+
 Arguments arguments_of(const Json& result) {
     CLI::App parser;
     Arguments arguments;
@@ -49,6 +59,29 @@ Arguments arguments_of(const Json& result) {
     std::ranges::reverse(given);  // CLI11 takes them from the end
     parser.parse(given);
     return arguments;
+}
+
+/// The sheet with the hash that the result names; nothing when it is not there any more.
+std::optional<TestSheet> find_sheet(const Json& facts, const std::vector<fs::path>& places) {
+    for (const fs::path& place : places) {
+        std::error_code error;
+        const std::string path = place.string();
+        if (fs::is_regular_file(place, error) && sha256_of_file(path) == text_of(facts, "sha256"))
+            return read_test_sheet(path);
+    }
+    return std::nullopt;
+}
+
+/// What a sheet said of the article, as the result repeats it.
+void fill_from_result(const Json& article, ArticleArguments& arguments) {
+    const auto fill = [&](std::string& argument, const char* key) {
+        if (argument.empty()) argument = text_of(object_of(article, key), "as_written");
+    };
+    if (arguments.mass.empty() && arguments.inertia.empty()) {
+        fill(arguments.mass, "mass");
+        fill(arguments.inertia, "inertia");
+    }
+    fill(arguments.spring_mass, "spring_mass");
 }
 
 /// A sheet may have said what the options do not: the result has what came of it.
@@ -106,19 +139,57 @@ bool read_recordings(const Json& result, const std::string& file, const std::vec
             continue;
         }
         RecordingInput input{std::move(*found), std::nullopt};
-        const std::string added = text_of(wanted.value("added_mass", Json::object()), "as_written");
+        const std::string added = text_of(object_of(wanted, "added_mass"), "as_written");
         if (!added.empty()) input.added_mass = parse_measured_value(added, "added_mass", Dimension::mass);
         inputs.push_back(std::move(input));
     }
     return missing.empty() && !inputs.empty();
 }
 
+/// The options of the result, and what its sheet added to them.
+Arguments all_arguments(const Json& result, const std::string& file, const std::vector<std::string>& folders,
+                        std::optional<TestSheet> sheet) {
+    Arguments arguments = arguments_of(result);
+    const Json facts = object_of(result, "test_sheet");
+    if (!sheet && facts.contains("sha256"))
+        sheet = find_sheet(facts, places_of(text_of(facts, "file"), file, folders));
+    if (sheet) fill_from_sheet(*sheet, arguments.recording, arguments.article);
+    fill_from_result(object_of(result, "article"), arguments.article);
+    return arguments;
+}
+
+std::string now_text(const Quantities& quantities, Quantity quantity) {
+    const auto now = quantities.find(quantity);
+    return now == quantities.end()
+               ? "absent"
+               : fmt::format("{:.9g} (u {:.3g})", now->second.value, now->second.standard_uncertainty);
+}
+
+std::vector<std::string> differences_of(const Json& result, const Quantities& quantities,
+                                        const std::string& file) {
+    std::vector<std::string> differences;
+    const Json filed = object_of(object_of(result, "result"), "quantities");
+    for (const auto& [quantity, before] : quantities_from_json(filed, file)) {
+        const auto now = quantities.find(quantity);
+        if (now != quantities.end() && match_of(before.value, now->second.value) != Match::different &&
+            match_of(before.standard_uncertainty, now->second.standard_uncertainty) != Match::different)
+            continue;
+        differences.push_back(fmt::format(
+            "Run again for the figures, the {} did not come out as in the result: it says {:.9g} (u {:.3g}), "
+            "now it "
+            "is {}. The numbers of this report are those of the result.",
+            name_of(quantity), before.value, before.standard_uncertainty, now_text(quantities, quantity)));
+    }
+    return differences;
+}
+
 }  // namespace
 
-RunAgain run_again(const Json& result, const std::string& file, const std::vector<std::string>& folders) {
+RunAgain run_again(const Json& result, const std::string& file, const std::vector<std::string>& folders,
+                   const std::optional<TestSheet>& sheet) {
     RunAgain again;
     try {
-        const Arguments arguments = arguments_of(result);
+        const Arguments arguments = all_arguments(result, file, folders, sheet);
         AnalysisOptions options =
             analysis_options(arguments.recording, arguments.article, arguments.answer, arguments.analysis);
         options.identify.pictures = true;
@@ -126,6 +197,8 @@ RunAgain run_again(const Json& result, const std::string& file, const std::vecto
         std::vector<RecordingInput> inputs;
         if (read_recordings(result, file, folders, arguments, inputs, again.missing))
             again.identification = identify(std::move(inputs), options);
+        if (again.identification)
+            again.differences = differences_of(result, again.identification->result.quantities, file);
     } catch (const CLI::ParseError& error) {
         again.missing.push_back(
             fmt::format("Figures are missing: the options in the result cannot be used ({}).",

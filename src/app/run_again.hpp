@@ -7,6 +7,7 @@
 #include <vector>
 
 #include "ringwright/analysis.hpp"
+#include "ringwright/test_sheet.hpp"
 
 namespace ringwright::app {
 
@@ -14,11 +15,14 @@ namespace ringwright::app {
 struct RunAgain {
     std::optional<Identification> identification;
     std::vector<std::string> missing;
+    std::vector<std::string> differences;  ///< a sentence for each quantity that comes out otherwise
 };
 
 /// Looks for each recording under the path that the result names, then beside the result and in `folders`,
-/// and takes it only when its SHA-256 is the one in the result. `file` is the path of the result.
+/// and takes it only when its SHA-256 is the one in the result. `file` is the path of the result. The test
+/// sheet is `sheet`, else it is looked for in the same way.
 [[nodiscard]] RunAgain run_again(const nlohmann::ordered_json& result, const std::string& file,
-                                 const std::vector<std::string>& folders);
+                                 const std::vector<std::string>& folders,
+                                 const std::optional<TestSheet>& sheet = std::nullopt);
 
 }  // namespace ringwright::app

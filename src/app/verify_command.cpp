@@ -16,6 +16,7 @@
 #include "app/no_answer.hpp"
 #include "app/test_arguments.hpp"
 #include "ringwright/error.hpp"
+#include "ringwright/result_csv.hpp"
 #include "ringwright/result_json.hpp"
 #include "ringwright/result_text.hpp"
 #include "ringwright/verdict_report.hpp"
@@ -63,7 +64,8 @@ nlohmann::ordered_json verdict_document(const Identification& identification, co
 std::string answer_text(const Identification& identification, const Verdict& verdict,
                         const nlohmann::ordered_json& document, Format format) {
     if (format == Format::json) return to_text(document);
-    if (format == Format::csv) return to_csv(verdict, identification.result.torsional);
+    if (format == Format::csv)
+        return to_csv(verdict, identification.result.torsional) + "\r\n" + to_csv(identification);
     return fmt::format("{}\n{}", to_text(identification), to_text(verdict, identification.result.torsional));
 }
 
@@ -109,7 +111,7 @@ void add_verify_command(CLI::App& app, Context& context) {
     CLI::App* command = app.add_subcommand("verify", "The same, judged against the limits in a test sheet");
     auto arguments = std::make_shared<VerifyArguments>();
     add_test_options(*command, arguments->test);
-    add_drawing_options(*command, arguments->drawing);
+    add_drawing_options(*command, arguments->drawing, identification_figures);
     command->add_option("--sheet", arguments->sheet, "Test sheet with the limits; options win over it")
         ->type_name("SHEET.toml")
         ->required();

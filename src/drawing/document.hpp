@@ -62,13 +62,20 @@ using Block =
 
 struct Document {
     std::string title, number, subject, date, creator;  ///< date: "2031-04-02" or empty
+    std::string kind = "Test report";                   ///< stands before the number
     std::vector<Block> blocks;
 };
 
 /// What the report of an identification says.
 [[nodiscard]] Document identification_document(const nlohmann::ordered_json& result,
                                                const ReportInput& input);
-/// Parses the result; throws InputError when it is none.
+/// What the report of a comparison, a chart over the ledger or a gauge study says.
+[[nodiscard]] Document comparison_document(const nlohmann::ordered_json& result);
+[[nodiscard]] Document chart_document(const nlohmann::ordered_json& result);
+[[nodiscard]] Document gauge_document(const nlohmann::ordered_json& result);
+/// The document that the schema of the result asks for.
+[[nodiscard]] Document document_of(const nlohmann::ordered_json& result, const ReportInput& input);
+/// Parses the result; throws InputError when it is none that can be drawn.
 [[nodiscard]] nlohmann::ordered_json parsed_result(const std::string& text, const std::string& file);
 
 [[nodiscard]] std::string to_html(const Document& document);

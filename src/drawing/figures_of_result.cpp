@@ -3,6 +3,8 @@
 #include <fmt/format.h>
 
 #include "drawing/document.hpp"
+#include "drawing/document_parts.hpp"
+#include "drawing/quality_figures.hpp"
 #include "drawing/result_reading.hpp"
 
 namespace ringwright {
@@ -83,6 +85,10 @@ JudgedValue judged_value(const Json& limit, const Json& result) {
 std::vector<NamedFigure> figures_of_result(const std::string& result_json, const std::string& file) {
     using namespace drawing;
     const Json result = parsed_result(result_json, file);
+    const std::string schema = text_at(result, {"schema"});
+    if (schema == schemas::comparison) return {comparison_figure(result)};
+    if (schema == schemas::chart) return {chart_figure(result)};
+    if (schema == schemas::gauge) return {gauge_figure(result)};
     std::vector<NamedFigure> figures;
     if (!text_at(result, {"result", "method"}).empty()) figures.push_back(methods_figure(result));
     VerdictFigure verdict;

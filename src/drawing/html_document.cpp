@@ -173,9 +173,9 @@ std::string to_html(const Document& document) {
         "<meta name=\"viewport\" content=\"width=device-width, initial-scale=1\">\n"
         "<meta name=\"generator\" "
         "content=\"{}\">\n<title>{}</title>\n<style>{}</style>\n</head>\n<body>\n<main>\n"
-        "<p class=\"over\">Test report {}</p>\n<h1>{}</h1>\n{}</main>\n</body>\n</html>\n",
-        escaped(document.creator), escaped(name), filled_style(), escaped(document.number),
-        escaped(document.title), writer.body);
+        "<p class=\"over\">{} {}</p>\n<h1>{}</h1>\n{}</main>\n</body>\n</html>\n",
+        escaped(document.creator), escaped(name), filled_style(), escaped(document.kind),
+        escaped(document.number), escaped(document.title), writer.body);
 }
 
 }  // namespace ringwright::drawing

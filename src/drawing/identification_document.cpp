@@ -2,48 +2,19 @@
 // glance, the evidence, the budget, the traceability.
 
 #include <fmt/format.h>
-#include <openssl/sha.h>
 
 #include <algorithm>
-#include <array>
 #include <cmath>
 
 #include "drawing/document.hpp"
-#include "drawing/fonts.hpp"
+#include "drawing/document_parts.hpp"
 #include "drawing/result_reading.hpp"
-#include "ringwright/error.hpp"
 
 namespace ringwright::drawing {
 namespace {
 
 /// The figures of more releases than this would make a report that nobody reads.
 constexpr std::size_t most_releases_drawn = 10;
-
-using FactRows = std::vector<std::pair<std::string, std::string>>;
-
-void add_fact(FactRows& rows, const char* name, const std::string& value) {
-    if (!value.empty()) rows.emplace_back(name, value);
-}
-
-/// Twelve hexadecimal digits of the hash of the result: the same result has the same number.
-std::string report_number(const Json& result) {
-    const std::string result_json = result.dump(-1, ' ', false, Json::error_handler_t::replace);
-    std::array<unsigned char, SHA256_DIGEST_LENGTH> hash{};
-    SHA256(reinterpret_cast<const unsigned char*>(result_json.data()), result_json.size(), hash.data());
-    return fmt::format("{:02X}{:02X}-{:02X}{:02X}-{:02X}{:02X}", hash[0], hash[1], hash[2], hash[3], hash[4],
-                       hash[5]);
-}
-
-std::string confidence_text(const Json& result) {
-    return fmt::format("{:.4g} %", 100.0 * number_at(result, {"confidence_level"}).value_or(0.95));
-}
-
-std::string article_name(const Json& result) {
-    const std::string type = text_at(result, {"test_sheet", "article_type"});
-    const std::string serial = text_at(result, {"test_sheet", "serial"});
-    if (type.empty()) return serial.empty() ? "" : "serial " + serial;
-    return serial.empty() ? type : type + ", serial " + serial;
-}
 
 /// "pluck", or "pluck, tap" where the releases differ.
 std::string kinds_of_test(const Json& result) {
@@ -110,10 +81,6 @@ Answer answer_of(const Json& result) {
         answer.reading = "The findings say why.";
     }
     return answer;
-}
-
-std::string cell(const std::string& text) {
-    return text.empty() ? "—" : text;
 }
 
 Table result_table(const Json& result) {
@@ -207,16 +174,6 @@ void add_methods_table(std::vector<Block>& blocks, const Json& event) {
     if (!agreement.empty()) blocks.push_back(Paragraph{agreement, true});
 }
 
-const NamedFigure* find_figure(const std::vector<NamedFigure>& figures, const std::string& name) {
-    const auto found = std::ranges::find(figures, name, &NamedFigure::name);
-    return found == figures.end() ? nullptr : &*found;
-}
-
-void add_picture(std::vector<Block>& blocks, const std::vector<NamedFigure>& figures,
-                 const std::string& name) {
-    if (const NamedFigure* figure = find_figure(figures, name)) blocks.push_back(Pictures{{*figure}});
-}
-
 /// Small figures, two beside each other.
 void add_pairs(std::vector<Block>& blocks, const std::vector<NamedFigure>& figures,
                const std::vector<std::string>& names) {
@@ -294,7 +251,7 @@ std::string places_text(const std::vector<std::string>& places) {
     return text.empty() ? "" : text + ": ";
 }
 
-Notes findings_of(const Json& result) {
+Notes findings_of(const Json& result, const std::vector<std::string>& differences) {
     std::vector<GatheredNote> gathered;
     const auto& recordings = list_at(result, {"recordings"});
     std::size_t number = 0;
@@ -306,6 +263,7 @@ Notes findings_of(const Json& result) {
     gather(gathered, at(result, {"result"}), "");
     gather(gathered, at(result, {"verdict"}), "");
     Notes notes;
+    for (const std::string& difference : differences) notes.notes.push_back({"caution", difference});
     for (const char* severity : {"defect", "caution", "note"})
         for (const GatheredNote& entry : gathered)
             if (entry.note.severity == severity)
@@ -360,20 +318,6 @@ FactRows recording_facts(const Json& recording) {
         add_fact(rows, "Samples", fmt::format("{:.0f} at {:.8g} Hz, {:.6g} s", *count, *rate, *duration));
     add_fact(rows, "Added mass", text_at(recording, {"added_mass", "as_written"}));
     return rows;
-}
-
-/// A word as a shell takes it.
-std::string quoted(const std::string& word) {
-    constexpr const char* plain = "abcdefghijklmnopqrstuvwxyzABCDEFGHIJKLMNOPQRSTUVWXYZ0123456789-_./=:,+%";
-    if (!word.empty() && word.find_first_not_of(plain) == std::string::npos) return word;
-    std::string text(1, '\'');
-    for (const char letter : word)
-        if (letter == '\'')
-            text.append("'\\''");
-        else
-            text.push_back(letter);
-    text.push_back('\'');
-    return text;
 }
 
 /// The command line that gives this result again; empty where the result does not hold its options.
@@ -458,18 +402,6 @@ void add_first_page(Document& document, const Json& result, const std::vector<Na
 
 }  // namespace
 
-Json parsed_result(const std::string& text, const std::string& file) {
-    const Json result = Json::parse(text, nullptr, false);
-    if (result.is_discarded())
-        throw InputError(
-            {file, "", "is no JSON", "Give a result that ringwright identify --format json wrote"});
-    const std::string schema = text_at(result, {"schema"});
-    if (schema != "ringwright.identification.v1")
-        throw InputError({file, "key schema", schema.empty() ? "is absent" : "is " + clean_utf8(schema),
-                          "Give a result that ringwright identify --format json wrote"});
-    return result;
-}
-
 Document identification_document(const Json& result, const ReportInput& input) {
     const std::vector<NamedFigure> own = figures_of_result(input.result_json, input.file);
     const std::string article = article_name(result);
@@ -494,7 +426,7 @@ Document identification_document(const Json& result, const ReportInput& input) {
                       true});
     }
     add_verdict(blocks, result);
-    if (const Notes findings = findings_of(result); !findings.notes.empty()) {
+    if (const Notes findings = findings_of(result, input.differences); !findings.notes.empty()) {
         blocks.push_back(Heading{2, "Findings"});
         blocks.push_back(findings);
     }

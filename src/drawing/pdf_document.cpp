@@ -148,7 +148,7 @@ void PageWriter::finish_page() {
     const Style left{fine_size, false, palette::muted, PANGO_ALIGN_LEFT};
     const Style right{fine_size, false, palette::muted, PANGO_ALIGN_RIGHT};
     rule(y - 5.0, palette::grid, 0.7);
-    text_at("Test report " + document_.number, geometry_.side, y, half, left);
+    text_at(document_.kind + " " + document_.number, geometry_.side, y, half, left);
     text_at(fmt::format("page {} of {}", page_, page_count_), geometry_.side + half, y, half, right);
     cairo_show_page(cairo_);
 }
@@ -160,7 +160,7 @@ void PageWriter::next_page() {
 }
 
 void PageWriter::title() {
-    y_ += text_at("Test report " + document_.number, geometry_.side, y_, geometry_.text_width(),
+    y_ += text_at(document_.kind + " " + document_.number, geometry_.side, y_, geometry_.text_width(),
                   {fine_size, false, palette::muted, PANGO_ALIGN_LEFT});
     y_ += 2.0 + text_at(document_.title, geometry_.side, y_ + 1.0, geometry_.text_width(),
                         {19.0, true, palette::ink, PANGO_ALIGN_LEFT});

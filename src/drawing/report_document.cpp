@@ -4,22 +4,30 @@
 #include <nlohmann/json.hpp>
 
 #include "drawing/document.hpp"
+#include "drawing/document_parts.hpp"
 #include "drawing/surface.hpp"
 
 namespace ringwright {
 
 std::string report_html(const ReportInput& input) {
     return drawing::to_html(
-        drawing::identification_document(drawing::parsed_result(input.result_json, input.file), input));
+        drawing::document_of(drawing::parsed_result(input.result_json, input.file), input));
 }
 
 std::string report_pdf(const ReportInput& input, PaperSize paper) {
-    return drawing::to_pdf(
-        drawing::identification_document(drawing::parsed_result(input.result_json, input.file), input),
-        paper);
+    return drawing::to_pdf(drawing::document_of(drawing::parsed_result(input.result_json, input.file), input),
+                           paper);
 }
 
 namespace drawing {
+
+Document document_of(const Json& result, const ReportInput& input) {
+    const std::string schema = text_at(result, {"schema"});
+    if (schema == schemas::comparison) return comparison_document(result);
+    if (schema == schemas::chart) return chart_document(result);
+    if (schema == schemas::gauge) return gauge_document(result);
+    return identification_document(result, input);
+}
 
 FigureSize page_figure_size(const NamedFigure& figure, bool beside, double whole_width) {
     constexpr double gap = 14.0;

@@ -126,7 +126,7 @@ ordered_json to_json(const GaugeStudy& study) {
     for (const VarianceRow& row : study.table) json["table"].push_back(row_json(row));
     json["repeatability"] = component_json(study.repeatability);
     json["reproducibility"] = component_json(study.reproducibility);
-    json["operators"] = component_json(study.operators_alone);
+    json["operators_variation"] = component_json(study.operators_alone);
     json["interaction"] = component_json(study.interaction);
     json["measurement"] = component_json(study.gauge);
     json["articles_variation"] = component_json(study.article_variation);

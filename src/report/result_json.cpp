@@ -79,6 +79,7 @@ Json recording_json(const RecordingIdentification& identified) {
     const Recording& recording = identified.recording;
     Json json{{"file", recording.origin.file}};
     put_if_said(json, "sha256", recording.origin.sha256);
+    if (recording.origin.bytes > 0) json["bytes"] = recording.origin.bytes;
     put_if_said(json, "channel", recording.origin.channel);
     if (recording.quantity_known) json["quantity"] = std::string(to_text(recording.quantity));
     put_if_said(json, "unit", recording.unit.symbol);
