@@ -16,6 +16,7 @@
 #include "ringwright/error.hpp"
 #include "ringwright/ledger_report.hpp"
 #include "ringwright/result_json.hpp"
+#include "ringwright/safe_file.hpp"
 
 namespace ringwright::app {
 namespace {
@@ -139,24 +140,34 @@ int run_check(const std::string& path, const EntryArguments& arguments) {
     return check.intact ? done : limit_not_met;
 }
 
+/// Entry by entry, so that a ledger of any size needs the memory of one.
+void export_entries(const Ledger& ledger, const LedgerFilter& filter, bool json, const PieceTaker& take) {
+    take(json ? std::string("[") : figures_csv_header());
+    bool first = true;
+    for (const EntrySummary& summary : ledger.list(filter)) {
+        const LedgerEntry entry = ledger.get(summary.number);
+        take(json ? fmt::format("{}\n{}", first ? "" : ",", entry_as_json(entry))
+                  : entry_as_figures_csv(entry));
+        first = false;
+    }
+    if (json) take("\n]\n");
+}
+
 int run_export(const std::string& path, const EntryArguments& arguments) {
     const bool json = arguments.format == "json";
     if (!json && arguments.format != "csv")
         throw UsageError({"--format", "", fmt::format("\"{}\" is no form of an export", arguments.format),
                           "Give csv or json"});
+    const std::string& output = arguments.answer.output;
+    refuse_drawn(output);
+    refuse_overwriting(output, {path});
     const Ledger ledger = Ledger::open_to_read(path);
-    std::string text = json ? std::string("[") : figures_csv_header();
-    bool first = true;
-    for (const EntrySummary& summary : ledger.list(filter_from(arguments.filter))) {
-        const LedgerEntry entry = ledger.get(summary.number);
-        if (json)
-            text += fmt::format("{}\n{}", first ? "" : ",", entry_as_json(entry));
-        else
-            text += entry_as_figures_csv(entry);
-        first = false;
-    }
-    if (json) text += "\n]\n";
-    write_answer(text, arguments.answer.output);
+    const LedgerFilter filter = filter_from(arguments.filter);
+    const auto write = [&](const PieceTaker& take) { export_entries(ledger, filter, json, take); };
+    if (output.empty() || output == "-")
+        write([](std::string_view piece) { write_answer(piece, ""); });
+    else
+        write_pieces_safely(output, write);
     return done;
 }
 

@@ -72,11 +72,13 @@ void set_permissions(int descriptor, const std::string& path) {
     ::fchmod(descriptor, 0666U & ~mask);
 }
 
-void write_directly(const std::string& path, std::string_view bytes) {
+using PieceWriter = std::function<void(const PieceTaker&)>;
+
+void write_directly(const std::string& path, const PieceWriter& write) {
     const int descriptor = ::open(path.c_str(), O_WRONLY | O_CLOEXEC);
     if (descriptor < 0) fail(path, errno);
     try {
-        write_all(descriptor, bytes, path);
+        write([&](std::string_view bytes) { write_all(descriptor, bytes, path); });
     } catch (...) {
         ::close(descriptor);
         throw;
@@ -102,14 +104,18 @@ std::string behind_links(const std::string& path) {
 }  // namespace
 
 void write_file_safely(const std::string& path, std::string_view bytes) {
+    write_pieces_safely(path, [&](const PieceTaker& take) { take(bytes); });
+}
+
+void write_pieces_safely(const std::string& path, const PieceWriter& write) {
     struct stat existing {};
     if (::stat(path.c_str(), &existing) == 0) {
         if (S_ISDIR(existing.st_mode)) fail(path, EISDIR);
-        if (!S_ISREG(existing.st_mode)) return write_directly(path, bytes);
+        if (!S_ISREG(existing.st_mode)) return write_directly(path, write);
     }
     const std::string target = behind_links(path);
     Draft draft(target);
-    write_all(draft.descriptor(), bytes, path);
+    write([&](std::string_view bytes) { write_all(draft.descriptor(), bytes, path); });
     set_permissions(draft.descriptor(), target);
     draft.place();
     sync_folder(std::filesystem::path(target).parent_path());
