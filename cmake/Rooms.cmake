@@ -20,7 +20,9 @@ target_compile_options(ringwright_flags INTERFACE
   -Wall -Wextra -Wpedantic -Wconversion -Wshadow -Werror)
 if(RINGWRIGHT_SANITIZE)
   target_compile_options(ringwright_flags INTERFACE
-    -fsanitize=address,undefined -fno-sanitize-recover=all -fno-omit-frame-pointer)
+    -fsanitize=address,undefined -fno-sanitize-recover=all -fno-omit-frame-pointer
+    # GCC 12 takes what the sanitizers add for reads of values that were never set.
+    $<$<CXX_COMPILER_ID:GNU>:-Wno-maybe-uninitialized>)
   target_link_options(ringwright_flags INTERFACE -fsanitize=address,undefined)
 endif()
 if(RINGWRIGHT_FUZZ)
