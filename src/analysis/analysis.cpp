@@ -56,7 +56,7 @@ void note_open_intervals(EventIdentification& event) {
             if (std::isfinite(estimate.interval.low) && std::isfinite(estimate.interval.high)) continue;
             event.findings.push_back(
                 {"interval_without_end", Severity::caution,
-                 fmt::format("The {} cannot bound the {} on both sides: the decay shows too little of it",
+                 fmt::format("The {} cannot bound the {} on both sides: the decay shows too little of it.",
                              method.name, name_of(quantity))});
         }
 }

@@ -170,6 +170,21 @@ bool is_torsion_test(const std::vector<Release>& releases, const Article& articl
     return !article.mass && is_torsional(releases.front().recording->recording.quantity);
 }
 
+/// What was said of the article that does not go with the recordings.
+void note_article(PooledResult& result, const std::vector<Release>& releases, const Article& article,
+                  std::size_t loadings) {
+    if (article.mass && is_torsional(releases.front().recording->recording.quantity))
+        result.findings.push_back(
+            {"mass_with_angle", Severity::caution,
+             "The recording is of an angle, but a mass was given: the stiffness in N/m holds only where the "
+             "article moves in a straight line. For a torsion test give --inertia in place of --mass."});
+    if (article.spring_mass && !article.mass && !article.inertia && loadings < 2)
+        result.findings.push_back({"spring_mass_alone", Severity::caution,
+                                   "The spring mass alone gives no stiffness; give the moving mass too, with "
+                                   "--mass or as mass under "
+                                   "[article] in the test sheet."});
+}
+
 void append(Findings& findings, const Findings& more) {
     findings.insert(findings.end(), more.begin(), more.end());
 }
@@ -187,7 +202,7 @@ void add_unanswered(PooledResult& result, const std::vector<RecordingIdentificat
     if (events > result.event_count)
         result.findings.push_back(
             {"releases_without_answer", Severity::caution,
-             fmt::format("The {} does not apply to {} of {} releases, which are not part of the result",
+             fmt::format("The {} does not apply to {} of {} releases, which are not part of the result.",
                          method.name, events - result.event_count, events)});
 }
 
@@ -207,7 +222,7 @@ void note_loading_stated(PooledResult& result, const std::vector<LoadingGroup>& 
     const MeasuredValue& least = groups.front().added_mass;
     result.findings.push_back(
         {"loadings", Severity::note,
-         fmt::format("{} loadings were recorded; frequency and damping ratio are those with {} added",
+         fmt::format("{} loadings were recorded; frequency and damping ratio are those with {} added.",
                      groups.size(), least.text)});
 }
 
@@ -239,6 +254,7 @@ PooledResult combine(const std::vector<RecordingIdentification>& recordings, con
     add_pooled_quantities(result, groups.front(), options, torsional);
     add_properties(result, groups, options, torsional);
     note_loading_stated(result, groups);
+    note_article(result, releases, options.article, groups.size());
     add_unanswered(result, recordings, *method);
     return result;
 }

@@ -77,7 +77,7 @@ void add_model_finding(Findings& findings, const std::vector<Release>& releases)
     for (const auto& [model, count] : models)
         list += fmt::format("{}{} for {}", list.empty() ? "" : ", ", model, count);
     findings.push_back({"models_differ", Severity::note,
-                        fmt::format("Different damping models fit best in different releases ({})", list)});
+                        fmt::format("Different damping models fit best in different releases ({}).", list)});
 }
 
 void add_disagreement(Findings& findings, const std::vector<Release>& releases) {
@@ -86,8 +86,10 @@ void add_disagreement(Findings& findings, const std::vector<Release>& releases) 
         if (release.event->agreement.tested && !release.event->agreement.consistent) ++disagreeing;
     if (disagreeing == 0) return;
     findings.push_back({"methods_disagree", Severity::caution,
-                        fmt::format("The methods disagree in {} of {} {}; see the reading there", disagreeing,
-                                    releases.size(), releases.size() == 1 ? "release" : "releases")});
+                        releases.size() == 1
+                            ? std::string("The methods disagree; see the reading of the release.")
+                            : fmt::format("The methods disagree in {} of {} releases; see the reading there.",
+                                          disagreeing, releases.size())});
 }
 
 }  // namespace

@@ -90,6 +90,15 @@ std::string one_figure(const ReportInput& input, const std::string& name, DrawnF
                                  image_format_from(form), {});
 }
 
+/// In lower case and without the point.
+std::string ending_of(const std::string& output) {
+    std::string ending = std::filesystem::path(output).extension().string();
+    if (!ending.empty()) ending.erase(0, 1);
+    std::ranges::transform(ending, ending.begin(),
+                           [](unsigned char letter) { return static_cast<char>(std::tolower(letter)); });
+    return ending;
+}
+
 }  // namespace
 
 void add_drawing_options(CLI::App& command, DrawingArguments& arguments, const std::string& names) {
@@ -104,11 +113,7 @@ void add_drawing_options(CLI::App& command, DrawingArguments& arguments, const s
 }
 
 std::optional<DrawnForm> drawn_form_of(const std::string& output) {
-    const std::size_t dot = output.rfind('.');
-    if (dot == std::string::npos) return std::nullopt;
-    std::string ending = output.substr(dot + 1);
-    std::ranges::transform(ending, ending.begin(),
-                           [](unsigned char letter) { return static_cast<char>(std::tolower(letter)); });
+    const std::string ending = ending_of(output);
     if (ending == "html" || ending == "htm") return DrawnForm::html;
     if (ending == "pdf") return DrawnForm::pdf;
     if (ending == "svg") return DrawnForm::svg;
@@ -116,7 +121,22 @@ std::optional<DrawnForm> drawn_form_of(const std::string& output) {
     return std::nullopt;
 }
 
+void require_known_ending(const std::string& output, bool draws) {
+    const std::string ending = ending_of(output);
+    for (const char* known : {"", "txt", "csv", "json", "jsonl"})
+        if (ending == known) return;
+    const bool drawn = drawn_form_of(output).has_value();
+    if (drawn && draws) return;
+    throw UsageError({"-o", "",
+                      drawn ? fmt::format("this command draws nothing, so it writes no .{}", ending)
+                            : fmt::format("\".{}\" is no ending that is known", ending),
+                      draws ? "Give a name that ends in .html, .pdf, .svg or .png for a drawn answer, in "
+                              ".txt, .csv or .json for text in the form of --format"
+                            : "Give a name that ends in .txt, .csv or .json"});
+}
+
 bool require_drawable(const std::string& output, const DrawingArguments& arguments) {
+    require_known_ending(output, true);
     const bool drawn = drawn_form_of(output).has_value();
     if (!drawn && !arguments.figure.empty())
         throw UsageError({"--figure", "", "there is no file to draw it in",

@@ -30,7 +30,12 @@ enum class DrawnForm { html, pdf, svg, png };
 /// Nothing when the ending asks for none of them.
 [[nodiscard]] std::optional<DrawnForm> drawn_form_of(const std::string& output);
 
-/// True when `output` asks for a drawn answer. Throws UsageError for a figure named without one.
+/// Throws UsageError when the ending of `output` says neither text (.txt, .csv, .json, .jsonl; written in the
+/// form of --format) nor, where `draws`, a drawn answer. A name without an ending is text.
+void require_known_ending(const std::string& output, bool draws);
+
+/// True when `output` asks for a drawn answer. Throws UsageError for a figure named without one,
+/// and for an ending that is not known.
 bool require_drawable(const std::string& output, const DrawingArguments& arguments);
 
 /// Throws UsageError when `output` asks for a drawn answer of a command that has none.

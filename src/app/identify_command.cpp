@@ -88,7 +88,7 @@ int identify_together(const IdentifyArguments& arguments, const std::vector<Load
         file_result(arguments.ledger, filed_text(identification, arguments), arguments.read_sheet,
                     given_options(*arguments.command), recordings_of(identification));
     if (identification.answered()) return done;
-    say(why_no_answer(identification));
+    say(why_no_answer_after(identification, form ? Format::json : format, arguments.answer.output));
     return no_answer;
 }
 
@@ -128,7 +128,8 @@ SeparateAnswer identify_one(const IdentifyArguments& arguments, const LoadedFile
         const Identification identification = identify(std::move(input), options);
         SeparateAnswer answer{answer_text(identification, arguments, format, true, with_header), done, {}};
         if (!identification.answered()) {
-            answer.status = no_answer, answer.problem = why_no_answer(identification);
+            answer.status = no_answer,
+            answer.problem = why_no_answer_after(identification, format, arguments.answer.output);
         } else if (!arguments.ledger.empty()) {
             answer.to_file = filed_text(identification, arguments);
             answer.recordings = recordings_of(identification);

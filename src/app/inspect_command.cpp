@@ -11,6 +11,7 @@
 
 #include "app/answer_options.hpp"
 #include "app/command.hpp"
+#include "app/drawing.hpp"
 #include "app/messages.hpp"
 #include "app/recording_options.hpp"
 #include "app/spooled_input.hpp"
@@ -66,6 +67,7 @@ int run_inspect(const InspectArguments& arguments) {
     const Format format = format_from(AnswerArguments{"0.95", arguments.format, arguments.output});
     const ReadOptions read = read_options(arguments.recording);
     const EventOptions event = event_options(arguments.recording);
+    require_known_ending(arguments.output, false);
     refuse_overwriting(arguments.output, arguments.files);
     std::string text;
     int status = done;

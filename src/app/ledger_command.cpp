@@ -84,7 +84,15 @@ void add_ledger_command(CLI::App& app, Context& context) {
     add_ledger_replay_command(*command, context, *location);
     // The location lives as long as the command that reads it.
     command->callback([location] {});
-    for (CLI::App* part : command->get_subcommands([](const CLI::App*) { return true; })) part->fallthrough();
+    // The footer of the whole program, which every command begins with, speaks of other commands.
+    const std::string inherited = command->get_footer();
+    for (CLI::App* part : command->get_subcommands([](const CLI::App*) { return true; })) {
+        part->fallthrough();
+        if (part->get_footer() == inherited) part->footer("");
+    }
+    command->footer(
+        "Each part explains itself: ringwright ledger add --help\nExample: ringwright ledger add "
+        "result.json --ledger shop.ledger");
 }
 
 }  // namespace ringwright::app

@@ -59,8 +59,31 @@ void set_up(CLI::App& parser, app::Context& context) {
     app::add_report_command(parser, context);
 }
 
+/// The word that stands where the name of a command was wanted; empty where there is none.
+std::string word_in_place_of_command(const CLI::App& parser, int argc, char** argv) {
+    const auto commands = parser.get_subcommands();
+    const CLI::App& parent = commands.empty() ? parser : *commands.front();
+    if (!parent.get_subcommands().empty()) return {};
+    int at = 1;
+    if (!commands.empty())
+        while (at < argc && argv[at] != commands.front()->get_name()) ++at;
+    for (at += commands.empty() ? 0 : 1; at < argc; ++at) {
+        const std::string word = argv[at];
+        if (word == "--ledger") ++at;
+        if (!word.empty() && word.front() != '-') return word;
+    }
+    return {};
+}
+
+std::string names_of_commands(const CLI::App& parent) {
+    std::string names;
+    for (const CLI::App* command : parent.get_subcommands([](const CLI::App*) { return true; }))
+        names += (names.empty() ? "" : ", ") + command->get_name();
+    return names;
+}
+
 /// Help and version go to standard output through the same path as every answer.
-int answer_parser(const CLI::App& parser, const CLI::ParseError& error) {
+int answer_parser(const CLI::App& parser, const CLI::ParseError& error, int argc, char** argv) {
     if (error.get_exit_code() == 0)
         return guarded([&] {
             if (error.get_name() == "CallForVersion")
@@ -71,6 +94,13 @@ int answer_parser(const CLI::App& parser, const CLI::ParseError& error) {
         });
     const auto commands = parser.get_subcommands();
     const std::string command = commands.empty() ? "" : commands.front()->get_name();
+    const CLI::App& parent = commands.empty() ? parser : *commands.front();
+    const std::string word = word_in_place_of_command(parser, argc, argv);
+    if (error.get_name() == "RequiredError" && parent.get_require_subcommand_min() > 0 && !word.empty()) {
+        app::say({command, "", fmt::format("\"{}\" is no command", word),
+                  "Give one of " + names_of_commands(parent)});
+        return app::wrong_usage;
+    }
     app::say({command, "", app::without_period(error.what()),
               fmt::format("See ringwright{}{} --help", command.empty() ? "" : " ", command)});
     return app::wrong_usage;
@@ -91,7 +121,7 @@ int main(int argc, char** argv) {
         try {
             parser.parse(argc, argv);
         } catch (const CLI::ParseError& error) {
-            return answer_parser(parser, error);
+            return answer_parser(parser, error, argc, argv);
         }
         return guarded(context.run);
     } catch (const std::exception& error) {

@@ -1,6 +1,7 @@
 #include "app/messages.hpp"
 
 #include <fmt/format.h>
+#include <sys/stat.h>
 #include <unistd.h>
 
 #include <algorithm>
@@ -44,6 +45,13 @@ void say(const Problem& problem) {
     const bool closed = shown.remedy.empty() || shown.remedy.ends_with('?') || shown.remedy.ends_with('!');
     line += closed ? "\n" : ".\n";
     std::fwrite(line.data(), 1, line.size(), stderr);
+}
+
+bool errors_follow_answer() {
+    struct stat answer {
+    }, errors{};
+    return ::fstat(STDOUT_FILENO, &answer) == 0 && ::fstat(STDERR_FILENO, &errors) == 0 &&
+           answer.st_dev == errors.st_dev && answer.st_ino == errors.st_ino;
 }
 
 void write_answer(std::string_view text, const std::string& output) {

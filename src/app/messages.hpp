@@ -11,6 +11,9 @@ namespace ringwright::app {
 
 /// One line on standard error: `ringwright: file: place: cause. remedy`.
 void say(const Problem& problem);
+
+/// True when standard output and standard error go to the same place, so that a reader of one sees the other.
+[[nodiscard]] bool errors_follow_answer();
 /// The text without line breaks and a full stop at its end.
 [[nodiscard]] std::string without_period(std::string text);
 

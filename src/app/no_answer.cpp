@@ -22,4 +22,11 @@ Problem why_no_answer(const Identification& identification) {
     return problem;
 }
 
+Problem why_no_answer_after(const Identification& identification, Format format, const std::string& output) {
+    Problem problem = why_no_answer(identification);
+    const bool shown = format == Format::text && (output.empty() || output == "-") && errors_follow_answer();
+    if (shown) problem.found = "no method can answer, for the reason above";
+    return problem;
+}
+
 }  // namespace ringwright::app

@@ -69,9 +69,23 @@ std::string answer_text(const Identification& identification, const Verdict& ver
     return fmt::format("{}\n{}", to_text(identification), to_text(verdict, identification.result.torsional));
 }
 
-int status_of(Decision decision) {
-    if (decision == Decision::conforms) return done;
-    return decision == Decision::does_not_conform ? limit_not_met : undecided;
+/// A limit that fails outweighs one that cannot be judged, and that one a limit that is merely undecided.
+int status_of(const Verdict& verdict, const std::string& sheet) {
+    if (verdict.decision == Decision::conforms) return done;
+    if (verdict.decision == Decision::does_not_conform) return limit_not_met;
+    int status = undecided;
+    for (const LimitDecision& decided : verdict.limits) {
+        if (decided.estimate) continue;
+        say({sheet, "", without_period(decided.reading), ""});
+        status = no_answer;
+    }
+    return status;
+}
+
+void require_limits(const TestSheet& sheet) {
+    if (!limits_of(sheet).empty()) return;
+    throw InputError({sheet.file, "[limits]", "the sheet holds no limit, so there is nothing to judge",
+                      "Add one, such as damping_ratio = { min = 0.2 }, or use ringwright identify"});
 }
 
 std::vector<std::string> input_names(const PreparedTest& test, const VerifyArguments& arguments) {
@@ -84,6 +98,7 @@ std::vector<std::string> input_names(const PreparedTest& test, const VerifyArgum
 int run_verify(const VerifyArguments& arguments) {
     const Format format = format_from(arguments.test.answer);
     const TestSheet sheet = read_test_sheet(arguments.sheet);
+    require_limits(sheet);
     (void)decision_from(sheet, arguments.rule);
     const bool drawn = require_drawable(arguments.test.answer.output, arguments.drawing);
     PreparedTest test = prepare(arguments.test, sheet);
@@ -100,8 +115,8 @@ int run_verify(const VerifyArguments& arguments) {
     if (identification.answered() && !arguments.ledger.empty())
         file_result(arguments.ledger, to_text(document, -1), sheet, given_options(*arguments.test.command),
                     recordings_of(identification));
-    if (identification.answered()) return status_of(verdict.decision);
-    say(why_no_answer(identification));
+    if (identification.answered()) return status_of(verdict, arguments.sheet);
+    say(why_no_answer_after(identification, drawn ? Format::json : format, output));
     return no_answer;
 }
 
@@ -119,7 +134,8 @@ void add_verify_command(CLI::App& app, Context& context) {
         ->type_name("RULE");
     command->add_option("--ledger", arguments->ledger, "File the result in this ledger")->type_name("FILE");
     command->footer(
-        "Exit status: 0 every limit is met, 1 a limit is not met, 5 the uncertainty is too large to decide.\n"
+        "Exit status: 0 every limit is met, 1 a limit is not met, 4 the result lacks what a limit is set on, "
+        "5 the uncertainty\nis too large to decide.\n"
         "Example: ringwright verify pluck.csv --sheet sash-0417.toml --ledger shop.ledger\n"
         "A sheet to start from: ringwright sheet --template");
     command->callback(

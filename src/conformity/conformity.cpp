@@ -65,11 +65,28 @@ std::string reading_of(const LimitDecision& decided) {
                        percent(conforming));
 }
 
+/// What gives a quantity that the result lacks.
+const char* what_gives(Quantity quantity) {
+    switch (quantity) {
+        case Quantity::stiffness:
+        case Quantity::damping_coefficient:
+            return "Give --mass (of a torsion test --inertia), or mass under [article] in the test sheet.";
+        case Quantity::friction_force:
+        case Quantity::quadratic_damping:
+            return "It is given where the decay shows it and the mass is known; else leave this limit out.";
+        case Quantity::mass:
+        case Quantity::inertia:
+            return "Record with at least two different added masses (--added-mass).";
+        default:
+            return "Leave this limit out of the test sheet, or check with identify what the recordings give.";
+    }
+}
+
 LimitDecision not_measured(const Limit& limit) {
     LimitDecision decided;
     decided.limit = limit;
-    decided.reading = fmt::format("Undecided: the result holds no {}, so this limit cannot be judged.",
-                                  name_of(limit.quantity));
+    decided.reading = fmt::format("Not judged: the result holds no {}. {}", name_of(limit.quantity),
+                                  what_gives(limit.quantity));
     return decided;
 }
 

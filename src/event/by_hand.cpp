@@ -31,8 +31,10 @@ SampleRange window_of(const Recording& recording, const EventOptions& options) {
     const double start_s = n > 0 ? recording.clock.time_of(0) : 0.0;
     const double end_s = n > 0 ? recording.clock.time_of(n - 1) : 0.0;
     const double from_s = options.from_s.value_or(start_s), to_s = options.to_s.value_or(end_s);
-    const std::string place = fmt::format("{:.6g} s to {:.6g} s", from_s, to_s);
-    if (!(from_s < to_s))
+    const std::string place = !options.to_s     ? fmt::format("from {:.6g} s", from_s)
+                              : !options.from_s ? fmt::format("to {:.6g} s", to_s)
+                                                : fmt::format("{:.6g} s to {:.6g} s", from_s, to_s);
+    if (options.from_s && options.to_s && !(from_s < to_s))
         throw UsageError({"--from/--to", place, "the window ends before it begins",
                           "Give a window whose end is later than its start."});
     if (!(from_s < end_s) || !(to_s > start_s))

@@ -58,11 +58,13 @@ class ScaleFinder {
         }
         if (channel_.unit) return channel_.unit;
         if (channel_.unit_text.empty()) return std::nullopt;
+        const std::string_view nearest = suggested_unit(channel_.unit_text);
         add(scale_.findings, "unit_unknown", Severity::caution,
-            fmt::format("The unit \"{}\" of the channel is not known (the nearest known is \"{}\"); the "
-                        "samples are kept "
-                        "as recorded. Say it with --unit.",
-                        channel_.unit_text, suggested_unit(channel_.unit_text)));
+            fmt::format(
+                "The unit \"{}\" of the channel is not known{}; the samples are kept as recorded. Say "
+                "it with --unit.",
+                channel_.unit_text,
+                nearest.empty() ? "" : fmt::format(" (the nearest known is \"{}\")", nearest)));
         return std::nullopt;
     }
 

@@ -54,9 +54,10 @@ std::string sentence(Quantity quantity, const QuantityComparison& compared, std:
                             compared.ratio->interval.low, compared.ratio->interval.high);
     text += fmt::format(" ({:.4g} % confidence).", 100.0 * level);
     if (compared.equivalence)
-        text += fmt::format(" {} the same within {} (p = {}).",
+        text += fmt::format(" {} the same within {} (p {}{}).",
                             compared.equivalence->equivalent ? "Shown to be" : "Not shown to be",
                             margin_text(compared.equivalence->margin, unit),
+                            p_text(compared.equivalence->p_value).starts_with('<') ? "" : "= ",
                             p_text(compared.equivalence->p_value));
     return report::wrapped(fmt::format("  {}: ", name_of(quantity)), text);
 }

@@ -4,6 +4,8 @@
 #include <array>
 #include <cstdint>
 
+#include "ringwright/units.hpp"
+
 namespace ringwright::report {
 namespace {
 
@@ -139,13 +141,46 @@ std::string to_text(const TextTable& table, std::size_t indent) {
     return text;
 }
 
+namespace {
+
+/// "95", "±0.4", "(3.2": what a unit may follow.
+bool is_number(std::string_view word) {
+    if (word.starts_with('(')) word.remove_prefix(1);
+    if (word.ends_with(')')) word.remove_suffix(1);
+    return word.find_first_of("0123456789") != std::string_view::npos &&
+           word.find_first_not_of("0123456789.,+-±e–") == std::string_view::npos && word.back() != ',' &&
+           word.back() != '.';
+}
+
+/// The length of the words at the front of `sentence` that stay on one line: a number, what it is ± of, and
+/// its unit.
+std::size_t unbroken_length(std::string_view sentence) {
+    std::size_t end = std::min(sentence.find(' '), sentence.size());
+    std::string_view word = sentence.substr(0, end);
+    while (end < sentence.size()) {
+        const std::size_t next_end = std::min(sentence.find(' ', end + 1), sentence.size());
+        const std::string_view next = sentence.substr(end + 1, next_end - end - 1);
+        std::string_view unit = next;
+        while (!unit.empty() && std::string_view(".,;:)]").find(unit.back()) != std::string_view::npos)
+            unit.remove_suffix(1);
+        const bool relation =
+            word == "±" || word == "=" || word == "<" || next == "±" || next == "=" || next == "<";
+        if (!relation && !(is_number(word) && !unit.empty() && find_unit(unit))) break;
+        word = next;
+        end = next_end;
+    }
+    return end;
+}
+
+}  // namespace
+
 std::string wrapped(std::string_view lead, std::string_view sentence, std::size_t width) {
     const std::size_t margin = display_width(lead);
     std::string text(lead);
     std::size_t column = margin;
     bool first_word = true;
     while (!sentence.empty()) {
-        const std::size_t blank = std::min(sentence.find(' '), sentence.size());
+        const std::size_t blank = unbroken_length(sentence);
         const std::string_view word = sentence.substr(0, blank);
         sentence.remove_prefix(std::min(blank + 1, sentence.size()));
         const std::size_t word_width = display_width(word);

@@ -111,14 +111,14 @@ void add_trends(Findings& findings, const ReleaseSeries& series) {
         findings.push_back(
             {"drift_in_series", Severity::caution,
              fmt::format("The {} {} by {} from the first release to the last (p = {:.2g}), so the "
-                         "article changed during the series: it warmed, settled or worked loose.{}",
+                         "article may have changed during the series: warmed, settled or worked loose.{}",
                          series.name, direction(drift.relative_change), percent(drift.relative_change),
                          drift.p_value, both)});
     else if (depends)
         findings.push_back(
             {"amplitude_dependent", Severity::caution,
              fmt::format("The {} {} by {} from the weakest release to the strongest (p = {:.2g}), so "
-                         "it depends on amplitude; state the amplitude with the result.{}",
+                         "it may depend on amplitude; state the amplitude with the result.{}",
                          series.name, direction(amplitude.relative_change),
                          percent(amplitude.relative_change), amplitude.p_value, both)});
 }

@@ -576,6 +576,7 @@ constexpr Spelling usual_spellings[] = {
     {"1", Dimension::none},
 };
 
+// Nothing where more than half of the letters would have to change: "furlong" is no slip for "slug".
 std::string_view nearest_spelling(std::string_view text, std::optional<Dimension> wanted) {
     std::string_view best;
     double best_distance = 1e9;
@@ -587,7 +588,7 @@ std::string_view nearest_spelling(std::string_view text, std::optional<Dimension
             best = spelling.text;
         }
     }
-    return best;
+    return best_distance <= 0.5 * static_cast<double>(text.size()) ? best : std::string_view();
 }
 
 std::string quoted(std::string_view text) {
@@ -600,6 +601,9 @@ std::string quoted(std::string_view text) {
     std::string found =
         trimmed(text).empty() ? std::string("no unit is given") : quoted(text) + " is no unit that is known";
     std::string remedy = "Did you mean " + quoted(nearest) + "?";
+    if (nearest.empty())
+        remedy = "Give a unit such as " +
+                 (wanted ? quoted(si_unit_of(*wanted)) : "mm, in, m/s, m/s², g or deg") + ".";
     if (wanted) remedy += " A unit of " + std::string(name_of(*wanted)) + " is wanted here.";
     throw UsageError(Problem{std::string(where), "", std::move(found), std::move(remedy)});
 }

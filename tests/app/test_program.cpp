@@ -172,6 +172,9 @@ TEST_CASE("wrong usage ends with 2 and one message") {
         {"identify", file, "--modes", "1.5"},
         {"identify", file, "--time-base", "200 %"},
         {"identify", file, "-o", file},
+        {"identify", file, "-o", bench.path("answer.docx")},
+        {"inspect", file, "-o", bench.path("answer.pdf")},
+        {"ledger", "unheard-of"},
         {"identify", "-", "-"},
     };
     for (const auto& arguments : cases) {
@@ -182,6 +185,43 @@ TEST_CASE("wrong usage ends with 2 and one message") {
         CHECK(one_message(outcome));
     }
     CHECK(bench.read("pluck.csv") == csv_of({}));
+    const auto message = [&](const std::vector<std::string>& arguments) { return bench.run(arguments).err; };
+    const auto names = [](const std::string& text, const char* part) {
+        return text.find(part) != std::string::npos;
+    };
+    CHECK(names(message({"identify", file, "-o", bench.path("answer.docx")}), ".pdf"));
+    CHECK(names(message({"identfy", file}), "\"identfy\""));
+    CHECK(names(message({"ledger", "--ledger", "a.ledger", "shw"}), "\"shw\""));
+    CHECK(names(message({"identify", file, "--from", "50"}), "runs from 0 s to 6.998 s"));
+    CHECK(names(bench.run({"ledger", "--help"}).out, "ringwright ledger add --help"));
+    CHECK_FALSE(names(bench.run({"ledger", "list", "--help"}).out, "ringwright identify"));
+    for (const char* name : {"answer.txt", "answer.csv", "answer.json", "answer"})
+        CHECK(bench.run({"identify", file, "-o", bench.path(name)}).status == 0);
+}
+
+TEST_CASE("what was said of the article and does not go with the recording is cautioned") {
+    const Bench bench;
+    const std::string file = bench.write("pluck.csv", csv_of({}));
+    const auto codes = [&](const std::vector<std::string>& arguments) {
+        std::string found;
+        const Json answer = Json::parse(bench.run(arguments).out);
+        for (const Json& finding : answer["result"]["findings"])
+            found += finding["code"].get<std::string>() + " ";
+        return found;
+    };
+    const std::vector<std::string> plain{"identify", file, "--format", "json"};
+    auto with = [&](std::vector<std::string> more) {
+        more.insert(more.begin(), plain.begin(), plain.end());
+        return codes(more);
+    };
+    CHECK(with({"--spring-mass", "0.1 kg"}).find("spring_mass_alone") != std::string::npos);
+    CHECK(with({"--spring-mass", "0.1 kg", "--mass", "1 kg"}).find("spring_mass_alone") == std::string::npos);
+    const std::vector<std::string> angle{"--quantity", "angle", "--unit", "deg"};
+    auto mass = angle, inertia = angle;
+    mass.insert(mass.end(), {"--mass", "1 kg"});
+    inertia.insert(inertia.end(), {"--inertia", "0.01 kg m2"});
+    CHECK(with(mass).find("mass_with_angle") != std::string::npos);
+    CHECK(with(inertia).find("mass_with_angle") == std::string::npos);
 }
 
 TEST_CASE("inputs that cannot be used end with 3, recordings without an answer with 4") {
@@ -208,6 +248,13 @@ TEST_CASE("inputs that cannot be used end with 3, recordings without an answer w
     CHECK(outcome.status == 4);
     CHECK(one_message(outcome));
     CHECK_FALSE(Json::parse(outcome.out)["result"].contains("method"));
+    // The reason is said once where answer and messages go to one place.
+    const std::string seen = bench.path("seen");
+    (void)bench.run({"identify", still}, "/dev/null", ">'" + seen + "' 2>&1");
+    const std::string text = bench.read("seen");
+    const std::size_t first = text.find("Every sample has the same value. Check the sensor");
+    REQUIRE(first != std::string::npos);
+    CHECK(text.find("Every sample has the same value. Check the sensor", first + 1) == std::string::npos);
 }
 
 TEST_CASE("an output that cannot be written ends with 6; a closed pipe ends quietly") {

@@ -77,7 +77,7 @@ TEST_CASE(
     CHECK(limit["remedy"]["standard_uncertainty_needed"].get<double>() <
           limit["standard_uncertainty"].get<double>());
     // Not measured is undecided, too.
-    CHECK(verify("friction_force = { max = \"1 N\" }").status == 5);
+    CHECK(verify("friction_force = { max = \"1 N\" }").status == 4);  // more certainty would not help
 }
 
 TEST_CASE("verify: the command line wins over the sheet") {
@@ -118,6 +118,27 @@ TEST_CASE("verify: recordings may be named in the sheet; what cannot be used is 
     CHECK(bench.run({"verify", "--sheet", torsion, bench.path("sash-0.csv")}).status == 3);
     CHECK(bench.run({"verify", "--sheet", named, bench.write("flat.csv", "t,x\n0,0\n1,0\n2,0\n3,0\n")})
               .status != 0);
+}
+
+TEST_CASE("verify: a sheet without limits is refused, a limit on what the result lacks names the remedy") {
+    const Bench bench;
+    const auto files = releases(bench, "sash", 0.27, 1);
+    const Outcome none = bench.run(
+        with({"verify", "--sheet", bench.write("none.toml", "[article]\nserial = \"1\"\n")}, files));
+    CHECK(none.status == 3);
+    CHECK(none.err.find("no limit") != std::string::npos);
+    CHECK(none.out.empty());
+    const auto judged = [&](const std::string& limits) {
+        const std::string path = bench.write("massless.toml", "[limits]\n" + limits);
+        return bench.run(with({"verify", "--sheet", path, "--format", "json"}, files));
+    };
+    const std::string stiffness = "stiffness = { min = \"1 N/mm\" }\n";
+    const Outcome lacking = judged(stiffness);
+    CHECK(lacking.status == 4);
+    CHECK(lacking.err.find("--mass") != std::string::npos);
+    CHECK(json::parse(lacking.out)["verdict"]["decision"] == "undecided");
+    CHECK(judged(stiffness + "damping_ratio = { min = 0.2 }\n").status == 4);
+    CHECK(judged(stiffness + "damping_ratio = { min = 0.5 }\n").status == 1);  // what fails, fails
 }
 
 TEST_CASE("sheet: the template checks, a bad sheet does not") {

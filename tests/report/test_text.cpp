@@ -55,6 +55,11 @@ TEST_CASE("tables line up whatever the characters") {
 TEST_CASE("sentences are wrapped at blanks") {
     CHECK(wrapped("> ", "one two three", 9) == "> one two\n  three\n");
     CHECK(wrapped("> ", "unbreakable-and-long", 9) == "> unbreakable-and-long\n");
+    // A number, its ± and its unit stay together.
+    CHECK(wrapped("> ", "is 95 % sure", 8) == "> is\n  95 %\n  sure\n");
+    CHECK(wrapped("", "about (3.2 ± 0.1) Hz, low", 14) == "about\n(3.2 ± 0.1) Hz,\nlow\n");
+    CHECK(wrapped("", "so (p = 0.0044), then", 8) == "so\n(p = 0.0044),\nthen\n");
+    CHECK(wrapped("", "rows 12 of them", 8) == "rows 12\nof them\n");
 }
 
 TEST_CASE("results as they are copied into a test record") {

@@ -1,10 +1,9 @@
 // Factors: NIST Special Publication 811, appendix B (exact definitions); the products of definitions were
 // computed with Python's fractions. Tolerance 1e-14 relative: a handful of roundings in double precision.
-#include "ringwright/units.hpp"
-
 #include <catch2/catch.hpp>
 
 #include "ringwright/error.hpp"
+#include "ringwright/units.hpp"
 
 using namespace ringwright;
 
@@ -128,6 +127,10 @@ TEST_CASE("an unknown unit is refused and the nearest is named") {
     CHECK(remedy("mmm").find("\"mm\"") != std::string::npos);
     CHECK(remedy("m/s^22").find("\"m/s^2\"") != std::string::npos);
     CHECK(remedy("lfb/in").find("\"lbf/in\"") != std::string::npos);
+    // More letters differ than agree: no slip of the pen.
+    CHECK(remedy("furlong").find("Did you mean") == std::string::npos);
+    CHECK(remedy("furlong").find("mm") != std::string::npos);
+    CHECK(suggested_unit("furlong").empty());
     CHECK_THROWS_AS(parse_unit("kg", "--unit", Dimension::length), UsageError);
     CHECK_THROWS_AS(parse_unit("", "--unit"), UsageError);
 }
