@@ -34,8 +34,8 @@ struct DecrementSettings {
 };
 
 /// First extreme whose parabola fits into the samples, and as many as keep the difference of neighbours above
-/// five times its own standard deviation: beyond that the logarithm is biased. `offset` and the oscillation
-/// are those of a fit, `noise` the standard deviation of the samples.
+/// five times its own standard deviation: beyond that the logarithm is biased. The oscillation
+/// and its amplitudes are those of a fit, `noise` the standard deviation of the samples.
 [[nodiscard]] DecrementSettings choose_decrement_settings(const DecaySamples& samples,
                                                           const Oscillator& oscillator,
                                                           double cosine_amplitude, double sine_amplitude,

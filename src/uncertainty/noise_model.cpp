@@ -223,7 +223,7 @@ VectorXd to_partial(const VectorXd& unbounded) {
 
 // Prior of each partial autocorrelation, (1 − κ²)^−(1 + prior_exponent). The restricted likelihood of slow
 // noise in a short record still leans towards less correlation than there is; this exponent was chosen by the
-// coverage study (AR(1), φ = 0.95, three cycles: 91 % of 95 % intervals held with a flat prior, 94 % with
+// coverage study (AR(1), φ = 0.95, three cycles: 91 % of 95 % intervals held with a flat prior, 93 % with
 // this one; no change for white noise).
 constexpr double prior_exponent = 0.25;
 
