@@ -7,6 +7,7 @@
 #include "event/by_hand.hpp"
 #include "event/found.hpp"
 #include "event/health.hpp"
+#include "event/plateau.hpp"
 #include "event/rivals.hpp"
 #include "event/second_hit.hpp"
 #include "event/spectrum.hpp"
@@ -262,7 +263,7 @@ bool starts_from_quiet(const Pyramid& pyramid, const Found& found) {
            2.0 * still * start.amplitude + 4.0 * start.fit.residual_rms();
 }
 
-void try_onset(Search& search, const Onset& onset) {
+void try_onset(Search& search, const Onset& onset, const std::vector<Onset>& all) {
     if (taken(search, onset)) return;
     const StartLimits limits = limits_for(search, onset);
     if (limits.latest <= onset.position + 12) return;
@@ -275,6 +276,7 @@ void try_onset(Search& search, const Onset& onset) {
                            onset.position + static_cast<std::size_t>(std::min(short_look * cycle, 1e15)));
     std::optional<Found> found = follow_onset(search, onset, near);
     if (!found || !believable(search, *found)) return;
+    if (is_plateau_and_decay(search.pyramid, *found, all)) return;
     if (near.latest < limits.latest) {
         found->course = follow_decay(search.pyramid, found->start, limits.latest);
         if (!believable(search, *found)) return;
@@ -530,7 +532,8 @@ EventSearch search_whole(const Recording& recording, const EventOptions& options
     }
     const Pyramid pyramid(series.values());
     Search search{recording, series, pyramid, options.kind, {}, false};
-    for (const Onset& onset : find_onsets(pyramid)) try_onset(search, onset);
+    const std::vector<Onset> onsets = find_onsets(pyramid);
+    for (const Onset& onset : onsets) try_onset(search, onset, onsets);
     std::sort(search.found.begin(), search.found.end(),
               [](const Found& a, const Found& b) { return a.begin() < b.begin(); });
     drop_weak(search.found, series.values());

@@ -9,6 +9,7 @@
 #include <vector>
 
 #include "identify/curve_fit_steps.hpp"
+#include "identify/quiet_noise.hpp"
 #include "identify/start_values.hpp"
 #include "ringwright/distributions.hpp"
 
@@ -59,6 +60,28 @@ Orthonormal orthonormalise(const MatrixXd& design) {
     return result;
 }
 
+// The decay's rows, and below them those of the quiet stretch, which share nothing with them but the noise.
+RestrictedLikelihood likelihood_of(const CurveFit& fit, Index highest_order) {
+    const QuietRows quiet = quiet_rows(fit);
+    const Index rows = fit.basis.rows(), columns = fit.basis.cols(), more = quiet.value.size();
+    if (more == 0) return {fit.basis, fit.residual, fit.samples.stretches, highest_order};
+    const Orthonormal own = orthonormalise(quiet.design);
+    if (!own.full_rank) return {fit.basis, fit.residual, fit.samples.stretches, highest_order};
+    MatrixXd design = MatrixXd::Zero(rows + more, columns + own.basis.cols());
+    design.topLeftCorner(rows, columns) = fit.basis;
+    design.bottomRightCorner(more, own.basis.cols()) = own.basis;
+    VectorXd response(rows + more);
+    response << fit.residual, quiet.value;
+    std::vector<Stretch> stretches = fit.samples.stretches;
+    stretches.push_back({rows, more});
+    return {design, response, stretches, highest_order};
+}
+
+void keep_decay_part(WhitenedFit& fit, Index columns) {
+    fit.coefficients.conservativeResize(columns);
+    fit.unit_covariance.conservativeResize(columns, columns);
+}
+
 }  // namespace
 
 bool estimate_noise(CurveFit& fit, int draws, std::uint64_t seed) {
@@ -70,10 +93,12 @@ bool estimate_noise(CurveFit& fit, int draws, std::uint64_t seed) {
     NoiseOptions options;
     options.draws = draws;
     options.seed = seed;
-    const RestrictedLikelihood likelihood(design.basis, fit.residual, fit.samples.stretches,
-                                          options.highest_order);
+    const RestrictedLikelihood likelihood = likelihood_of(fit, options.highest_order);
     if (likelihood.rows() - likelihood.columns() < 4) return false;
     fit.noise = fit_noise(likelihood, options);
+    if (!fit.noise.fit.valid) return false;
+    keep_decay_part(fit.noise.fit, fit.basis.cols());
+    for (NoiseDraw& draw : fit.noise.draws) keep_decay_part(draw.fit, fit.basis.cols());
     fit.innovations = fit.residual;
     whiten(fit.noise.noise, fit.samples.stretches, fit.innovations);
     fit.innovations /= std::sqrt(fit.noise.noise.innovation_variance);
@@ -243,6 +268,8 @@ CurveFit fit_decay(const Recording& recording, const Event& event, const CurveFi
         fit.window = cut_window(recording, fit.window.begin + samples, end);
         reblock(fit);
     }
+    fit.quiet = find_quiet(fit, recording, event);
+    if (fit.quiet.size() > 0 && !settle(fit)) return fit;
     add_components(fit, options);
     if (!put_mode_first(fit, options.near_hz)) return fit;
     describe_components(fit);

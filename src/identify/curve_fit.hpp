@@ -25,6 +25,7 @@ struct CurveFitOptions {
 /// `map`; in q-coordinates the design is orthonormal.
 struct CurveFit {
     DecayWindow window;
+    DecayWindow quiet;  ///< before the decay, with the same noise; empty where there is none
     DecaySamples samples;
     ProjectedFit fit;
     NoiseFit noise;

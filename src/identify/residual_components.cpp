@@ -160,7 +160,9 @@ void add_components(CurveFit& fit, const CurveFitOptions& options) {
         const bool mode_allowed =
             !options.modes || static_cast<int>(fit.fit.model.oscillators.size()) < *options.modes;
         if (mode_allowed) mode = with_mode(fit, omega);
-        const double tone_gain = tone ? before - criterion_of(*tone) - needed_gain(fit, 3.0) : -1.0;
+        const double tone_parameters = fit.quiet.size() > 0 ? 5.0 : 3.0;  // the quiet stretch has its own
+        const double tone_gain =
+            tone ? before - criterion_of(*tone) - needed_gain(fit, tone_parameters) : -1.0;
         const double mode_gain = mode ? before - criterion_of(*mode) - needed_gain(fit, 4.0) : -1.0;
         if (tone_gain <= 0.0 && mode_gain <= 0.0) return;
         if (tone_gain >= mode_gain && at_the_mode(*tone)) {

@@ -8,6 +8,7 @@
 #include <cmath>
 #include <mutex>
 #include <numbers>
+#include <optional>
 #include <string>
 #include <thread>
 #include <vector>
@@ -91,10 +92,26 @@ Estimate plain_least_squares(const simulated::Sample& sample, const Truth& truth
     return estimate;
 }
 
-void run_one(Cell& cell, std::uint64_t seed, const IdentifyOptions& options, std::mutex& guard) {
+struct Run {
+    int recordings = 2000;
+    std::uint64_t seed = 1000;
+    bool search = false;  // the program's own search for the event instead of the true one
+    IdentifyOptions options;
+};
+
+// The event that is identified: the true one, or the first that the search finds.
+std::optional<Event> event_of(const simulated::Sample& sample, bool search) {
+    if (!search) return sample.event;
+    const EventSearch found = find_events(sample.recording);
+    return found.events.size() == 1 ? std::optional(found.events.front()) : std::nullopt;
+}
+
+void run_one(Cell& cell, std::uint64_t seed, const Run& run, std::mutex& guard) {
     simulated::Deviates deviates(seed);
     const simulated::Sample sample = simulated::draw(cell.truth, deviates);
-    const EventIdentification result = identify_event(sample.recording, sample.event, options);
+    const std::optional<Event> event = event_of(sample, run.search);
+    if (!event) return;
+    const EventIdentification result = identify_event(sample.recording, *event, run.options);
     const Estimate plain = plain_least_squares(sample, cell.truth);
     const std::scoped_lock lock(guard);
     add(cell.fit, result.curve_fit, cell.truth);
@@ -109,12 +126,12 @@ void run_one(Cell& cell, std::uint64_t seed, const IdentifyOptions& options, std
     }
 }
 
-void run_cell(Cell& cell, int recordings, std::uint64_t seed, const IdentifyOptions& options) {
+void run_cell(Cell& cell, std::uint64_t seed, const Run& run) {
     std::mutex guard;
     std::atomic<int> next{0};
     const auto work = [&] {
-        for (int i = next++; i < recordings; i = next++)
-            run_one(cell, seed + static_cast<std::uint64_t>(i), options, guard);
+        for (int i = next++; i < run.recordings; i = next++)
+            run_one(cell, seed + static_cast<std::uint64_t>(i), run, guard);
     };
     std::vector<std::thread> threads;
     for (unsigned i = 1; i < std::max(1u, std::thread::hardware_concurrency()); ++i)
@@ -171,9 +188,7 @@ struct Grid {
     std::vector<double> ratios{0.002, 0.02, 0.1, 0.3, 0.7, 1.0, 1.5}, cycles{3, 10, 30}, decibels{20, 40, 60},
         correlations{0.0, 0.8, 0.95};
     Truth base;
-    int recordings = 2000;
-    std::uint64_t seed = 1000;
-    IdentifyOptions options;
+    Run run;
 };
 
 void add_options(CLI::App& app, Grid& grid) {
@@ -181,10 +196,12 @@ void add_options(CLI::App& app, Grid& grid) {
     app.add_option("--cycles", grid.cycles, "Undamped periods in the recording")->delimiter(',');
     app.add_option("--decibel", grid.decibels, "Start amplitude over noise, dB")->delimiter(',');
     app.add_option("--correlation", grid.correlations, "φ of AR(1) noise")->delimiter(',');
-    app.add_option("--recordings", grid.recordings, "Recordings a cell")->capture_default_str();
-    app.add_option("--replicates", grid.options.replicates, "Of the bootstrap; 0: curve fit only")
+    app.add_option("--recordings", grid.run.recordings, "Recordings a cell")->capture_default_str();
+    app.add_option("--replicates", grid.run.options.replicates, "Of the bootstrap; 0: curve fit only")
         ->capture_default_str();
-    app.add_option("--seed", grid.seed, "Of the first recording")->capture_default_str();
+    app.add_option("--seed", grid.run.seed, "Of the first recording")->capture_default_str();
+    app.add_flag("--search", grid.run.search, "Let the program find the event, as it does for a user");
+    app.add_option("--held", grid.base.held_cycles, "Undamped periods of plateau before the release");
     app.add_option("--samples-per-cycle", grid.base.samples_per_cycle, "Sampling")->capture_default_str();
     app.add_option("--frequency", grid.base.frequency_hz, "Undamped, Hz")->capture_default_str();
     app.add_option("--hum", grid.base.hum_share, "Amplitude of 50 Hz hum over the start amplitude");
@@ -195,6 +212,7 @@ void add_options(CLI::App& app, Grid& grid) {
 
 void run_grid(const Grid& grid) {
     print_header();
+    std::uint64_t seed = grid.run.seed;  // every recording of the grid has its own
     for (const double ratio : grid.ratios)
         for (const double cycles : grid.cycles)
             for (const double decibel : grid.decibels)
@@ -205,8 +223,9 @@ void run_grid(const Grid& grid) {
                     cell.truth.cycles = cycles;
                     cell.truth.signal_to_noise_db = decibel;
                     cell.truth.noise_correlation = correlation;
-                    run_cell(cell, grid.recordings, grid.seed, grid.options);
-                    print_row(cell, grid.recordings);
+                    run_cell(cell, seed, grid.run);
+                    seed += static_cast<std::uint64_t>(grid.run.recordings);
+                    print_row(cell, grid.run.recordings);
                 }
 }
 
