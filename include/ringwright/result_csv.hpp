@@ -13,5 +13,8 @@ namespace ringwright {
 /// interval_high, degrees_of_freedom, confidence_level, status, reason. A number that does not exist is an
 /// empty cell; a method that does not apply has one row with the reason.
 [[nodiscard]] std::string to_csv(const Identification& identification);
+/// The row of a recording that could not be used: scope `recording`, status `unusable` and the reason.
+[[nodiscard]] std::string csv_row_of_unusable(const std::string& file, const std::string& reason,
+                                              double confidence_level);
 
 }  // namespace ringwright

@@ -24,6 +24,10 @@ namespace ringwright {
 /// `{"name": "ringwright", "version": …}`
 [[nodiscard]] nlohmann::ordered_json software_json();
 
+/// Puts the name of a recording into its object: `file`, with U+FFFD for bytes that are no UTF-8, and then its
+/// bytes as hexadecimal digits in `file_hex`, so that any name leads back to its file.
+void put_file_name(nlohmann::ordered_json& object, const std::string& file);
+
 /// JSON text; bytes that are no UTF-8 (a file name) are replaced, so that it is always valid. `indent` < 0:
 /// one line. Ends with a line feed.
 [[nodiscard]] std::string to_text(const nlohmann::ordered_json& json, int indent = 2);

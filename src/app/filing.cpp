@@ -13,9 +13,9 @@
 namespace ringwright::app {
 namespace {
 
-constexpr std::array<std::string_view, 14> left_out{"before",     "after",  "recordings", "figure", "paper",
-                                                    "added-mass", "output", "format",     "ledger", "sheet",
-                                                    "help",       "jobs",   "separate",   "reason"};
+constexpr std::array<std::string_view, 16> left_out{
+    "before", "after", "recordings", "figure", "paper",    "added-mass", "output", "format",
+    "ledger", "sheet", "help",       "jobs",   "separate", "reason",     "resume", "shard"};
 
 std::string long_name(const CLI::Option& option) {
     return option.get_lnames().empty() ? std::string() : option.get_lnames().front();

@@ -111,6 +111,8 @@ int answer_parser(const CLI::App& parser, const CLI::ParseError& error, int argc
 int main(int argc, char** argv) {
     // A reader that has seen enough closes its end of the pipe; that is no failure to report.
     std::signal(SIGPIPE, SIG_IGN);
+    // A file that may grow no further is a failure to report, not to die of.
+    std::signal(SIGXFSZ, SIG_IGN);
     try {
         CLI::App parser{
             "Natural frequency, damping ratio and stiffness of springs and dampers from recordings of a free "

@@ -15,11 +15,16 @@
 namespace ringwright::app {
 namespace {
 
+bool reader_gone = false;
+
 void write_standard_output(std::string_view text) {
     while (!text.empty()) {
         const ssize_t written = ::write(STDOUT_FILENO, text.data(), text.size());
         if (written < 0 && errno == EINTR) continue;
-        if (written < 0 && errno == EPIPE) return;
+        if (written < 0 && errno == EPIPE) {
+            reader_gone = true;
+            return;
+        }
         if (written < 0)
             throw OutputError({"standard output", "",
                                fmt::format("cannot be written: {}", std::strerror(errno)),
@@ -59,6 +64,10 @@ void write_answer(std::string_view text, const std::string& output) {
         write_standard_output(text);
     else
         write_file_safely(output, text);
+}
+
+bool standard_output_is_closed() {
+    return reader_gone;
 }
 
 void refuse_overwriting(const std::string& output, const std::vector<std::string>& inputs) {

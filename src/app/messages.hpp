@@ -20,6 +20,8 @@ void say(const Problem& problem);
 /// Writes the whole text to `output`, safely, or to standard output when `output` is empty or "-". A closed
 /// pipe ends quietly; throws OutputError where the text cannot be written.
 void write_answer(std::string_view text, const std::string& output);
+/// True when write_answer found that nobody reads standard output any more.
+[[nodiscard]] bool standard_output_is_closed();
 /// Throws UsageError when `output` is one of the files to be read.
 void refuse_overwriting(const std::string& output, const std::vector<std::string>& inputs);
 

@@ -173,13 +173,12 @@ std::string to_text(const Inspection& inspection, std::size_t width) {
 
 Json to_json(const Inspection& inspection) {
     const FileSummary& file = inspection.file;
-    Json json{{"schema", "ringwright.inspection.v1"},
-              {"software", software_json()},
-              {"file", file.file},
-              {"sha256", file.sha256},
-              {"bytes", file.bytes},
-              {"format", file.format},
-              {"dialect", file.dialect}};
+    Json json{{"schema", "ringwright.inspection.v1"}, {"software", software_json()}};
+    put_file_name(json, file.file);
+    json["sha256"] = file.sha256;
+    json["bytes"] = file.bytes;
+    json["format"] = file.format;
+    json["dialect"] = file.dialect;
     json["channels"] = Json::array();
     for (const ChannelSummary& channel : file.channels) json["channels"].push_back(channel_json(channel));
     json["findings"] = to_json(file.findings);

@@ -43,6 +43,12 @@ std::string method_rows(Source source, const char* method, const MethodResult& a
 
 }  // namespace
 
+std::string csv_row_of_unusable(const std::string& file, const std::string& reason, double confidence_level) {
+    const Source source{"recording", file, "", "", "", "", "", false, confidence_level};
+    return fmt::format("{},,,,,,,,{},unusable,{}\n", source_cells(source), csv_number(confidence_level),
+                       csv_cell(reason));
+}
+
 std::string to_csv(const Identification& identification) {
     std::string text =
         "scope,file,release,start_s,end_s,method,model,quantity,value,unit,standard_uncertainty,interval_low,"

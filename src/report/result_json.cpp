@@ -1,5 +1,7 @@
 #include "ringwright/result_json.hpp"
 
+#include <fmt/format.h>
+
 #include <cmath>
 #include <fstream>
 #include <iostream>
@@ -77,7 +79,8 @@ Json measured_json(const MeasuredValue& measured, std::string_view unit) {
 
 Json recording_json(const RecordingIdentification& identified) {
     const Recording& recording = identified.recording;
-    Json json{{"file", recording.origin.file}};
+    Json json = Json::object();
+    put_file_name(json, recording.origin.file);
     put_if_said(json, "sha256", recording.origin.sha256);
     if (recording.origin.bytes > 0) json["bytes"] = recording.origin.bytes;
     put_if_said(json, "channel", recording.origin.channel);
@@ -212,6 +215,15 @@ Json to_json(const Identification& identification) {
         json["recordings"].push_back(recording_json(recording));
     json["result"] = pooled_json(identification.result);
     return json;
+}
+
+void put_file_name(Json& object, const std::string& file) {
+    const std::string shown = Json::parse(to_text(Json(file), -1)).get<std::string>();
+    object["file"] = shown;
+    if (shown == file) return;
+    std::string digits;
+    for (const char byte : file) digits += fmt::format("{:02x}", static_cast<unsigned char>(byte));
+    object["file_hex"] = digits;
 }
 
 std::string to_text(const Json& json, int indent) {

@@ -22,23 +22,35 @@ namespace {
                                        : "Check the folder and its permissions, or write elsewhere with -o"});
 }
 
-/// An open file that is closed, and removed while it is not yet in its place, whatever happens.
+std::string folder_of(const std::string& path) {
+    const auto folder = std::filesystem::path(path).parent_path();
+    return folder.empty() ? "." : folder.string();
+}
+
+/// An open file that is closed, and removed while it is not yet in its place, whatever happens. It has no
+/// name until it is whole, where the file system can do that (Linux, O_TMPFILE): then even a writer that is
+/// killed leaves nothing behind.
 class Draft {
   public:
-    explicit Draft(const std::string& target) : target_(target), name_(target + ".XXXXXX") {
-        descriptor_ = ::mkstemp(name_.data());
+    explicit Draft(const std::string& target) : target_(target) {
+        descriptor_ = ::open(folder_of(target).c_str(), O_TMPFILE | O_WRONLY | O_CLOEXEC, 0600);
+        if (descriptor_ >= 0 && ::access("/proc/self/fd", X_OK) == 0) return;
+        if (descriptor_ >= 0) ::close(descriptor_);
+        name_ = target + ".XXXXXX";
+        descriptor_ = ::mkostemp(name_.data(), O_CLOEXEC);
         if (descriptor_ < 0) fail(target_, errno);
     }
     Draft(const Draft&) = delete;
     Draft& operator=(const Draft&) = delete;
     ~Draft() {
         if (descriptor_ >= 0) ::close(descriptor_);
-        if (!placed_) ::unlink(name_.c_str());
+        if (!placed_ && !name_.empty()) ::unlink(name_.c_str());
     }
     [[nodiscard]] int descriptor() const { return descriptor_; }
 
     void place() {
         if (::fsync(descriptor_) != 0) fail(target_, errno);
+        if (name_.empty()) give_name();
         const int closed = ::close(descriptor_);
         descriptor_ = -1;
         if (closed != 0) fail(target_, errno);
@@ -47,6 +59,20 @@ class Draft {
     }
 
   private:
+    /// A link cannot replace a file, a rename can: so first a name that nobody has.
+    void give_name() {
+        const std::string here = fmt::format("/proc/self/fd/{}", descriptor_);
+        for (int i = 0; i < 1000; ++i) {
+            const std::string name = fmt::format("{}.{}-{}", target_, ::getpid(), i);
+            if (::linkat(AT_FDCWD, here.c_str(), AT_FDCWD, name.c_str(), AT_SYMLINK_FOLLOW) == 0) {
+                name_ = name;
+                return;
+            }
+            if (errno != EEXIST) break;
+        }
+        fail(target_, errno);
+    }
+
     std::string target_, name_;
     int descriptor_ = -1;
     bool placed_ = false;
@@ -86,8 +112,8 @@ void write_directly(const std::string& path, const PieceWriter& write) {
     if (::close(descriptor) != 0) fail(path, errno);
 }
 
-void sync_folder(const std::filesystem::path& folder) {
-    const int descriptor = ::open(folder.empty() ? "." : folder.c_str(), O_RDONLY | O_DIRECTORY | O_CLOEXEC);
+void sync_folder_of(const std::string& path) {
+    const int descriptor = ::open(folder_of(path).c_str(), O_RDONLY | O_DIRECTORY | O_CLOEXEC);
     if (descriptor < 0) return;  // The file itself is safe; not every file system lets a folder be synced.
     ::fsync(descriptor);
     ::close(descriptor);
@@ -118,7 +144,7 @@ void write_pieces_safely(const std::string& path, const PieceWriter& write) {
     write([&](std::string_view bytes) { write_all(draft.descriptor(), bytes, path); });
     set_permissions(draft.descriptor(), target);
     draft.place();
-    sync_folder(std::filesystem::path(target).parent_path());
+    sync_folder_of(target);
 }
 
 }  // namespace ringwright
