@@ -5,6 +5,8 @@
 #include <cmath>
 #include <string_view>
 
+#include "report/text_table.hpp"
+
 namespace ringwright::report {
 
 std::string csv_number(double value) {
@@ -12,7 +14,7 @@ std::string csv_number(double value) {
 }
 
 std::string csv_cell(const std::string& text) {
-    std::string cell = text;
+    std::string cell = valid_utf8(text);
     if (!cell.empty() && std::string_view("=+-@\t\r").find(cell.front()) != std::string_view::npos &&
         cell != "-")
         cell.insert(0, 1, '\'');

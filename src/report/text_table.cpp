@@ -34,6 +34,9 @@ Character next_character(std::string_view text) {
         if ((byte & 0xC0U) != 0x80U) return {};
         code = (code << 6U) | (byte & 0x3FU);
     }
+    static constexpr std::array<std::uint32_t, 5> least{0, 0, 0x80, 0x800, 0x10000};
+    const bool surrogate = code >= 0xD800 && code < 0xE000;
+    if (code < least[length] || code > 0x10FFFF || surrogate) return {};
     return {code, length};
 }
 
@@ -99,6 +102,19 @@ std::string row_text(const TextTable& table, const std::vector<std::string>& row
 }
 
 }  // namespace
+
+std::string valid_utf8(std::string_view text) {
+    std::string valid;
+    while (!text.empty()) {
+        const std::size_t length = next_character(text).length;
+        if (length == 0)
+            valid += "\xEF\xBF\xBD";
+        else
+            valid += text.substr(0, length);
+        text.remove_prefix(std::max<std::size_t>(length, 1));
+    }
+    return valid;
+}
 
 std::size_t display_width(std::string_view text) {
     std::size_t width = 0;

@@ -9,6 +9,9 @@
 
 namespace ringwright::report {
 
+/// The text with U+FFFD in place of each byte that is no UTF-8.
+[[nodiscard]] std::string valid_utf8(std::string_view text);
+
 /// Columns that the UTF-8 text takes on a terminal: combining marks none, East Asian wide characters and
 /// emoji two.
 [[nodiscard]] std::size_t display_width(std::string_view text);
