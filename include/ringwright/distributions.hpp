@@ -10,6 +10,7 @@ namespace ringwright {
 [[nodiscard]] double student_t_probability(double t, double degrees_of_freedom);
 [[nodiscard]] double normal_probability(double z);
 [[nodiscard]] double normal_quantile(double probability);
+/// x of this and of f_probability may be infinite, as a ratio to a variance of zero is.
 [[nodiscard]] double chi_squared_probability(double x, double degrees_of_freedom);
 [[nodiscard]] double chi_squared_quantile(double probability, double degrees_of_freedom);
 [[nodiscard]] double f_probability(double x, double numerator_df, double denominator_df);

@@ -5,11 +5,13 @@
 #include <boost/math/distributions/normal.hpp>
 #include <boost/math/distributions/students_t.hpp>
 #include <cmath>
+#include <limits>
 
 namespace ringwright {
 namespace {
 
 const boost::math::normal standard_normal;
+constexpr double infinite = std::numeric_limits<double>::infinity();
 
 bool is_normal(double degrees_of_freedom) {
     return !std::isfinite(degrees_of_freedom) || degrees_of_freedom > 1e12;
@@ -37,6 +39,7 @@ double normal_quantile(double probability) {
 }
 
 double chi_squared_probability(double x, double degrees_of_freedom) {
+    if (x == infinite) return 1.0;
     return boost::math::cdf(boost::math::chi_squared(degrees_of_freedom), x);
 }
 
@@ -45,6 +48,7 @@ double chi_squared_quantile(double probability, double degrees_of_freedom) {
 }
 
 double f_probability(double x, double numerator_df, double denominator_df) {
+    if (x == infinite) return 1.0;
     return boost::math::cdf(boost::math::fisher_f(numerator_df, denominator_df), x);
 }
 

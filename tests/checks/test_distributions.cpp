@@ -71,5 +71,8 @@ TEST_CASE("F quantiles and probability") {
     CHECK(f_quantile(0.95, 18.0, 60.0) == Approx(1.7784460853277).epsilon(digits));
     CHECK(f_quantile(0.975, 5.0, 7.0) == Approx(5.2852368515043).epsilon(digits));
     CHECK(f_quantile(0.99, 2.0, 18.0) == Approx(6.0129048348005).epsilon(digits));
+    // By definition; a ratio to a variance of zero is infinite.
+    CHECK(f_probability(std::numeric_limits<double>::infinity(), 4.0, 12.0) == 1.0);
+    CHECK(chi_squared_probability(std::numeric_limits<double>::infinity(), 8.0) == 1.0);
     CHECK(f_probability(3.5, 4.0, 12.0) == Approx(0.95910532833788).epsilon(digits));
 }

@@ -1,0 +1,146 @@
+// Damaged recordings through the whole pipeline in memory, and some through the program.
+
+#include <fmt/format.h>
+#include <sys/resource.h>
+
+#include <catch2/catch.hpp>
+#include <cmath>
+#include <ctime>
+#include <iostream>
+#include <map>
+#include <nlohmann/json.hpp>
+
+#include "faults/archive.hpp"
+#include "faults/damage.hpp"
+#include "ringwright/analysis.hpp"
+#include "ringwright/error.hpp"
+#include "ringwright/result_csv.hpp"
+#include "ringwright/result_json.hpp"
+#include "ringwright/result_text.hpp"
+
+using namespace ringwright;
+using namespace ringwright::test;
+using Catch::Contains;
+
+namespace {
+
+double processor_seconds() {
+    timespec time{};
+    ::clock_gettime(CLOCK_PROCESS_CPUTIME_ID, &time);
+    return static_cast<double>(time.tv_sec) + 1e-9 * static_cast<double>(time.tv_nsec);
+}
+
+long peak_megabytes() {
+    rusage used{};
+    ::getrusage(RUSAGE_SELF, &used);
+    return used.ru_maxrss / 1024;
+}
+
+/// JSON writes null for what is no number: there is none in an answer.
+bool has_null(const Json& json) {
+    if (json.is_null()) return true;
+    return json.is_structured() && std::any_of(json.begin(), json.end(), has_null);
+}
+
+/// What became of a file; a sentence where a promise was broken.
+struct Outcome {
+    std::string what, broken;
+};
+
+Outcome outcome_of(const DamagedFile& file) {
+    try {
+        std::vector<RecordingInput> input;
+        input.push_back({read_recording_from_memory(file.bytes, "damaged" + file.ending), std::nullopt});
+        const Identification identification = identify(std::move(input), {});
+        const Json json = to_json(identification);
+        if (has_null(json)) return {"answered", "a null in " + json.dump()};
+        const std::string text = to_text(identification) + to_csv(identification);
+        if (text.find("nan") != std::string::npos || text.find("inf,") != std::string::npos)
+            return {"answered", "no number in " + text};
+        if (identification.answered()) return {"answered", {}};
+        const RecordingIdentification& recording = identification.recordings.front();
+        const bool why = !recording.reason.empty() ||
+                         (!recording.events.empty() && !recording.events.front().curve_fit.reason.empty());
+        return {"no answer", why ? "" : "no reason why there is no answer"};
+    } catch (const InputError& error) {
+        const Problem& problem = error.problem();
+        return {"refused",
+                problem.found.empty() || problem.remedy.empty() ? "a refusal without cause or remedy" : ""};
+    } catch (const std::exception& error) {
+        return {"fault", fmt::format("an exception that is not for users: {}", error.what())};
+    }
+}
+
+/// Runs `count` files from `first` on. On CPU time, as wall time is others' too.
+std::map<std::string, int> survey(std::uint64_t first, std::uint64_t count, double most_seconds) {
+    std::map<std::string, int> outcomes;
+    double slowest = 0.0;
+    for (std::uint64_t seed = first; seed < first + count; ++seed) {
+        const DamagedFile file = damaged_file(seed);
+        const double begun = processor_seconds();
+        const Outcome outcome = outcome_of(file);
+        const double took = processor_seconds() - begun;
+        slowest = std::max(slowest, took);
+        ++outcomes[outcome.what];
+        if (outcome.broken.empty() && took <= most_seconds) continue;
+        FAIL_CHECK(fmt::format("seed {} ({}, {} bytes): {} in {:.2f} s", seed, file.kind, file.bytes.size(),
+                               outcome.broken, took));
+    }
+    std::cout << fmt::format("{} damaged files, slowest {:.2f} s, peak {} MB:", count, slowest,
+                             peak_megabytes());
+    for (const auto& [what, number] : outcomes) std::cout << ' ' << number << ' ' << what;
+    std::cout << '\n';
+    return outcomes;
+}
+
+}  // namespace
+
+TEST_CASE("damaged files are refused with a message or answered in numbers, soon") {
+    const auto outcomes = survey(1'000'000, 400, 2.0);
+    // All three kinds have to occur, else the damage is too gentle or too rough to test anything.
+    for (const char* what : {"answered", "refused", "no answer"}) CHECK(outcomes.contains(what));
+    CHECK(peak_megabytes() < 400);
+}
+
+TEST_CASE("damage that once ended in a fault") {
+    // Samples of 3.4e38 in a record of ±1: the ratio of two variances is infinite.
+    for (const std::uint64_t seed : {1975U, 5457U, 1'000'089U})
+        CHECK_FALSE(survey(seed, 1, 2.0).contains("fault"));
+}
+
+TEST_CASE("ten thousand damaged files", "[.long]") {
+    const char* first = std::getenv("RINGWRIGHT_FIRST_SEED");
+    (void)survey(first == nullptr ? 0 : std::strtoull(first, nullptr, 10), 10'000, 2.0);
+    CHECK(peak_megabytes() < 400);
+}
+
+TEST_CASE("the program keeps to its statuses on damaged files") {
+    const Workplace place;
+    for (std::uint64_t seed = 2'000'000; seed < 2'000'030; ++seed) {
+        const DamagedFile file = damaged_file(seed);
+        const std::string path = place.write("damaged" + file.ending, file.bytes);
+        for (const char* command : {"identify", "inspect"}) {
+            const Ending ending = run({command, path}, {place.path("out"), place.path("err")});
+            INFO("seed " << seed << ", " << file.kind << ": " << command << " " << place.read("err"));
+            CHECK((ending.status == 0 || ending.status == 3 || ending.status == 4));
+            CHECK((ending.status == 0 || place.read("err").starts_with("ringwright: ")));
+            CHECK(ending.peak_kilobytes < 400'000);
+        }
+    }
+}
+
+TEST_CASE("a claim beyond the file is not believed") {
+    // 10¹² frames would be 8 TB as doubles; 2 KB of them are there.
+    for (const std::string& bytes :
+         {rf64_bytes(1'000'000'000'000, 1000), wav_bytes({1, 1, 2, 16, 8000, 0xFFFFFFF0}, 1000)}) {
+        const long before = peak_megabytes();
+        try {
+            const Recording recording = read_recording_from_memory(bytes, "claim.wav");
+            CHECK(recording.size() <= 1000);
+            CHECK_FALSE(recording.findings.empty());
+        } catch (const InputError& error) {
+            CHECK_FALSE(error.problem().remedy.empty());
+        }
+        CHECK(peak_megabytes() - before < 64);
+    }
+}
