@@ -30,6 +30,10 @@ struct Event {
     double noise_level = 0.0;         ///< rms of the noise as the search saw it, units of the samples
     double start_amplitude = 0.0;     ///< of the decay at `begin`, units of the samples
     bool by_hand = false;             ///< window given with from/to
+    /// Of a drop: the stretches of free fall before the decay, the fall itself first. Empty where none was
+    /// seen.
+    std::vector<SampleRange> flights;
+    bool hold_seen = false;  ///< of a drop: the recording goes back before the release
     Findings findings;
 };
 

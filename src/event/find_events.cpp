@@ -5,6 +5,7 @@
 #include <numbers>
 
 #include "event/by_hand.hpp"
+#include "event/drops.hpp"
 #include "event/found.hpp"
 #include "event/health.hpp"
 #include "event/plateau.hpp"
@@ -51,6 +52,7 @@ struct Search {
     const Pyramid& pyramid;
     std::optional<TestKind> kind;  ///< as the user said
     std::vector<Found> found;
+    std::vector<RefusedFall> refused;
     bool steady = false;  ///< something rang and did not fall
 };
 
@@ -68,10 +70,14 @@ std::size_t after_clipping(const Search& search, std::size_t position, double cy
 }
 
 bool taken(const Search& search, const Onset& onset) {
+    const auto holds = [&](const RefusedFall& fall) {
+        return onset.position >= fall.begin && onset.position < fall.end;
+    };
+    if (std::any_of(search.refused.begin(), search.refused.end(), holds)) return true;
     const std::size_t reach = std::size_t{4} << onset.level;
     return std::any_of(search.found.begin(), search.found.end(), [&](const Found& f) {
         const std::size_t margin = std::max(reach, static_cast<std::size_t>(f.cycle()));
-        return onset.position + margin >= f.begin() && onset.position < f.course.rest_end;
+        return onset.position + margin >= f.since() && onset.position < f.course.rest_end;
     });
 }
 
@@ -82,7 +88,7 @@ StartLimits limits_for(const Search& search, const Onset& onset) {
     limits.latest = search.series.size();
     for (const Found& other : search.found) {
         if (other.begin() > onset.position) {
-            limits.latest = std::min(limits.latest, other.begin());
+            limits.latest = std::min(limits.latest, other.since());
         } else {
             limits.earliest = std::max(limits.earliest, other.course.rest_end);
         }
@@ -135,7 +141,7 @@ std::optional<Found> follow_onset(const Search& search, const Onset& onset, Star
             }
         }
     }
-    return Found{*start, course, 0, 0, {}};
+    return Found{*start, course, 0, 0, {}, {}, false};
 }
 
 /// Standard deviation of single values in the rest: of the quieter among its pieces, since a stray knock in
@@ -314,7 +320,7 @@ void drop_wanderings(std::vector<Found>& found, const Pyramid& pyramid) {
     const std::vector<Found> all = found;
     std::erase_if(found, [&](const Found& f) {
         const double cycles = static_cast<double>(f.end() - f.begin()) / f.cycle();
-        return cycles < few_cycles && swing_against_elsewhere(pyramid, f, all) < stands_out;
+        return !f.is_drop() && cycles < few_cycles && swing_against_elsewhere(pyramid, f, all) < stands_out;
     });
 }
 
@@ -329,7 +335,7 @@ bool is_pull_to(const Found& pull, const Found& release) {
 void drop_pulls(std::vector<Found>& found) {
     std::vector<Found> kept;
     for (std::size_t i = 0; i < found.size(); ++i) {
-        if (i + 1 < found.size() && is_pull_to(found[i], found[i + 1])) continue;
+        if (i + 1 < found.size() && !found[i].is_drop() && is_pull_to(found[i], found[i + 1])) continue;
         kept.push_back(std::move(found[i]));
     }
     found = std::move(kept);
@@ -437,7 +443,8 @@ bool starts_clipped(const Search& search, std::size_t position) {
 void note_double_hits(std::vector<Found>& found, const Search& search) {
     if (search.kind == TestKind::drop) return;
     for (Found& f : found)
-        if (f.findings.empty() && !starts_clipped(search, f.begin()) && rings_before(search.pyramid, f.start))
+        if (!f.is_drop() && f.findings.empty() && !starts_clipped(search, f.begin()) &&
+            rings_before(search.pyramid, f.start))
             f.findings.push_back(double_hit(static_cast<double>(f.begin()) / search.series.rate_hz()));
 }
 
@@ -492,8 +499,11 @@ Event to_event(const Found& found, const Search& search, const EventOptions& opt
     const double rest = rest_rms(series.values(), found.course);
     event.noise_level = rest > 0.0 ? rest : found.start.noise_rms;
     event.start_amplitude = found.start.amplitude;
-    event.kind = options.kind.value_or(TestKind::pluck);
-    event.kind_known = options.kind.has_value() || found.start.from_rest;
+    event.kind = found.is_drop() ? TestKind::drop : options.kind.value_or(TestKind::pluck);
+    event.kind_known = options.kind.has_value() || found.start.from_rest || found.is_drop();
+    event.hold_seen = found.hold_seen;
+    for (const Flight& flight : found.flights)
+        event.flights.push_back({series.sample_at(flight.begin), series.sample_at(flight.end)});
     event.frequency_guess_hz = ringing_frequency(search.pyramid, series.rate_hz(), found, options.near_hz);
     event.findings = found.findings;
     note_clipping(search, event);
@@ -501,7 +511,16 @@ Event to_event(const Found& found, const Search& search, const EventOptions& opt
     return event;
 }
 
+/// Where gravity can be told: in SI units, unless the user says that nothing fell.
+void look_for_drops(Search& search) {
+    if (!search.recording.scaled || search.kind.value_or(TestKind::drop) != TestKind::drop) return;
+    Drops drops = find_drops(search.pyramid, search.series.rate_hz(), search.recording.quantity);
+    search.found = std::move(drops.found);
+    search.refused = std::move(drops.refused);
+}
+
 std::string reason_for_none(const Search& search) {
+    if (!search.refused.empty()) return search.refused.front().reason;
     if (search.steady)
         return "The recording oscillates, but its amplitude does not fall: a steady or forced motion is no "
                "free "
@@ -531,7 +550,8 @@ EventSearch search_whole(const Recording& recording, const EventOptions& options
         return result;
     }
     const Pyramid pyramid(series.values());
-    Search search{recording, series, pyramid, options.kind, {}, false};
+    Search search{recording, series, pyramid, options.kind, {}, {}, false};
+    look_for_drops(search);
     const std::vector<Onset> onsets = find_onsets(pyramid);
     for (const Onset& onset : onsets) try_onset(search, onset, onsets);
     std::sort(search.found.begin(), search.found.end(),

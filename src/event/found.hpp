@@ -5,6 +5,7 @@
 #include <vector>
 
 #include "event/course.hpp"
+#include "event/free_fall.hpp"
 #include "ringwright/event.hpp"
 
 namespace ringwright::event_search {
@@ -14,8 +15,13 @@ struct Found {
     Course course;
     std::size_t quiet_begin = 0, quiet_end = 0;
     Findings findings;
+    std::vector<Flight> flights = {};  ///< of a drop
+    bool hold_seen = false;            ///< of a drop: the recording goes back before the release
     [[nodiscard]] std::size_t begin() const { return start.position; }
     [[nodiscard]] std::size_t end() const { return course.end; }
+    /// First position that belongs to the test: of the fall, or of the decay.
+    [[nodiscard]] std::size_t since() const { return flights.empty() ? begin() : flights.front().begin; }
+    [[nodiscard]] bool is_drop() const { return !flights.empty(); }
     [[nodiscard]] double cycle() const;  ///< positions of one undamped cycle
 };
 

@@ -90,31 +90,33 @@ bool hopeless(std::span<const double> means, const Place& place) {
     return roughly_explained(means.subspan(first, std::min(fit_blocks, means.size() - first))) < little;
 }
 
-void try_place(const Pyramid& pyramid, std::size_t level, const Place& place, std::vector<Onset>& onsets) {
+}  // namespace
+
+std::optional<Onset> onset_at(const Pyramid& pyramid, std::size_t level, std::size_t block) {
     const std::span<const double> means = pyramid.level(level);
-    if (hopeless(means, place)) return;
     std::optional<Onset> best;
     for (const std::size_t skipped : {std::size_t{0}, std::size_t{3}, std::size_t{7}}) {
-        const std::size_t first = place.block + skipped;
+        const std::size_t first = block + skipped;
         if (first + shortest_fit > means.size()) break;
         const std::size_t count = std::min(fit_blocks, means.size() - first);
         const std::optional<DecayFit> fit = fit_decay(means.subspan(first, count));
         if (!fit || !resolved(*fit, level) || fit->explained_ratio() < least_explained) continue;
-        Onset onset{level, place.block, place.block << level, *fit, first, fit->envelope_at(0.0), 0.0};
+        Onset onset{level, block, block << level, *fit, first, fit->envelope_at(0.0), 0.0};
         const double explained = (fit->total_sum - fit->residual_sum) / static_cast<double>(count);
         onset.score = std::sqrt(explained) * std::log1p(finely_explained(pyramid, level, first, *fit));
         if (!best || onset.score > best->score) best = onset;
     }
-    if (best) onsets.push_back(*best);
+    return best;
 }
-
-}  // namespace
 
 std::vector<Onset> find_onsets(const Pyramid& pyramid) {
     std::vector<Onset> onsets;
     for (std::size_t level = 0; level < pyramid.levels(); ++level) {
         const std::span<const double> means = pyramid.level(level);
-        for (const Place& place : places_of(activity_of(means))) try_place(pyramid, level, place, onsets);
+        for (const Place& place : places_of(activity_of(means))) {
+            if (hopeless(means, place)) continue;
+            if (const auto onset = onset_at(pyramid, level, place.block)) onsets.push_back(*onset);
+        }
     }
     std::stable_sort(onsets.begin(), onsets.end(),
                      [](const Onset& a, const Onset& b) { return a.score > b.score; });

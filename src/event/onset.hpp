@@ -1,6 +1,7 @@
 #pragma once
 // Where something sudden begins, on the time scale on which it is plainest.
 
+#include <optional>
 #include <vector>
 
 #include "event/decay_shape.hpp"
@@ -18,6 +19,9 @@ struct Onset {
     double amplitude = 0.0;  ///< of the decay at the start of the fit
     double score = 0.0;
 };
+
+/// The decay that begins at or shortly after this block of a level; nothing when none is seen there.
+[[nodiscard]] std::optional<Onset> onset_at(const Pyramid& pyramid, std::size_t level, std::size_t block);
 
 /// All of them, best first, each place and scale on its own (one release shows on several scales).
 [[nodiscard]] std::vector<Onset> find_onsets(const Pyramid& pyramid);

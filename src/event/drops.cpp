@@ -1,0 +1,115 @@
+#include "event/drops.hpp"
+
+#include <fmt/format.h>
+
+#include <algorithm>
+#include <cmath>
+#include <span>
+#include <utility>
+
+#include "event/drop_start.hpp"
+
+namespace ringwright::event_search {
+namespace {
+
+constexpr double standard_gravity = 9.80665;  // m/s²
+/// What the decay may leave unexplained, as a share of its amplitude.
+constexpr double misfit = 0.125;
+constexpr double least_amplitude = 3.0;  ///< against the noise
+constexpr std::size_t shortest_decay = 14;
+/// Departure of what an accelerometer shows at rest from gravity, as a share of it.
+constexpr double off_rest = 0.25;
+
+/// What the sensor shows at rest: the median over three times the time of the fall, beginning one such time
+/// after the impact. A swing that has not died away leaves it nearly alone.
+double rest_after(std::span<const double> values, const Flight& fall, std::size_t impact,
+                  std::size_t latest) {
+    const std::size_t time = fall.end - fall.begin;
+    const std::size_t begin = std::min(impact + time, latest - 1), end = std::min(begin + 3 * time, latest);
+    std::vector<double> rest(values.begin() + static_cast<std::ptrdiff_t>(begin),
+                             values.begin() + static_cast<std::ptrdiff_t>(end));
+    const auto middle = rest.begin() + static_cast<std::ptrdiff_t>(rest.size() / 2);
+    std::nth_element(rest.begin(), middle, rest.end());
+    return *middle;
+}
+
+/// Gravity along an accelerometer's axis, against standard gravity, where it shows `level`.
+double weight_at(const Fall& fall, double level) {
+    return -fall.down * (level - fall.flights.front().level) / standard_gravity;
+}
+
+/// What the rest of an accelerometer says against a mass on its spring: gravity must then be seen once along
+/// its axis.
+std::string refusal_of_rest(const Fall& fall, double rest) {
+    if (std::abs(weight_at(fall, rest) - 1.0) <= off_rest) return {};
+    return fmt::format(
+        "but the sensor then rests at {:.2g} times gravity along its axis where it must show "
+        "1: the article turned over",
+        weight_at(fall, rest));
+}
+
+/// Why what follows a fall is no decay of a mass on a spring; empty when it is one.
+std::string refusal_of(const Found& drop, const Fall& fall, MeasuredQuantity quantity) {
+    const Start& start = drop.start;
+    if (quantity == MeasuredQuantity::acceleration &&
+        std::abs(weight_at(fall, start.fit.offset) - 1.0) > off_rest)
+        return "but what follows the impact does not swing about the rest position";
+    const bool over = drop.course.end < drop.begin() + shortest_decay;
+    if (over || start.amplitude < least_amplitude * start.noise_rms ||
+        start.noise_rms > misfit * start.amplitude)
+        return "but what follows the impact does not swing about a rest position as a mass on a spring does";
+    if (start.shape.damping_ratio < 0.5 && !drop.course.falls())
+        return "but the motion after the impact does not die away";
+    return {};
+}
+
+/// The time after an impact in which another decay would be part of the same fall.
+std::size_t aftermath(const Fall& fall) {
+    constexpr std::size_t falls = 10;
+    const Flight& first = fall.flights.front();
+    return falls * (first.end - first.begin);
+}
+
+}  // namespace
+
+Drops find_drops(const Pyramid& pyramid, double rate_hz, MeasuredQuantity quantity) {
+    std::vector<Fall> falls = find_falls(pyramid, rate_hz, quantity);
+    const std::size_t size = pyramid.level(0).size();
+    Drops drops;
+    for (std::size_t i = 0; i < falls.size(); ++i) {
+        Fall& fall = falls[i];
+        const std::size_t begin = fall.flights.front().begin;
+        if (!drops.found.empty() && begin < drops.found.back().course.end) continue;
+        StartLimits limits;
+        limits.drop = true;
+        limits.latest = i + 1 < falls.size() ? falls[i + 1].flights.front().begin : size;
+        const Fall seen = fall;
+        const std::optional<Start> start = locate_drop_start(pyramid, fall, quantity, rate_hz, limits);
+        if (fall.flights.empty()) continue;
+        Found drop;
+        std::string reason = "but nothing rings after the impact";
+        if (start) {
+            drop.start = *start;
+            drop.course = follow_decay(pyramid, drop.start, limits.latest);
+            drop.flights = fall.flights;
+            drop.hold_seen = fall.hold_seen;
+            reason = refusal_of(drop, fall, quantity);
+        }
+        if (!reason.empty() && quantity == MeasuredQuantity::acceleration) {
+            const double rest =
+                rest_after(pyramid.level(0), seen.flights.front(), fall.flights.back().end, limits.latest);
+            if (std::string at_rest = refusal_of_rest(fall, rest); !at_rest.empty())
+                reason = std::move(at_rest);
+        }
+        if (reason.empty())
+            drops.found.push_back(std::move(drop));
+        else
+            drops.refused.push_back(
+                {begin, std::min(limits.latest, seen.flights.back().end + aftermath(seen)),
+                 fmt::format("A fall of {:.2g} s is seen, {}.",
+                             static_cast<double>(seen.flights.front().end - begin) / rate_hz, reason)});
+    }
+    return drops;
+}
+
+}  // namespace ringwright::event_search

@@ -1,0 +1,289 @@
+#include "event/free_fall.hpp"
+
+#include <algorithm>
+#include <cmath>
+#include <optional>
+#include <span>
+
+namespace ringwright::event_search {
+namespace {
+
+constexpr double standard_gravity = 9.80665;  // m/s² (NIST SP 811, appendix B.8); sites differ by 0.5 %
+/// What gravity as recorded may differ by: the error of a sensor's scale, a slope, friction in a guide.
+constexpr double tolerance = 0.15;
+constexpr double block_s = 0.0025, window_s = 0.025;
+constexpr std::size_t fewest_blocks = 8, window_sizes = 4;
+/// Height of the bow, or of the ramp, against the scatter about it.
+constexpr double plain = 15.0;
+
+/// c0 + c1·x + c2·x², x in blocks from the middle of the points.
+struct Curve {
+    double middle = 0.0, c0 = 0.0, c1 = 0.0, c2 = 0.0, rms = 0.0;
+    [[nodiscard]] double at(double block) const {
+        const double x = block - middle;
+        return c0 + x * (c1 + x * c2);
+    }
+};
+
+Curve fit_curve(std::span<const double> values, std::size_t first, std::size_t end, bool bent) {
+    const auto n = static_cast<double>(end - first);
+    Curve curve;
+    curve.middle = static_cast<double>(first) + 0.5 * (n - 1.0);
+    double y0 = 0.0, y1 = 0.0, y2 = 0.0, x2 = 0.0, x4 = 0.0;
+    for (std::size_t k = first; k < end; ++k) {
+        const double x = static_cast<double>(k) - curve.middle, y = values[k] - values[first];
+        y0 += y, y1 += x * y, y2 += x * x * y, x2 += x * x, x4 += x * x * x * x;
+    }
+    curve.c1 = y1 / x2;
+    curve.c2 = bent ? (n * y2 - x2 * y0) / (n * x4 - x2 * x2) : 0.0;
+    curve.c0 = (y0 - curve.c2 * x2) / n + values[first];
+    double squares = 0.0;
+    for (std::size_t k = first; k < end; ++k) {
+        const double r = values[k] - curve.at(static_cast<double>(k));
+        squares += r * r;
+    }
+    curve.rms = std::sqrt(squares / std::max(1.0, n - 3.0));
+    return curve;
+}
+
+/// The recording on the time scale on which falls are looked for.
+struct Blocks {
+    std::span<const double> means;
+    std::size_t level = 0;
+    double step_s = 0.0;
+    std::size_t window = 0;  ///< the shortest
+    bool bent = true;        ///< displacement: a parabola; velocity: a straight line
+};
+
+Blocks blocks_of(const Pyramid& pyramid, double rate_hz, bool bent) {
+    Blocks blocks;
+    while (blocks.level + 1 < pyramid.levels() &&
+           std::ldexp(1.0, static_cast<int>(blocks.level) + 1) / rate_hz <= block_s)
+        ++blocks.level;
+    blocks.means = pyramid.level(blocks.level);
+    blocks.step_s = std::ldexp(1.0, static_cast<int>(blocks.level)) / rate_hz;
+    blocks.window = std::max(fewest_blocks, static_cast<std::size_t>(std::ceil(window_s / blocks.step_s)));
+    blocks.bent = bent;
+    return blocks;
+}
+
+double acceleration_of(const Blocks& blocks, const Curve& curve) {
+    return blocks.bent ? 2.0 * curve.c2 / (blocks.step_s * blocks.step_s) : curve.c1 / blocks.step_s;
+}
+
+bool like_gravity(double acceleration) {
+    return std::abs(std::log(std::max(std::abs(acceleration), 1e-300) / standard_gravity)) <
+           std::log(1.0 + tolerance);
+}
+
+/// How far gravity bends or tilts the curve over so many blocks.
+double height_of(const Blocks& blocks, std::size_t count) {
+    const double time = static_cast<double>(count) * blocks.step_s;
+    return blocks.bent ? standard_gravity * time * time / 8.0 : standard_gravity * time / 2.0;
+}
+
+/// Three values of the window tell most places that are no fall.
+bool may_fall(const Blocks& blocks, std::size_t k, std::size_t window) {
+    const std::size_t half = (window - 1) / 2;
+    const double y0 = blocks.means[k], y1 = blocks.means[k + half], y2 = blocks.means[k + 2 * half];
+    const double time = static_cast<double>(half) * blocks.step_s;
+    const double acceleration = blocks.bent ? (y2 - 2.0 * y1 + y0) / (time * time) : (y2 - y0) / (2.0 * time);
+    return std::abs(acceleration) > 0.6 * standard_gravity && std::abs(acceleration) < 1.7 * standard_gravity;
+}
+
+struct Stretch {
+    std::size_t begin = 0, end = 0;  ///< blocks
+    Curve curve;
+};
+
+/// The stretch from `begin` to `end`, as far on either side as the curve goes on.
+Stretch grow(const Blocks& blocks, std::size_t begin, std::size_t end) {
+    constexpr double share = 0.003, scatters = 4.0;
+    Stretch stretch{begin, end, fit_curve(blocks.means, begin, end, blocks.bent)};
+    for (;;) {
+        const std::size_t length = stretch.end - stretch.begin;
+        const double allowed = std::max(scatters * stretch.curve.rms, share * height_of(blocks, length));
+        const auto follows = [&](std::size_t k) {
+            return std::abs(blocks.means[k] - stretch.curve.at(static_cast<double>(k))) < allowed;
+        };
+        const std::size_t most = std::max<std::size_t>(1, length / 4);
+        std::size_t added = 0;
+        // One value off the curve may be noise; two are the end.
+        for (; added < most && stretch.end + 1 < blocks.means.size(); ++stretch.end, ++added)
+            if (!follows(stretch.end) && !follows(stretch.end + 1)) break;
+        for (std::size_t before = 0; before < most && stretch.begin > 1; ++before, ++added, --stretch.begin)
+            if (!follows(stretch.begin - 1) && !follows(stretch.begin - 2)) break;
+        if (added == 0) return stretch;
+        stretch.curve = fit_curve(blocks.means, stretch.begin, stretch.end, blocks.bent);
+    }
+}
+
+bool falls(const Blocks& blocks, const Stretch& stretch) {
+    return like_gravity(acceleration_of(blocks, stretch.curve)) &&
+           height_of(blocks, stretch.end - stretch.begin) > plain * stretch.curve.rms;
+}
+
+std::vector<Stretch> stretches_of(const Blocks& blocks) {
+    std::vector<Stretch> found;
+    for (std::size_t size = 0; size < window_sizes; ++size) {
+        const std::size_t window = blocks.window << size, step = std::max<std::size_t>(1, window / 4);
+        for (std::size_t k = 0; k + window <= blocks.means.size(); k += step) {
+            if (!may_fall(blocks, k, window)) continue;
+            const Stretch seed{k, k + window, fit_curve(blocks.means, k, k + window, blocks.bent)};
+            if (!falls(blocks, seed)) continue;
+            const bool known = std::any_of(found.begin(), found.end(), [&](const Stretch& other) {
+                return k < other.end && k + window > other.begin;
+            });
+            if (known) continue;
+            const Stretch whole = grow(blocks, seed.begin, seed.end);
+            const std::size_t middle = (whole.begin + whole.end) / 2;
+            const bool covered = std::any_of(found.begin(), found.end(), [&](const Stretch& other) {
+                return middle >= other.begin && middle < other.end;
+            });
+            if (covered || !falls(blocks, whole)) continue;
+            found.push_back(whole);
+            k = std::max(k, whole.end > step ? whole.end - step : 0);
+        }
+    }
+    std::sort(found.begin(), found.end(),
+              [](const Stretch& a, const Stretch& b) { return a.begin < b.begin; });
+    return found;
+}
+
+/// Downward speed at the ends of a flight, unit of the recording a block.
+struct Speeds {
+    double begin = 0.0, end = 0.0;
+};
+
+Speeds speeds_of(const Blocks& blocks, const Stretch& stretch) {
+    const auto at = [&](std::size_t block) {
+        const double x = static_cast<double>(block) - stretch.curve.middle;
+        return blocks.bent ? stretch.curve.c1 + 2.0 * stretch.curve.c2 * x
+                           : stretch.curve.at(static_cast<double>(block));
+    };
+    return {at(stretch.begin), at(stretch.end - 1)};
+}
+
+/// A fall begins at rest after a hold that is still; a bounce begins with the speed at which it ends.
+bool from_rest(const Blocks& blocks, const Stretch& stretch) {
+    constexpr double share_of_speed = 0.35, share_of_way = 0.1;
+    const std::span<const double> y = blocks.means;
+    const std::size_t length = stretch.end - stretch.begin;
+    if (stretch.begin == 0) return true;
+    const std::size_t before = std::min(stretch.begin, length);
+    const auto [low, high] =
+        std::minmax_element(y.begin() + static_cast<std::ptrdiff_t>(stretch.begin - before),
+                            y.begin() + static_cast<std::ptrdiff_t>(stretch.begin + 1));
+    const double way = std::abs(y[stretch.end - 1] - y[stretch.begin]);
+    if (*high - *low > share_of_way * way) return false;
+    const Speeds speeds = speeds_of(blocks, stretch);
+    return !blocks.bent || std::abs(speeds.begin) < share_of_speed * std::abs(speeds.end);
+}
+
+Flight to_flight(const Blocks& blocks, const Stretch& stretch) {
+    return {stretch.begin << blocks.level, stretch.end << blocks.level,
+            std::abs(acceleration_of(blocks, stretch.curve)), 0.0, stretch.curve.rms};
+}
+
+std::vector<Fall> falls_of_motion(const Blocks& blocks) {
+    std::vector<Fall> all;
+    for (const Stretch& stretch : stretches_of(blocks)) {
+        const double down = acceleration_of(blocks, stretch.curve) > 0.0 ? 1.0 : -1.0;
+        if (from_rest(blocks, stretch)) {
+            all.push_back({{to_flight(blocks, stretch)}, down, stretch.begin > 2});
+        } else if (!all.empty() && all.back().down == down) {
+            all.back().flights.push_back(to_flight(blocks, stretch));
+        }
+    }
+    return all;
+}
+
+/// A stretch of an accelerometer's record that stays level.
+struct Plateau {
+    std::size_t begin = 0, end = 0;  ///< blocks
+    double level = 0.0, rms = 0.0;
+};
+
+std::vector<Plateau> plateaus_of(const Blocks& blocks) {
+    constexpr double flat = 0.15 * standard_gravity;
+    std::vector<Plateau> found;
+    const std::span<const double> y = blocks.means;
+    for (std::size_t k = 0; k + blocks.window <= y.size();) {
+        double low = y[k], high = y[k];
+        std::size_t end = k;
+        for (; end < y.size(); ++end) {
+            low = std::min(low, y[end]), high = std::max(high, y[end]);
+            if (high - low > flat) break;
+        }
+        if (end < k + blocks.window) {
+            ++k;
+            continue;
+        }
+        // The edges belong to the change of level.
+        const std::size_t trimmed = end - k > 2 * fewest_blocks ? 1 : 0;
+        Plateau plateau{k + trimmed, end - trimmed, 0.0, 0.0};
+        const auto n = static_cast<double>(plateau.end - plateau.begin);
+        for (std::size_t i = plateau.begin; i < plateau.end; ++i) plateau.level += y[i] / n;
+        for (std::size_t i = plateau.begin; i < plateau.end; ++i)
+            plateau.rms += (y[i] - plateau.level) * (y[i] - plateau.level) / (n - 1.0);
+        plateau.rms = std::sqrt(plateau.rms);
+        found.push_back(plateau);
+        k = end;
+    }
+    return found;
+}
+
+Flight to_flight(const Blocks& blocks, const Plateau& plateau) {
+    return {plateau.begin << blocks.level, plateau.end << blocks.level, standard_gravity, plateau.level,
+            plateau.rms};
+}
+
+/// Whether the sensor goes from a hold to free fall within the time in which a hand or magnet lets go.
+bool lets_go(const Blocks& blocks, const Plateau& hold, const Plateau& fall) {
+    constexpr double longest_s = 0.06;
+    const double gap_s = static_cast<double>(fall.begin - std::min(fall.begin, hold.end)) * blocks.step_s;
+    return like_gravity(fall.level - hold.level) && gap_s < longest_s;
+}
+
+bool at_level_of(const Flight& flight, const Plateau& plateau) {
+    return std::abs(plateau.level - flight.level) < 0.5 * tolerance * standard_gravity;
+}
+
+std::vector<Fall> falls_of_acceleration(const Blocks& blocks) {
+    const std::vector<Plateau> plateaus = plateaus_of(blocks);
+    std::vector<Fall> all;
+    for (std::size_t i = 0; i < plateaus.size(); ++i) {
+        const Plateau& plateau = plateaus[i];
+        if (i > 0 && lets_go(blocks, plateaus[i - 1], plateau) &&
+            (all.empty() || at_level_of(all.front().flights.front(), plateau))) {
+            const double hold_level = plateaus[i - 1].level;
+            all.push_back({{to_flight(blocks, plateau)}, plateau.level > hold_level ? 1.0 : -1.0, true});
+            continue;
+        }
+        if (i == 0 && plateau.begin <= 1 && plateaus.size() > 1) {
+            // Triggered in the fall: the rest at the end tells what gravity is.
+            const double rest = plateaus.back().level;
+            const bool whole = static_cast<double>(plateau.end - plateau.begin) * blocks.step_s < 1.0;
+            if (whole && like_gravity(plateau.level - rest))
+                all.push_back({{to_flight(blocks, plateau)}, plateau.level > rest ? 1.0 : -1.0, false});
+            continue;
+        }
+        if (!all.empty() && at_level_of(all.back().flights.front(), plateau))
+            all.back().flights.push_back(to_flight(blocks, plateau));
+    }
+    return all;
+}
+
+}  // namespace
+
+std::vector<Fall> find_falls(const Pyramid& pyramid, double rate_hz, MeasuredQuantity quantity) {
+    const bool acceleration = quantity == MeasuredQuantity::acceleration;
+    if (!acceleration && quantity != MeasuredQuantity::displacement && quantity != MeasuredQuantity::velocity)
+        return {};
+    const Blocks blocks = blocks_of(pyramid, rate_hz, quantity == MeasuredQuantity::displacement);
+    // Slower sampling shows a fall in too few values.
+    if (blocks.step_s > 4.0 * block_s || blocks.means.size() < 2 * blocks.window) return {};
+    return acceleration ? falls_of_acceleration(blocks) : falls_of_motion(blocks);
+}
+
+}  // namespace ringwright::event_search
