@@ -2,6 +2,7 @@
 
 #include <algorithm>
 #include <cmath>
+#include <numbers>
 
 namespace ringwright::event_search {
 namespace {
@@ -10,6 +11,8 @@ constexpr std::size_t shortest_plateau = 6;  // blocks of the onset's level
 constexpr std::size_t fewest_blocks = 16;    // of the plateau and the decay together
 constexpr std::size_t most_onsets = 60;      // looked at, the strongest first
 constexpr double few_cycles = 3.0;
+constexpr double least_share_of_cycle = 0.4;      // plateau over the onset's cycle
+constexpr double least_share_of_amplitude = 0.5;  // onset over the decay found
 constexpr double plainly_better = 1.4;  // residual sum of the slow decay over that of plateau and decay
 
 /// Value of the found decay at the centre of a block of `level`.
@@ -47,6 +50,9 @@ bool explains_better(const Pyramid& pyramid, const Found& found, const Onset& on
     const Blocks plateau{(found.begin() + (std::size_t{1} << onset.level) - 1) >> onset.level, onset.block};
     const Blocks decay{onset.fit_block, std::min(onset.fit_block + onset.fit.points, fitted >> onset.level)};
     if (plateau.end < plateau.begin + shortest_plateau || decay.end < decay.begin + 8) return false;
+    const double cycle = 2.0 * std::numbers::pi / onset.fit.shape.undamped_angular_frequency;
+    if (static_cast<double>(plateau.end - plateau.begin) < least_share_of_cycle * cycle) return false;
+    if (onset.amplitude < least_share_of_amplitude * found.start.amplitude) return false;
     const std::size_t blocks = plateau.end - plateau.begin + decay.end - decay.begin;
     if (blocks < fewest_blocks) return false;
     double both = sum_about_mean(means, plateau);
