@@ -192,6 +192,10 @@ bool start_fit(CurveFit& fit, const Event& event, const CurveFitOptions& options
         fit.reason = fmt::format("the decay has only {} usable samples", fit.samples.size());
         return false;
     }
+    if (fit.samples.value.maxCoeff() == fit.samples.value.minCoeff()) {
+        fit.reason = "every sample of the decay has the same value";
+        return false;
+    }
     const std::optional<ProjectedFit> start = find_start(fit.samples, guess, options.near_hz);
     if (!start) {
         fit.reason = "no decaying oscillation fits the recording";
@@ -208,14 +212,16 @@ void reblock(CurveFit& fit) {
     fit.fit = fit_projected(fit.fit.model, fit.samples, fit.noise.noise);
 }
 
-// The mode meant comes first: the one nearest `near_hz`, else the one with the most energy (A²/4ζω).
+// The mode meant comes first: the one nearest `near_hz`, else the one with the most energy within the window,
+// A²(1 − e^(−2sT))/4s (a tone taken for a mode rings on for ever, and would have the most of it there).
 bool put_mode_first(CurveFit& fit, std::optional<double> near_hz) {
     std::vector<Oscillator>& modes = fit.fit.model.oscillators;
     const auto rank = [&](std::size_t i) {
         if (near_hz)
             return std::abs(std::log(modes[i].angular_frequency() / (2.0 * std::numbers::pi * *near_hz)));
         const double amplitude = start_amplitude(fit.fit.model, fit.fit.coefficients, i);
-        return -amplitude * amplitude / std::max(modes[i].slowest_rate(), 1e-300);
+        const double rate = std::max(modes[i].slowest_rate(), 1e-12 * modes[i].angular_frequency());
+        return amplitude * amplitude * std::expm1(-2.0 * rate * fit.samples.time.maxCoeff()) / rate;
     };
     std::size_t first = 0;
     for (std::size_t i = 1; i < modes.size(); ++i)

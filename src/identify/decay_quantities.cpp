@@ -121,70 +121,103 @@ class Profile {
 
 constexpr double straight_enough =
     0.04;  // relative departure of the rise from a parabola at the interval's ends
-constexpr int directions = 24;
-constexpr double farthest = 60.0;  // times the straight-line distance: then there is no end
 
-// Distance along `direction` at which the profile has risen by `target`² (direction has unit rise per unit
-// length squared where the problem is straight). Infinite where it never does.
-double distance_to_rise(const Profile& profile, const Vector2d& direction, double target) {
-    const auto root_of_rise = [&](double distance) {
-        const double rise = profile.rise(distance * direction);
-        return std::isfinite(rise) ? std::sqrt(std::max(0.0, rise)) : 1e6;
-    };
-    double low = 0.0, low_value = 0.0, high = target, high_value = root_of_rise(high);
-    while (high_value < target) {
-        low = high;
-        low_value = high_value;
-        high *= 1.6;
-        if (high > farthest * target) return std::numeric_limits<double>::infinity();
-        high_value = root_of_rise(high);
-    }
-    for (int i = 0; i < 12 && high - low > 2e-3 * target; ++i) {
-        double middle = low + (target - low_value) / (high_value - low_value) * (high - low);
-        if (i > 2 || !(middle > low && middle < high)) middle = 0.5 * (low + high);
-        const double value = root_of_rise(middle);
-        if (std::abs(value - target) < 1e-3 * target) return middle;
-        (value < target ? low : high) = middle;
-        (value < target ? low_value : high_value) = value;
-    }
-    return 0.5 * (low + high);
-}
-
-// Points of the region's edge, by direction.
-struct Edge {
-    std::vector<Vector2d> points;  // moves of (z, w); empty where the region has no end in that direction
-    bool closed = true;
+// The profile along the damping coordinate z: at each slice the best frequency coordinate w, the rise there,
+// and how steeply the rise grows on either side of it. Below and near critical damping the valley of good
+// fits is bent, beyond it runs on to infinite damping: slices follow it where rays from the best fit would
+// leave it.
+struct Slice {
+    double z = 0.0, w = 0.0;  // moves from the best fit
+    double root_of_rise = 0.0;
+    double bend = 0.0;  // ½ ∂²rise/∂w²
 };
-
-Edge trace_edge(const Profile& profile, const Matrix2d& root, double target) {
-    Edge edge;
-    for (int i = 0; i < directions; ++i) {
-        const double angle = two_pi * i / directions;
-        const Vector2d direction = root * Vector2d(std::cos(angle), std::sin(angle));
-        const double distance = distance_to_rise(profile, direction, target);
-        edge.closed = edge.closed && std::isfinite(distance);
-        edge.points.push_back((std::isfinite(distance) ? distance : farthest * target) * direction);
-    }
-    return edge;
-}
-
-// Largest value of `measure` on the edge, refined by the parabola through the three points about the largest.
-double largest_on(const Edge& edge, const std::function<double(const Vector2d&)>& measure) {
-    std::vector<double> values;
-    for (const Vector2d& point : edge.points) values.push_back(measure(point));
-    const auto peak = static_cast<std::size_t>(std::ranges::max_element(values) - values.begin());
-    const std::size_t n = values.size();
-    const double left = values[(peak + n - 1) % n], middle = values[peak], right = values[(peak + 1) % n];
-    const double bend = left - 2.0 * middle + right;
-    if (!(bend < 0.0)) return middle;
-    return middle - 0.125 * (left - right) * (left - right) / bend;
-}
 
 struct Region {
-    Edge edge;
-    double factor = 0.0;  // the t factor it was traced for
+    std::vector<Slice> slices;  // by rising z
+    double factor = 0.0;        // the t factor it was traced for; slices go a little farther
     bool curved = false;
+    bool open_above = false;  // the rise stays below factor² to the largest damping looked at
 };
+
+// Best w at this z by parabolas through three points, from `guess`.
+Slice slice_at(const Profile& profile, double z, double guess, double step) {
+    Slice slice{z, guess, 0.0, 0.0};
+    double rise = 0.0;
+    for (int i = 0; i < 6; ++i) {
+        const double left = profile.rise({z, slice.w - step}), right = profile.rise({z, slice.w + step});
+        rise = profile.rise({z, slice.w});
+        slice.bend = 0.5 * (left - 2.0 * rise + right) / (step * step);
+        if (!(slice.bend > 0.0)) {
+            slice.w += left < right ? -2.0 * step : 2.0 * step;
+            continue;
+        }
+        const double move = std::clamp(0.25 * (left - right) / (step * slice.bend), -4.0 * step, 4.0 * step);
+        slice.w += move;
+        rise -= slice.bend * move * move;
+        if (std::abs(move) < step) break;
+    }
+    slice.root_of_rise = std::sqrt(std::max(0.0, rise));
+    return slice;
+}
+
+// Slices from the best fit in one direction until the rise is beyond `target`²; false where it never is.
+bool trace_slices(const Profile& profile, const Matrix2d& covariance, double direction, double target,
+                  double most, std::vector<Slice>& slices) {
+    constexpr double finest = 0.1, coarsest = 0.35;  // change of the root of the rise from slice to slice
+    const double deviation = std::sqrt(covariance(0, 0));
+    const double width =
+        0.3 * std::sqrt(std::max(1e-300,
+                                 covariance(1, 1) - covariance(0, 1) * covariance(0, 1) / covariance(0, 0)));
+    double step = 0.25 * deviation, slope = covariance(0, 1) / covariance(0, 0);
+    Slice last{0.0, 0.0, 0.0, 0.0};
+    for (int i = 0; i < 150; ++i) {
+        const double z = direction * std::min(direction * last.z + step, most);
+        const Slice next = slice_at(profile, z, last.w + slope * (z - last.z), width);
+        const double change = std::abs(next.root_of_rise - last.root_of_rise);
+        if (change > coarsest * target && step > 0.01 * deviation) {
+            step *= 0.5;
+            continue;
+        }
+        slices.push_back(next);
+        if (next.root_of_rise > target) return true;
+        if (direction * z >= most) return false;
+        slope = (next.w - last.w) / (next.z - last.z);
+        last = next;
+        if (change < finest * target) step *= 1.6;
+    }
+    return false;
+}
+
+// Calls `visit` with the edges of the region in which the rise is below `target`².
+template <typename Visit>
+void visit_edges(const Region& region, double target, Visit visit) {
+    constexpr int between = 8;
+    for (std::size_t i = 0; i + 1 < region.slices.size(); ++i) {
+        const Slice &from = region.slices[i], &to = region.slices[i + 1];
+        for (int k = 0; k <= between; ++k) {
+            const double share = static_cast<double>(k) / between;
+            const auto blend = [&](double a, double b) { return a + share * (b - a); };
+            const double root = blend(from.root_of_rise, to.root_of_rise);
+            if (std::abs(root) > target) continue;
+            const double reach = std::sqrt((target * target - root * root) / blend(from.bend, to.bend));
+            const Vector2d middle(blend(from.z, to.z), blend(from.w, to.w));
+            visit(Vector2d(middle - Vector2d(0.0, reach)));
+            visit(Vector2d(middle + Vector2d(0.0, reach)));
+        }
+    }
+}
+
+// Where the root of the rise crosses ±target, by straight lines between slices.
+void visit_ends(const Region& region, double target, const std::function<void(const Vector2d&)>& visit) {
+    for (std::size_t i = 0; i + 1 < region.slices.size(); ++i) {
+        const Slice &from = region.slices[i], &to = region.slices[i + 1];
+        for (const double level : {-target, target}) {
+            if ((from.root_of_rise - level) * (to.root_of_rise - level) >= 0.0) continue;
+            const double share = (level - from.root_of_rise) / (to.root_of_rise - from.root_of_rise);
+            visit({from.z + share * (to.z - from.z), from.w + share * (to.w - from.w)});
+        }
+    }
+}
 
 Matrix2d joint_covariance(const CurveFit& fit, std::size_t index) {
     const MatrixXd rows = fit.map.middleRows(fit.linear_count() + 2 * static_cast<Index>(index), 2);
@@ -192,6 +225,7 @@ Matrix2d joint_covariance(const CurveFit& fit, std::size_t index) {
 }
 
 Region trace_region(const CurveFit& fit, std::size_t index, double factor) {
+    constexpr double farther = 1.3;  // what it cost to estimate the noise differs between quantities
     Region region;
     region.factor = factor;
     const Matrix2d covariance = joint_covariance(fit, index);
@@ -205,7 +239,16 @@ Region trace_region(const CurveFit& fit, std::size_t index, double factor) {
             const double rise = profile.rise(sign * factor * (lower * axis));
             region.curved = region.curved || !(std::abs(rise / (factor * factor) - 1.0) < straight_enough);
         }
-    if (region.curved) region.edge = trace_edge(profile, lower, factor);
+    if (!region.curved) return region;
+    const double z = fit.fit.model.oscillators[index].asinh_damping;
+    std::vector<Slice> below;
+    trace_slices(profile, covariance, -1.0, farther * factor, z + 0.4, below);
+    for (Slice& slice : below) slice.root_of_rise = -slice.root_of_rise;
+    region.slices.assign(below.rbegin(), below.rend());
+    region.slices.push_back(slice_at(profile, 0.0, 0.0, 0.1 * lower(1, 1)));
+    region.slices.back().root_of_rise = 0.0;
+    const double most = std::max(0.1, std::asinh(largest_damping_ratio) - z);
+    region.open_above = !trace_slices(profile, covariance, 1.0, farther * factor, most, region.slices);
     return region;
 }
 
@@ -225,23 +268,46 @@ Estimate straight_estimate(const Derived& derived, const Oscillator& at, const S
     return estimate;
 }
 
-// The profile region was traced for the noise as estimated; its half-widths are stretched by what it cost to
-// estimate it.
+bool grows_with_damping(Quantity quantity) {
+    return quantity == Quantity::damping_ratio || quantity == Quantity::natural_frequency ||
+           quantity == Quantity::decay_rate;
+}
+
+// The region is read for the noise as estimated and for what it cost to estimate it.
 void bend_interval(Estimate& estimate, const Derived& derived, const CurveFit& fit, std::size_t index,
                    const Region& region, double plain_scale, double confidence_level) {
     const Oscillator& at = fit.fit.model.oscillators[index];
     const double wanted = student_t_factor(confidence_level, estimate.degrees_of_freedom) *
                           estimate.standard_uncertainty / plain_scale;
-    const double stretch = wanted / region.factor;
-    const auto scaled = [&](const Vector2d& point) { return derived.value(moved(at, stretch * point)); };
-    estimate.interval.high = largest_on(region.edge, scaled);
-    estimate.interval.low = -largest_on(region.edge, [&](const Vector2d& p) { return -scaled(p); });
-    if (!region.edge.closed) {
-        // Only a quantity that hardly moves along the open direction still has an end.
-        const double width = estimate.interval.high - estimate.interval.low;
-        if (width > 50.0 * estimate.standard_uncertainty + 2.0 * std::abs(estimate.value))
-            estimate.interval.high = std::numeric_limits<double>::infinity();
-    }
+    const double target = std::min(wanted, 1.3 * region.factor);
+    Interval& interval = estimate.interval;
+    interval = {estimate.value, estimate.value};
+    const auto widen = [&](const Vector2d& by) {
+        const double value = derived.value(moved(at, by));
+        interval = {std::min(interval.low, value), std::max(interval.high, value)};
+    };
+    visit_edges(region, target, widen);
+    visit_ends(region, target, widen);
+    const bool open = region.open_above && region.slices.back().root_of_rise < target;
+    if (open && grows_with_damping(derived.quantity)) interval.high = std::numeric_limits<double>::infinity();
+}
+
+// Upper ends that the recording does not set are put where a damping ratio of this size has them: whoever
+// reads the interval sees how far it goes, and what is left out does not depend on where noise put the value.
+constexpr double largest_value_with_open_end = 10.0;
+
+void close_open_ends(Quantities& quantities) {
+    const auto ratio = quantities.find(Quantity::damping_ratio);
+    const auto frequency = quantities.find(Quantity::natural_frequency);
+    if (ratio == quantities.end() || frequency == quantities.end()) return;
+    if (ratio->second.value > largest_value_with_open_end) return;
+    const auto slow = quantities.find(Quantity::slow_decay_rate);
+    const double rate = slow != quantities.end() && std::isfinite(slow->second.interval.high)
+                            ? slow->second.interval.high
+                            : std::numbers::pi * frequency->second.value / ratio->second.value;
+    if (!std::isfinite(ratio->second.interval.high)) ratio->second.interval.high = largest_damping_ratio;
+    if (!std::isfinite(frequency->second.interval.high))
+        frequency->second.interval.high = rate * largest_damping_ratio / std::numbers::pi;
 }
 
 bool exists(const Derived& derived, const Oscillator& o) {
@@ -269,21 +335,15 @@ double quality_factor_of(double zeta) {
     return 0.5 / zeta;
 }
 
-// Far beyond critical damping, or with much noise, the fast pole has no end: then frequency and damping ratio
-// are not told.
+// Far beyond critical damping the fast pole has no end: then frequency and damping ratio are not told, one
+// not without the other.
 void drop_undetermined(Quantities& quantities) {
-    constexpr double widest_ratio = 30.0;
-    const auto ratio = quantities.find(Quantity::damping_ratio);
-    const auto frequency = quantities.find(Quantity::natural_frequency);
-    const bool ratio_open =
-        ratio == quantities.end() || ratio->second.interval.high > 3.0 + 10.0 * std::abs(ratio->second.value);
-    const bool frequency_open =
-        frequency == quantities.end() || !(frequency->second.interval.low > 0.0) ||
-        frequency->second.interval.high > widest_ratio * frequency->second.interval.low;
-    if (!ratio_open && !frequency_open) return;
+    if (quantities.contains(Quantity::damping_ratio) && quantities.contains(Quantity::natural_frequency))
+        return;
     for (const Quantity q : {Quantity::damping_ratio, Quantity::natural_frequency, Quantity::decay_rate,
                              Quantity::damped_frequency})
         quantities.erase(q);
+    constexpr double widest_ratio = 30.0;
     const auto slow = quantities.find(Quantity::slow_decay_rate);
     if (slow != quantities.end() && slow->second.interval.high > widest_ratio * slow->second.interval.low)
         quantities.erase(slow);
@@ -322,9 +382,12 @@ Quantities decay_quantities(const CurveFit& fit, std::size_t index, double confi
             region = trace_region(fit, index, factor);
         }
         if (region->curved) bend_interval(estimate, derived, fit, index, *region, plain, confidence_level);
-        if (!std::isfinite(estimate.interval.low) || !std::isfinite(estimate.interval.high)) continue;
         quantities[derived.quantity] = estimate;
     }
+    close_open_ends(quantities);
+    std::erase_if(quantities, [](const auto& entry) {
+        return !std::isfinite(entry.second.interval.low) || !std::isfinite(entry.second.interval.high);
+    });
     drop_undetermined(quantities);
     add_functions_of_damping(quantities);
     return quantities;

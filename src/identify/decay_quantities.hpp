@@ -8,6 +8,10 @@
 
 namespace ringwright::identify {
 
+/// The largest damping ratio that an interval is followed to; where the recording sets no upper end, it ends
+/// here.
+constexpr double largest_damping_ratio = 100.0;
+
 /// All quantities of oscillator `index`. Where the problem is curved over the width of its own interval (few
 /// cycles, heavy damping, much noise), the intervals are those of the profile likelihood and may be lopsided.
 /// A quantity that does not exist, or whose interval has no finite end, is left out.

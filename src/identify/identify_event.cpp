@@ -104,8 +104,18 @@ int affordable_replicates(int wanted, Eigen::Index samples) {
 
 void explain_missing(const CurveFit& fit, const MethodResult& result, Findings& findings) {
     if (result.status != MethodStatus::ok) return;
-    const bool ratio_told = result.quantities.contains(Quantity::damping_ratio);
-    if (fit.oscillator().damping_ratio() > far_beyond_critical || !ratio_told)
+    const auto ratio = result.quantities.find(Quantity::damping_ratio);
+    const bool told = ratio != result.quantities.end();
+    const bool open = told && ratio->second.interval.high >= largest_damping_ratio;
+    if (open)
+        findings.push_back(
+            {"beyond_critical", Severity::caution,
+             fmt::format(
+                 "The recording does not limit the damping ratio upwards: the intervals of damping ratio "
+                 "and frequency end at {:g}, the largest ratio that is looked at. What it does tell is the "
+                 "slow decay rate k/c. Sample faster and lower the noise in the first moments of the decay.",
+                 largest_damping_ratio)});
+    else if (fit.oscillator().damping_ratio() > far_beyond_critical || !told)
         findings.push_back(
             {"beyond_critical", Severity::caution,
              "The decay is far beyond critical damping: mostly the slow decay rate k/c can be told from it; "

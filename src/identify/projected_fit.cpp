@@ -15,12 +15,19 @@ namespace {
 
 constexpr double widest_asinh_damping = 6.0;  // damping ratio 200
 constexpr double lowest_asinh_damping = -0.5;
+// Beyond critical damping the fast pole is over within one block where it falls by this many nepers there:
+// what is faster looks the same, and its derivative vanishes.
+constexpr double fastest_fall = 5.0;
+constexpr double critical_asinh_damping = 0.881373587019543;
 
-bool usable(const DecayModel& model) {
-    for (const Oscillator& o : model.oscillators)
+bool usable(const DecayModel& model, double step_s) {
+    for (const Oscillator& o : model.oscillators) {
         if (!(o.asinh_damping < widest_asinh_damping) || !(o.asinh_damping > lowest_asinh_damping) ||
             !(std::abs(o.log_frequency) < 40.0))
             return false;
+        if (o.asinh_damping > critical_asinh_damping && o.fastest_rate() * step_s > fastest_fall)
+            return false;
+    }
     return model.parameters().allFinite();
 }
 
@@ -35,7 +42,7 @@ class Projection {
     void residual_at(const VectorXd& parameters, VectorXd& residual) {
         DecayModel trial = model_;
         trial.set_parameters(parameters);
-        if (!usable(trial)) {  // a wall, so that the step is shortened
+        if (!usable(trial, samples_.step_s)) {  // a wall, so that the step is shortened
             residual.setConstant(1e3 * (1.0 + response_.norm()));
             return;
         }
@@ -101,7 +108,7 @@ ProjectedFit fit_projected(const DecayModel& start, const DecaySamples& samples,
     const LeastSquaresFit found = fit_least_squares(problem, start.parameters(), options);
     if (!found.parameters.allFinite()) return projection.at(start.parameters());
     ProjectedFit fit = projection.at(found.parameters);
-    fit.converged = found.converged && usable(fit.model);
+    fit.converged = found.converged && usable(fit.model, samples.step_s);
     return fit;
 }
 

@@ -1,0 +1,65 @@
+// Intervals beyond critical damping, where the valley of good fits is bent and may have no end.
+// Recordings of known truth from tests/support; seeds are written at each case.
+
+#include <catch2/catch.hpp>
+
+#include "ringwright/identify.hpp"
+#include "support/simulated_decay.hpp"
+
+using namespace ringwright;
+
+namespace {
+
+EventIdentification identify_drawn(const simulated::Truth& truth, std::uint64_t seed) {
+    simulated::Deviates deviates(seed);
+    const simulated::Sample sample = simulated::draw(truth, deviates);
+    IdentifyOptions options;
+    options.replicates = 0;
+    return identify_event(sample.recording, sample.event, options);
+}
+
+simulated::Truth heavily_damped(double damping_ratio) {
+    simulated::Truth truth;
+    truth.damping_ratio = damping_ratio;
+    truth.cycles = 3.0;
+    return truth;
+}
+
+}  // namespace
+
+// Eighty recordings each; fewer than 69 of 80 hits at a true 95 % are seen once in 2,000. Rays from the best
+// fit, as the region was traced before, held the truth in 83 % at a damping ratio of 3.
+TEST_CASE("95 % intervals hold damping ratios beyond critical, open ends included") {
+    for (const double damping : {1.5, 3.0}) {
+        int answered = 0, held = 0;
+        for (std::uint64_t seed = 4000; seed < 4080; ++seed) {
+            const EventIdentification result = identify_drawn(heavily_damped(damping), seed);
+            const auto ratio = result.curve_fit.quantities.find(Quantity::damping_ratio);
+            if (ratio == result.curve_fit.quantities.end()) continue;
+            ++answered;
+            held += ratio->second.interval.low <= damping && damping <= ratio->second.interval.high;
+        }
+        INFO("damping ratio " << damping << ", answered " << answered << ", held " << held);
+        CHECK(answered >= 65);
+        CHECK(held >= answered - 11);
+    }
+}
+
+TEST_CASE("an interval is never infinite, and an open end is said to be one") {
+    int open = 0;
+    for (std::uint64_t seed = 4000; seed < 4030; ++seed) {
+        const EventIdentification result = identify_drawn(heavily_damped(3.0), seed);
+        for (const auto& [quantity, estimate] : result.curve_fit.quantities) {
+            INFO(key_of(quantity));
+            CHECK(std::isfinite(estimate.interval.low));
+            CHECK(std::isfinite(estimate.interval.high));
+        }
+        const auto ratio = result.curve_fit.quantities.find(Quantity::damping_ratio);
+        if (ratio == result.curve_fit.quantities.end() || ratio->second.interval.high < 99.0) continue;
+        ++open;
+        const bool said = std::any_of(result.findings.begin(), result.findings.end(),
+                                      [](const Finding& f) { return f.code == "beyond_critical"; });
+        CHECK(said);
+    }
+    CHECK(open > 3);
+}
