@@ -276,9 +276,11 @@ CurveFit fit_decay(const Recording& recording, const Event& event, const CurveFi
     }
     fit.quiet = find_quiet(fit, recording, event);
     if (fit.quiet.size() > 0 && !settle(fit)) return fit;
+    add_slow_term(fit);
     add_components(fit, options);
     if (!put_mode_first(fit, options.near_hz)) return fit;
     describe_components(fit);
+    describe_slow_terms(fit);
     fit.valid = estimate_noise(fit, options.noise_draws, options.seed);
     if (fit.valid) fit.reason.clear();
     return fit;

@@ -18,6 +18,12 @@ bool replace_spikes(CurveFit& fit);
 /// Adds steady tones (hum) and further modes that the residuals show, each where the likelihood gains what
 /// chance alone reaches in one recording in a thousand.
 void add_components(CurveFit& fit, const CurveFitOptions& options);
+/// Adds a straight-line drift or a slow exponential to the model where the likelihood gains what chance alone
+/// reaches in one recording in a thousand.
+void add_slow_term(CurveFit& fit);
+/// A finding for what add_slow_term added.
+void describe_slow_terms(CurveFit& fit);
+
 /// A finding for each tone and each mode beside the one that comes first.
 void describe_components(CurveFit& fit);
 
