@@ -239,6 +239,25 @@ bool put_mode_first(CurveFit& fit, std::optional<double> near_hz) {
     return true;
 }
 
+// Leaves out what a knock spoils; where it moved the article as well, the decay ends there. False where
+// nothing is left to fit.
+bool mind_knocks(CurveFit& fit, const Recording& recording) {
+    const CurveFit before = fit;
+    const Knocks knocks = leave_out_knocks(fit);
+    if (!knocks.any()) return true;
+    reblock(fit);
+    if (fit.samples.size() < fewest_rows || !settle(fit)) {
+        fit = before;
+        return true;
+    }
+    const std::optional<std::size_t> end = changed_behind(fit, knocks);
+    fit.findings.push_back(knock_finding(fit, knocks, end.has_value()));
+    if (!end) return true;
+    fit.window = cut_window(recording, fit.window.begin, fit.window.begin + *end);
+    reblock(fit);
+    return fit.samples.size() >= fewest_rows && settle(fit);
+}
+
 }  // namespace
 
 CurveFit fit_decay(const Recording& recording, const Event& event, const CurveFitOptions& options) {
@@ -274,6 +293,7 @@ CurveFit fit_decay(const Recording& recording, const Event& event, const CurveFi
         fit.window = cut_window(recording, fit.window.begin + samples, end);
         reblock(fit);
     }
+    if (!mind_knocks(fit, recording)) return fit;
     fit.quiet = find_quiet(fit, recording, event);
     if (fit.quiet.size() > 0 && !settle(fit)) return fit;
     add_slow_term(fit);

@@ -1,6 +1,9 @@
 #pragma once
 // The steps of the curve fit that look at its residuals.
 
+#include <optional>
+#include <vector>
+
 #include "identify/curve_fit.hpp"
 
 namespace ringwright::identify {
@@ -18,6 +21,19 @@ bool replace_spikes(CurveFit& fit);
 /// Adds steady tones (hum) and further modes that the residuals show, each where the likelihood gains what
 /// chance alone reaches in one recording in a thousand.
 void add_components(CurveFit& fit, const CurveFitOptions& options);
+/// Short loud stretches in the midst of a decay, samples of the window.
+struct Knocks {
+    std::vector<SampleRange> ranges;
+    [[nodiscard]] bool any() const { return !ranges.empty(); }
+};
+/// Takes loud stretches of the innovations (mean square of five blocks beyond nine robust variances; at most
+/// three stretches, 12 % of the blocks, not at either end) out of the window's runs.
+Knocks leave_out_knocks(CurveFit& fit);
+/// Where the decay has to end because the knock moved the article: it goes on with another amplitude or phase
+/// (one false alarm in 10,000). For a fit that leaves the knocks out.
+std::optional<std::size_t> changed_behind(const CurveFit& fit, const Knocks& knocks);
+Finding knock_finding(const CurveFit& fit, const Knocks& knocks, bool ends_the_decay);
+
 /// Adds a straight-line drift or a slow exponential to the model where the likelihood gains what chance alone
 /// reaches in one recording in a thousand.
 void add_slow_term(CurveFit& fit);
