@@ -175,3 +175,35 @@ TEST_CASE("coverage of the curve fit, short form") {
         CHECK(hits >= 131);
     }
 }
+
+TEST_CASE("coverage of logarithmic decrement and half-power, and their agreement, short form") {
+    // 100 recordings a cell at a nominal 95 %: fewer than 86 hits have a probability of 3e-4 (binomial); more
+    // than 5 disagreements at the stated 1 % one of 5e-4. The full form is tests/bench/coverage_study.
+    for (const double correlation : {0.0, 0.8}) {
+        Truth truth;
+        truth.damping_ratio = 0.03;
+        truth.cycles = 12.0;
+        truth.noise_correlation = correlation;
+        truth.samples_per_cycle = 50.0;
+        int decrement = 0, half_power = 0, disagree = 0;
+        IdentifyOptions options;
+        options.replicates = 120;
+        for (std::uint64_t seed = 6000; seed < 6100; ++seed) {
+            Deviates deviates(seed);
+            const simulated::Sample sample = simulated::draw(truth, deviates);
+            const EventIdentification result = identify_event(sample.recording, sample.event, options);
+            const auto holds = [&](const MethodResult& method) {
+                const auto found = method.quantities.find(Quantity::damping_ratio);
+                return found != method.quantities.end() && found->second.interval.low <= 0.03 &&
+                       0.03 <= found->second.interval.high;
+            };
+            decrement += holds(result.logarithmic_decrement);
+            half_power += holds(result.half_power_bandwidth);
+            disagree += result.agreement.tested && !result.agreement.consistent;
+        }
+        INFO("φ " << correlation);
+        CHECK(decrement >= 86);
+        CHECK(half_power >= 86);
+        CHECK(disagree <= 5);
+    }
+}
