@@ -42,9 +42,9 @@ void append(Differences& differences, const CurveFit& fit, const Reading& readin
         }
 }
 
-// Two ways to the p-value, of which the larger is taken: Hotelling's T², which owns up to what is not known of
-// the noise, and the rank of the observed distance among those of the replicates, which knows how skewed the
-// errors of logarithms of small amplitudes are.
+// Two ways to the p-value, of which the larger is taken: Hotelling's T², which owns up to what is not known
+// of the noise, and the rank of the observed distance among those of the replicates, which knows how skewed
+// the errors of logarithms of small amplitudes are.
 double p_value_of(const Differences& differences, double degrees_of_freedom) {
     const auto n = static_cast<double>(differences.replicates.rows());
     const auto q = static_cast<double>(differences.observed.size());

@@ -5,6 +5,7 @@
 #include <Eigen/QR>
 #include <algorithm>
 #include <cmath>
+#include <functional>
 #include <numbers>
 #include <vector>
 
@@ -212,6 +213,23 @@ void reblock(CurveFit& fit) {
     fit.fit = fit_projected(fit.fit.model, fit.samples, fit.noise.noise);
 }
 
+// What hardly falls in the window while something else does is a steady tone that the start values took for a
+// mode: it is fitted as one.
+bool steady_modes_to_tones(CurveFit& fit) {
+    constexpr double steady_fall = 0.2, falling = 1.0;  // nepers over the window
+    std::vector<Oscillator>& modes = fit.fit.model.oscillators;
+    const double span = fit.samples.time.maxCoeff();
+    const auto fall = [&](const Oscillator& o) { return o.slowest_rate() * span; };
+    if (std::ranges::none_of(modes, [&](const Oscillator& o) { return fall(o) > falling; })) return true;
+    const auto steady = [&](const Oscillator& o) { return std::abs(fall(o)) < steady_fall; };
+    const auto first = std::stable_partition(modes.begin(), modes.end(), std::not_fn(steady));
+    if (first == modes.end()) return true;
+    for (auto tone = first; tone != modes.end(); ++tone) fit.fit.model.tones.push_back(tone->log_frequency);
+    modes.erase(first, modes.end());
+    fit.fit = fit_projected(fit.fit.model, fit.samples, fit.noise.noise);
+    return settle(fit);
+}
+
 // The mode meant comes first: the one nearest `near_hz`, else the one with the most energy within the window,
 // A²(1 − e^(−2sT))/4s (a tone taken for a mode rings on for ever, and would have the most of it there).
 bool put_mode_first(CurveFit& fit, std::optional<double> near_hz) {
@@ -298,6 +316,7 @@ CurveFit fit_decay(const Recording& recording, const Event& event, const CurveFi
     if (fit.quiet.size() > 0 && !settle(fit)) return fit;
     add_slow_term(fit);
     add_components(fit, options);
+    if (!steady_modes_to_tones(fit)) return fit;
     if (!put_mode_first(fit, options.near_hz)) return fit;
     describe_components(fit);
     describe_slow_terms(fit);

@@ -30,35 +30,52 @@ Stretch longest_stretch(const DecaySamples& samples) {
     return *std::ranges::max_element(samples.stretches, {}, &Stretch::length);
 }
 
-// The angular frequency at which the residual spectrum stands highest above its surroundings; 0 when nothing
-// stands out.
-double outstanding_frequency(const CurveFit& fit) {
-    const Stretch stretch = longest_stretch(fit.samples);
-    const VectorXd residual = fit.residual.segment(stretch.begin, stretch.length);
-    constexpr double padding = 2.0;
-    const PowerSpectrum spectrum = power_spectrum(residual, padding);
+struct Outstanding {
+    double ratio = 0.0;
+    Index bin = 0;
+};
+
+// The peak that stands highest above the median of its surroundings; `half_width` bins on either side of bin
+// i.
+template <typename HalfWidth>
+Outstanding highest_above(const PowerSpectrum& spectrum, HalfWidth half_width) {
     const auto bins = spectrum.power.size();
-    const auto half_width = static_cast<Index>(
-        std::max(12.0, 12.0 / (spectrum.bin_cycles * static_cast<double>(stretch.length))));
-    double best_ratio = 0.0;
-    Index best = 0;
+    Outstanding best;
     std::vector<double> around;
     for (Index i = 2; i + 2 < bins; ++i) {
         if (spectrum.power(i) < spectrum.power(i - 1) || spectrum.power(i) < spectrum.power(i + 1)) continue;
+        const Index reach = half_width(i);
         around.clear();
-        for (Index j = std::max<Index>(1, i - half_width); j < std::min(bins, i + half_width + 1); ++j)
+        for (Index j = std::max<Index>(1, i - reach); j < std::min(bins, i + reach + 1); ++j)
             around.push_back(spectrum.power(j));
         const auto middle = around.begin() + static_cast<std::ptrdiff_t>(around.size() / 2);
         std::nth_element(around.begin(), middle, around.end());
         const double ratio = spectrum.power(i) * std::numbers::ln2 / std::max(*middle, 1e-300);
-        if (ratio > best_ratio) {
-            best_ratio = ratio;
-            best = i;
-        }
+        if (ratio > best.ratio) best = {ratio, i};
     }
-    const double threshold = std::log(static_cast<double>(bins) / 0.02);
-    if (best == 0 || best_ratio < threshold) return 0.0;
-    return two_pi * refined_peak(spectrum.power, best, best) * spectrum.bin_cycles / fit.samples.step_s;
+    return best;
+}
+
+// Angular frequencies at which the residual spectrum stands out: of its near surroundings as a steady tone
+// does, or of an octave about it as a mode does that is itself some bins wide. Empty when nothing stands out.
+std::vector<double> outstanding_frequencies(const CurveFit& fit) {
+    const Stretch stretch = longest_stretch(fit.samples);
+    const VectorXd residual = fit.residual.segment(stretch.begin, stretch.length);
+    constexpr double padding = 2.0;
+    const PowerSpectrum spectrum = power_spectrum(residual, padding);
+    const auto near = static_cast<Index>(
+        std::max(12.0, 12.0 / (spectrum.bin_cycles * static_cast<double>(stretch.length))));
+    const double threshold = std::log(static_cast<double>(spectrum.power.size()) / 0.02);
+    std::vector<double> found;
+    const auto take = [&](const Outstanding& peak) {
+        if (peak.bin == 0 || peak.ratio < threshold) return;
+        const double omega = two_pi * refined_peak(spectrum.power, peak.bin, peak.bin) * spectrum.bin_cycles /
+                             fit.samples.step_s;
+        if (found.empty() || std::abs(omega / found.front() - 1.0) > 1e-3) found.push_back(omega);
+    };
+    take(highest_above(spectrum, [&](Index) { return near; }));
+    take(highest_above(spectrum, [&](Index i) { return std::max(near, i / 2); }));
+    return found;
 }
 
 // −2 log-likelihood, each order of the noise model paid for.
@@ -150,28 +167,47 @@ Finding friction_finding() {
 
 }  // namespace
 
+namespace {
+
+// What is gained beyond what chance gains, and the fit that gains it.
+struct Addition {
+    double gain = 0.0;
+    bool tone = false;
+    std::optional<CurveFit> fit;
+};
+
+Addition best_addition(const CurveFit& fit, double omega, bool mode_allowed) {
+    const double before = criterion_of(fit);
+    const double tone_parameters = fit.quiet.size() > 0 ? 5.0 : 3.0;  // the quiet stretch has its own
+    Addition best;
+    const auto consider = [&](std::optional<CurveFit> trial, double parameters, bool tone) {
+        if (!trial) return;
+        const double gain = before - criterion_of(*trial) - needed_gain(fit, parameters);
+        if (gain > best.gain) best = {gain, tone, std::move(trial)};
+    };
+    consider(with_tone(fit, omega), tone_parameters, true);
+    if (mode_allowed) consider(with_mode(fit, omega), 4.0, false);
+    return best;
+}
+
+}  // namespace
+
 void add_components(CurveFit& fit, const CurveFitOptions& options) {
     for (int i = 0; i < most_components; ++i) {
-        const double omega = outstanding_frequency(fit);
-        if (omega <= 0.0) return;
-        const double before = criterion_of(fit);
-        std::optional<CurveFit> tone = with_tone(fit, omega);
-        std::optional<CurveFit> mode;
         const bool mode_allowed =
             !options.modes || static_cast<int>(fit.fit.model.oscillators.size()) < *options.modes;
-        if (mode_allowed) mode = with_mode(fit, omega);
-        const double tone_parameters = fit.quiet.size() > 0 ? 5.0 : 3.0;  // the quiet stretch has its own
-        const double tone_gain =
-            tone ? before - criterion_of(*tone) - needed_gain(fit, tone_parameters) : -1.0;
-        const double mode_gain = mode ? before - criterion_of(*mode) - needed_gain(fit, 4.0) : -1.0;
-        if (tone_gain <= 0.0 && mode_gain <= 0.0) return;
-        if (tone_gain >= mode_gain && at_the_mode(*tone)) {
+        Addition best;
+        for (const double omega : outstanding_frequencies(fit)) {
+            Addition addition = best_addition(fit, omega, mode_allowed);
+            if (addition.gain > best.gain) best = std::move(addition);
+        }
+        if (!best.fit) return;
+        if (best.tone && at_the_mode(*best.fit)) {
             fit.findings.push_back(friction_finding());
             return;
         }
-        CurveFit accepted = mode_gain > tone_gain ? std::move(*mode) : std::move(*tone);
-        if (!settle(accepted)) return;
-        fit = std::move(accepted);
+        if (!settle(*best.fit)) return;
+        fit = std::move(*best.fit);
     }
 }
 
