@@ -301,14 +301,14 @@ CurveFit fit_decay(const Recording& recording, const Event& event, const CurveFi
         }
         if (end > event.end && !same_noise_behind(fit, event)) {
             end = event.end;
-            fit.window = cut_window(recording, fit.window.begin, end);
+            cut_again(fit, recording, fit.window.begin, end);
             reblock(fit);
             continue;
         }
         const Index drop = misfitting_start(fit);
         if (drop == 0 || attempt == most_attempts - 1) break;
         const auto samples = static_cast<std::size_t>(drop * fit.samples.block);
-        fit.window = cut_window(recording, fit.window.begin + samples, end);
+        cut_again(fit, recording, fit.window.begin + samples, end);
         reblock(fit);
     }
     if (!mind_knocks(fit, recording)) return fit;

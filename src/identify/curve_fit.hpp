@@ -4,6 +4,7 @@
 #include <Eigen/Core>
 #include <optional>
 #include <string>
+#include <vector>
 
 #include "identify/decay_window.hpp"
 #include "identify/projected_fit.hpp"
@@ -34,6 +35,7 @@ struct CurveFit {
     Eigen::VectorXd residual;     ///< value − model, scaled like samples.value
     Eigen::VectorXd innovations;  ///< whitened residuals over their standard deviation
     Findings findings;
+    std::vector<std::size_t> spikes;  ///< samples of the window replaced so far, ascending
     bool valid = false;
     std::string reason;  ///< why it is not valid
 

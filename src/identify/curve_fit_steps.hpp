@@ -18,6 +18,10 @@ bool settle(CurveFit& fit);
 /// finding.
 bool replace_spikes(CurveFit& fit);
 
+/// Another window of the recording: its samples are as recorded, so what was replaced and said before is
+/// forgotten.
+void cut_again(CurveFit& fit, const Recording& recording, std::size_t begin, std::size_t end);
+
 /// Adds steady tones (hum) and further modes that the residuals show, each where the likelihood gains what
 /// chance alone reaches in one recording in a thousand.
 void add_components(CurveFit& fit, const CurveFitOptions& options);

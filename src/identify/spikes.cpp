@@ -4,6 +4,8 @@
 
 #include <algorithm>
 #include <cmath>
+#include <iterator>
+#include <utility>
 #include <vector>
 
 #include "identify/curve_fit_steps.hpp"
@@ -65,6 +67,26 @@ std::vector<std::size_t> find_spikes(const VectorXd& residual, double limit) {
     return spikes;
 }
 
+void drop_spike_finding(CurveFit& fit) {
+    std::erase_if(fit.findings, [](const Finding& finding) { return finding.code == "spikes_replaced"; });
+}
+
+/// One finding for the spikes of all passes: a sample replaced twice counts once.
+void tell_spikes(CurveFit& fit, const std::vector<std::size_t>& found) {
+    std::vector<std::size_t> all;
+    std::ranges::set_union(fit.spikes, found, std::back_inserter(all));
+    fit.spikes = std::move(all);
+    drop_spike_finding(fit);
+    const std::size_t count = fit.spikes.size();
+    fit.findings.push_back(
+        {"spikes_replaced", Severity::note,
+         fmt::format(
+             "{} isolated sample{} far outside the noise (the first at {:.6g} s after the start of the "
+             "decay) {} left out of the fit.",
+             count, count == 1 ? "" : "s", fit.window.time_of(fit.spikes.front()),
+             count == 1 ? "was" : "were")});
+}
+
 }  // namespace
 
 bool replace_spikes(CurveFit& fit) {
@@ -86,13 +108,14 @@ bool replace_spikes(CurveFit& fit) {
         const double around = count > 0 ? sum / count : 0.0;
         fit.window.value[spike] += around - residual(static_cast<Index>(spike));
     }
-    fit.findings.push_back(
-        {"spikes_replaced", Severity::note,
-         fmt::format("{} isolated sample{} far outside the noise (the first at {:.6g} s after the "
-                     "start of the decay) {} left out of the fit.",
-                     spikes.size(), spikes.size() == 1 ? "" : "s", fit.window.time_of(spikes.front()),
-                     spikes.size() == 1 ? "was" : "were")});
+    tell_spikes(fit, spikes);
     return true;
+}
+
+void cut_again(CurveFit& fit, const Recording& recording, std::size_t begin, std::size_t end) {
+    fit.window = cut_window(recording, begin, end);
+    fit.spikes.clear();
+    drop_spike_finding(fit);
 }
 
 }  // namespace ringwright::identify
