@@ -271,9 +271,12 @@ bool mind_knocks(CurveFit& fit, const Recording& recording) {
     const std::optional<std::size_t> end = changed_behind(fit, knocks);
     fit.findings.push_back(knock_finding(fit, knocks, end.has_value()));
     if (!end) return true;
-    fit.window = cut_window(recording, fit.window.begin, fit.window.begin + *end);
+    cut_again(fit, recording, fit.window.begin, fit.window.begin + *end);
     reblock(fit);
-    return fit.samples.size() >= fewest_rows && settle(fit);
+    if (fit.samples.size() < fewest_rows || !settle(fit)) return false;
+    if (!replace_spikes(fit)) return true;
+    reblock(fit);
+    return settle(fit);
 }
 
 }  // namespace
@@ -318,6 +321,7 @@ CurveFit fit_decay(const Recording& recording, const Event& event, const CurveFi
     add_components(fit, options);
     if (!steady_modes_to_tones(fit)) return fit;
     if (!put_mode_first(fit, options.near_hz)) return fit;
+    drop_covering_modes(fit);
     describe_components(fit);
     describe_slow_terms(fit);
     fit.valid = estimate_noise(fit, options.noise_draws, options.seed);

@@ -44,6 +44,9 @@ void add_slow_term(CurveFit& fit);
 /// A finding for what add_slow_term added.
 void describe_slow_terms(CurveFit& fit);
 
+/// Takes out modes that cover the one that comes first, more than twice as broad: they stand for damping or
+/// stiffness that depends on amplitude.
+void drop_covering_modes(CurveFit& fit);
 /// A finding for each tone and each mode beside the one that comes first.
 void describe_components(CurveFit& fit);
 

@@ -211,6 +211,30 @@ void add_components(CurveFit& fit, const CurveFitOptions& options) {
     }
 }
 
+namespace {
+
+// A broad mode that covers a much narrower one does not stand for a mode but for what the model of the narrow
+// one lacks: damping or stiffness that depends on amplitude.
+bool covers(const Oscillator& broad, const Oscillator& narrow) {
+    const double away = std::abs(broad.log_frequency - narrow.log_frequency);
+    return broad.damping_ratio() > 2.0 * narrow.damping_ratio() && away < 2.0 * broad.damping_ratio();
+}
+
+}  // namespace
+
+void drop_covering_modes(CurveFit& fit) {
+    for (int round = 0; round < most_components; ++round) {  // what is left moves when one is gone
+        CurveFit without = fit;
+        std::vector<Oscillator>& modes = without.fit.model.oscillators;
+        const Oscillator first = modes.front();
+        std::erase_if(modes, [&](const Oscillator& mode) { return covers(mode, first); });
+        if (modes.size() == fit.fit.model.oscillators.size()) return;
+        without.fit = fit_projected(without.fit.model, without.samples, without.noise.noise);
+        if (!without.fit.converged || !settle(without)) return;
+        fit = std::move(without);
+    }
+}
+
 void describe_components(CurveFit& fit) {
     const std::vector<Oscillator>& modes = fit.fit.model.oscillators;
     for (std::size_t i = 1; i < modes.size(); ++i) fit.findings.push_back(mode_finding(modes[i]));

@@ -47,6 +47,18 @@ double robust_deviation(const VectorXd& residual) {
 
 // Runs of at most three samples beyond the limit that stand alone: where many stand together, the model is
 // wrong there and nothing is a spike.
+// A spike leaves its neighbours behind; the crest of a mode that is not yet in the model does not.
+bool leaves_neighbours(const VectorXd& residual, const SampleRange& run) {
+    constexpr double share = 0.6;  // of the height, above the higher of the two neighbours
+    const auto n = static_cast<std::size_t>(residual.size());
+    if (run.begin == 0 || run.end >= n) return true;
+    const auto first = static_cast<Index>(run.begin), last = static_cast<Index>(run.end);
+    const auto inside = residual.segment(first, last - first);
+    const double height = inside.cwiseAbs().maxCoeff(), sign = inside.sum() > 0.0 ? 1.0 : -1.0;
+    const double beside = std::max(sign * residual(first - 1), sign * residual(last));
+    return height - beside > share * height;
+}
+
 std::vector<std::size_t> find_spikes(const VectorXd& residual, double limit) {
     std::vector<SampleRange> runs;
     const auto n = static_cast<std::size_t>(residual.size());
@@ -62,6 +74,7 @@ std::vector<std::size_t> find_spikes(const VectorXd& residual, double limit) {
         const bool crowded = (r > 0 && runs[r].begin - runs[r - 1].end < alone) ||
                              (r + 1 < runs.size() && runs[r + 1].begin - runs[r].end < alone);
         if (crowded || runs[r].begin == 0 || runs[r].end - runs[r].begin > longest_spike) continue;
+        if (!leaves_neighbours(residual, runs[r])) continue;
         for (std::size_t i = runs[r].begin; i < runs[r].end; ++i) spikes.push_back(i);
     }
     return spikes;
