@@ -75,19 +75,20 @@ Outcome outcome_of(const DamagedFile& file) {
 std::map<std::string, int> survey(std::uint64_t first, std::uint64_t count, double most_seconds) {
     std::map<std::string, int> outcomes;
     double slowest = 0.0;
+    std::uint64_t slowest_seed = first;
     for (std::uint64_t seed = first; seed < first + count; ++seed) {
         const DamagedFile file = damaged_file(seed);
         const double begun = processor_seconds();
         const Outcome outcome = outcome_of(file);
         const double took = processor_seconds() - begun;
-        slowest = std::max(slowest, took);
+        if (took > slowest) slowest = took, slowest_seed = seed;
         ++outcomes[outcome.what];
         if (outcome.broken.empty() && took <= most_seconds) continue;
         FAIL_CHECK(fmt::format("seed {} ({}, {} bytes): {} in {:.2f} s", seed, file.kind, file.bytes.size(),
                                outcome.broken, took));
     }
-    std::cout << fmt::format("{} damaged files, slowest {:.2f} s, peak {} MB:", count, slowest,
-                             peak_megabytes());
+    std::cout << fmt::format("{} damaged files, slowest {:.2f} s (seed {}), peak {} MB:", count, slowest,
+                             slowest_seed, peak_megabytes());
     for (const auto& [what, number] : outcomes) std::cout << ' ' << number << ' ' << what;
     std::cout << '\n';
     return outcomes;
