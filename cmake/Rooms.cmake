@@ -18,7 +18,12 @@ pkg_check_modules(PLPLOT REQUIRED IMPORTED_TARGET plplot)
 add_library(ringwright_flags INTERFACE)
 target_compile_options(ringwright_flags INTERFACE
   -Wall -Wextra -Wpedantic -Wconversion -Wshadow -Werror)
-if(RINGWRIGHT_SANITIZE)
+if(RINGWRIGHT_SANITIZE STREQUAL "thread")
+  target_compile_options(ringwright_flags INTERFACE -fsanitize=thread -fno-omit-frame-pointer
+    # What Catch2 and Boost do with fences, the sanitizer does not see.
+    $<$<CXX_COMPILER_ID:GNU>:-Wno-tsan> $<$<CXX_COMPILER_ID:GNU>:-Wno-maybe-uninitialized>)
+  target_link_options(ringwright_flags INTERFACE -fsanitize=thread)
+elseif(RINGWRIGHT_SANITIZE)
   target_compile_options(ringwright_flags INTERFACE
     -fsanitize=address,undefined -fno-sanitize-recover=all -fno-omit-frame-pointer
     # GCC 12 takes what the sanitizers add for reads of values that were never set.
@@ -26,7 +31,11 @@ if(RINGWRIGHT_SANITIZE)
   target_link_options(ringwright_flags INTERFACE -fsanitize=address,undefined)
 endif()
 if(RINGWRIGHT_FUZZ)
-  target_compile_options(ringwright_flags INTERFACE -fsanitize=fuzzer-no-link,address,undefined)
+  if(NOT CMAKE_CXX_COMPILER_ID MATCHES Clang)
+    message(FATAL_ERROR "RINGWRIGHT_FUZZ needs clang: CC=clang-14 CXX=clang++-14 cmake …")
+  endif()
+  target_compile_options(ringwright_flags INTERFACE -fsanitize=fuzzer-no-link,address,undefined
+    -fno-sanitize-recover=all -fno-omit-frame-pointer)
   target_link_options(ringwright_flags INTERFACE -fsanitize=address,undefined)
 endif()
 

@@ -13,6 +13,7 @@
 #include <string>
 
 #include "app/command.hpp"
+#include "app/large_memory.hpp"
 #include "app/messages.hpp"
 #include "ringwright/error.hpp"
 #include "ringwright/version.hpp"
@@ -109,6 +110,7 @@ int answer_parser(const CLI::App& parser, const CLI::ParseError& error, int argc
 }  // namespace
 
 int main(int argc, char** argv) {
+    app::keep_freed_memory();
     // A reader that has seen enough closes its end of the pipe; that is no failure to report.
     std::signal(SIGPIPE, SIG_IGN);
     // A file that may grow no further is a failure to report, not to die of.

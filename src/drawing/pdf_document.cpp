@@ -29,7 +29,7 @@ PageGeometry geometry_of(PaperSize paper) {
     return paper == PaperSize::a4 ? PageGeometry{595.276, 841.89} : PageGeometry{612.0, 792.0};
 }
 
-constexpr double body_size = 9.5, fine_size = 8.2, table_size = 8.5, line_factor = 1.32;
+constexpr double body_size = 9.5, fine_size = 8.2, table_size = 8.5;
 constexpr Colour good{26, 107, 60}, bad{160, 28, 40}, undecided{138, 90, 0}, tile_ground{246, 248, 250};
 
 struct Style {

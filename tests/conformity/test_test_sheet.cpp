@@ -161,6 +161,9 @@ TEST_CASE("what cannot be used is refused with its place") {
 
 TEST_CASE("what is no TOML is refused with line and column") {
     CHECK(problem_of("[article\n").place.rfind("line 1, column", 0) == 0);
+    // The parser of the library asserts on the first and runs into what it calls unreachable on the second.
+    CHECK(problem_of("\uFEF7# [article]\n").place.rfind("line 1, column", 0) == 0);
+    CHECK(problem_of("[*[recordings]]\n").place.rfind("line 1, column", 0) == 0);
     CHECK(problem_of("[article]\ntype = \"a\"\ntype = \"b\"\n").place.rfind("line 3, column", 0) == 0);
     CHECK(problem_of(std::string("[article]\ntype = \"\xff\"\n")).place.rfind("line 2", 0) == 0);
     CHECK_THROWS_AS(read_test_sheet("/nonexistent/sheet.toml"), InputError);

@@ -9,6 +9,7 @@
 #include <iostream>
 #include <map>
 #include <nlohmann/json.hpp>
+#include <regex>
 
 #include "faults/archive.hpp"
 #include "faults/damage.hpp"
@@ -54,9 +55,10 @@ Outcome outcome_of(const DamagedFile& file) {
         const Identification identification = identify(std::move(input), {});
         const Json json = to_json(identification);
         if (has_null(json)) return {"answered", "a null in " + json.dump()};
+        // A finding may quote a cell that reads nan; a number of the answer may not.
+        static const std::regex no_number("(±|=|\\[|,) *-?(nan|inf)\\b");
         const std::string text = to_text(identification) + to_csv(identification);
-        if (text.find("nan") != std::string::npos || text.find("inf,") != std::string::npos)
-            return {"answered", "no number in " + text};
+        if (std::regex_search(text, no_number)) return {"answered", "no number in " + text};
         if (identification.answered()) return {"answered", {}};
         const RecordingIdentification& recording = identification.recordings.front();
         const bool why = !recording.reason.empty() ||
@@ -78,9 +80,14 @@ std::map<std::string, int> survey(std::uint64_t first, std::uint64_t count, doub
     std::uint64_t slowest_seed = first;
     for (std::uint64_t seed = first; seed < first + count; ++seed) {
         const DamagedFile file = damaged_file(seed);
-        const double begun = processor_seconds();
-        const Outcome outcome = outcome_of(file);
-        const double took = processor_seconds() - begun;
+        Outcome outcome;
+        double took = 1e300;
+        // A processor shared with others takes longer for the same: what is slow has to be slow twice.
+        for (int attempt = 0; attempt < 2 && took > most_seconds; ++attempt) {
+            const double begun = processor_seconds();
+            outcome = outcome_of(file);
+            took = std::min(took, processor_seconds() - begun);
+        }
         if (took > slowest) slowest = took, slowest_seed = seed;
         ++outcomes[outcome.what];
         if (outcome.broken.empty() && took <= most_seconds) continue;
