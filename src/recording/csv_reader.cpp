@@ -473,10 +473,12 @@ void refuse_short(const Recording& recording, std::size_t rows, const Loss& loss
 
 void refuse_stopped_clock(const Recording& recording) {
     const bool stands = recording.samples.size() >= 2 && !(recording.duration_s() > 0.0);
-    if (!stands && std::isfinite(recording.clock.sample_rate_hz)) return;
-    throw InputError(
-        Problem{recording.origin.file, "time column", "the time does not go forward",
-                "Name the right time column with --time-column, or give the sampling rate with --rate HZ."});
+    const bool endless = !std::isfinite(recording.duration_s());
+    if (!stands && !endless && std::isfinite(recording.clock.sample_rate_hz)) return;
+    throw InputError(Problem{
+        recording.origin.file, "time column",
+        endless ? "the times lie further apart than a number can say" : "the time does not go forward",
+        "Name the right time column with --time-column, or give the sampling rate with --rate HZ."});
 }
 
 }  // namespace
