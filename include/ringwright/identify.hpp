@@ -26,8 +26,18 @@ struct Mode {
 struct MethodResult {
     MethodStatus status = MethodStatus::not_applicable;
     std::string reason;
-    std::string model;  ///< curve fit only: "viscous", …
+    /// Curve fit only: "viscous", "viscous+friction", "two-way", "viscous+quadratic", "viscous+hardening",
+    /// "viscous+softening" and combinations ("two-way+friction").
+    std::string model;
     Quantities quantities;
+    /// Where the model is not "viscous": amplitude of the measured quantity, in units of the samples, at
+    /// which the damping ratio and what follows from it are the equivalent viscous ones.
+    std::optional<double> at_amplitude;
+    /// Where the model is not "viscous" and the samples are in SI units: its coefficients over the moving
+    /// mass (or inertia), each under the key of what it becomes once that is known: friction_force in N/kg,
+    /// damping_coefficient, compression_damping and rebound_damping in 1/s, quadratic_damping in 1/m,
+    /// cubic_stiffness in 1/(m² s²). Compression is where the recorded displacement rises.
+    Quantities per_mass;
     std::vector<Mode> modes;  ///< curve fit only, strongest (or the one meant) first
 };
 
@@ -54,12 +64,34 @@ struct DecayPicture {
         course_high;  ///< damping against amplitude
 };
 
+/// Damping and frequency of one stretch of the decay. The amplitude is that in its middle, in units of the
+/// samples.
+struct AmplitudePoint {
+    double amplitude = 0.0;
+    Estimate damping_ratio, natural_frequency;
+};
+
+/// Chance that a decay whose damping and frequency do not change is said to depend on amplitude.
+inline constexpr double amplitude_dependence_level = 0.01;
+
+/// Damping ratio and frequency against amplitude, from successive stretches of the decay, each as a viscous
+/// decay of its own: no law assumed. Empty where the decay is too short or too noisy for three of them.
+struct AmplitudeCourse {
+    std::vector<AmplitudePoint> points;  ///< in the order of time
+    bool tested = false;
+    double p_value = 1.0;  ///< of damping and frequency being the same in all of them
+    bool depends_on_amplitude = false;
+};
+
 struct IdentifyOptions {
     double confidence_level = 0.95;
     std::optional<double> near_hz;
     std::optional<int> modes;
-    std::optional<double> at_amplitude;  ///< SI; amplitude at which an equivalent damping ratio is stated
-    bool pictures = false;               ///< fill DecayPicture
+    /// Amplitude at which an equivalent damping ratio is stated, SI; of `amplitude_of`, else of what was
+    /// measured. Absent: the middle of the decay.
+    std::optional<double> at_amplitude;
+    std::optional<MeasuredQuantity> amplitude_of;
+    bool pictures = false;       ///< fill DecayPicture
     std::uint64_t seed = 20311;  ///< of the bootstrap; the same recording and seed give the same answer
     int replicates = 200;        ///< of the bootstrap; 0: curve fit only
 };
@@ -69,6 +101,7 @@ struct EventIdentification {
     double start_s = 0.0, end_s = 0.0;
     MethodResult logarithmic_decrement, half_power_bandwidth, curve_fit;
     Agreement agreement;
+    AmplitudeCourse course;
     Findings findings;
     DecayPicture picture;
 };

@@ -20,6 +20,12 @@ using Eigen::Index;
 using Eigen::MatrixXd;
 using Eigen::VectorXd;
 
+std::size_t end_of_fit(const Event& event) {
+    const std::size_t decay = event.end - event.begin;
+    const std::size_t wanted = event.end + std::max<std::size_t>(decay / 2, 400);
+    return std::max(event.end, std::min(event.rest_end, wanted));
+}
+
 namespace {
 
 constexpr Index fewest_rows = 12;
@@ -27,13 +33,6 @@ constexpr std::size_t fewest_decay_samples = 16;
 constexpr int noise_rounds = 4;
 constexpr int most_attempts = 5;  // at the window: spikes, start and end each ask for another fit
 constexpr double settled = 0.02;  // change of the parameters between rounds, in standard uncertainties
-
-// How far behind the decay the fit reads on: the noise there is the same noise, and a short decay needs it.
-std::size_t end_of_fit(const Event& event) {
-    const std::size_t decay = event.end - event.begin;
-    const std::size_t wanted = event.end + std::max<std::size_t>(decay / 2, 400);
-    return std::max(event.end, std::min(event.rest_end, wanted));
-}
 
 MatrixXd full_design(const ProjectedFit& fit, const DecaySamples& samples) {
     MatrixXd design(samples.size(), fit.model.linear_count() + fit.model.nonlinear_count());
@@ -85,10 +84,11 @@ void keep_decay_part(WhitenedFit& fit, Index columns) {
 
 }  // namespace
 
-bool estimate_noise(CurveFit& fit, int draws, std::uint64_t seed) {
-    const Orthonormal design = orthonormalise(full_design(fit.fit, fit.samples));
+bool estimate_noise(CurveFit& fit, const MatrixXd& all_columns, const VectorXd& residual, int draws,
+                    std::uint64_t seed) {
+    const Orthonormal design = orthonormalise(all_columns);
     if (!design.full_rank) return false;
-    fit.residual = fit.samples.value - linear_columns(fit.fit.model, fit.samples) * fit.fit.coefficients;
+    fit.residual = residual;
     fit.map = design.map;
     fit.basis = design.basis;
     NoiseOptions options;
@@ -104,6 +104,12 @@ bool estimate_noise(CurveFit& fit, int draws, std::uint64_t seed) {
     whiten(fit.noise.noise, fit.samples.stretches, fit.innovations);
     fit.innovations /= std::sqrt(fit.noise.noise.innovation_variance);
     return fit.noise.fit.valid;
+}
+
+bool estimate_noise(CurveFit& fit, int draws, std::uint64_t seed) {
+    const VectorXd residual =
+        fit.samples.value - linear_columns(fit.fit.model, fit.samples) * fit.fit.coefficients;
+    return estimate_noise(fit, full_design(fit.fit, fit.samples), residual, draws, seed);
 }
 
 namespace {

@@ -8,8 +8,14 @@
 
 namespace ringwright::identify {
 
+/// How far behind the decay a fit reads on: the noise there is the same noise, and a short decay needs it.
+[[nodiscard]] std::size_t end_of_fit(const Event& event);
+
 /// Estimates the noise of the residuals and the parameter map; false where the design has not full rank.
 bool estimate_noise(CurveFit& fit, int draws, std::uint64_t seed);
+/// The same for a model with these columns (derivatives by all its parameters) and this residual.
+bool estimate_noise(CurveFit& fit, const Eigen::MatrixXd& all_columns, const Eigen::VectorXd& residual,
+                    int draws, std::uint64_t seed);
 /// Generalised least squares to convergence: noise, parameters, noise … until neither moves.
 bool settle(CurveFit& fit);
 

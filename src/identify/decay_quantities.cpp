@@ -349,6 +349,8 @@ void drop_undetermined(Quantities& quantities) {
         quantities.erase(slow);
 }
 
+}  // namespace
+
 void add_functions_of_damping(Quantities& quantities) {
     const auto found = quantities.find(Quantity::damping_ratio);
     if (found == quantities.end()) return;
@@ -361,8 +363,6 @@ void add_functions_of_damping(Quantities& quantities) {
         quantities[Quantity::quality_factor] =
             through(zeta, quality_factor_of, 0.5 / (zeta.value * zeta.value));
 }
-
-}  // namespace
 
 Quantities decay_quantities(const CurveFit& fit, std::size_t index, double confidence_level) {
     const Oscillator& at = fit.fit.model.oscillators[index];

@@ -22,4 +22,7 @@ constexpr double largest_damping_ratio = 100.0;
 [[nodiscard]] Quantities quantities_from(const Estimate& natural_frequency, const Estimate& damping_ratio,
                                          double correlation, double confidence_level);
 
+/// Adds logarithmic decrement, loss factor and quality factor, where they exist, to a damping ratio.
+void add_functions_of_damping(Quantities& quantities);
+
 }  // namespace ringwright::identify

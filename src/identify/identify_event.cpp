@@ -3,11 +3,16 @@
 #include <algorithm>
 #include <cmath>
 #include <numbers>
+#include <optional>
 
 #include "identify/agreement.hpp"
+#include "identify/amplitude_course.hpp"
 #include "identify/curve_fit.hpp"
 #include "identify/decay_picture.hpp"
 #include "identify/decay_quantities.hpp"
+#include "identify/law_fit.hpp"
+#include "identify/law_quantities.hpp"
+#include "identify/law_window.hpp"
 #include "identify/method_bootstrap.hpp"
 #include "identify/residual_checks.hpp"
 #include "ringwright/distributions.hpp"
@@ -48,6 +53,28 @@ MethodResult curve_fit_result(const CurveFit& fit, double confidence_level) {
         return result;
     }
     result.status = MethodStatus::ok;
+    return result;
+}
+
+// The amplitude asked for as one of what was measured, which follows from another by the natural frequency.
+double amplitude_for(const LawFit& law, const Recording& recording, const IdentifyOptions& options) {
+    if (!options.at_amplitude) return middle_amplitude(law);
+    const double omega = law.rate * law.state.law.angular_frequency();
+    const auto order = [](MeasuredQuantity quantity) { return static_cast<double>(measured_of(quantity)); };
+    const MeasuredQuantity given = options.amplitude_of.value_or(recording.quantity);
+    return *options.at_amplitude * std::pow(omega, order(recording.quantity) - order(given));
+}
+
+MethodResult law_result(const LawFit& law, const Recording& recording, const IdentifyOptions& options) {
+    MethodResult result;
+    result.status = MethodStatus::ok;
+    result.model = name_of(law.terms, law.state.law[LawParameter::cubic]);
+    result.at_amplitude = amplitude_for(law, recording, options);
+    result.quantities = law_quantities(law, *result.at_amplitude, options.confidence_level);
+    if (recording.scaled) result.per_mass = law_per_mass(law, options.confidence_level);
+    const Swings swings = swings_of(law);
+    const double amplitude = swings.amplitude.empty() ? law.curve.samples.scale : swings.amplitude.front();
+    result.modes.push_back({result.quantities, amplitude});
     return result;
 }
 
@@ -124,6 +151,47 @@ void explain_missing(const CurveFit& fit, const MethodResult& result, Findings& 
 
 }  // namespace
 
+namespace {
+
+void append(Findings& findings, const Findings& more) {
+    findings.insert(findings.end(), more.begin(), more.end());
+}
+
+void run_simple_methods(EventIdentification& result, const CurveFit& fit, const MethodBootstrap& bootstrap,
+                        double confidence_level) {
+    result.logarithmic_decrement =
+        simple_method_result(bootstrap.readings.decrement, bootstrap.decrement, fit, confidence_level);
+    result.half_power_bandwidth =
+        simple_method_result(bootstrap.readings.half_power, bootstrap.half_power, fit, confidence_level);
+}
+
+// A law that needs the swings before the event's start, and leaves no more there than noise as the search saw
+// it.
+std::optional<LawFit> law_from_earlier_start(const CurveFit& viscous, const Recording& recording,
+                                             const Event& event, const CurveFitOptions& options) {
+    constexpr double most_noise = 2.0;
+    if (!viscous.valid) return std::nullopt;
+    const auto earlier = with_earlier_start(viscous, recording, event);
+    if (!earlier) return std::nullopt;
+    auto law = choose_law(fit_decay(recording, *earlier, options), recording, *earlier, options);
+    if (!law) return std::nullopt;
+    const double left = residual_level(law->curve);
+    const double noise = event.noise_level / std::sqrt(static_cast<double>(law->curve.samples.block));
+    if (left > most_noise * noise && left > residual_level(viscous)) return std::nullopt;
+    return law;
+}
+
+// The two simple methods know viscous damping only.
+void explain_by_law(Agreement& agreement, const std::string& model) {
+    if (!agreement.tested || agreement.consistent) return;
+    agreement.reading = fmt::format(
+        "The methods disagree by more than their uncertainties allow: the damping is not viscous "
+        "alone ({}), and each method averages over the amplitudes in its own way. Take the curve fit.",
+        model);
+}
+
+}  // namespace
+
 EventIdentification identify_event(const Recording& recording, const Event& event,
                                    const IdentifyOptions& options) {
     EventIdentification result;
@@ -134,9 +202,13 @@ EventIdentification identify_event(const Recording& recording, const Event& even
     fit_options.near_hz = options.near_hz;
     fit_options.modes = options.modes;
     fit_options.seed = options.seed;
-    const CurveFit fit = fit_decay(recording, event, fit_options);
-    result.curve_fit = curve_fit_result(fit, options.confidence_level);
-    result.findings = fit.findings;
+    const CurveFit viscous = fit_decay(recording, event, fit_options);
+    auto law = law_from_earlier_start(viscous, recording, event, fit_options);
+    if (!law) law = choose_law(viscous, recording, event, fit_options);
+    const CurveFit& fit = law ? law->viscous : viscous;
+    result.curve_fit =
+        law ? law_result(*law, recording, options) : curve_fit_result(fit, options.confidence_level);
+    result.findings = law ? law->curve.findings : fit.findings;
     if (result.curve_fit.status != MethodStatus::ok) {
         result.logarithmic_decrement.reason = result.half_power_bandwidth.reason = result.curve_fit.reason;
         return result;
@@ -145,18 +217,24 @@ EventIdentification identify_event(const Recording& recording, const Event& even
     if (options.replicates > 0)
         bootstrap = bootstrap_methods(fit, affordable_replicates(options.replicates, fit.samples.size()),
                                       options.seed);
-    result.logarithmic_decrement = simple_method_result(bootstrap.readings.decrement, bootstrap.decrement,
-                                                        fit, options.confidence_level);
-    result.half_power_bandwidth = simple_method_result(bootstrap.readings.half_power, bootstrap.half_power,
-                                                       fit, options.confidence_level);
-    const Findings checks = check_residuals(fit);
-    result.findings.insert(result.findings.end(), checks.begin(), checks.end());
-    explain_missing(fit, result.curve_fit, result.findings);
+    run_simple_methods(result, fit, bootstrap, options.confidence_level);
+    append(result.findings, check_residuals(law ? law->curve : fit));
+    if (law)
+        append(result.findings, describe_law(*law, recording, *result.curve_fit.at_amplitude));
+    else
+        explain_missing(fit, result.curve_fit, result.findings);
+    result.course = amplitude_course(fit, law ? law->curve.noise : fit.noise, options.confidence_level);
+    if (!law) append(result.findings, describe_course(result.course));
     Findings known = result.findings;
-    known.insert(known.end(), event.findings.begin(), event.findings.end());
-    known.insert(known.end(), recording.findings.begin(), recording.findings.end());
+    append(known, event.findings);
+    append(known, recording.findings);
     result.agreement = test_agreement(fit, bootstrap, known);
-    if (options.pictures) result.picture = draw_decay(recording, fit, bootstrap);
+    if (law) explain_by_law(result.agreement, result.curve_fit.model);
+    if (options.pictures) {
+        result.picture = draw_decay(recording, law ? law->curve : fit, bootstrap);
+        if (law) draw_law(result.picture, *law);
+        draw_course(result.picture, result.course);
+    }
     return result;
 }
 

@@ -1,0 +1,570 @@
+#include "identify/law_fit.hpp"
+
+#include <Eigen/Cholesky>
+#include <algorithm>
+#include <array>
+#include <cmath>
+#include <initializer_list>
+#include <numbers>
+
+#include "identify/curve_fit_steps.hpp"
+#include "identify/law_window.hpp"
+#include "ringwright/distributions.hpp"
+#include "ringwright/least_squares.hpp"
+
+namespace ringwright::identify {
+
+using Eigen::Index;
+using Eigen::MatrixXd;
+using Eigen::VectorXd;
+
+namespace {
+
+constexpr std::array extra_terms{LawParameter::friction, LawParameter::asymmetry, LawParameter::quadratic,
+                                 LawParameter::cubic};
+constexpr int most_terms = 2;
+constexpr int noise_rounds = 4;
+constexpr int first_evaluations = 15, later_evaluations = 25;
+constexpr double settled = 0.02;       // change between rounds in standard uncertainties
+constexpr double most_damping = 0.95;  // beyond it a decay shows too little of a law
+constexpr double fewest_cycles = 1.0;  // from the start to the noise
+constexpr double same_mode = 0.3;      // of the logarithm of frequency
+constexpr double widths_aside = 3.0;   // of a resonance, within which a component is put aside
+
+double rows_of(const CurveFit& fit) {
+    return fit.noise.degrees_of_freedom + static_cast<double>(fit.map.cols());
+}
+
+// What one more term has to gain.
+double price_of_term(double rows) {
+    static const double by_chance =
+        chi_squared_quantile(1.0 - richer_law_level / static_cast<double>(extra_terms.size()), 1.0);
+    return std::max(std::log(rows), by_chance);
+}
+
+double criterion_of(const CurveFit& fit, int terms) {
+    const double rows = rows_of(fit);
+    return fit.noise.fit.likelihood_criterion +
+           std::log(rows) * static_cast<double>(fit.noise.noise.order()) + price_of_term(rows) * terms;
+}
+
+// The mode meant as a law of no other terms, in units of its own frequency.
+DampingLaw viscous_law(const CurveFit& fit, Measured measured) {
+    const Oscillator& o = fit.oscillator();
+    const Index column = fit.fit.model.first_oscillator_column();
+    const double a = fit.fit.coefficients(column), b = fit.fit.coefficients(column + 1);
+    const double s = o.damping_ratio(), slope = b - s * a;  // of what is measured, at the start
+    DampingLaw law;
+    law[LawParameter::damping] = s;
+    if (measured == Measured::displacement) {
+        law[LawParameter::displacement] = a;
+        law[LawParameter::velocity] = slope;
+    } else if (measured == Measured::velocity) {
+        law[LawParameter::velocity] = a;
+        law[LawParameter::displacement] = -slope - 2.0 * s * a;
+    } else {
+        law[LawParameter::velocity] = -slope - 2.0 * s * a;
+        law[LawParameter::displacement] = -a - 2.0 * s * law[LawParameter::velocity];
+    }
+    return law;
+}
+
+LawState viscous_state(const CurveFit& fit, Measured measured) {
+    LawState state;
+    state.law = viscous_law(fit, measured);
+    state.others = fit.fit.model;
+    state.others.oscillators.erase(state.others.oscillators.begin());
+    const Index column = fit.fit.model.first_oscillator_column(), after = fit.linear_count() - column - 2;
+    state.coefficients.resize(column + after);
+    state.coefficients << fit.fit.coefficients.head(column), fit.fit.coefficients.tail(after);
+    return state;
+}
+
+class LawProblem {
+  public:
+    LawProblem(const LawModel& model, const LawState& like, const DecaySamples& samples,
+               const AutoregressiveNoise& noise)
+        : model_(model), like_(like), samples_(samples), noise_(noise) {}
+
+    [[nodiscard]] LeastSquaresProblem problem() const {
+        LeastSquaresProblem problem;
+        problem.residual_count = samples_.size();
+        problem.residuals = [this](const VectorXd& at, VectorXd& residual) {
+            const LawState state = model_.unpack(at, like_);
+            if (!model_.usable(state)) {  // a wall, so that the step is shortened
+                residual.setConstant(1e3 * (1.0 + samples_.value.norm()));
+                return;
+            }
+            residual = samples_.value - model_.value(state);
+            if (residual.allFinite())
+                whiten(noise_, samples_.stretches, residual);
+            else
+                residual.setConstant(1e3 * (1.0 + samples_.value.norm()));
+        };
+        problem.jacobian = [this](const VectorXd& at, MatrixXd& jacobian) {
+            jacobian = -model_.columns(model_.unpack(at, like_));
+            whiten(noise_, samples_.stretches, jacobian);
+        };
+        return problem;
+    }
+
+  private:
+    const LawModel& model_;
+    const LawState& like_;
+    const DecaySamples& samples_;
+    const AutoregressiveNoise& noise_;
+};
+
+struct Found {
+    LawState state;
+    double residual_sum = 0.0;
+};
+
+std::optional<Found> fit_once(const LawFit& fit, const LawModel& model, const LawState& start,
+                              const AutoregressiveNoise& noise, int evaluations) {
+    const LawProblem law(model, start, fit.curve.samples, noise);
+    LeastSquaresOptions options;
+    options.max_evaluations = evaluations;
+    options.tolerance = 1e-8;
+    const LeastSquaresFit found = fit_least_squares(law.problem(), model.pack(start), options);
+    if (!found.parameters.allFinite() || !(found.residual_sum_of_squares > 0.0)) return std::nullopt;
+    const LawState state = model.unpack(found.parameters, start);
+    if (!model.usable(state)) return std::nullopt;
+    return Found{state, found.residual_sum_of_squares};
+}
+
+bool estimate_law_noise(LawFit& fit, const LawModel& model, int draws, std::uint64_t seed) {
+    const MatrixXd columns = model.columns(fit.state);
+    const VectorXd residual = fit.curve.samples.value - model.value(fit.state);
+    if (!columns.allFinite() || !residual.allFinite()) return false;
+    return estimate_noise(fit.curve, columns, residual, draws, seed);
+}
+
+double largest_move(const LawFit& fit, const VectorXd& move) {
+    double largest = 0.0;
+    for (Index i = 0; i < move.size(); ++i) {
+        const VectorXd row = fit.curve.map.row(i);
+        const double variance =
+            fit.curve.noise.noise.innovation_variance * row.dot(fit.curve.noise.fit.unit_covariance * row);
+        largest = std::max(largest, std::abs(move(i)) / std::sqrt(std::max(variance, 1e-300)));
+    }
+    return largest;
+}
+
+}  // namespace
+
+bool settle_law(LawFit& fit) {
+    const LawModel model = fit.model();
+    for (int round = 0; round < noise_rounds; ++round) {
+        if (!estimate_law_noise(fit, model, 0, 1)) return false;
+        const auto found = fit_once(fit, model, fit.state, fit.curve.noise.noise, later_evaluations);
+        if (!found) return false;
+        const double move = largest_move(fit, model.pack(found->state) - model.pack(fit.state));
+        fit.state = found->state;
+        if (move < settled) break;
+    }
+    if (!estimate_law_noise(fit, model, 0, 1)) return false;
+    fit.criterion = criterion_of(fit.curve, fit.terms.count());
+    return std::isfinite(fit.criterion);
+}
+
+bool refit(LawFit& fit, int evaluations) {
+    const auto found = fit_once(fit, fit.model(), fit.state, fit.curve.noise.noise, evaluations);
+    if (found) fit.state = found->state;
+    return found.has_value();
+}
+
+namespace {
+
+// How much better the fit could get, to first order, with these terms added; the noise is estimated with
+// them, since a noise model made without them would take them for noise.
+std::optional<double> score_of(const LawFit& fit, const std::vector<LawParameter>& added) {
+    const LawModel model = fit.model();
+    const MatrixXd basis = fit.curve.basis, extra = model.law_columns(fit.state.law, added);
+    if (!extra.allFinite()) return std::nullopt;
+    MatrixXd columns(basis.rows(), basis.cols() + extra.cols());
+    columns << basis, extra;
+    CurveFit trial = fit.curve;
+    if (!estimate_noise(trial, columns, fit.curve.residual, 0, 1)) return std::nullopt;
+    return criterion_of(fit.curve, 0) - criterion_of(trial, 0);
+}
+
+std::vector<LawParameter> terms_not_in(const LawTerms& terms) {
+    std::vector<LawParameter> missing;
+    for (const LawParameter p : extra_terms)
+        if (!terms.has(p)) missing.push_back(p);
+    return missing;
+}
+
+// Where to start the search for one more term: small, and as large as half of the damping seen.
+std::vector<LawState> starts_with(const LawFit& fit, LawParameter added) {
+    const double s = fit.state.law[LawParameter::damping];
+    const double swing = std::max(
+        0.1, std::hypot(fit.state.law[LawParameter::displacement], fit.state.law[LawParameter::velocity]));
+    const auto changed = [&](double damping, double value) {
+        LawState state = fit.state;
+        state.law[LawParameter::damping] = damping;
+        state.law[added] = value;
+        return state;
+    };
+    constexpr double pi = std::numbers::pi;
+    switch (added) {
+        case LawParameter::friction:  // equivalent viscous damping at a third and at the whole of the swing
+            return {changed(0.9 * s, 0.1 * s * pi * swing / 6.0),
+                    changed(0.4 * s, 0.6 * s * pi * swing / 6.0)};
+        case LawParameter::quadratic:
+            return {changed(0.9 * s, 0.1 * s * 3.0 * pi / (4.0 * swing)),
+                    changed(0.4 * s, 0.6 * s * 3.0 * pi / (2.0 * swing))};
+        case LawParameter::asymmetry:
+            return {changed(s, 0.1 * s), changed(s, -0.1 * s)};
+        default:
+            return {changed(s, 0.0)};
+    }
+}
+
+// Each number of half swings before the mass sticks has a minimum of its own: looks on both sides, the
+// damping that friction gives up or takes made up for by the viscous part.
+std::vector<Found> neighbours_of(const LawFit& fit, const LawModel& model, const LawState& state,
+                                 const AutoregressiveNoise& noise, std::initializer_list<double> factors) {
+    std::vector<Found> neighbours;
+    const double swing =
+        std::max(0.1, std::hypot(state.law[LawParameter::displacement], state.law[LawParameter::velocity]));
+    for (const double factor : factors) {
+        LawState start = state;
+        const double friction = start.law[LawParameter::friction];
+        start.law[LawParameter::friction] = factor * friction;
+        start.law[LawParameter::damping] += (1.0 - factor) * friction * 4.0 / (std::numbers::pi * swing);
+        if (const auto other = fit_once(fit, model, start, noise, first_evaluations))
+            neighbours.push_back(*other);
+    }
+    return neighbours;
+}
+
+const Found& least(const std::vector<Found>& found) {
+    return *std::ranges::min_element(found, {}, &Found::residual_sum);
+}
+
+// The first search takes the noise for white: a noise model made without the term takes part of it for noise.
+std::optional<LawFit> with_term(const LawFit& fit, LawParameter added) {
+    const AutoregressiveNoise noise;
+    LawFit trial = fit;
+    trial.terms = fit.terms.with(added);
+    const LawModel model = trial.model();
+    std::optional<Found> best;
+    for (const LawState& start : starts_with(fit, added)) {
+        const auto found = fit_once(trial, model, start, noise, first_evaluations);
+        if (found && (!best || found->residual_sum < best->residual_sum)) best = found;
+    }
+    if (!best) return std::nullopt;
+    if (trial.terms.friction) {
+        std::vector<Found> all = neighbours_of(trial, model, best->state, noise, {0.6, 0.8, 1.25, 1.6});
+        all.push_back(*best);
+        best = least(all);
+    }
+    trial.state = best->state;
+    if (!settle_law(trial)) return std::nullopt;
+    return trial;
+}
+
+// The terms whose own score comes near the best one's; strong friction, which is far from a small change of a
+// viscous decay, always.
+std::vector<LawParameter> worth_trying(const LawFit& fit, const std::vector<LawParameter>& terms) {
+    constexpr double near_enough = 0.2;
+    std::vector<double> gains;
+    for (const LawParameter p : terms) {
+        const auto score = score_of(fit, {p});
+        gains.push_back(score.value_or(0.0));
+    }
+    const double best = *std::ranges::max_element(gains);
+    std::vector<LawParameter> chosen;
+    for (std::size_t i = 0; i < terms.size(); ++i)
+        if (gains[i] >= near_enough * best || terms[i] == LawParameter::friction) chosen.push_back(terms[i]);
+    return chosen;
+}
+
+// Adds terms one by one while each is worth its price. `misfit`: something is known to be left over, whatever
+// the score says.
+LawFit grown(LawFit fit, bool misfit = false) {
+    while (fit.terms.count() < most_terms) {
+        const std::vector<LawParameter> missing = terms_not_in(fit.terms);
+        const auto score = score_of(fit, missing);
+        const bool looks_needless = !score || *score < price_of_term(rows_of(fit.curve));
+        if (looks_needless && !(misfit && fit.terms.count() == 0)) break;
+        std::optional<LawFit> best;
+        for (const LawParameter added : worth_trying(fit, missing)) {
+            auto trial = with_term(fit, added);
+            if (trial && (!best || trial->criterion < best->criterion)) best = std::move(trial);
+        }
+        if (!best || best->criterion >= fit.criterion) break;
+        fit = std::move(*best);
+    }
+    return fit;
+}
+
+// A term that another one made needless.
+LawFit pruned(const LawFit& fit) {
+    if (fit.terms.count() < 2) return fit;
+    LawFit best = fit;
+    for (const LawParameter dropped : extra_terms) {
+        if (!fit.terms.has(dropped)) continue;
+        LawFit trial = fit;
+        trial.terms = LawTerms{};
+        for (const LawParameter kept : extra_terms)
+            if (kept != dropped && fit.terms.has(kept)) trial.terms = trial.terms.with(kept);
+        trial.state.law[dropped] = 0.0;
+        if (trial.terms.friction) {
+            const std::vector<Found> starts =
+                neighbours_of(trial, trial.model(), trial.state, trial.curve.noise.noise, {0.8, 1.0, 1.25});
+            if (!starts.empty()) trial.state = least(starts).state;
+        }
+        if (settle_law(trial) && trial.criterion < best.criterion) best = std::move(trial);
+    }
+    return best;
+}
+
+bool rings_enough(const CurveFit& fit) {
+    const Oscillator& o = fit.oscillator();
+    if (o.damping_ratio() > most_damping) return false;
+    const double noise = std::sqrt(fit.noise.noise.innovation_variance);
+    const double amplitude = start_amplitude(fit.fit.model, fit.fit.coefficients, 0);
+    const double to_noise = std::log(std::max(1.0, amplitude / noise)) / std::max(o.slowest_rate(), 1e-12);
+    const double span = std::min(to_noise, fit.samples.time.maxCoeff());
+    return span * o.angular_frequency() / (2.0 * std::numbers::pi) > fewest_cycles;
+}
+
+// Near the mode itself, or a multiple of it, where a law leaves its mark.
+bool stands_for_a_law(double log_frequency, double mode_log_frequency, double damping_ratio) {
+    constexpr double most_multiples = 9.0, multiple_width = 0.03, beside = 0.35;
+    const double order = std::exp(log_frequency - mode_log_frequency);
+    const double nearest = std::max(1.0, std::round(order));
+    const double width = nearest > 1.0 ? multiple_width : std::max(beside, widths_aside * damping_ratio);
+    return nearest <= most_multiples && std::abs(order - nearest) < width * nearest;
+}
+
+// The mode alone from several damping ratios: with components about it, its own may have been anything.
+ProjectedFit refitted(const DecayModel& model, const DecaySamples& samples) {
+    std::optional<ProjectedFit> best;
+    for (const double ratio : {std::max(0.003, model.oscillators.front().damping_ratio()), 0.03, 0.15}) {
+        DecayModel start = model;
+        start.oscillators.front() = Oscillator::from(ratio, model.oscillators.front().angular_frequency());
+        ProjectedFit fit = fit_projected(start, samples, AutoregressiveNoise{});
+        if (!best || fit.residual_sum < best->residual_sum) best = std::move(fit);
+    }
+    return *best;
+}
+
+// Beside modes that stand for a law, the one that was put first may be the lesser: the one with the most
+// energy within the record, at the middle of the frequencies about it.
+struct MainMode {
+    std::size_t index = 0;
+    double log_frequency = 0.0;
+};
+
+MainMode main_mode(const CurveFit& fit, bool mode_given) {
+    const std::vector<Oscillator>& modes = fit.fit.model.oscillators;
+    MainMode main{0, modes[0].log_frequency};
+    if (mode_given || modes.size() < 2) return main;
+    const double span = fit.samples.time.maxCoeff();
+    std::vector<double> energy;
+    for (std::size_t i = 0; i < modes.size(); ++i) {
+        const double amplitude = start_amplitude(fit.fit.model, fit.fit.coefficients, i);
+        const double fall = 2.0 * modes[i].slowest_rate() * span;
+        energy.push_back(amplitude * amplitude * (std::abs(fall) < 1e-6 ? 1.0 : -std::expm1(-fall) / fall));
+    }
+    main.index = static_cast<std::size_t>(std::ranges::max_element(energy) - energy.begin());
+    double sum = 0.0, weighted = 0.0;
+    for (std::size_t i = 0; i < modes.size(); ++i) {
+        if (std::abs(modes[i].log_frequency - modes[main.index].log_frequency) > same_mode) continue;
+        sum += energy[i];
+        weighted += energy[i] * modes[i].log_frequency;
+    }
+    main.log_frequency = weighted / sum;
+    return main;
+}
+
+// The fit without what may stand for a law.
+std::optional<CurveFit> without_components(const CurveFit& fit, bool mode_given) {
+    CurveFit plain = fit;
+    DecayModel& model = plain.fit.model;
+    const MainMode main = main_mode(fit, mode_given);
+    std::swap(model.oscillators.front(), model.oscillators[main.index]);
+    const double ratio = model.oscillators.front().damping_ratio();
+    const auto aside = [&](double log_frequency) {
+        return stands_for_a_law(log_frequency, main.log_frequency, ratio);
+    };
+    std::erase_if(model.tones, aside);
+    const auto others = model.oscillators.begin() + 1;
+    model.oscillators.erase(std::remove_if(others, model.oscillators.end(),
+                                           [&](const Oscillator& o) { return aside(o.log_frequency); }),
+                            model.oscillators.end());
+    if (main.index == 0 && model.nonlinear_count() == fit.fit.model.nonlinear_count()) return plain;
+    if (model.oscillators.size() == 1) model.oscillators.front().log_frequency = main.log_frequency;
+    plain.fit = refitted(model, plain.samples);
+    if (!settle(plain)) return std::nullopt;
+    return plain;
+}
+
+// Criterion of the fit with its further modes and tones, each parameter of which costs.
+double criterion_with_components(const CurveFit& fit, const CurveFit& plain) {
+    const auto added = static_cast<double>(fit.map.rows() - plain.map.rows());
+    return criterion_of(fit, 0) + std::log(rows_of(fit)) * added;
+}
+
+// Findings about components that were put aside no longer hold.
+void name_components_anew(CurveFit& fit) {
+    std::erase_if(fit.findings, [](const Finding& finding) {
+        return finding.code == "second_mode" || finding.code == "steady_tone" ||
+               finding.code == "dry_friction";
+    });
+    describe_components(fit);
+}
+
+}  // namespace
+
+Measured measured_of(MeasuredQuantity quantity) {
+    switch (quantity) {
+        case MeasuredQuantity::velocity:
+        case MeasuredQuantity::angular_velocity:
+            return Measured::velocity;
+        case MeasuredQuantity::acceleration:
+        case MeasuredQuantity::angular_acceleration:
+            return Measured::acceleration;
+        default:
+            return Measured::displacement;
+    }
+}
+
+double LawFit::length() const {
+    return curve.samples.scale / std::pow(rate, static_cast<double>(measured));
+}
+
+std::optional<Index> LawFit::row_of(LawParameter parameter) const {
+    const std::vector<LawParameter> free = model().free();
+    const auto found = std::ranges::find(free, parameter);
+    if (found == free.end()) return std::nullopt;
+    return state.coefficients.size() + static_cast<Index>(found - free.begin());
+}
+
+namespace {
+
+// Beyond the noise that the search for the event saw. The mean of a block is no noisier than a sample.
+bool leaves_more_than_noise(const CurveFit& fit, const Event& event) {
+    constexpr double clearly = 1.5;
+    return std::sqrt(fit.noise.noise.variance()) * fit.samples.scale > clearly * event.noise_level;
+}
+
+// The law that grows from a viscous fit, which is all there is where no term is worth its price.
+LawFit law_from(const CurveFit& viscous, Measured measured, bool misfit) {
+    LawFit fit;
+    fit.curve = fit.viscous = viscous;
+    fit.measured = measured;
+    fit.rate = viscous.oscillator().angular_frequency();
+    fit.state = viscous_state(viscous, measured);
+    fit.criterion = criterion_of(viscous, 0);
+    return pruned(grown(std::move(fit), misfit));
+}
+
+// Rows but those that hold a sample next to one of these instants (s).
+DecaySamples without_rows_at(const DecaySamples& samples, const std::vector<double>& instants_s) {
+    const double reach = 0.5 * samples.step_s * (1.0 + 1.0 / static_cast<double>(samples.block));
+    std::vector<char> kept(static_cast<std::size_t>(samples.size()), 1);
+    for (const double t : instants_s)
+        for (Index i = 0; i < samples.size(); ++i)
+            if (std::abs(samples.time(i) - t) <= reach) kept[static_cast<std::size_t>(i)] = 0;
+    DecaySamples rest = samples;
+    rest.stretches.clear();
+    Index count = 0;
+    for (const Stretch& stretch : samples.stretches) {
+        bool open = false;
+        for (Index i = stretch.begin; i < stretch.begin + stretch.length; ++i) {
+            const bool keep = kept[static_cast<std::size_t>(i)] != 0;
+            if (keep && !open) rest.stretches.push_back({count, 0});
+            open = keep;
+            if (!keep) continue;
+            ++rest.stretches.back().length;
+            rest.time(count) = samples.time(i);
+            rest.value(count) = samples.value(i);
+            for (Index j = 0; samples.fine_time.size() > 0 && j < samples.block; ++j)
+                rest.fine_time(count * samples.block + j) = samples.fine_time(i * samples.block + j);
+            ++count;
+        }
+    }
+    rest.time.conservativeResize(count);
+    rest.value.conservativeResize(count);
+    if (samples.fine_time.size() > 0) rest.fine_time.conservativeResize(count * samples.block);
+    return rest;
+}
+
+// Where friction turns round the acceleration jumps, and a sample next to the jump may lie on either side of
+// it, which no search by derivatives sees: settled and chosen anew without those.
+LawFit without_jumps(const LawFit& fit) {
+    std::vector<double> turns =
+        fit.model()
+            .motion(fit.state.law, Measured::displacement, {fit.curve.samples.time.maxCoeff()})
+            .reversals;
+    for (double& t : turns) t /= fit.rate;
+    LawFit again = fit;
+    again.curve.samples = without_rows_at(fit.curve.samples, turns);
+    if (!settle_law(again)) return fit;
+    again = pruned(grown(std::move(again)));
+    return again.terms.friction ? again : fit;
+}
+
+// The best branch under the noise as it is now known, and the others that are not far behind.
+bool settle_branches(LawFit& fit) {
+    constexpr double least_weight = 1e-3;
+    for (int round = 0; round < 2; ++round) {
+        const LawModel model = fit.model();
+        const AutoregressiveNoise& noise = fit.curve.noise.noise;
+        const auto here = fit_once(fit, model, fit.state, noise, later_evaluations);
+        if (!here) return true;
+        const std::vector<Found> others =
+            neighbours_of(fit, model, here->state, noise, {0.75, 0.88, 0.94, 1.06, 1.12, 1.3});
+        fit.branches.clear();
+        if (others.empty()) return true;
+        if (least(others).residual_sum < here->residual_sum - 1e-3 * noise.innovation_variance) {
+            fit.state = least(others).state;
+            if (!settle_law(fit)) return false;
+            continue;
+        }
+        for (const Found& other : others) {
+            const double behind = (other.residual_sum - here->residual_sum) / noise.innovation_variance;
+            const double moved =
+                other.state.law[LawParameter::friction] / fit.state.law[LawParameter::friction];
+            const auto same = [&](const LawBranch& branch) {
+                return std::abs(branch.state.law[LawParameter::friction] /
+                                    other.state.law[LawParameter::friction] -
+                                1.0) < 1e-3;
+            };
+            const double weight = std::exp(-0.5 * behind);
+            if (weight > least_weight && std::abs(moved - 1.0) > 1e-3 &&
+                std::ranges::none_of(fit.branches, same))
+                fit.branches.push_back({other.state, weight});
+        }
+        return true;
+    }
+    return true;
+}
+
+}  // namespace
+
+std::optional<LawFit> choose_law(const CurveFit& viscous, const Recording& recording, const Event& event,
+                                 const CurveFitOptions& options) {
+    if (!viscous.valid) return std::nullopt;
+    const auto plain = without_components(viscous, options.near_hz.has_value());
+    if (!plain || !rings_enough(*plain)) return std::nullopt;
+    LawFit fit = law_from(*plain, measured_of(recording.quantity), leaves_more_than_noise(*plain, event));
+    if (fit.terms.count() == 0 || fit.criterion >= criterion_with_components(viscous, *plain))
+        return std::nullopt;
+    widen(fit, recording, event);
+    if (fit.terms.friction && fit.measured == Measured::acceleration) fit = without_jumps(fit);
+    if (fit.terms.friction && !settle_branches(fit)) return std::nullopt;
+    constexpr double most_growth = 1.1;  // by chance, over a wider window
+    if (residual_level(fit.curve) > most_growth * residual_level(*plain)) return std::nullopt;
+    if (!estimate_law_noise(fit, fit.model(), options.noise_draws, options.seed)) return std::nullopt;
+    if (!estimate_noise(fit.viscous, options.noise_draws, options.seed)) return std::nullopt;
+    name_components_anew(fit.curve);
+    return fit;
+}
+
+}  // namespace ringwright::identify
