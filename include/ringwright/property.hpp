@@ -43,6 +43,8 @@ struct Loading {
     double frequency_repeatability = 0.0;
     double damping_repeatability = 0.0;
     double repeatability_degrees_of_freedom = 0.0;
+    /// Coefficients of a damping law over the moving mass (MethodResult::per_mass), clock and gain included.
+    Quantities per_mass;
 };
 
 /// What all loadings share.
@@ -57,7 +59,8 @@ struct PropertyResult {
     Findings findings;
 };
 
-/// k = m ω_n², c = 2 ζ m ω_n with m = mass + spring_mass/3 + added mass (torsion: inertia, N·m/rad,
+/// Coefficients of a damping law that is not viscous alone become forces by the same m where it is known; c is
+/// then the law's viscous part. k = m ω_n², c = 2 ζ m ω_n with m = mass + spring_mass/3 + added mass (torsion: inertia, N·m/rad,
 /// N·m·s/rad). Several loadings of a known mass: the mean of what each says, weighted by its own uncertainty.
 /// Several loadings with an unknown mass: weighted straight line of 1/ω_n² against added mass, slope 1/k,
 /// intercept m/k; the mass found is that of the article without a third of the spring where the spring's mass

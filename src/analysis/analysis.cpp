@@ -6,6 +6,7 @@
 #include <atomic>
 #include <cmath>
 #include <functional>
+#include <optional>
 #include <thread>
 #include <utility>
 
@@ -61,14 +62,48 @@ void note_open_intervals(EventIdentification& event) {
         }
 }
 
-void identify_all(std::vector<RecordingIdentification>& recordings, const AnalysisOptions& options) {
+void identify_all(std::vector<RecordingIdentification>& recordings, const AnalysisOptions& options,
+                  const std::function<bool(const EventIdentification&)>& wanted) {
     std::vector<std::pair<const Recording*, EventIdentification*>> work;
     for (RecordingIdentification& recording : recordings)
-        for (EventIdentification& event : recording.events) work.emplace_back(&recording.recording, &event);
+        for (EventIdentification& event : recording.events)
+            if (wanted(event)) work.emplace_back(&recording.recording, &event);
     for_each_index(work.size(), options.jobs, [&](std::size_t i) {
         const Event event = work[i].second->event;
         *work[i].second = identify_event(*work[i].first, event, options.identify);
         note_open_intervals(*work[i].second);
+    });
+}
+
+/// Where a damping law makes the damping ratio depend on amplitude, releases are comparable only at one
+/// amplitude: the middle one of those that the releases would have chosen.
+std::optional<double> common_amplitude(const std::vector<RecordingIdentification>& recordings) {
+    std::vector<double> amplitudes;
+    std::size_t releases = 0;
+    bool comparable = true;
+    const Recording& first = recordings.front().recording;
+    for (const RecordingIdentification& identified : recordings) {
+        const Recording& recording = identified.recording;
+        releases += identified.events.size();
+        comparable = comparable && recording.quantity == first.quantity && recording.scaled == first.scaled;
+        for (const EventIdentification& event : identified.events)
+            if (event.curve_fit.at_amplitude) amplitudes.push_back(*event.curve_fit.at_amplitude);
+    }
+    if (amplitudes.empty() || releases < 2 || !comparable) return std::nullopt;
+    const auto middle = amplitudes.begin() + static_cast<std::ptrdiff_t>(amplitudes.size() / 2);
+    std::nth_element(amplitudes.begin(), middle, amplitudes.end());
+    return *middle;
+}
+
+void state_at_one_amplitude(std::vector<RecordingIdentification>& recordings,
+                            const AnalysisOptions& options) {
+    if (options.identify.at_amplitude || recordings.empty()) return;
+    const std::optional<double> amplitude = common_amplitude(recordings);
+    if (!amplitude) return;
+    AnalysisOptions again = options;
+    again.identify.at_amplitude = amplitude;
+    identify_all(recordings, again, [&](const EventIdentification& event) {
+        return event.curve_fit.at_amplitude.has_value() && *event.curve_fit.at_amplitude != *amplitude;
     });
 }
 
@@ -86,7 +121,8 @@ Identification identify(std::vector<RecordingInput> recordings, const AnalysisOp
     identification.article = options.article;
     for (RecordingInput& recording : recordings)
         identification.recordings.push_back(search(std::move(recording), options.event));
-    identify_all(identification.recordings, options);
+    identify_all(identification.recordings, options, [](const EventIdentification&) { return true; });
+    state_at_one_amplitude(identification.recordings, options);
     identification.result = analysis::combine(identification.recordings, options);
     if (!options.keep_samples) release_samples(identification.recordings);
     return identification;

@@ -58,12 +58,6 @@ Exponents exponents_of(Quantity quantity) {
         case Quantity::decay_rate:
         case Quantity::slow_decay_rate:
             return {1.0, 0.0};
-        case Quantity::friction_force:
-            return {0.0, 1.0};
-        case Quantity::quadratic_damping:
-            return {0.0, -1.0};
-        case Quantity::cubic_stiffness:
-            return {2.0, -2.0};
         case Quantity::contact_velocity:
             return {0.0, 1.0};
         case Quantity::static_deflection:
@@ -71,6 +65,34 @@ Exponents exponents_of(Quantity quantity) {
             return {0.0, 1.0};
         default:
             return {};
+    }
+}
+
+/// The same of a damping law's coefficient over the moving mass; `order` is which derivative of the
+/// displacement was measured.
+Exponents exponents_over_mass(Quantity quantity, double order) {
+    switch (quantity) {
+        case Quantity::friction_force:
+            return {2.0 - order, 1.0};
+        case Quantity::quadratic_damping:
+            return {order, -1.0};
+        case Quantity::cubic_stiffness:
+            return {2.0 + 2.0 * order, -2.0};
+        default:
+            return {1.0, 0.0};
+    }
+}
+
+double order_of(MeasuredQuantity quantity) {
+    switch (quantity) {
+        case MeasuredQuantity::velocity:
+        case MeasuredQuantity::angular_velocity:
+            return 1.0;
+        case MeasuredQuantity::acceleration:
+        case MeasuredQuantity::angular_acceleration:
+            return 2.0;
+        default:
+            return 0.0;
     }
 }
 
@@ -102,26 +124,41 @@ struct Influences {
     double gain = 0.0;
 };
 
-/// The pooled quantity with clock and gain added by the law of propagation, and its budget.
-void add_pooled_quantity(PooledResult& result, Quantity quantity, const Pooled& pooled, std::size_t releases,
-                         const Influences& influences, double confidence_level, bool torsional) {
-    const Exponents exponents = exponents_of(quantity);
-    const std::string unit(unit_of(quantity, torsional));
-    const Estimate& estimate = pooled.estimate;
+/// An estimate with clock and gain added by the law of propagation.
+struct Influenced {
+    Propagated propagated;
+    std::vector<ModelInput> inputs;
+    Estimate estimate;
+};
+
+Influenced influenced(const Estimate& estimate, const Exponents& exponents, const Influences& influences,
+                      double confidence_level, bool positive, const std::string& unit) {
     constexpr double infinite = std::numeric_limits<double>::infinity();
-    const std::vector<ModelInput> inputs{
-        {"", estimate.value, estimate.standard_uncertainty, estimate.degrees_of_freedom, unit,
-         estimate.interval},
-        {"time base", 0.0, influences.time_base, infinite, "1", std::nullopt},
-        {"sensor gain", 0.0, influences.gain, infinite, "1", std::nullopt}};
-    const Propagated propagated = propagate(inputs, [&](std::span<const double> at) {
+    Influenced result;
+    result.inputs = {{"", estimate.value, estimate.standard_uncertainty, estimate.degrees_of_freedom, unit,
+                      estimate.interval},
+                     {"time base", 0.0, influences.time_base, infinite, "1", std::nullopt},
+                     {"sensor gain", 0.0, influences.gain, infinite, "1", std::nullopt}};
+    result.propagated = propagate(result.inputs, [&](std::span<const double> at) {
         return at[0] * std::pow(1.0 + at[1], exponents.time) * std::pow(1.0 + at[2], exponents.gain);
     });
-    const bool positive = scale_of(quantity) == PoolingScale::logarithmic && estimate.interval.low > 0.0;
-    const bool influenced =
-        propagated.contributions[1].contribution > 0.0 || propagated.contributions[2].contribution > 0.0;
-    result.quantities[quantity] =
-        influenced ? estimate_of(propagated, inputs, {}, confidence_level, positive) : estimate;
+    const bool changed = result.propagated.contributions[1].contribution > 0.0 ||
+                         result.propagated.contributions[2].contribution > 0.0;
+    result.estimate =
+        changed ? estimate_of(result.propagated, result.inputs, {}, confidence_level, positive) : estimate;
+    return result;
+}
+
+/// The pooled quantity with clock and gain added, and its budget.
+void add_pooled_quantity(PooledResult& result, Quantity quantity, const Pooled& pooled, std::size_t releases,
+                         const Influences& influences, double confidence_level, bool torsional) {
+    const std::string unit(unit_of(quantity, torsional));
+    constexpr double infinite = std::numeric_limits<double>::infinity();
+    const bool positive =
+        scale_of(quantity) == PoolingScale::logarithmic && pooled.estimate.interval.low > 0.0;
+    const auto [propagated, inputs, estimate] =
+        influenced(pooled.estimate, exponents_of(quantity), influences, confidence_level, positive, unit);
+    result.quantities[quantity] = estimate;
 
     std::vector<BudgetLine> lines =
         split_lines(quantity, pooled, releases, propagated.contributions[0], unit);
@@ -134,16 +171,30 @@ void add_pooled_quantity(PooledResult& result, Quantity quantity, const Pooled& 
     result.budget.insert(result.budget.end(), lines.begin(), lines.end());
 }
 
+Influences influences_of(const AnalysisOptions& options) {
+    return {options.time_base_ppm.value_or(0.0) * 1e-6, options.sensor_gain_relative.value_or(0.0)};
+}
+
 void add_pooled_quantities(PooledResult& result, const LoadingGroup& group, const AnalysisOptions& options,
                            bool torsional) {
-    const Influences influences{options.time_base_ppm.value_or(0.0) * 1e-6,
-                                options.sensor_gain_relative.value_or(0.0)};
+    const Influences influences = influences_of(options);
     for (const auto& [quantity, pooled] : group.series.pooled)
         add_pooled_quantity(result, quantity, pooled, group.releases.size(), influences,
                             options.identify.confidence_level, torsional);
 }
 
-std::vector<Loading> loadings_of(const std::vector<LoadingGroup>& groups) {
+Quantities law_over_mass(const LoadingGroup& group, const AnalysisOptions& options) {
+    const double order = order_of(group.releases.front().recording->recording.quantity);
+    Quantities quantities;
+    for (const auto& [quantity, pooled] : group.series.per_mass)
+        quantities[quantity] =
+            influenced(pooled.estimate, exponents_over_mass(quantity, order), influences_of(options),
+                       options.identify.confidence_level, false, "")
+                .estimate;
+    return quantities;
+}
+
+std::vector<Loading> loadings_of(const std::vector<LoadingGroup>& groups, const AnalysisOptions& options) {
     std::vector<Loading> loadings;
     for (const LoadingGroup& group : groups) {
         const auto frequency = group.series.pooled.find(Quantity::natural_frequency);
@@ -158,6 +209,7 @@ std::vector<Loading> loadings_of(const std::vector<LoadingGroup>& groups) {
             loading.damping_repeatability = repeatability_share(damping->second);
             loading.repeatability_degrees_of_freedom = static_cast<double>(group.releases.size() - 1);
         }
+        loading.per_mass = law_over_mass(group, options);
         loadings.push_back(std::move(loading));
     }
     return loadings;
@@ -208,7 +260,7 @@ void add_unanswered(PooledResult& result, const std::vector<RecordingIdentificat
 
 void add_properties(PooledResult& result, const std::vector<LoadingGroup>& groups,
                     const AnalysisOptions& options, bool torsional) {
-    const std::vector<Loading> loadings = loadings_of(groups);
+    const std::vector<Loading> loadings = loadings_of(groups, options);
     PropertyResult properties =
         derive_properties(loadings, options.article, torsional, options.identify.confidence_level,
                           {options.time_base_ppm.value_or(0.0) * 1e-6});

@@ -135,21 +135,22 @@ std::vector<Release> releases_of(const std::vector<RecordingIdentification>& rec
     return releases;
 }
 
-std::vector<Estimate> estimates_of(const std::vector<Release>& releases, Quantity quantity) {
+std::vector<Estimate> estimates_of(const std::vector<Release>& releases, Quantity quantity, Part part) {
     std::vector<Estimate> estimates;
     for (const Release& release : releases) {
-        const auto found = release.answer->quantities.find(quantity);
-        if (found != release.answer->quantities.end() && usable(found->second))
+        const Quantities& quantities = release.answer->*part;
+        const auto found = quantities.find(quantity);
+        if (found != quantities.end() && usable(found->second))
             estimates.push_back(with_rounding(found->second));
     }
     if (2 * estimates.size() < releases.size()) estimates.clear();
     return estimates;
 }
 
-std::vector<Quantity> quantities_of(const std::vector<Release>& releases) {
+std::vector<Quantity> quantities_of(const std::vector<Release>& releases, Part part) {
     std::set<Quantity> found;
     for (const Release& release : releases)
-        for (const auto& [quantity, estimate] : release.answer->quantities)
+        for (const auto& [quantity, estimate] : release.answer->*part)
             if (usable(estimate)) found.insert(quantity);
     return {found.begin(), found.end()};
 }
@@ -166,6 +167,11 @@ PooledSeries pool_series(const std::vector<Release>& releases, double confidence
         const std::vector<Estimate> estimates = estimates_of(releases, quantity);
         if (!estimates.empty())
             series.pooled[quantity] = pool_repeats(estimates, confidence_level, scale_of(quantity));
+    }
+    for (const Quantity quantity : quantities_of(releases, &MethodResult::per_mass)) {
+        const std::vector<Estimate> estimates = estimates_of(releases, quantity, &MethodResult::per_mass);
+        if (!estimates.empty())
+            series.per_mass[quantity] = pool_repeats(estimates, confidence_level, PoolingScale::linear);
     }
     return series;
 }

@@ -32,14 +32,19 @@ struct Release {
 [[nodiscard]] std::vector<Release> releases_of(const std::vector<RecordingIdentification>& recordings,
                                                const Method& method);
 
+/// Which of an answer's quantities: those it states, or those over the moving mass.
+using Part = Quantities MethodResult::*;
 /// Pools one quantity over the releases that have it; empty estimate list when fewer than half do.
-[[nodiscard]] std::vector<Estimate> estimates_of(const std::vector<Release>& releases, Quantity quantity);
-[[nodiscard]] std::vector<Quantity> quantities_of(const std::vector<Release>& releases);
+[[nodiscard]] std::vector<Estimate> estimates_of(const std::vector<Release>& releases, Quantity quantity,
+                                                 Part part = &MethodResult::quantities);
+[[nodiscard]] std::vector<Quantity> quantities_of(const std::vector<Release>& releases,
+                                                  Part part = &MethodResult::quantities);
 [[nodiscard]] PoolingScale scale_of(Quantity quantity);
 
 /// Pooled values, and for each how its variance divides.
 struct PooledSeries {
     std::map<Quantity, Pooled> pooled;
+    std::map<Quantity, Pooled> per_mass;  ///< of a damping law, over the moving mass
     std::size_t release_count = 0;
 };
 [[nodiscard]] PooledSeries pool_series(const std::vector<Release>& releases, double confidence_level);

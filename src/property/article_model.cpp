@@ -135,6 +135,34 @@ ModelFunction mean_damping(const ArticleModel& model) {
     };
 }
 
+ModelFunction law_coefficient(ArticleModel& model, Quantity quantity) {
+    struct Part {
+        std::size_t loading, input;
+        double weight;
+    };
+    std::vector<Part> parts;
+    double sum = 0.0;
+    for (std::size_t i = 0; i < model.loadings.size(); ++i) {
+        const Loading& loading = model.loadings[i];
+        const auto found = loading.per_mass.find(quantity);
+        if (found == loading.per_mass.end()) continue;
+        const std::string name = std::string(name_of(quantity)) + " over mass";
+        const std::size_t input =
+            append(model, input_from(found->second, at_loading(name, loading, model.loadings.size()), ""));
+        const double weight = 1.0 / std::max(square(found->second.standard_uncertainty), 1e-300);
+        parts.push_back({i, input, weight});
+        sum += weight;
+    }
+    if (parts.empty()) return {};
+    for (Part& part : parts) part.weight /= sum;
+    return [&model, parts](std::span<const double> at) {
+        double value = 0.0;
+        for (const Part& part : parts)
+            value += part.weight * at[part.input] * moving_mass(model, at, part.loading);
+        return value;
+    };
+}
+
 Line fitted_line(const ArticleModel& model, std::span<const double> at) {
     double mean_mass = 0.0, mean_inverse = 0.0;
     for (std::size_t i = 0; i < model.loadings.size(); ++i) {

@@ -31,6 +31,11 @@ struct ArticleModel {
 [[nodiscard]] ModelFunction mean_stiffness(const ArticleModel& model);
 [[nodiscard]] ModelFunction mean_damping(const ArticleModel& model);
 
+/// Known mass: a damping law's coefficient over the moving mass times that mass, the mean over the loadings
+/// that have one, weighted by their uncertainties. Appends the inputs that it needs. Empty where none has
+/// one.
+[[nodiscard]] ModelFunction law_coefficient(ArticleModel& model, Quantity quantity);
+
 /// 1/ω² = intercept + slope · added mass, s² and s²/kg.
 struct Line {
     double slope = 0.0;

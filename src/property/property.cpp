@@ -36,11 +36,11 @@ void check_article(const std::vector<Loading>& loadings, const Article& article)
 }
 
 void add_quantity(PropertyResult& result, const ArticleModel& model, Quantity quantity,
-                  const ModelFunction& function, double confidence_level) {
+                  const ModelFunction& function, double confidence_level, bool positive = true) {
     const Propagated propagated = propagate(model.inputs, function, model.correlations);
     if (!std::isfinite(propagated.value) || !(propagated.standard_uncertainty > 0.0)) return;
     result.quantities[quantity] =
-        estimate_of(propagated, model.inputs, model.correlations, confidence_level, true);
+        estimate_of(propagated, model.inputs, model.correlations, confidence_level, positive);
     const auto lines = property::budget_lines(model, propagated, quantity);
     result.budget.insert(result.budget.end(), lines.begin(), lines.end());
 }
@@ -58,13 +58,32 @@ void note_heavy_spring(PropertyResult& result, const Article& article, double lo
              100.0 * article.spring_mass->value / load, 100.0 * shortfall)});
 }
 
+// Forces of a damping law. Its viscous part may be nothing, and then lies on either side of zero.
+void add_law(PropertyResult& result, const std::vector<Loading>& loadings, const Article& article,
+             double confidence_level, const CommonInfluences& influences) {
+    for (const Quantity quantity :
+         {Quantity::damping_coefficient, Quantity::friction_force, Quantity::compression_damping,
+          Quantity::rebound_damping, Quantity::quadratic_damping, Quantity::cubic_stiffness}) {
+        ArticleModel model = property::article_model(loadings, article, influences);
+        const ModelFunction coefficient = property::law_coefficient(model, quantity);
+        if (coefficient) add_quantity(result, model, quantity, coefficient, confidence_level, false);
+    }
+}
+
+bool has_law(const std::vector<Loading>& loadings) {
+    return std::ranges::any_of(loadings, [](const Loading& loading) { return !loading.per_mass.empty(); });
+}
+
 PropertyResult with_known_mass(const std::vector<Loading>& loadings, const Article& article,
                                double confidence_level, const CommonInfluences& influences) {
     const ArticleModel model = property::article_model(loadings, article, influences);
     PropertyResult result;
     add_quantity(result, model, Quantity::stiffness, property::mean_stiffness(model), confidence_level);
-    add_quantity(result, model, Quantity::damping_coefficient, property::mean_damping(model),
-                 confidence_level);
+    if (has_law(loadings))
+        add_law(result, loadings, article, confidence_level, influences);
+    else
+        add_quantity(result, model, Quantity::damping_coefficient, property::mean_damping(model),
+                     confidence_level);
     if (article.mass)
         note_heavy_spring(result, article, article.mass->value + loadings.front().added_mass.value);
     return result;
