@@ -6,6 +6,7 @@
 #include <CLI/Config.hpp>
 #include <CLI/Formatter.hpp>
 #include <cmath>
+#include <optional>
 #include <string_view>
 
 #include "ringwright/error.hpp"
@@ -48,18 +49,29 @@ double relative_uncertainty(std::string_view text, const char* option) {
     return tolerance ? part / std::sqrt(3.0) : part;
 }
 
+struct GivenAmplitude {
+    double value = 0.0;
+    std::optional<MeasuredQuantity> of;
+};
+
 /// "2 mm", "0.5 g", "3 deg": the unit says what it is an amplitude of; a plain number is in the SI unit of
 /// the samples.
-double amplitude_from(const std::string& text) {
+GivenAmplitude amplitude_from(const std::string& text) {
     const std::size_t end = text.find_last_of("0123456789.,");
     const std::size_t unit_start = end == std::string::npos ? 0 : text.find_first_not_of(' ', end + 1);
-    const double amplitude =
-        unit_start == std::string::npos
-            ? parse_number(text, "--at-amplitude")
-            : parse_measured_value(text, "--at-amplitude",
-                                   parse_unit(text.substr(unit_start), "--at-amplitude").dimension)
-                  .value;
-    if (!(amplitude > 0.0))
+    GivenAmplitude amplitude;
+    if (unit_start == std::string::npos) {
+        amplitude.value = parse_number(text, "--at-amplitude");
+    } else {
+        const Dimension dimension = parse_unit(text.substr(unit_start), "--at-amplitude").dimension;
+        amplitude.value = parse_measured_value(text, "--at-amplitude", dimension).value;
+        for (const MeasuredQuantity quantity :
+             {MeasuredQuantity::displacement, MeasuredQuantity::velocity, MeasuredQuantity::acceleration,
+              MeasuredQuantity::angle, MeasuredQuantity::angular_velocity,
+              MeasuredQuantity::angular_acceleration})
+            if (dimension_of(quantity) == dimension) amplitude.of = quantity;
+    }
+    if (!(amplitude.value > 0.0))
         throw UsageError({"--at-amplitude", "", fmt::format("{} is not above zero", text),
                           "Example: --at-amplitude \"2 mm\""});
     return amplitude;
@@ -141,7 +153,11 @@ AnalysisOptions analysis_options(const RecordingArguments& recording, const Arti
         options.time_base_ppm = 1e6 * relative_uncertainty(analysis.time_base, "--time-base");
     if (!analysis.sensor_gain.empty())
         options.sensor_gain_relative = relative_uncertainty(analysis.sensor_gain, "--sensor-gain");
-    if (!analysis.at_amplitude.empty()) options.identify.at_amplitude = amplitude_from(analysis.at_amplitude);
+    if (!analysis.at_amplitude.empty()) {
+        const GivenAmplitude amplitude = amplitude_from(analysis.at_amplitude);
+        options.identify.at_amplitude = amplitude.value;
+        options.identify.amplitude_of = amplitude.of;
+    }
     if (!analysis.seed.empty())
         options.identify.seed = whole_number<std::uint64_t>(analysis.seed, "--seed", std::uint64_t{1} << 53U);
     if (!analysis.jobs.empty()) options.jobs = whole_number<unsigned>(analysis.jobs, "--jobs", 1024U);

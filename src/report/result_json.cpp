@@ -34,11 +34,20 @@ Json modes_json(const std::vector<Mode>& modes, bool torsional) {
     return list;
 }
 
-Json method_json(const MethodResult& method, bool torsional) {
+Json amplitude_json(double amplitude, const Recording& recording) {
+    Json json{{"value", amplitude}};
+    if (recording.scaled && recording.quantity_known)
+        json["unit"] = std::string(si_unit_of(dimension_of(recording.quantity)));
+    return json;
+}
+
+Json method_json(const MethodResult& method, const Recording& recording) {
+    const bool torsional = is_torsional(recording.quantity);
     if (method.status == MethodStatus::not_applicable)
         return {{"status", "not_applicable"}, {"reason", method.reason}};
     Json json{{"status", "ok"}};
     put_if_said(json, "model", method.model);
+    if (method.at_amplitude) json["at_amplitude"] = amplitude_json(*method.at_amplitude, recording);
     json["quantities"] = to_json(method.quantities, torsional);
     if (!method.modes.empty()) json["modes"] = modes_json(method.modes, torsional);
     return json;
@@ -54,15 +63,27 @@ Json agreement_json(const Agreement& agreement) {
     return json;
 }
 
-Json event_json(const EventIdentification& event, bool torsional) {
+Json course_json(const AmplitudeCourse& course, const Recording& recording) {
+    Json json{{"depends_on_amplitude", course.depends_on_amplitude}};
+    put_if_finite(json, "p_value", course.p_value);
+    json["points"] = Json::array();
+    for (const AmplitudePoint& point : course.points)
+        json["points"].push_back({{"amplitude", amplitude_json(point.amplitude, recording)},
+                                  {"damping_ratio", to_json(point.damping_ratio, "1")},
+                                  {"natural_frequency", to_json(point.natural_frequency, "Hz")}});
+    return json;
+}
+
+Json event_json(const EventIdentification& event, const Recording& recording) {
     Json json;
     put_if_finite(json, "start_s", event.start_s);
     put_if_finite(json, "end_s", event.end_s);
     json["test"] = std::string(to_text(event.event.kind));
-    json["methods"] = {{"logarithmic_decrement", method_json(event.logarithmic_decrement, torsional)},
-                       {"half_power_bandwidth", method_json(event.half_power_bandwidth, torsional)},
-                       {"curve_fit", method_json(event.curve_fit, torsional)}};
+    json["methods"] = {{"logarithmic_decrement", method_json(event.logarithmic_decrement, recording)},
+                       {"half_power_bandwidth", method_json(event.half_power_bandwidth, recording)},
+                       {"curve_fit", method_json(event.curve_fit, recording)}};
     json["agreement"] = agreement_json(event.agreement);
+    if (event.course.tested) json["amplitude_course"] = course_json(event.course, recording);
     Findings findings = event.event.findings;
     findings.insert(findings.end(), event.findings.begin(), event.findings.end());
     json["findings"] = to_json(findings);
@@ -93,7 +114,7 @@ Json recording_json(const RecordingIdentification& identified) {
     json["findings"] = to_json(identified.findings);
     json["events"] = Json::array();
     for (const EventIdentification& event : identified.events)
-        json["events"].push_back(event_json(event, is_torsional(recording.quantity)));
+        json["events"].push_back(event_json(event, recording));
     if (identified.events.empty()) put_if_said(json, "reason", identified.reason);
     return json;
 }
