@@ -382,8 +382,12 @@ MainMode main_mode(const CurveFit& fit, bool mode_given) {
     return main;
 }
 
+bool has_slow_term(const CurveFit& fit) {
+    return fit.fit.model.drift || !fit.fit.model.real_poles.empty();
+}
+
 // The fit without what may stand for a law.
-std::optional<CurveFit> without_components(const CurveFit& fit, bool mode_given) {
+std::optional<CurveFit> without_components(const CurveFit& fit, bool mode_given, bool keep_slow_terms) {
     CurveFit plain = fit;
     DecayModel& model = plain.fit.model;
     const MainMode main = main_mode(fit, mode_given);
@@ -393,11 +397,18 @@ std::optional<CurveFit> without_components(const CurveFit& fit, bool mode_given)
         return stands_for_a_law(log_frequency, main.log_frequency, ratio);
     };
     std::erase_if(model.tones, aside);
+    // The mean about which a two-way damper swings moves as the swings get smaller.
+    const bool slow_term = !keep_slow_terms && has_slow_term(fit);
+    if (slow_term) {
+        model.real_poles.clear();
+        model.drift = false;
+    }
     const auto others = model.oscillators.begin() + 1;
     model.oscillators.erase(std::remove_if(others, model.oscillators.end(),
                                            [&](const Oscillator& o) { return aside(o.log_frequency); }),
                             model.oscillators.end());
-    if (main.index == 0 && model.nonlinear_count() == fit.fit.model.nonlinear_count()) return plain;
+    if (main.index == 0 && !slow_term && model.nonlinear_count() == fit.fit.model.nonlinear_count())
+        return plain;
     if (model.oscillators.size() == 1) model.oscillators.front().log_frequency = main.log_frequency;
     plain.fit = refitted(model, plain.samples);
     if (!settle(plain)) return std::nullopt;
@@ -414,9 +425,11 @@ double criterion_with_components(const CurveFit& fit, const CurveFit& plain) {
 void name_components_anew(CurveFit& fit) {
     std::erase_if(fit.findings, [](const Finding& finding) {
         return finding.code == "second_mode" || finding.code == "steady_tone" ||
-               finding.code == "dry_friction";
+               finding.code == "dry_friction" || finding.code == "drift" ||
+               finding.code == "slow_exponential";
     });
     describe_components(fit);
+    describe_slow_terms(fit);
 }
 
 }  // namespace
@@ -551,11 +564,21 @@ bool settle_branches(LawFit& fit) {
 std::optional<LawFit> choose_law(const CurveFit& viscous, const Recording& recording, const Event& event,
                                  const CurveFitOptions& options) {
     if (!viscous.valid) return std::nullopt;
-    const auto plain = without_components(viscous, options.near_hz.has_value());
-    if (!plain || !rings_enough(*plain)) return std::nullopt;
-    LawFit fit = law_from(*plain, measured_of(recording.quantity), leaves_more_than_noise(*plain, event));
-    if (fit.terms.count() == 0 || fit.criterion >= criterion_with_components(viscous, *plain))
-        return std::nullopt;
+    std::optional<CurveFit> plain;
+    std::optional<LawFit> chosen;
+    for (const bool keep_slow_terms : {false, true}) {
+        if (keep_slow_terms && !has_slow_term(viscous)) break;
+        const auto trial = without_components(viscous, options.near_hz.has_value(), keep_slow_terms);
+        if (!trial || !rings_enough(*trial)) continue;
+        LawFit law = law_from(*trial, measured_of(recording.quantity), leaves_more_than_noise(*trial, event));
+        const bool beats =
+            law.terms.count() > 0 && law.criterion < criterion_with_components(viscous, *trial);
+        if (!beats || (chosen && chosen->criterion < law.criterion)) continue;
+        chosen = std::move(law);
+        plain = trial;
+    }
+    if (!chosen) return std::nullopt;
+    LawFit fit = std::move(*chosen);
     widen(fit, recording, event);
     if (fit.terms.friction && fit.measured == Measured::acceleration) fit = without_jumps(fit);
     if (fit.terms.friction && !settle_branches(fit)) return std::nullopt;
