@@ -5,7 +5,6 @@
 #include <Eigen/QR>
 #include <algorithm>
 #include <cmath>
-#include <functional>
 #include <numbers>
 #include <vector>
 
@@ -219,20 +218,30 @@ void reblock(CurveFit& fit) {
     fit.fit = fit_projected(fit.fit.model, fit.samples, fit.noise.noise);
 }
 
-// What hardly falls in the window while something else does is a steady tone that the start values took for a
-// mode: it is fitted as one.
+// What hardly falls in the window, while something at least as large does, is a steady tone that the start
+// values took for a mode: it is fitted as one. (A light mode keeps its place beside a small one that noise
+// feigns.)
 bool steady_modes_to_tones(CurveFit& fit) {
     constexpr double steady_fall = 0.2, falling = 1.0;  // nepers over the window
-    std::vector<Oscillator>& modes = fit.fit.model.oscillators;
+    const std::vector<Oscillator> modes = fit.fit.model.oscillators;
     const double span = fit.samples.time.maxCoeff();
-    const auto fall = [&](const Oscillator& o) { return o.slowest_rate() * span; };
-    if (std::ranges::none_of(modes, [&](const Oscillator& o) { return fall(o) > falling; })) return true;
-    const auto steady = [&](const Oscillator& o) { return std::abs(fall(o)) < steady_fall; };
-    const auto first = std::stable_partition(modes.begin(), modes.end(), std::not_fn(steady));
-    if (first == modes.end()) return true;
-    for (auto tone = first; tone != modes.end(); ++tone) fit.fit.model.tones.push_back(tone->log_frequency);
-    modes.erase(first, modes.end());
-    fit.fit = fit_projected(fit.fit.model, fit.samples, fit.noise.noise);
+    const auto fall = [&](std::size_t i) { return std::abs(modes[i].slowest_rate()) * span; };
+    const auto amplitude = [&](std::size_t i) {
+        return start_amplitude(fit.fit.model, fit.fit.coefficients, i);
+    };
+    double largest_falling = 0.0;
+    for (std::size_t i = 0; i < modes.size(); ++i)
+        if (fall(i) > falling) largest_falling = std::max(largest_falling, amplitude(i));
+    DecayModel model = fit.fit.model;
+    model.oscillators.clear();
+    for (std::size_t i = 0; i < modes.size(); ++i) {
+        if (fall(i) < steady_fall && amplitude(i) < largest_falling)
+            model.tones.push_back(modes[i].log_frequency);
+        else
+            model.oscillators.push_back(modes[i]);
+    }
+    if (model.oscillators.size() == modes.size()) return true;
+    fit.fit = fit_projected(model, fit.samples, fit.noise.noise);
     return settle(fit);
 }
 
