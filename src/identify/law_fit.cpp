@@ -322,6 +322,16 @@ LawFit pruned(const LawFit& fit) {
     return best;
 }
 
+}  // namespace
+
+bool rings_too_long(const CurveFit& fit) {
+    const double cycles =
+        fit.samples.time.maxCoeff() * fit.oscillator().angular_frequency() / (2.0 * std::numbers::pi);
+    return cycles > most_cycles_of_law;
+}
+
+namespace {
+
 bool rings_enough(const CurveFit& fit) {
     const Oscillator& o = fit.oscillator();
     if (o.damping_ratio() > most_damping) return false;
@@ -329,7 +339,7 @@ bool rings_enough(const CurveFit& fit) {
     const double amplitude = start_amplitude(fit.fit.model, fit.fit.coefficients, 0);
     const double to_noise = std::log(std::max(1.0, amplitude / noise)) / std::max(o.slowest_rate(), 1e-12);
     const double span = std::min(to_noise, fit.samples.time.maxCoeff());
-    return span * o.angular_frequency() / (2.0 * std::numbers::pi) > fewest_cycles;
+    return span * o.angular_frequency() / (2.0 * std::numbers::pi) > fewest_cycles && !rings_too_long(fit);
 }
 
 // Near the mode itself, or a multiple of it, where a law leaves its mark.

@@ -44,6 +44,11 @@ struct LawFit {
 /// A chance that a viscous decay is given a richer law, about: what one more term must gain makes it so.
 inline constexpr double richer_law_level = 0.01;
 
+/// Laws are integrated cycle by cycle; what rings on longer (strings, forks, plates: seconds of computing) is
+/// fitted as viscous.
+constexpr double most_cycles_of_law = 200.0;
+[[nodiscard]] bool rings_too_long(const CurveFit& fit);
+
 /// The law that the samples ask for beside viscous damping; nothing where they ask for none, where the decay
 /// rings too little to show one, or where none can be fitted. First one pass of the variational equations
 /// along the viscous decay tells, to first order, how much better any law could fit (score test with the

@@ -35,26 +35,50 @@ struct Outstanding {
     Index bin = 0;
 };
 
-// The peak that stands highest above the median of its surroundings; `half_width` bins on either side of bin
-// i.
-template <typename HalfWidth>
-Outstanding highest_above(const PowerSpectrum& spectrum, HalfWidth half_width) {
-    const auto bins = spectrum.power.size();
+// The peak that stands highest above `level`, the median power about each bin.
+template <typename Level>
+Outstanding highest_above(const VectorXd& power, Level level) {
     Outstanding best;
-    std::vector<double> around;
-    for (Index i = 2; i + 2 < bins; ++i) {
-        if (spectrum.power(i) < spectrum.power(i - 1) || spectrum.power(i) < spectrum.power(i + 1)) continue;
-        const Index reach = half_width(i);
-        around.clear();
-        for (Index j = std::max<Index>(1, i - reach); j < std::min(bins, i + reach + 1); ++j)
-            around.push_back(spectrum.power(j));
-        const auto middle = around.begin() + static_cast<std::ptrdiff_t>(around.size() / 2);
-        std::nth_element(around.begin(), middle, around.end());
-        const double ratio = spectrum.power(i) * std::numbers::ln2 / std::max(*middle, 1e-300);
+    for (Index i = 2; i + 2 < power.size(); ++i) {
+        if (power(i) < power(i - 1) || power(i) < power(i + 1)) continue;
+        const double ratio = power(i) * std::numbers::ln2 / std::max(level(i), 1e-300);
         if (ratio > best.ratio) best = {ratio, i};
     }
     return best;
 }
+
+// Median of at most some hundreds of evenly spread bins of [begin, end).
+double median_power(const VectorXd& power, Index begin, Index end, std::vector<double>& scratch) {
+    constexpr Index most = 400;
+    begin = std::max<Index>(1, begin);
+    end = std::min(power.size(), end);
+    const Index step = std::max<Index>(1, (end - begin) / most);
+    scratch.clear();
+    for (Index j = begin; j < end; j += step) scratch.push_back(power(j));
+    const auto middle = scratch.begin() + static_cast<std::ptrdiff_t>(scratch.size() / 2);
+    std::nth_element(scratch.begin(), middle, scratch.end());
+    return *middle;
+}
+
+// The median power within a factor of 1.5 about each bin, the same for all bins of a sixteenth of an octave.
+class OctaveLevel {
+  public:
+    OctaveLevel(const VectorXd& power, Index least) : power_(power), least_(least) {}
+    double operator()(Index bin) {
+        if (bin >= next_) {
+            const Index reach = std::max(least_, bin / 3);
+            level_ = median_power(power_, bin - reach, bin + reach + bin / 6 + 1, scratch_);
+            next_ = bin + std::max<Index>(1, bin / 24);
+        }
+        return level_;
+    }
+
+  private:
+    const VectorXd& power_;
+    Index least_, next_ = 0;
+    double level_ = 0.0;
+    std::vector<double> scratch_;
+};
 
 // Angular frequencies at which the residual spectrum stands out: of its near surroundings as a steady tone
 // does, or of an octave about it as a mode does that is itself some bins wide. Empty when nothing stands out.
@@ -73,8 +97,11 @@ std::vector<double> outstanding_frequencies(const CurveFit& fit) {
                              fit.samples.step_s;
         if (found.empty() || std::abs(omega / found.front() - 1.0) > 1e-3) found.push_back(omega);
     };
-    take(highest_above(spectrum, [&](Index) { return near; }));
-    take(highest_above(spectrum, [&](Index i) { return std::max(near, i / 2); }));
+    std::vector<double> scratch;
+    take(highest_above(spectrum.power, [&](Index i) {
+        return median_power(spectrum.power, i - near, i + near + 1, scratch);
+    }));
+    take(highest_above(spectrum.power, OctaveLevel(spectrum.power, near)));
     return found;
 }
 
