@@ -8,6 +8,7 @@
 #include "event/drops.hpp"
 #include "event/found.hpp"
 #include "event/health.hpp"
+#include "event/joint_start.hpp"
 #include "event/plateau.hpp"
 #include "event/rivals.hpp"
 #include "event/second_hit.hpp"
@@ -141,6 +142,7 @@ std::optional<Found> follow_onset(const Search& search, const Onset& onset, Star
             }
         }
     }
+    go_back_jointly(search.pyramid, *start, limits);
     return Found{*start, course, 0, 0, {}, {}, false};
 }
 
@@ -282,7 +284,7 @@ void try_onset(Search& search, const Onset& onset, const std::vector<Onset>& all
                            onset.position + static_cast<std::size_t>(std::min(short_look * cycle, 1e15)));
     std::optional<Found> found = follow_onset(search, onset, near);
     if (!found || !believable(search, *found)) return;
-    if (is_plateau_and_decay(search.pyramid, *found, all)) return;
+    if (is_plateau_and_decay(search.pyramid, *found, all) || is_outlived(search.pyramid, *found, all)) return;
     if (near.latest < limits.latest) {
         found->course = follow_decay(search.pyramid, found->start, limits.latest);
         if (!believable(search, *found)) return;
@@ -293,6 +295,18 @@ void try_onset(Search& search, const Onset& onset, const std::vector<Onset>& all
         return;
     }
     search.found.push_back(std::move(*found));
+}
+
+/// One article does not both ring and creep: where something rings as strongly, what does not ring is the
+/// hand, the impact or the sensor's own answer (an AC-coupled one to a held pull).
+void drop_unlike(std::vector<Found>& found) {
+    constexpr double rings = 0.35, creeps = 0.7, as_strong = 0.3;
+    double strongest = 0.0;
+    for (const Found& f : found)
+        if (f.start.shape.damping_ratio < rings) strongest = std::max(strongest, f.start.amplitude);
+    std::erase_if(found, [&](const Found& f) {
+        return f.start.shape.damping_ratio > creeps && strongest > as_strong * f.start.amplitude;
+    });
 }
 
 /// Keeps of the weak ones only those that ring like the strongest: what stands out of the noise no more than
@@ -364,7 +378,8 @@ double surprise_between(const Pyramid& pyramid, const Found& first, const Found&
 /// Whether the first decay simply goes on in the second: as large as was to be expected, at the same
 /// frequency.
 bool goes_on(const Pyramid& pyramid, const Found& first, const Found& second) {
-    constexpr double surprising = 0.4;
+    constexpr double surprising = 0.4, as_clean = 3.0;
+    if (first.start.noise_rms > as_clean * second.start.noise_rms) return false;
     const double later = static_cast<double>(second.begin() - first.begin());
     const double expected = first.start.amplitude * std::exp(-first.start.shape.slow_rate() * later);
     const double tune =
@@ -417,7 +432,7 @@ void judge_interruptions(std::vector<Found>& found, const Series& series, const 
         if (goes_on(pyramid, found[i], next)) {
             found[i].course = next.course;
             next = std::move(found[i]);
-        } else if (cycles < 12.0 && found[i].course.fall < 1.5) {
+        } else if ((cycles < 12.0 && found[i].course.fall < 1.5) || found[i].course.fall < 0.5) {
             next.findings.push_back(double_hit(static_cast<double>(next.begin()) / series.rate_hz()));
         } else {
             if (found[i].course.fall < 3.0)
@@ -556,6 +571,7 @@ EventSearch search_whole(const Recording& recording, const EventOptions& options
     for (const Onset& onset : onsets) try_onset(search, onset, onsets);
     std::sort(search.found.begin(), search.found.end(),
               [](const Found& a, const Found& b) { return a.begin() < b.begin(); });
+    drop_unlike(search.found);
     drop_weak(search.found, series.values());
     drop_wanderings(search.found, pyramid);
     drop_pulls(search.found);
