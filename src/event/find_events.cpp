@@ -8,6 +8,7 @@
 #include "event/drops.hpp"
 #include "event/found.hpp"
 #include "event/health.hpp"
+#include "event/hum.hpp"
 #include "event/joint_start.hpp"
 #include "event/plateau.hpp"
 #include "event/rivals.hpp"
@@ -330,11 +331,15 @@ void drop_weak(std::vector<Found>& found, std::span<const double> values) {
 
 /// What rings no more than a few times has to stand out of all that the recording shows elsewhere.
 void drop_wanderings(std::vector<Found>& found, const Pyramid& pyramid) {
-    constexpr double few_cycles = 3.0, stands_out = 3.0;
+    // The largest of some hundred independent swings of Gaussian noise is 2.8 times their upper quartile; a
+    // fit to it reads half as much again.
+    constexpr double few_cycles = 3.0, stands_out = 5.0, stands_out_from_rest = 3.0;
     const std::vector<Found> all = found;
     std::erase_if(found, [&](const Found& f) {
         const double cycles = static_cast<double>(f.end() - f.begin()) / f.cycle();
-        return !f.is_drop() && cycles < few_cycles && swing_against_elsewhere(pyramid, f, all) < stands_out;
+        return !f.is_drop() && cycles < few_cycles &&
+               swing_against_elsewhere(pyramid, f, all) <
+                   (f.start.from_rest ? stands_out_from_rest : stands_out);
     });
 }
 
@@ -493,11 +498,10 @@ void note_clipping(const Search& search, Event& event) {
 }
 
 /// Mains hum in the rest after the first decay.
-void note_hum(const Search& search, EventSearch& result) {
+void note_hum(const Search& search, const Series& recorded, EventSearch& result) {
     if (search.found.empty()) return;
     const Course& course = search.found.front().course;
-    const std::span<const double> rest =
-        search.series.values().subspan(course.end, course.rest_end - course.end);
+    const std::span<const double> rest = recorded.values().subspan(course.end, course.rest_end - course.end);
     const std::optional<Finding> hum =
         hum_finding(rest, search.series.rate_hz(), 1.0 / search.found.front().cycle());
     if (hum) result.findings.push_back(*hum);
@@ -516,6 +520,11 @@ Event to_event(const Found& found, const Search& search, const EventOptions& opt
     event.start_amplitude = found.start.amplitude;
     event.kind = found.is_drop() ? TestKind::drop : options.kind.value_or(TestKind::pluck);
     event.kind_known = options.kind.has_value() || found.start.from_rest || found.is_drop();
+    if (const std::optional<DecayShape>& companion = found.start.companion) {
+        event.companion_hz =
+            companion->undamped_angular_frequency * series.rate_hz() / (2.0 * std::numbers::pi);
+        event.companion_damping_ratio = companion->damping_ratio;
+    }
     event.hold_seen = found.hold_seen;
     for (const Flight& flight : found.flights)
         event.flights.push_back({series.sample_at(flight.begin), series.sample_at(flight.end)});
@@ -559,10 +568,17 @@ EventSearch search_whole(const Recording& recording, const EventOptions& options
         result.findings.push_back({"too_short_record", Severity::defect, result.reason});
         return result;
     }
-    const Series series(recording);
-    if (constant(series)) {
+    const Series recorded(recording);
+    if (constant(recorded)) {
         result.reason = "Every sample has the same value. Check the sensor, its cable and the channel.";
         return result;
+    }
+    // Hum would hide the start and pass for a steady motion; the fit that follows has it as a tone.
+    Series series = recorded;
+    std::vector<double> hum_hz;
+    if (auto cleaned = without_hum(recorded.values(), recorded.rate_hz())) {
+        series.replace(std::move(cleaned->values));
+        hum_hz = std::move(cleaned->lines_hz);
     }
     const Pyramid pyramid(series.values());
     Search search{recording, series, pyramid, options.kind, {}, {}, false};
@@ -578,8 +594,11 @@ EventSearch search_whole(const Recording& recording, const EventOptions& options
     judge_interruptions(search.found, series, pyramid);
     note_double_hits(search.found, search);
     find_quiet(search.found, pyramid);
-    for (const Found& found : search.found) result.events.push_back(to_event(found, search, options));
-    note_hum(search, result);
+    for (const Found& found : search.found) {
+        result.events.push_back(to_event(found, search, options));
+        result.events.back().hum_hz = hum_hz;
+    }
+    note_hum(search, recorded, result);
     if (result.events.empty()) result.reason = reason_for_none(search);
     return result;
 }

@@ -141,6 +141,8 @@ void go_back_jointly(const Pyramid& pyramid, Start& start, const StartLimits& li
     const std::size_t first = limits.displacement ? candidate->first + smooth : refine(*look, *candidate);
     start.position = std::max(limits.earliest, first << look->level);
     start.from_rest = false;
+    if (candidate->fit.second.damping_ratio < most_damping)
+        start.companion = at_level(candidate->fit.second, look->level, 0);
     const double blocks = static_cast<double>(std::size_t{1} << start.level);
     const double ahead =
         (static_cast<double>(start.position) - static_cast<double>(start.fit_block << start.level)) / blocks;
