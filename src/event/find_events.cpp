@@ -53,6 +53,7 @@ struct Search {
     const Series& series;
     const Pyramid& pyramid;
     std::optional<TestKind> kind;  ///< as the user said
+    bool mode_meant = false;       ///< the user means one of many modes
     std::vector<Found> found;
     std::vector<RefusedFall> refused;
     bool steady = false;  ///< something rang and did not fall
@@ -143,7 +144,8 @@ std::optional<Found> follow_onset(const Search& search, const Onset& onset, Star
             }
         }
     }
-    go_back_jointly(search.pyramid, *start, limits);
+    // Among many modes two do not explain the recording.
+    if (!search.mode_meant) go_back_jointly(search.pyramid, *start, limits);
     return Found{*start, course, 0, 0, {}, {}, false};
 }
 
@@ -331,15 +333,11 @@ void drop_weak(std::vector<Found>& found, std::span<const double> values) {
 
 /// What rings no more than a few times has to stand out of all that the recording shows elsewhere.
 void drop_wanderings(std::vector<Found>& found, const Pyramid& pyramid) {
-    // The largest of some hundred independent swings of Gaussian noise is 2.8 times their upper quartile; a
-    // fit to it reads half as much again.
-    constexpr double few_cycles = 3.0, stands_out = 5.0, stands_out_from_rest = 3.0;
+    constexpr double few_cycles = 3.0, stands_out = 3.0;
     const std::vector<Found> all = found;
     std::erase_if(found, [&](const Found& f) {
         const double cycles = static_cast<double>(f.end() - f.begin()) / f.cycle();
-        return !f.is_drop() && cycles < few_cycles &&
-               swing_against_elsewhere(pyramid, f, all) <
-                   (f.start.from_rest ? stands_out_from_rest : stands_out);
+        return !f.is_drop() && cycles < few_cycles && swing_against_elsewhere(pyramid, f, all) < stands_out;
     });
 }
 
@@ -581,7 +579,7 @@ EventSearch search_whole(const Recording& recording, const EventOptions& options
         hum_hz = std::move(cleaned->lines_hz);
     }
     const Pyramid pyramid(series.values());
-    Search search{recording, series, pyramid, options.kind, {}, {}, false};
+    Search search{recording, series, pyramid, options.kind, options.near_hz.has_value(), {}, {}, false};
     look_for_drops(search);
     const std::vector<Onset> onsets = find_onsets(pyramid);
     for (const Onset& onset : onsets) try_onset(search, onset, onsets);

@@ -101,7 +101,7 @@ double independent_values(std::span<const double> points, const PathFit& fit) {
 }  // namespace
 
 bool is_hand_or_pulse(const Pyramid& pyramid, const Found& found) {
-    constexpr double plainly_better = 0.9, as_well = 1.05, heavy = 0.5, surprising = 12.0;
+    constexpr double plainly_better = 0.9, surprising = 12.0;
     const auto length = static_cast<double>(std::max<std::size_t>(8, found.end() - found.begin()));
     const double before = std::min(std::max(1.5 * length, 1.5 * found.cycle()), 4.0 * length);
     std::size_t level = 0;
@@ -121,8 +121,6 @@ bool is_hand_or_pulse(const Pyramid& pyramid, const Found& found) {
                          fit_amplitudes(means.subspan(begin, end - begin), shape).residual_sum;
     const std::span<const double> whole = means.subspan(first, end - first);
     const PathFit rival = fit_best_path(whole);
-    // A path has fewer numbers than a path and a decay after it: where both explain it, it is the path.
-    if (shape.damping_ratio > heavy && rival.sum < as_well * decay) return true;
     if (rival.sum > plainly_better * decay) return false;
     // Twice the gain in log likelihood of as many independent values as the residuals amount to.
     const double gain = std::log(decay / std::max(rival.sum, 1e-12 * decay));

@@ -207,7 +207,10 @@ void add_what_was_seen(CurveFit& fit, const Event& event, const CurveFitOptions&
         fit.fit = std::move(tried);
     };
     if (!with_tones.tones.empty()) take(with_tones);
-    if (event.companion_hz <= 0.0 || event.companion_hz > highest_hz || options.modes.value_or(2) < 2) return;
+    // Beside a mode that the user means the search may have seen any other of many.
+    if (event.companion_hz <= 0.0 || event.companion_hz > highest_hz || options.near_hz ||
+        options.modes.value_or(2) < 2)
+        return;
     DecayModel with_mode = fit.fit.model;
     with_mode.oscillators.push_back(
         Oscillator::from(event.companion_damping_ratio, 2.0 * std::numbers::pi * event.companion_hz));
