@@ -34,6 +34,9 @@ struct Event {
     /// seen.
     std::vector<SampleRange> flights;
     bool hold_seen = false;  ///< of a drop: the recording goes back before the release
+    /// Another mode that rings along from the start, as the search saw it; 0 where it saw none.
+    double companion_hz = 0.0, companion_damping_ratio = 0.0;
+    std::vector<double> hum_hz;  ///< lines of mains hum that run through the whole recording
     Findings findings;
 };
 

@@ -83,6 +83,13 @@ struct AmplitudeCourse {
     bool depends_on_amplitude = false;
 };
 
+/// Gravity at the bench, m/s². Where it is not told: standard gravity, with the standard uncertainty of a
+/// rectangular distribution from the equator (9.780) to the poles (9.832; both from memory).
+struct Gravity {
+    double value = 9.80665;
+    double standard_uncertainty = 0.015;
+};
+
 struct IdentifyOptions {
     double confidence_level = 0.95;
     std::optional<double> near_hz;
@@ -91,6 +98,7 @@ struct IdentifyOptions {
     /// measured. Absent: the middle of the decay.
     std::optional<double> at_amplitude;
     std::optional<MeasuredQuantity> amplitude_of;
+    Gravity gravity;             ///< for what a drop says
     bool pictures = false;       ///< fill DecayPicture
     std::uint64_t seed = 20311;  ///< of the bootstrap; the same recording and seed give the same answer
     int replicates = 200;        ///< of the bootstrap; 0: curve fit only

@@ -12,11 +12,12 @@
 
 namespace ringwright {
 
-/// What was weighed. Mass and inertia exclude each other.
+/// What was weighed, and where. Mass and inertia exclude each other.
 struct Article {
     std::optional<MeasuredValue> mass;         ///< kg
     std::optional<MeasuredValue> inertia;      ///< kg·m²
     std::optional<MeasuredValue> spring_mass;  ///< kg; a third of it moves (Rayleigh)
+    std::optional<MeasuredValue> gravity;      ///< m/s² at the bench, for drops
 };
 
 /// One contribution to a combined uncertainty (JCGM 100, clause 5): |sensitivity| · u(input) = contribution.

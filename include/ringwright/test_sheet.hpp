@@ -44,6 +44,7 @@ struct TestSheet {
     // [article]
     std::optional<std::string> article_type, serial, article_note;
     std::optional<MeasuredValue> mass, inertia, spring_mass;
+    std::optional<MeasuredValue> gravity;  ///< of the place, for drops
 
     // [test]
     std::optional<std::string> kind;  ///< "pluck", "tap" or "drop"

@@ -107,6 +107,11 @@ void state_at_one_amplitude(std::vector<RecordingIdentification>& recordings,
     });
 }
 
+AnalysisOptions with_gravity(AnalysisOptions options) {
+    options.identify.gravity = analysis::gravity_of(options);
+    return options;
+}
+
 void release_samples(std::vector<RecordingIdentification>& recordings) {
     for (RecordingIdentification& recording : recordings) {
         recording.recording.samples = {};
@@ -121,8 +126,9 @@ Identification identify(std::vector<RecordingInput> recordings, const AnalysisOp
     identification.article = options.article;
     for (RecordingInput& recording : recordings)
         identification.recordings.push_back(search(std::move(recording), options.event));
-    identify_all(identification.recordings, options, [](const EventIdentification&) { return true; });
-    state_at_one_amplitude(identification.recordings, options);
+    const AnalysisOptions located = with_gravity(options);
+    identify_all(identification.recordings, located, [](const EventIdentification&) { return true; });
+    state_at_one_amplitude(identification.recordings, located);
     identification.result = analysis::combine(identification.recordings, options);
     if (!options.keep_samples) release_samples(identification.recordings);
     return identification;

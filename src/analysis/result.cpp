@@ -45,24 +45,31 @@ std::vector<LoadingGroup> group_by_loading(const std::vector<Release>& releases)
     return groups;
 }
 
-/// Power of the clock's scale and of the sensor's gain with which a quantity changes.
+/// Power of the clock's scale, of the sensor's gain and of gravity with which a quantity changes.
 struct Exponents {
     double time = 0.0;
     double gain = 0.0;
+    double gravity = 0.0;
 };
 
-Exponents exponents_of(Quantity quantity) {
+/// Of what a drop says: read off a displacement, or off the time of the fall and the frequency.
+Exponents exponents_of_drop(Quantity quantity, MeasuredQuantity sensor) {
+    const double speed = quantity == Quantity::contact_velocity ? 1.0 : 0.0;
+    if (sensor == MeasuredQuantity::displacement) return {speed, 1.0, 0.0};
+    return {speed - 2.0, 0.0, 1.0};
+}
+
+Exponents exponents_of(Quantity quantity, MeasuredQuantity sensor) {
     switch (quantity) {
         case Quantity::natural_frequency:
         case Quantity::damped_frequency:
         case Quantity::decay_rate:
         case Quantity::slow_decay_rate:
-            return {1.0, 0.0};
+            return {1.0, 0.0, 0.0};
         case Quantity::contact_velocity:
-            return {0.0, 1.0};
         case Quantity::static_deflection:
         case Quantity::drop_height:
-            return {0.0, 1.0};
+            return exponents_of_drop(quantity, sensor);
         default:
             return {};
     }
@@ -119,12 +126,15 @@ std::vector<BudgetLine> split_lines(Quantity quantity, const Pooled& pooled, std
     return lines;
 }
 
+/// What all releases share.
 struct Influences {
-    double time_base = 0.0;
-    double gain = 0.0;
+    double time_base = 0.0;  ///< relative standard uncertainty
+    double gain = 0.0;       ///< the same
+    Gravity gravity;
+    MeasuredQuantity sensor = MeasuredQuantity::displacement;
 };
 
-/// An estimate with clock and gain added by the law of propagation.
+/// An estimate with clock, gain and gravity added by the law of propagation.
 struct Influenced {
     Propagated propagated;
     std::vector<ModelInput> inputs;
@@ -134,61 +144,70 @@ struct Influenced {
 Influenced influenced(const Estimate& estimate, const Exponents& exponents, const Influences& influences,
                       double confidence_level, bool positive, const std::string& unit) {
     constexpr double infinite = std::numeric_limits<double>::infinity();
+    const Gravity& gravity = influences.gravity;
     Influenced result;
-    result.inputs = {{"", estimate.value, estimate.standard_uncertainty, estimate.degrees_of_freedom, unit,
-                      estimate.interval},
-                     {"time base", 0.0, influences.time_base, infinite, "1", std::nullopt},
-                     {"sensor gain", 0.0, influences.gain, infinite, "1", std::nullopt}};
+    result.inputs = {
+        {"", estimate.value, estimate.standard_uncertainty, estimate.degrees_of_freedom, unit,
+         estimate.interval},
+        {"time base", 0.0, influences.time_base, infinite, "1", std::nullopt},
+        {"sensor gain", 0.0, influences.gain, infinite, "1", std::nullopt},
+        {"gravity", gravity.value, gravity.standard_uncertainty, infinite, "m/s²", std::nullopt}};
     result.propagated = propagate(result.inputs, [&](std::span<const double> at) {
-        return at[0] * std::pow(1.0 + at[1], exponents.time) * std::pow(1.0 + at[2], exponents.gain);
+        return at[0] * std::pow(1.0 + at[1], exponents.time) * std::pow(1.0 + at[2], exponents.gain) *
+               std::pow(at[3] / gravity.value, exponents.gravity);
     });
-    const bool changed = result.propagated.contributions[1].contribution > 0.0 ||
-                         result.propagated.contributions[2].contribution > 0.0;
+    const std::span<const Contribution> shared = std::span(result.propagated.contributions).subspan(1);
+    const bool changed =
+        std::ranges::any_of(shared, [](const Contribution& each) { return each.contribution > 0.0; });
     result.estimate =
         changed ? estimate_of(result.propagated, result.inputs, {}, confidence_level, positive) : estimate;
     return result;
 }
 
-/// The pooled quantity with clock and gain added, and its budget.
+/// The pooled quantity with clock, gain and gravity added, and its budget.
 void add_pooled_quantity(PooledResult& result, Quantity quantity, const Pooled& pooled, std::size_t releases,
                          const Influences& influences, double confidence_level, bool torsional) {
     const std::string unit(unit_of(quantity, torsional));
-    constexpr double infinite = std::numeric_limits<double>::infinity();
     const bool positive =
         scale_of(quantity) == PoolingScale::logarithmic && pooled.estimate.interval.low > 0.0;
     const auto [propagated, inputs, estimate] =
-        influenced(pooled.estimate, exponents_of(quantity), influences, confidence_level, positive, unit);
+        influenced(pooled.estimate, exponents_of(quantity, influences.sensor), influences, confidence_level,
+                   positive, unit);
     result.quantities[quantity] = estimate;
 
     std::vector<BudgetLine> lines =
         split_lines(quantity, pooled, releases, propagated.contributions[0], unit);
-    for (const std::size_t i : {std::size_t{1}, std::size_t{2}}) {
+    for (std::size_t i = 1; i < inputs.size(); ++i) {
         const Contribution& added = propagated.contributions[i];
-        if (added.contribution > 0.0)
-            lines.push_back({quantity, inputs[i].name, 0.0, inputs[i].standard_uncertainty, "1",
-                             added.sensitivity, added.contribution, added.share, infinite});
+        if (!(added.contribution > 0.0)) continue;
+        lines.push_back({quantity, inputs[i].name, inputs[i].value, inputs[i].standard_uncertainty,
+                         inputs[i].unit, added.sensitivity, added.contribution, added.share,
+                         inputs[i].degrees_of_freedom});
     }
     result.budget.insert(result.budget.end(), lines.begin(), lines.end());
 }
 
-Influences influences_of(const AnalysisOptions& options) {
-    return {options.time_base_ppm.value_or(0.0) * 1e-6, options.sensor_gain_relative.value_or(0.0)};
+Influences influences_of(const AnalysisOptions& options, MeasuredQuantity sensor) {
+    return {options.time_base_ppm.value_or(0.0) * 1e-6, options.sensor_gain_relative.value_or(0.0),
+            gravity_of(options), sensor};
 }
 
 void add_pooled_quantities(PooledResult& result, const LoadingGroup& group, const AnalysisOptions& options,
                            bool torsional) {
-    const Influences influences = influences_of(options);
+    const Influences influences =
+        influences_of(options, group.releases.front().recording->recording.quantity);
     for (const auto& [quantity, pooled] : group.series.pooled)
         add_pooled_quantity(result, quantity, pooled, group.releases.size(), influences,
                             options.identify.confidence_level, torsional);
 }
 
 Quantities law_over_mass(const LoadingGroup& group, const AnalysisOptions& options) {
-    const double order = order_of(group.releases.front().recording->recording.quantity);
+    const MeasuredQuantity sensor = group.releases.front().recording->recording.quantity;
+    const double order = order_of(sensor);
     Quantities quantities;
     for (const auto& [quantity, pooled] : group.series.per_mass)
         quantities[quantity] =
-            influenced(pooled.estimate, exponents_over_mass(quantity, order), influences_of(options),
+            influenced(pooled.estimate, exponents_over_mass(quantity, order), influences_of(options, sensor),
                        options.identify.confidence_level, false, "")
                 .estimate;
     return quantities;
@@ -285,6 +304,11 @@ std::string model_of(const std::vector<Release>& releases) {
 }
 
 }  // namespace
+
+Gravity gravity_of(const AnalysisOptions& options) {
+    const std::optional<MeasuredValue>& gravity = options.article.gravity;
+    return gravity ? Gravity{gravity->value, gravity->standard_uncertainty} : options.identify.gravity;
+}
 
 PooledResult combine(const std::vector<RecordingIdentification>& recordings, const AnalysisOptions& options) {
     PooledResult result;

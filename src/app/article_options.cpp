@@ -25,6 +25,16 @@ std::optional<MeasuredValue> positive_value(const std::string& text, const char*
     return measured;
 }
 
+std::optional<MeasuredValue> gravity_value(const std::string& text) {
+    constexpr double least = 9.7, most = 9.9;  // m/s², on the ground
+    if (text.empty()) return std::nullopt;
+    MeasuredValue measured = parse_measured_value(text, "--gravity", Dimension::acceleration);
+    if (!(measured.value > least && measured.value < most))
+        throw UsageError({"--gravity", "", fmt::format("{} is not found on the ground", text),
+                          "Give it as in --gravity \"9.8128 m/s2\""});
+    return measured;
+}
+
 MeasuredValue added_mass_from(const std::string& text) {
     MeasuredValue measured = parse_measured_value(text, "--added-mass", Dimension::mass);
     if (measured.value < 0.0)
@@ -43,6 +53,8 @@ void add_article_options(CLI::App& command, ArticleArguments& arguments) {
         "Moving mass: \"12.40(5) kg\" with a standard uncertainty, \"12.4 ± 0.1 kg\" with a tolerance");
     add("--inertia", arguments.inertia, "Moment of inertia of a torsion test, e.g. \"0.0100(2) kg m2\"");
     add("--spring-mass", arguments.spring_mass, "Mass of the spring, a third of which moves");
+    add("--gravity", arguments.gravity,
+        "Of the place, for drops, e.g. \"9.8128(2) m/s2\"; else 9.80665 m/s², from 9.780 to 9.832");
 }
 
 Article article_from(const ArticleArguments& arguments) {
@@ -51,7 +63,8 @@ Article article_from(const ArticleArguments& arguments) {
                           "Give --mass for a test in a straight line, --inertia for a torsion test"});
     return {positive_value(arguments.mass, "--mass", Dimension::mass),
             positive_value(arguments.inertia, "--inertia", Dimension::inertia),
-            positive_value(arguments.spring_mass, "--spring-mass", Dimension::mass)};
+            positive_value(arguments.spring_mass, "--spring-mass", Dimension::mass),
+            gravity_value(arguments.gravity)};
 }
 
 CLI::Option* add_added_mass_option(CLI::App& command, std::vector<std::string>& added_masses) {

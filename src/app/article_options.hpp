@@ -15,7 +15,7 @@ class Option;
 namespace ringwright::app {
 
 struct ArticleArguments {
-    std::string mass, inertia, spring_mass;
+    std::string mass, inertia, spring_mass, gravity;
 };
 void add_article_options(CLI::App& command, ArticleArguments& arguments);
 /// Throws UsageError naming the option that has no meaning.

@@ -62,7 +62,8 @@ void fill_from_result(const LedgerEntry& entry, TestArguments& arguments) {
     const std::pair<const char*, std::string*> stated[] = {
         {"/article/mass/as_written", &arguments.article.mass},
         {"/article/inertia/as_written", &arguments.article.inertia},
-        {"/article/spring_mass/as_written", &arguments.article.spring_mass}};
+        {"/article/spring_mass/as_written", &arguments.article.spring_mass},
+        {"/article/gravity/as_written", &arguments.article.gravity}};
     for (const auto& [place, text] : stated) {
         const nlohmann::ordered_json::json_pointer pointer(place);
         if (result.contains(pointer) && result[pointer].is_string())

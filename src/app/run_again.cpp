@@ -82,6 +82,7 @@ void fill_from_result(const Json& article, ArticleArguments& arguments) {
         fill(arguments.inertia, "inertia");
     }
     fill(arguments.spring_mass, "spring_mass");
+    fill(arguments.gravity, "gravity");
 }
 
 /// A sheet may have said what the options do not: the result has what came of it.

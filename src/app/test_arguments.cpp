@@ -50,6 +50,7 @@ void fill_from_sheet(const TestSheet& sheet, RecordingArguments& recording, Arti
         fill(article.inertia, text_of(sheet.inertia));
     }
     fill(article.spring_mass, text_of(sheet.spring_mass));
+    fill(article.gravity, text_of(sheet.gravity));
 }
 
 std::vector<LoadedFile> files_from(const TestSheet& sheet) {

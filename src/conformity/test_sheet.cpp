@@ -75,8 +75,9 @@ void read_article(const Table& table, TestSheet& read) {
 }
 
 void read_test(const Table& table, TestSheet& read) {
-    sheet::require_known_keys(table, {"kind", "operator", "date", "note"});
+    sheet::require_known_keys(table, {"kind", "operator", "date", "gravity", "note"});
     read.kind = sheet::choice_at(table, "kind", {"pluck", "tap", "drop"});
+    read.gravity = sheet::positive_at(table, "gravity", Dimension::acceleration);
     read.test_operator = sheet::text_at(table, "operator");
     read.test_note = sheet::text_at(table, "note");
     read.date = sheet::date_at(table, "date");

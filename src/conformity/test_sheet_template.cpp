@@ -19,6 +19,7 @@ mass = "3.20(1) kg"                # what moves; for torsion instead: inertia = 
 kind = "pluck"                     # pluck (pulled and released), tap (struck), drop (dropped or lowered)
 operator = "bench 3, day shift"    # the gauge study goes by it
 date = 2031-04-02
+# gravity = "9.8128(2) m/s2"       # of the place, for drops; else 9.80665 m/s2
 # note = "new oil"
 
 [recording]

@@ -346,6 +346,7 @@ void add_traceability(std::vector<Block>& blocks, const Json& result) {
     add_fact(rows, "Mass", text_at(result, {"article", "mass", "as_written"}));
     add_fact(rows, "Inertia", text_at(result, {"article", "inertia", "as_written"}));
     add_fact(rows, "Mass of the spring", text_at(result, {"article", "spring_mass", "as_written"}));
+    add_fact(rows, "Gravity", text_at(result, {"article", "gravity", "as_written"}));
     add_fact(rows, "Note on the article", text_at(sheet, {"article_note"}));
     add_fact(rows, "Note on the test", text_at(sheet, {"test_note"}));
     add_fact(rows, "Test sheet", text_at(sheet, {"file"}));

@@ -199,7 +199,8 @@ Course follow_settling(std::span<const double> means, const Start& start, std::s
 
 Course follow_decay(const Pyramid& pyramid, const Start& start, std::size_t limit) {
     const std::span<const double> means = pyramid.level(start.level);
-    const std::size_t first = start.position >> start.level;
+    // The block in which the start lies still holds some of the blow before it.
+    const std::size_t first = (start.position + (std::size_t{1} << start.level) - 1) >> start.level;
     const std::size_t last = std::max(first + 1, std::min(limit >> start.level, means.size()));
     const bool slow = start.shape.damping_ratio < cycle_by_cycle_damping;
     Course course =

@@ -8,6 +8,8 @@
 #include "event/drops.hpp"
 #include "event/found.hpp"
 #include "event/health.hpp"
+#include "event/hum.hpp"
+#include "event/joint_start.hpp"
 #include "event/plateau.hpp"
 #include "event/rivals.hpp"
 #include "event/second_hit.hpp"
@@ -51,6 +53,7 @@ struct Search {
     const Series& series;
     const Pyramid& pyramid;
     std::optional<TestKind> kind;  ///< as the user said
+    bool mode_meant = false;       ///< the user means one of many modes
     std::vector<Found> found;
     std::vector<RefusedFall> refused;
     bool steady = false;  ///< something rang and did not fall
@@ -141,6 +144,8 @@ std::optional<Found> follow_onset(const Search& search, const Onset& onset, Star
             }
         }
     }
+    // Among many modes two do not explain the recording.
+    if (!search.mode_meant) go_back_jointly(search.pyramid, *start, limits);
     return Found{*start, course, 0, 0, {}, {}, false};
 }
 
@@ -282,7 +287,7 @@ void try_onset(Search& search, const Onset& onset, const std::vector<Onset>& all
                            onset.position + static_cast<std::size_t>(std::min(short_look * cycle, 1e15)));
     std::optional<Found> found = follow_onset(search, onset, near);
     if (!found || !believable(search, *found)) return;
-    if (is_plateau_and_decay(search.pyramid, *found, all)) return;
+    if (is_plateau_and_decay(search.pyramid, *found, all) || is_outlived(search.pyramid, *found, all)) return;
     if (near.latest < limits.latest) {
         found->course = follow_decay(search.pyramid, found->start, limits.latest);
         if (!believable(search, *found)) return;
@@ -293,6 +298,18 @@ void try_onset(Search& search, const Onset& onset, const std::vector<Onset>& all
         return;
     }
     search.found.push_back(std::move(*found));
+}
+
+/// One article does not both ring and creep: where something rings as strongly, what does not ring is the
+/// hand, the impact or the sensor's own answer (an AC-coupled one to a held pull).
+void drop_unlike(std::vector<Found>& found) {
+    constexpr double rings = 0.35, creeps = 0.7, as_strong = 0.3;
+    double strongest = 0.0;
+    for (const Found& f : found)
+        if (f.start.shape.damping_ratio < rings) strongest = std::max(strongest, f.start.amplitude);
+    std::erase_if(found, [&](const Found& f) {
+        return f.start.shape.damping_ratio > creeps && strongest > as_strong * f.start.amplitude;
+    });
 }
 
 /// Keeps of the weak ones only those that ring like the strongest: what stands out of the noise no more than
@@ -364,7 +381,8 @@ double surprise_between(const Pyramid& pyramid, const Found& first, const Found&
 /// Whether the first decay simply goes on in the second: as large as was to be expected, at the same
 /// frequency.
 bool goes_on(const Pyramid& pyramid, const Found& first, const Found& second) {
-    constexpr double surprising = 0.4;
+    constexpr double surprising = 0.4, as_clean = 3.0;
+    if (first.start.noise_rms > as_clean * second.start.noise_rms) return false;
     const double later = static_cast<double>(second.begin() - first.begin());
     const double expected = first.start.amplitude * std::exp(-first.start.shape.slow_rate() * later);
     const double tune =
@@ -417,7 +435,7 @@ void judge_interruptions(std::vector<Found>& found, const Series& series, const 
         if (goes_on(pyramid, found[i], next)) {
             found[i].course = next.course;
             next = std::move(found[i]);
-        } else if (cycles < 12.0 && found[i].course.fall < 1.5) {
+        } else if ((cycles < 12.0 && found[i].course.fall < 1.5) || found[i].course.fall < 0.5) {
             next.findings.push_back(double_hit(static_cast<double>(next.begin()) / series.rate_hz()));
         } else {
             if (found[i].course.fall < 3.0)
@@ -478,11 +496,10 @@ void note_clipping(const Search& search, Event& event) {
 }
 
 /// Mains hum in the rest after the first decay.
-void note_hum(const Search& search, EventSearch& result) {
+void note_hum(const Search& search, const Series& recorded, EventSearch& result) {
     if (search.found.empty()) return;
     const Course& course = search.found.front().course;
-    const std::span<const double> rest =
-        search.series.values().subspan(course.end, course.rest_end - course.end);
+    const std::span<const double> rest = recorded.values().subspan(course.end, course.rest_end - course.end);
     const std::optional<Finding> hum =
         hum_finding(rest, search.series.rate_hz(), 1.0 / search.found.front().cycle());
     if (hum) result.findings.push_back(*hum);
@@ -501,6 +518,11 @@ Event to_event(const Found& found, const Search& search, const EventOptions& opt
     event.start_amplitude = found.start.amplitude;
     event.kind = found.is_drop() ? TestKind::drop : options.kind.value_or(TestKind::pluck);
     event.kind_known = options.kind.has_value() || found.start.from_rest || found.is_drop();
+    if (const std::optional<DecayShape>& companion = found.start.companion) {
+        event.companion_hz =
+            companion->undamped_angular_frequency * series.rate_hz() / (2.0 * std::numbers::pi);
+        event.companion_damping_ratio = companion->damping_ratio;
+    }
     event.hold_seen = found.hold_seen;
     for (const Flight& flight : found.flights)
         event.flights.push_back({series.sample_at(flight.begin), series.sample_at(flight.end)});
@@ -544,26 +566,37 @@ EventSearch search_whole(const Recording& recording, const EventOptions& options
         result.findings.push_back({"too_short_record", Severity::defect, result.reason});
         return result;
     }
-    const Series series(recording);
-    if (constant(series)) {
+    const Series recorded(recording);
+    if (constant(recorded)) {
         result.reason = "Every sample has the same value. Check the sensor, its cable and the channel.";
         return result;
     }
+    // Hum would hide the start and pass for a steady motion; the fit that follows has it as a tone.
+    Series series = recorded;
+    std::vector<double> hum_hz;
+    if (auto cleaned = without_hum(recorded.values(), recorded.rate_hz())) {
+        series.replace(std::move(cleaned->values));
+        hum_hz = std::move(cleaned->lines_hz);
+    }
     const Pyramid pyramid(series.values());
-    Search search{recording, series, pyramid, options.kind, {}, {}, false};
+    Search search{recording, series, pyramid, options.kind, options.near_hz.has_value(), {}, {}, false};
     look_for_drops(search);
     const std::vector<Onset> onsets = find_onsets(pyramid);
     for (const Onset& onset : onsets) try_onset(search, onset, onsets);
     std::sort(search.found.begin(), search.found.end(),
               [](const Found& a, const Found& b) { return a.begin() < b.begin(); });
+    drop_unlike(search.found);
     drop_weak(search.found, series.values());
     drop_wanderings(search.found, pyramid);
     drop_pulls(search.found);
     judge_interruptions(search.found, series, pyramid);
     note_double_hits(search.found, search);
     find_quiet(search.found, pyramid);
-    for (const Found& found : search.found) result.events.push_back(to_event(found, search, options));
-    note_hum(search, result);
+    for (const Found& found : search.found) {
+        result.events.push_back(to_event(found, search, options));
+        result.events.back().hum_hz = hum_hz;
+    }
+    note_hum(search, recorded, result);
     if (result.events.empty()) result.reason = reason_for_none(search);
     return result;
 }

@@ -127,6 +127,43 @@ bool is_hand_or_pulse(const Pyramid& pyramid, const Found& found) {
     return independent_values(whole, rival) * gain > surprising;
 }
 
+namespace {
+
+/// Whether the onset lies about the brief decay and rings on at a slower rate with a good part of its energy.
+bool outlives(const Onset& onset, const Found& brief) {
+    constexpr double rings = 0.3, plain = 10.0, fewest_cycles = 1.5, share = 0.15, slower = 0.4;
+    const DecayShape shape = at_level(onset.fit.shape, onset.level, 0);
+    const double rate = brief.start.shape.slow_rate();
+    if (shape.damping_ratio > rings || shape.decay_rate() > slower * rate) return false;
+    const double cycle = 2.0 * std::numbers::pi / shape.undamped_angular_frequency;
+    const double seen = std::ldexp(static_cast<double>(onset.fit.points), static_cast<int>(onset.level));
+    if (onset.fit.explained_ratio() < plain || seen < fewest_cycles * cycle) return false;
+    const auto begin = static_cast<double>(onset.fit_block << onset.level);
+    if (begin + cycle < static_cast<double>(brief.begin()) ||
+        begin > static_cast<double>(brief.course.rest_end) + cycle)
+        return false;
+    // ∫ A² e^(−2rt) dt = A²/2r.
+    const double energy = brief.start.amplitude * brief.start.amplitude / rate;
+    return onset.amplitude * onset.amplitude / shape.decay_rate() > share * energy;
+}
+
+}  // namespace
+
+bool is_outlived(const Pyramid& pyramid, const Found& found, const std::vector<Onset>& onsets) {
+    constexpr double brief = 2.0;  // cycles
+    if (found.start.from_rest || static_cast<double>(found.end() - found.begin()) > brief * found.cycle())
+        return false;
+    const auto outlives_it = [&](const Onset& onset) { return outlives(onset, found); };
+    if (std::any_of(onsets.begin(), onsets.end(), outlives_it)) return true;
+    // A blow much higher than the answer hides it on every scale that begins with the blow.
+    for (std::size_t level = found.start.level; level < pyramid.levels(); ++level) {
+        const std::size_t block = (found.end() + (std::size_t{1} << level) - 1) >> level;
+        const std::optional<Onset> onset = onset_at(pyramid, level, block);
+        if (onset && outlives(*onset, found)) return true;
+    }
+    return false;
+}
+
 double swing_against_elsewhere(const Pyramid& pyramid, const Found& found, const std::vector<Found>& all) {
     constexpr double plenty = 1e9;
     constexpr std::size_t fewest = 40;

@@ -94,4 +94,14 @@ bool rings_before(const Pyramid& pyramid, const Start& start) {
     return fit_amplitudes(points, start.fit.shape).explained_ratio() > explained;
 }
 
+bool moves_before(const Pyramid& pyramid, const Start& start) {
+    constexpr double shortest = 0.35, moves_share = 0.15;
+    if (start.from_rest) return false;
+    const std::span<const double> means = pyramid.level(start.level);
+    const std::size_t block = std::min(start.position >> start.level, means.size());
+    const double moves = moves_share * start.amplitude + 5.0 * start.fit.residual_rms();
+    const std::size_t since = motion_begins(means, block, cycle_of(start.fit.shape), moves);
+    return static_cast<double>(block - since) > shortest * static_cast<double>(cycle_of(start.fit.shape));
+}
+
 }  // namespace ringwright::event_search

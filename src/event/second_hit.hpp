@@ -16,4 +16,7 @@ namespace ringwright::event_search {
 /// Whether a free decay of the shape of this one, and not a plateau or a single blow, comes just before it.
 [[nodiscard]] bool rings_before(const Pyramid& pyramid, const Start& start);
 
+/// Whether the recording moves for a third of a cycle or longer before the start; no plateau, no single blow.
+[[nodiscard]] bool moves_before(const Pyramid& pyramid, const Start& start);
+
 }  // namespace ringwright::event_search

@@ -2,6 +2,7 @@
 
 #include <algorithm>
 #include <cmath>
+#include <utility>
 
 namespace ringwright::event_search {
 namespace {
@@ -67,6 +68,11 @@ Series::Series(const Recording& recording)
     }
     values_ =
         storage_.empty() ? std::span<const double>(recording.samples) : std::span<const double>(storage_);
+}
+
+void Series::replace(std::vector<double> values) {
+    storage_ = std::move(values);
+    values_ = storage_;
 }
 
 std::size_t Series::sample_at(std::size_t position) const {

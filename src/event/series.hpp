@@ -15,6 +15,8 @@ class Series {
   public:
     explicit Series(const Recording& recording);
     [[nodiscard]] std::span<const double> values() const { return values_; }
+    /// Puts as many other values in the place of these.
+    void replace(std::vector<double> values);
     [[nodiscard]] std::size_t size() const { return values_.size(); }
     [[nodiscard]] double rate_hz() const { return rate_hz_; }
     [[nodiscard]] std::size_t sample_at(std::size_t position) const;

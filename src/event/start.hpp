@@ -13,10 +13,11 @@ struct Start {
     DecayShape shape;          ///< per step of the series
     std::size_t level = 0;     ///< on which `fit` was made: 12 to 24 blocks a cycle where the sampling allows
     std::size_t fit_block = 0;
-    DecayFit fit;            ///< of the blocks from `fit_block` on
-    double amplitude = 0.0;  ///< of the decay at `position`
-    double noise_rms = 0.0;  ///< of single values about the decay
-    bool from_rest = false;  ///< a held plateau precedes it, and it leaves the plateau at rest
+    DecayFit fit;                         ///< of the blocks from `fit_block` on
+    double amplitude = 0.0;               ///< of the decay at `position`
+    double noise_rms = 0.0;               ///< of single values about the decay
+    std::optional<DecayShape> companion;  ///< another mode that rings along; per step of the series
+    bool from_rest = false;               ///< a held plateau precedes it, and it leaves the plateau at rest
 };
 
 struct StartLimits {

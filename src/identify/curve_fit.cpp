@@ -189,10 +189,39 @@ bool same_noise_behind(const CurveFit& fit, const Event& event) {
     return below > false_alarm / 2.0 && below < 1.0 - false_alarm / 2.0;
 }
 
+// What the search saw beside the decay is in the model from the first: else a strong tone or mode would be
+// taken for the decay, or the noise model would take it up.
+void add_what_was_seen(CurveFit& fit, const Event& event, const CurveFitOptions& options) {
+    constexpr double most_damping = 0.3, worthwhile = 0.8, highest = 0.45;
+    const AutoregressiveNoise white;
+    const double highest_hz = highest / fit.samples.step_s;
+    DecayModel with_tones = fit.fit.model;
+    for (const double hertz : event.hum_hz)
+        if (hertz < highest_hz) with_tones.tones.push_back(std::log(2.0 * std::numbers::pi * hertz));
+    const auto take = [&](const DecayModel& model) {
+        ProjectedFit tried = fit_projected(model, fit.samples, white);
+        if (!tried.model.parameters().allFinite() || tried.residual_sum > worthwhile * fit.fit.residual_sum)
+            return;
+        const double damping = tried.model.oscillators.back().damping_ratio();
+        if (model.oscillators.size() > 1 && (damping <= 0.0 || damping > most_damping)) return;
+        fit.fit = std::move(tried);
+    };
+    if (!with_tones.tones.empty()) take(with_tones);
+    // Beside a mode that the user means the search may have seen any other of many.
+    if (event.companion_hz <= 0.0 || event.companion_hz > highest_hz || options.near_hz ||
+        options.modes.value_or(2) < 2)
+        return;
+    DecayModel with_mode = fit.fit.model;
+    with_mode.oscillators.push_back(
+        Oscillator::from(event.companion_damping_ratio, 2.0 * std::numbers::pi * event.companion_hz));
+    take(with_mode);
+}
+
 bool start_fit(CurveFit& fit, const Event& event, const CurveFitOptions& options) {
     const double guess = options.near_hz.value_or(event.frequency_guess_hz);
     const double span = static_cast<double>(event.end - event.begin) / fit.window.rate_hz;
-    const double first_rate = 2.0 * std::numbers::pi * (guess > 0.0 ? 1.5 * guess : 30.0 / span);
+    const double fastest = std::max(1.5 * guess, event.companion_hz);
+    const double first_rate = 2.0 * std::numbers::pi * (guess > 0.0 ? fastest : 30.0 / span);
     fit.samples = block_means(fit.window, block_for(fit.window, first_rate, 300.0));
     if (fit.samples.size() < fewest_rows) {
         fit.reason = fmt::format("the decay has only {} usable samples", fit.samples.size());
@@ -202,12 +231,15 @@ bool start_fit(CurveFit& fit, const Event& event, const CurveFitOptions& options
         fit.reason = "every sample of the decay has the same value";
         return false;
     }
-    const std::optional<ProjectedFit> start = find_start(fit.samples, guess, options.near_hz);
+    const bool hum = !event.hum_hz.empty() && guess > 0.0;
+    const std::optional<double> near = hum ? std::optional(guess) : options.near_hz;
+    const std::optional<ProjectedFit> start = find_start(fit.samples, guess, near);
     if (!start) {
         fit.reason = "no decaying oscillation fits the recording";
         return false;
     }
     fit.fit = *start;
+    add_what_was_seen(fit, event, options);
     return true;
 }
 

@@ -10,6 +10,7 @@
 #include "identify/curve_fit.hpp"
 #include "identify/decay_picture.hpp"
 #include "identify/decay_quantities.hpp"
+#include "identify/drop_reading.hpp"
 #include "identify/law_fit.hpp"
 #include "identify/law_quantities.hpp"
 #include "identify/law_window.hpp"
@@ -149,6 +150,19 @@ void explain_missing(const CurveFit& fit, const MethodResult& result, Findings& 
              "frequency and damping ratio each depend on the first moments of the decay."});
 }
 
+// Height, speed and static deflection of a drop, beside what the curve fit says of its decay.
+void add_drop(const Recording& recording, const CurveFit& fit, const IdentifyOptions& options,
+              EventIdentification& result) {
+    Quantities& quantities = result.curve_fit.quantities;
+    if (result.event.flights.empty() || !quantities.contains(Quantity::natural_frequency) ||
+        !quantities.contains(Quantity::damping_ratio))
+        return;
+    const DropReading reading = read_drop(recording, result.event, resting_decay(fit, quantities),
+                                          options.gravity, options.confidence_level);
+    quantities.insert(reading.quantities.begin(), reading.quantities.end());
+    result.findings.insert(result.findings.end(), reading.findings.begin(), reading.findings.end());
+}
+
 }  // namespace
 
 namespace {
@@ -225,6 +239,7 @@ EventIdentification identify_event(const Recording& recording, const Event& even
         explain_missing(fit, result.curve_fit, result.findings);
     result.course = amplitude_course(fit, law ? law->curve.noise : fit.noise, options.confidence_level);
     if (!law) append(result.findings, describe_course(result.course));
+    add_drop(recording, fit, options, result);
     Findings known = result.findings;
     append(known, event.findings);
     append(known, recording.findings);

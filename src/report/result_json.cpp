@@ -151,6 +151,7 @@ Json article_json(const Article& article) {
     if (article.mass) json["mass"] = measured_json(*article.mass, "kg");
     if (article.inertia) json["inertia"] = measured_json(*article.inertia, "kg·m²");
     if (article.spring_mass) json["spring_mass"] = measured_json(*article.spring_mass, "kg");
+    if (article.gravity) json["gravity"] = measured_json(*article.gravity, "m/s²");
     return json;
 }
 

@@ -162,3 +162,29 @@ TEST_CASE("a recording without noise, one that is not a number, and a recording 
     CHECK(std::isfinite(result.quantities.at(Quantity::damping_ratio).value));
     CHECK(has(result.findings, "recording_without_event"));
 }
+
+TEST_CASE("gravity is part of the budget where the height of a drop rests on it") {
+    // An accelerometer tells the height by gT²/2: u(g)/g of the height (JCGM 100, 5.1.2, by hand). A
+    // displacement shows it without gravity.
+    for (const auto sensor : {MeasuredQuantity::acceleration, MeasuredQuantity::displacement}) {
+        RecordingIdentification recording = recording_of({event_with_fit(6.0, 0.15)});
+        recording.recording.quantity = sensor;
+        recording.events[0].curve_fit.quantities[Quantity::drop_height] = estimate(0.04, 1e-3);
+        AnalysisOptions options;
+        options.article.gravity.emplace();
+        options.article.gravity->value = 9.81;
+        options.article.gravity->standard_uncertainty = 0.02;
+        const PooledResult result = analysis::combine({recording}, options);
+        const auto line = std::ranges::find_if(result.budget, [](const BudgetLine& candidate) {
+            return candidate.quantity == Quantity::drop_height && candidate.source == "gravity";
+        });
+        if (sensor == MeasuredQuantity::displacement) {
+            CHECK(line == result.budget.end());
+            continue;
+        }
+        REQUIRE(line != result.budget.end());
+        CHECK(line->contribution == Approx(0.04 * 0.02 / 9.81));
+        CHECK(result.quantities.at(Quantity::drop_height).standard_uncertainty ==
+              Approx(0.04 * std::hypot(1e-3, 0.02 / 9.81)));
+    }
+}

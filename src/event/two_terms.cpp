@@ -1,0 +1,151 @@
+#include "event/two_terms.hpp"
+
+#include <Eigen/Cholesky>
+#include <Eigen/Core>
+#include <algorithm>
+#include <cmath>
+#include <vector>
+
+namespace ringwright::event_search {
+namespace {
+
+constexpr std::size_t fewest_points = 14, linear_count = 5, shape_count = 4;
+using Columns = Eigen::Matrix<double, Eigen::Dynamic, linear_count>;
+using Linear = Eigen::Matrix<double, linear_count, 1>;
+using Shapes = Eigen::Matrix<double, shape_count, 1>;  ///< ln ω, ln ζ of both
+
+/// Both terms at t = 0, 1, 2 …: z(t+1) = 2 e^(−s) C₁ z(t) − e^(−2s) z(t−1).
+void put_terms(Columns& columns, Eigen::Index at, const DecayShape& shape) {
+    const DecayTerms one = decay_terms(shape, 1.0);
+    const double trace = 2.0 * one.cosine_like, determinant = std::exp(-2.0 * shape.decay_rate());
+    columns(0, at) = 1.0, columns(0, at + 1) = 0.0;
+    columns(1, at) = one.cosine_like, columns(1, at + 1) = one.sine_like;
+    for (Eigen::Index k = 2; k < columns.rows(); ++k)
+        for (Eigen::Index j = at; j < at + 2; ++j)
+            columns(k, j) = trace * columns(k - 1, j) - determinant * columns(k - 2, j);
+}
+
+struct Projection {
+    Linear coefficients;
+    Eigen::VectorXd residual;
+    double sum = 0.0;
+};
+
+DecayShape shape_at(const Shapes& shapes, Eigen::Index which) {
+    return {std::exp(shapes(2 * which)), std::exp(shapes(2 * which + 1))};
+}
+
+Projection project(const Eigen::VectorXd& values, const Shapes& shapes, Columns& columns) {
+    constexpr double ridge = 1e-11;  // alike columns far beyond critical damping
+    columns.col(0).setOnes();
+    put_terms(columns, 1, shape_at(shapes, 0));
+    put_terms(columns, 3, shape_at(shapes, 1));
+    const Linear scale = columns.colwise().norm().transpose().cwiseMax(1e-300);
+    columns *= scale.cwiseInverse().asDiagonal();
+    Eigen::Matrix<double, linear_count, linear_count> normal = columns.transpose() * columns;
+    normal.diagonal().array() += ridge;
+    const Linear scaled = normal.ldlt().solve(columns.transpose() * values);
+    Projection projection;
+    projection.residual = values - columns * scaled;
+    projection.sum = projection.residual.squaredNorm();
+    projection.coefficients = scaled.cwiseQuotient(scale);
+    if (!std::isfinite(projection.sum)) projection.sum = 1e300;
+    return projection;
+}
+
+Shapes bounded(Shapes shapes) {
+    for (const Eigen::Index i : {0, 2}) shapes(i) = std::clamp(shapes(i), std::log(1e-6), std::log(3.1));
+    for (const Eigen::Index i : {1, 3}) shapes(i) = std::clamp(shapes(i), std::log(1e-6), std::log(30.0));
+    return shapes;
+}
+
+TwoTermFit to_fit(const Shapes& shapes, const Projection& projection, double mean) {
+    const Linear& c = projection.coefficients;
+    return {shape_at(shapes, 0),
+            shape_at(shapes, 1),
+            mean + c(0),
+            c(1),
+            c(2),
+            c(3),
+            c(4),
+            projection.sum,
+            static_cast<std::size_t>(projection.residual.size())};
+}
+
+/// Levenberg and Marquardt on the four shape numbers with the amplitudes eliminated at every step.
+TwoTermFit refine(const Eigen::VectorXd& values, Shapes shapes, double mean) {
+    constexpr int most_steps = 30;
+    constexpr double step = 1e-5, settled = 1e-4;
+    Columns columns(values.size(), static_cast<Eigen::Index>(linear_count));
+    Projection best = project(values, shapes, columns);
+    double damping = 1e-2;
+    for (int i = 0; i < most_steps && damping < 1e7; ++i) {
+        Eigen::Matrix<double, Eigen::Dynamic, shape_count> jacobian(values.size(),
+                                                                    static_cast<Eigen::Index>(shape_count));
+        for (Eigen::Index j = 0; j < jacobian.cols(); ++j) {
+            Shapes moved = shapes;
+            moved(j) += step;
+            jacobian.col(j) = (project(values, moved, columns).residual - best.residual) / step;
+        }
+        const Eigen::Matrix4d normal = jacobian.transpose() * jacobian;
+        const Shapes right = -jacobian.transpose() * best.residual;
+        bool improved = false;
+        double gain = 0.0;
+        for (int attempt = 0; attempt < 6 && !improved; ++attempt) {
+            Eigen::Matrix4d damped = normal;
+            damped.diagonal() *= 1.0 + damping;
+            damped.diagonal().array() += 1e-12 * normal.trace();
+            const Shapes move = damped.ldlt().solve(right).cwiseMax(-0.7).cwiseMin(0.7);
+            const Shapes tried = bounded(shapes + move);
+            const Projection after = project(values, tried, columns);
+            if (after.sum < best.sum) {
+                gain = (best.sum - after.sum) / best.sum;
+                best = after, shapes = tried, improved = true;
+                damping = std::max(0.2 * damping, 1e-9);
+            } else {
+                damping *= 6.0;
+            }
+        }
+        if (!improved || gain < settled) break;
+    }
+    return to_fit(shapes, best, mean);
+}
+
+}  // namespace
+
+double TwoTermFit::value_at(double t) const {
+    const DecayTerms a = decay_terms(first, t), b = decay_terms(second, t);
+    return offset + first_cosine * a.cosine_like + first_sine * a.sine_like + second_cosine * b.cosine_like +
+           second_sine * b.sine_like;
+}
+
+double TwoTermFit::residual_rms() const {
+    return std::sqrt(residual_sum / std::max(1.0, static_cast<double>(points) - 9.0));
+}
+
+std::optional<TwoTermFit> fit_two_terms(std::span<const double> points, const DecayShape& first,
+                                        const DecayShape& second) {
+    if (points.size() < fewest_points) return {};
+    Eigen::VectorXd values =
+        Eigen::Map<const Eigen::VectorXd>(points.data(), static_cast<Eigen::Index>(points.size()));
+    const double mean = values.mean();
+    values.array() -= mean;
+    if (!(values.squaredNorm() > 0.0)) return {};
+    const Shapes shapes(
+        std::log(first.undamped_angular_frequency), std::log(std::max(first.damping_ratio, 1e-6)),
+        std::log(second.undamped_angular_frequency), std::log(std::max(second.damping_ratio, 1e-6)));
+    return refine(values, bounded(shapes), mean);
+}
+
+std::optional<TwoTermFit> fit_two_terms(std::span<const double> points, const DecayShape& first) {
+    if (points.size() < fewest_points) return {};
+    const DecayFit alone = fit_amplitudes(points, first);
+    std::vector<double> left(points.size());
+    for (std::size_t k = 0; k < points.size(); ++k)
+        left[k] = points[k] - alone.value_at(static_cast<double>(k));
+    const std::optional<DecayFit> second = fit_decay(left);
+    if (!second) return {};
+    return fit_two_terms(points, first, second->shape);
+}
+
+}  // namespace ringwright::event_search

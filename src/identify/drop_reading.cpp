@@ -1,0 +1,384 @@
+#include "identify/drop_reading.hpp"
+
+#include <fmt/format.h>
+
+#include <Eigen/Cholesky>
+#include <algorithm>
+#include <cmath>
+#include <functional>
+#include <numbers>
+#include <optional>
+#include <span>
+#include <vector>
+
+#include "ringwright/distributions.hpp"
+
+namespace ringwright::identify {
+
+using Eigen::Index;
+using Eigen::Matrix4d;
+using Eigen::MatrixXd;
+using Eigen::Vector4d;
+using Eigen::VectorXd;
+
+namespace {
+
+/// A difference that is told: in standard uncertainties (one false alarm in a thousand) and as a share.
+constexpr double surprising = 3.3, material = 0.01;
+
+/// ω, ζ and rest level of the decay, as the motion after first touch needs them.
+struct Support {
+    double angular_frequency = 0.0, damping_ratio = 0.0, level = 0.0;
+    /// Distance from the rest position t after a start at x with velocity v (s after, m, m/s).
+    [[nodiscard]] double motion(double x, double v, double t) const {
+        const double s = damping_ratio * angular_frequency;
+        const double p = angular_frequency * angular_frequency * (1.0 - damping_ratio * damping_ratio);
+        const double root = std::sqrt(std::abs(p)), decay = std::exp(-s * t);
+        if (root * t < 1e-6) return decay * (x + (v + s * x) * t);
+        if (p > 0.0) return decay * (x * std::cos(root * t) + (v + s * x) * std::sin(root * t) / root);
+        const double slow = std::exp(-(s - root) * t), fast = std::exp(-(s + root) * t);
+        return 0.5 * (x * (slow + fast) + (v + s * x) * (slow - fast) / root);
+    }
+};
+
+/// Hold (m), acceleration (m/s², downwards), release and touch (s after the first sample that is looked at).
+struct FallShape {
+    double hold = 0.0, acceleration = 0.0, release = 0.0, touch = 0.0;
+    [[nodiscard]] Vector4d vector() const { return {hold, acceleration, release, touch}; }
+    static FallShape of(const Vector4d& v) { return {v(0), v(1), v(2), v(3)}; }
+    [[nodiscard]] double speed() const { return acceleration * (touch - release); }
+    [[nodiscard]] double height() const { return 0.5 * speed() * (touch - release); }
+    [[nodiscard]] double at(double t, const Support& support) const {
+        if (t <= release) return hold;
+        if (t <= touch) return hold + 0.5 * acceleration * (t - release) * (t - release);
+        // The spring begins to push at the touch, so that gravity alone acts there but for the damper: the
+        // mass swings about a place that lies a/ω² below, wherever it comes to rest in the end.
+        const double sag = acceleration / (support.angular_frequency * support.angular_frequency);
+        return hold + height() + sag + support.motion(-sag, speed(), t - touch);
+    }
+};
+
+/// The samples about the fall, downwards positive.
+struct FallSamples {
+    std::vector<double> time, way;
+};
+
+FallSamples samples_of(const Recording& recording, std::size_t begin, std::size_t end, double down) {
+    FallSamples samples;
+    for (std::size_t i = begin; i < end; ++i) {
+        samples.time.push_back(recording.clock.time_of(i) - recording.clock.time_of(begin));
+        samples.way.push_back(down * recording.samples[i]);
+    }
+    return samples;
+}
+
+VectorXd residuals(const FallSamples& samples, const FallShape& shape, const Support& support) {
+    VectorXd r(static_cast<Index>(samples.time.size()));
+    for (Index i = 0; i < r.size(); ++i) {
+        const auto k = static_cast<std::size_t>(i);
+        r(i) = samples.way[k] - shape.at(samples.time[k], support);
+    }
+    return r;
+}
+
+MatrixXd derivatives(const FallSamples& samples, const FallShape& shape, const Support& support,
+                     const Vector4d& steps) {
+    MatrixXd jacobian(static_cast<Index>(samples.time.size()), 4);
+    for (Index j = 0; j < 4; ++j) {
+        Vector4d more = shape.vector(), less = more;
+        more(j) += steps(j), less(j) -= steps(j);
+        jacobian.col(j) = (residuals(samples, FallShape::of(less), support) -
+                           residuals(samples, FallShape::of(more), support)) /
+                          (2.0 * steps(j));
+    }
+    return jacobian;
+}
+
+struct FallFit {
+    FallShape shape;
+    Matrix4d covariance = Matrix4d::Zero();
+    double degrees_of_freedom = 1.0;
+};
+
+/// By how much neighbours that go together widen an uncertainty: (1 + ρ)/(1 − ρ) of the variance.
+double correlation_factor(const VectorXd& r) {
+    const Index n = r.size();
+    const double squares = r.squaredNorm();
+    const double rho = squares > 0.0 ? r.head(n - 1).dot(r.tail(n - 1)) / squares : 0.0;
+    const double bounded = std::clamp(rho, 0.0, 0.95);
+    return (1.0 + bounded) / (1.0 - bounded);
+}
+
+/// Levenberg and Marquardt on the four numbers.
+std::optional<FallFit> fit_fall(const FallSamples& samples, FallShape shape, const Support& support) {
+    constexpr int most_steps = 60;
+    const double time = shape.touch - shape.release;
+    const Vector4d steps{1e-5 * std::abs(shape.height()), 1e-5 * shape.acceleration, 1e-5 * time,
+                         1e-5 * time};
+    VectorXd r = residuals(samples, shape, support);
+    double damping = 1e-3;
+    MatrixXd jacobian = derivatives(samples, shape, support, steps);
+    for (int step = 0; step < most_steps && damping < 1e8; ++step) {
+        Matrix4d normal = jacobian.transpose() * jacobian;
+        normal.diagonal() *= 1.0 + damping;
+        const Vector4d move = normal.ldlt().solve(jacobian.transpose() * r);
+        const FallShape tried = FallShape::of(shape.vector() + move);
+        const VectorXd after = residuals(samples, tried, support);
+        if (!(after.squaredNorm() < r.squaredNorm())) {
+            damping *= 8.0;
+            continue;
+        }
+        const bool settled = after.squaredNorm() > (1.0 - 1e-9) * r.squaredNorm();
+        shape = tried, r = after, damping *= 0.2;
+        jacobian = derivatives(samples, shape, support, steps);
+        if (settled) break;
+    }
+    const auto spare = static_cast<double>(r.size()) - 4.0;
+    if (spare < 4.0 || !(shape.touch > shape.release) || !(shape.acceleration > 0.0)) return {};
+    const double inflation = correlation_factor(r);
+    FallFit fit{shape, {}, std::max(1.0, spare / inflation)};
+    const Matrix4d normal = jacobian.transpose() * jacobian;
+    fit.covariance = r.squaredNorm() / spare * inflation * normal.ldlt().solve(Matrix4d::Identity());
+    return fit;
+}
+
+/// The parabola between two samples of the fall: where it begins at rest, how it bends.
+std::optional<FallShape> first_shape(const FallSamples& samples, double begin_s, double end_s,
+                                     const Support& support, double gravity) {
+    const double inner = 0.15 * (end_s - begin_s), middle = 0.5 * (begin_s + end_s);
+    std::vector<std::size_t> used;
+    for (std::size_t k = 0; k < samples.time.size(); ++k)
+        if (samples.time[k] > begin_s + inner && samples.time[k] < end_s - inner) used.push_back(k);
+    if (used.size() < 5) return {};
+    Eigen::MatrixX3d design(static_cast<Index>(used.size()), 3);
+    VectorXd way(design.rows());
+    for (Index i = 0; i < design.rows(); ++i) {
+        const std::size_t k = used[static_cast<std::size_t>(i)];
+        const double x = samples.time[k] - middle;
+        design.row(i) << 1.0, x, x * x;
+        way(i) = samples.way[k];
+    }
+    const Eigen::Vector3d c = (design.transpose() * design).ldlt().solve(design.transpose() * way);
+    if (!(c(2) > 0.0)) return {};
+    const double release = middle - 0.5 * c(1) / c(2), hold = c(0) - 0.25 * c(1) * c(1) / c(2);
+    const double touch_level =
+        support.level - gravity / (support.angular_frequency * support.angular_frequency);
+    const double touch = touch_level > hold ? release + std::sqrt((touch_level - hold) / c(2)) : end_s;
+    return FallShape{hold, 2.0 * c(2), release, touch};
+}
+
+/// The fall and the time after it in which the mass is on the spring for certain: until it has come to the
+/// lowest point and some way back.
+struct FallWindow {
+    std::size_t begin = 0, end = 0;
+    double fall_begin_s = 0.0, fall_end_s = 0.0;  ///< after `begin`
+};
+
+FallWindow window_of(const Recording& recording, const Event& event, double angular_frequency) {
+    constexpr double share_of_cycle = 0.3;
+    const SampleRange& fall = event.flights.front();
+    const double rate = recording.clock.sample_rate_hz;
+    const std::size_t time = fall.end - fall.begin;
+    const double after = share_of_cycle * 2.0 * std::numbers::pi / angular_frequency * rate;
+    FallWindow window;
+    window.begin = fall.begin - std::min(fall.begin, time);
+    window.end = std::min(recording.size(), fall.end + static_cast<std::size_t>(std::ceil(after)));
+    const double origin = recording.clock.time_of(window.begin);
+    window.fall_begin_s = recording.clock.time_of(fall.begin) - origin;
+    window.fall_end_s = recording.clock.time_of(std::min(fall.end, recording.size() - 1)) - origin;
+    return window;
+}
+
+Estimate estimate_of_reading(double value, double deviation, double degrees_of_freedom, double confidence) {
+    const double reach = student_t_factor(confidence, degrees_of_freedom) * deviation;
+    return {value, deviation, {value - reach, value + reach}, degrees_of_freedom};
+}
+
+double square(double value) {
+    return value * value;
+}
+
+/// Standard uncertainty of `value`: noise, and what the decay's own uncertainty does.
+double uncertainty_of(const FallFit& fit, const std::vector<std::pair<FallFit, Support>>& moved,
+                      const Support& support,
+                      const std::function<double(const FallShape&, const Support&)>& value) {
+    Vector4d gradient;
+    for (Index j = 0; j < 4; ++j) {
+        const double step = std::max(1e-3 * std::sqrt(std::abs(fit.covariance(j, j))), 1e-12);
+        Vector4d more = fit.shape.vector(), less = more;
+        more(j) += step, less(j) -= step;
+        gradient(j) =
+            (value(FallShape::of(more), support) - value(FallShape::of(less), support)) / (2.0 * step);
+    }
+    double variance = gradient.dot(fit.covariance * gradient);
+    const double here = value(fit.shape, support);
+    for (const auto& [other, at] : moved) variance += square(value(other.shape, at) - here);
+    return std::sqrt(std::max(variance, 0.0));
+}
+
+std::string percent(double share) {
+    return fmt::format("{:.1f} % {}", 100.0 * std::abs(share), share > 0.0 ? "more" : "less");
+}
+
+Finding fall_finding(double seen, double gravity, const char* what) {
+    return {"fall_disagrees_with_gravity", Severity::caution,
+            fmt::format("{} {:.4g} m/s², {} than gravity ({:.6g} m/s²). Check the sensor's scale and that it "
+                        "points along the fall; a guide that rubs also holds the mass back.",
+                        what, seen, percent(seen / gravity - 1.0), gravity)};
+}
+
+bool disagrees(double ratio, double deviation) {
+    return std::abs(ratio - 1.0) > material && std::abs(ratio - 1.0) > surprising * deviation;
+}
+
+DropReading read_displacement(const Recording& recording, const Event& event, const RestingDecay& decay,
+                              const Gravity& gravity, double confidence) {
+    const SampleRange& fall = event.flights.front();
+    const double omega = 2.0 * std::numbers::pi * decay.natural_frequency.value;
+    const double down = decay.level > recording.samples[fall.begin] ? 1.0 : -1.0;
+    const FallWindow window = window_of(recording, event, omega);
+    const FallSamples samples = samples_of(recording, window.begin, window.end, down);
+    const Support support{omega, decay.damping_ratio.value, down * decay.level};
+    const auto first = first_shape(samples, window.fall_begin_s, window.fall_end_s, support, gravity.value);
+    const std::optional<FallFit> fit = first ? fit_fall(samples, *first, support) : std::nullopt;
+    if (!fit) return {};
+    std::vector<std::pair<FallFit, Support>> moved;
+    const auto move = [&](const Support& to) {
+        if (const auto other = fit_fall(samples, fit->shape, to)) moved.emplace_back(*other, to);
+    };
+    const double frequency_off = decay.natural_frequency.standard_uncertainty / decay.natural_frequency.value;
+    move({omega * (1.0 + frequency_off), support.damping_ratio, support.level});
+    move({omega, support.damping_ratio + decay.damping_ratio.standard_uncertainty, support.level});
+    move({omega, support.damping_ratio, support.level + decay.level_standard_uncertainty});
+    const auto deviation = [&](const std::function<double(const FallShape&, const Support&)>& value) {
+        return uncertainty_of(*fit, moved, support, value);
+    };
+    const auto height = [](const FallShape& s, const Support&) { return s.height(); };
+    const auto speed = [](const FallShape& s, const Support&) { return s.speed(); };
+    const auto deflection = [](const FallShape& s, const Support& on) {
+        return on.level - s.hold - s.height();
+    };
+    const auto gravity_seen = [](const FallShape& s, const Support&) { return s.acceleration; };
+    DropReading reading;
+    const auto put = [&](Quantity quantity, const auto& value) {
+        const double at = value(fit->shape, support);
+        if (at > 0.0)
+            reading.quantities[quantity] =
+                estimate_of_reading(at, deviation(value), fit->degrees_of_freedom, confidence);
+    };
+    put(Quantity::drop_height, height);
+    put(Quantity::contact_velocity, speed);
+    put(Quantity::static_deflection, deflection);
+    const double seen = fit->shape.acceleration / gravity.value;
+    const double seen_off = std::hypot(deviation(gravity_seen), gravity.standard_uncertainty) / gravity.value;
+    if (disagrees(seen, seen_off)) {
+        reading.findings.push_back(
+            fall_finding(fit->shape.acceleration, gravity.value, "The mass falls with"));
+        return reading;
+    }
+    const auto ratio = [&](const FallShape& s, const Support& on) {
+        return gravity.value / (on.level - s.hold - s.height()) / square(on.angular_frequency);
+    };
+    const double stiffer = ratio(fit->shape, support);
+    const double off = std::hypot(deviation(ratio), gravity.standard_uncertainty / gravity.value);
+    if (stiffer > 0.0 && disagrees(stiffer, off))
+        reading.findings.push_back(
+            {"static_deflection_disagrees", Severity::caution,
+             fmt::format("Gravity over the static deflection gives a stiffness per mass {} than the ringing "
+                         "does. A spring that is not straight, a preload, friction that holds the mass off "
+                         "its rest position, or a sensor that does not see the foot of the spring does that.",
+                         percent(stiffer - 1.0))});
+    return reading;
+}
+
+/// When a change of level passes its middle, s, and the standard uncertainty of that moment.
+struct Moment {
+    double time_s = 0.0, deviation_s = 0.0;
+    bool seen = false;
+};
+
+/// The crossing of the middle between two levels next to a sample; known to the sampling interval and to the
+/// time the change takes, as a rectangular distribution (JCGM 100, 4.3.7).
+Moment crossing(const Recording& recording, std::size_t begin, std::size_t end, double from, double to) {
+    const std::vector<double>& y = recording.samples;
+    const auto share = [&](std::size_t i) { return (y[i] - from) / (to - from); };
+    Moment moment;
+    for (std::size_t i = begin; i + 1 < end && !moment.seen; ++i) {
+        if (share(i) >= 0.5 || share(i + 1) < 0.5) continue;
+        std::size_t first = i, last = i + 1;
+        while (first > begin && share(first) > 0.1) --first;
+        while (last + 1 < end && share(last) < 0.9) ++last;
+        const double t0 = recording.clock.time_of(i), t1 = recording.clock.time_of(i + 1);
+        moment.time_s = t0 + (0.5 - share(i)) / (share(i + 1) - share(i)) * (t1 - t0);
+        const double width = recording.clock.time_of(last) - recording.clock.time_of(first);
+        moment.deviation_s = width / std::sqrt(12.0);
+        moment.seen = true;
+    }
+    return moment;
+}
+
+double mean_between(const Recording& recording, std::size_t begin, std::size_t end) {
+    double sum = 0.0;
+    for (std::size_t i = begin; i < end; ++i) sum += recording.samples[i];
+    return sum / static_cast<double>(std::max<std::size_t>(1, end - begin));
+}
+
+DropReading read_acceleration(const Recording& recording, const Event& event, const RestingDecay& decay,
+                              const Gravity& gravity, double confidence) {
+    constexpr double infinite = std::numeric_limits<double>::infinity();
+    const SampleRange& fall = event.flights.front();
+    const std::size_t time = fall.end - fall.begin, inner = time / 5;
+    const double free = mean_between(recording, fall.begin + inner, fall.end - inner);
+    DropReading reading;
+    const double omega = 2.0 * std::numbers::pi * decay.natural_frequency.value;
+    const double deflection = gravity.value / square(omega);
+    const double relative =
+        2.0 * decay.natural_frequency.standard_uncertainty / decay.natural_frequency.value;
+    reading.quantities[Quantity::static_deflection] = estimate_of_reading(
+        deflection, deflection * relative, decay.natural_frequency.degrees_of_freedom, confidence);
+    const double shown = std::abs(decay.level - free);
+    const double shown_off = std::hypot(decay.level_standard_uncertainty, gravity.standard_uncertainty);
+    if (disagrees(shown / gravity.value, shown_off / gravity.value))
+        reading.findings.push_back(
+            fall_finding(shown, gravity.value, "Between free fall and rest the sensor shows"));
+    const std::size_t before = fall.begin - std::min(fall.begin, time);
+    const double hold = mean_between(recording, before, fall.begin - std::min(fall.begin, inner));
+    const Moment release = crossing(recording, before, fall.begin + inner, hold, free);
+    // The touch: to where the sensor shows as much push as the weight asks for.
+    const Moment touch = crossing(recording, fall.end - inner,
+                                  std::min(recording.size(), fall.end + inner + 4), free, decay.level);
+    if (!event.hold_seen || !release.seen || !touch.seen || !(touch.time_s > release.time_s)) return reading;
+    const double lasts = touch.time_s - release.time_s;
+    const double lasts_off = std::hypot(release.deviation_s, touch.deviation_s) / lasts;
+    const double height = 0.5 * gravity.value * lasts * lasts, speed = gravity.value * lasts;
+    reading.quantities[Quantity::drop_height] =
+        estimate_of_reading(height, 2.0 * height * lasts_off, infinite, confidence);
+    reading.quantities[Quantity::contact_velocity] =
+        estimate_of_reading(speed, speed * lasts_off, infinite, confidence);
+    return reading;
+}
+
+}  // namespace
+
+RestingDecay resting_decay(const CurveFit& fit, const Quantities& quantities) {
+    RestingDecay decay;
+    decay.natural_frequency = quantities.at(Quantity::natural_frequency);
+    decay.damping_ratio = quantities.at(Quantity::damping_ratio);
+    decay.level = fit.fit.coefficients(0) * fit.samples.scale;
+    VectorXd gradient = VectorXd::Zero(fit.map.rows());
+    gradient(0) = 1.0;
+    decay.level_standard_uncertainty = spread_of(fit, gradient).scale * fit.samples.scale;
+    return decay;
+}
+
+DropReading read_drop(const Recording& recording, const Event& event, const RestingDecay& decay,
+                      const Gravity& gravity, double confidence_level) {
+    if (event.flights.empty() || !recording.scaled) return {};
+    if (recording.quantity == MeasuredQuantity::acceleration)
+        return read_acceleration(recording, event, decay, gravity, confidence_level);
+    if (recording.quantity == MeasuredQuantity::displacement && event.hold_seen)
+        return read_displacement(recording, event, decay, gravity, confidence_level);
+    return {};
+}
+
+}  // namespace ringwright::identify
