@@ -41,7 +41,7 @@ EventIdentification two_modes(std::uint64_t seed, double f2, double zeta2, doubl
 TEST_CASE("a second mode that is some bins wide is found, and the first is not biased") {
     for (const double share : {0.05, 0.2, 0.6}) {
         int held = 0;
-        for (std::uint64_t seed = 1; seed <= 15; ++seed) {
+        for (std::uint64_t seed = 1; seed <= 6; ++seed) {
             const EventIdentification result = two_modes(seed, 31.0, 0.015, share);
             REQUIRE(result.curve_fit.status == MethodStatus::ok);
             INFO("share " << share << ", seed " << seed);
@@ -52,12 +52,12 @@ TEST_CASE("a second mode that is some bins wide is found, and the first is not b
             const Estimate& first = result.curve_fit.quantities.at(Quantity::damping_ratio);
             held += first.interval.low <= 0.02 && 0.02 <= first.interval.high;
         }
-        CHECK(held >= 11);  // of 15 at 95 %: fewer are seen once in 1,800
+        CHECK(held >= 4);  // of 6 at 95 %: fewer are seen once in 450
     }
 }
 
 TEST_CASE("hum of a third of the amplitude is a tone, not the mode reported") {
-    for (std::uint64_t seed = 1; seed <= 5; ++seed) {
+    for (std::uint64_t seed = 1; seed <= 2; ++seed) {
         const EventIdentification result = two_modes(seed, 50.0, 0.0, 0.33);
         REQUIRE(result.curve_fit.status == MethodStatus::ok);
         const Estimate& f = result.curve_fit.quantities.at(Quantity::natural_frequency);
