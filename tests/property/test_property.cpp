@@ -42,7 +42,9 @@ Loading loading(double frequency_hz, double damping_ratio, double added = 0.0,
 }
 
 Article with_mass(double value, double standard_uncertainty = 0.0) {
-    return {kilograms(value, standard_uncertainty), std::nullopt, std::nullopt};
+    Article article;
+    article.mass = kilograms(value, standard_uncertainty);
+    return article;
 }
 
 double value_of(const PropertyResult& result, Quantity quantity) {
