@@ -146,7 +146,7 @@ TEST_CASE("the same recording gives the same answer") {
     CHECK(a.agreement.p_value == b.agreement.p_value);
 }
 
-TEST_CASE("coverage of the curve fit, short form") {
+TEST_CASE("coverage of the curve fit, short form", "[long]") {
     // 150 recordings a cell at a nominal 95 %: fewer than 131 hits have a probability of 1e-4 (binomial). The
     // full form is tests/bench/coverage_study.
     struct Cell {
@@ -176,7 +176,7 @@ TEST_CASE("coverage of the curve fit, short form") {
     }
 }
 
-TEST_CASE("coverage of logarithmic decrement and half-power, and their agreement, short form") {
+TEST_CASE("coverage of logarithmic decrement and half-power, and their agreement, short form", "[long]") {
     // 100 recordings a cell at a nominal 95 %: fewer than 86 hits have a probability of 3e-4 (binomial); more
     // than 5 disagreements at the stated 1 % one of 5e-4. The full form is tests/bench/coverage_study.
     for (const double correlation : {0.0, 0.8}) {

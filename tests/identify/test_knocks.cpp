@@ -52,13 +52,14 @@ TEST_CASE("a knock that shakes only the sensor is left out, and the answer holds
         CHECK(said(result, "knock"));
         const Estimate& ratio = result.curve_fit.quantities.at(Quantity::damping_ratio);
         held += ratio.interval.low <= 0.02 && 0.02 <= ratio.interval.high;
-        // The bound for the whole decay at 40 dB is 4.1e-5 (cramer_rao in tests/support); a tenth of it is left out.
+        // The bound for the whole decay at 40 dB is 4.1e-5 (cramer_rao in tests/support); a tenth of it is
+        // left out.
         CHECK(ratio.standard_uncertainty < 7e-5);
     }
     CHECK(held >= 16);  // of 20 at 95 %: fewer are seen once in 400
 }
 
-TEST_CASE("a knock that moves the article ends the decay") {
+TEST_CASE("a knock that moves the article ends the decay", "[long]") {
     int held = 0;
     for (std::uint64_t seed = 10; seed < 30; ++seed) {
         const auto result = identify_knocked(seed, 0.3, 0.15);
@@ -70,7 +71,7 @@ TEST_CASE("a knock that moves the article ends the decay") {
     CHECK(held >= 16);
 }
 
-TEST_CASE("no knock is heard in a quiet decay") {
+TEST_CASE("no knock is heard in a quiet decay", "[long]") {
     int heard = 0;
     for (std::uint64_t seed = 100; seed < 200; ++seed)
         heard += said(identify_knocked(seed, 0.0, 0.0), "knock");

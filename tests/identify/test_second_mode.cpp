@@ -38,7 +38,7 @@ EventIdentification two_modes(std::uint64_t seed, double f2, double zeta2, doubl
 
 // A mode with a damping ratio of 0.015 is ten bins wide here: it does not stand out of its near surroundings,
 // which its own skirts fill.
-TEST_CASE("a second mode that is some bins wide is found, and the first is not biased") {
+TEST_CASE("a second mode that is some bins wide is found, and the first is not biased", "[long]") {
     for (const double share : {0.05, 0.2, 0.6}) {
         int held = 0;
         for (std::uint64_t seed = 1; seed <= 6; ++seed) {

@@ -38,7 +38,7 @@ void check_truth(const EventIdentification& result, int& held) {
 
 }  // namespace
 
-TEST_CASE("the exponential of an AC-coupled sensor is fitted with the decay and named") {
+TEST_CASE("the exponential of an AC-coupled sensor is fitted with the decay and named", "[long]") {
     int held = 0, agreed = 0;
     for (std::uint64_t seed = 50; seed < 70; ++seed) {
         const auto result = identify_over(seed, [](double t) { return -0.4 * std::exp(-5.0 * t); });
@@ -60,7 +60,7 @@ TEST_CASE("a straight drift is fitted with the decay and named") {
     CHECK(held >= 16);
 }
 
-TEST_CASE("nothing slow is found where there is nothing") {
+TEST_CASE("nothing slow is found where there is nothing", "[long]") {
     int found = 0;
     for (std::uint64_t seed = 100; seed < 200; ++seed) {
         const auto result = identify_over(seed, [](double) { return 0.0; });
