@@ -64,20 +64,24 @@ class RestrictedLikelihood {
                          std::vector<Stretch> stretches, Eigen::Index highest_order);
 
     [[nodiscard]] WhitenedFit evaluate(const Eigen::VectorXd& partial_autocorrelation) const;
+    /// The criterion of `evaluate` alone, at a fraction of its cost; infinite where that is not valid.
+    [[nodiscard]] double criterion(const Eigen::VectorXd& partial_autocorrelation) const;
     [[nodiscard]] Eigen::Index rows() const { return rows_; }
     [[nodiscard]] Eigen::Index columns() const { return width_ - 1; }
     [[nodiscard]] Eigen::Index highest_order() const { return highest_order_; }
 
   private:
+    [[nodiscard]] WhitenedFit evaluate(const Eigen::VectorXd& partial_autocorrelation,
+                                       bool with_coefficients) const;
     [[nodiscard]] Eigen::MatrixXd gram(const Eigen::MatrixXd& predictors,
                                        const Eigen::VectorXd& variances) const;
-    [[nodiscard]] const std::vector<Eigen::MatrixXd>& lag_products(Eigen::Index order) const;
+    [[nodiscard]] const Eigen::MatrixXd& lag_products(Eigen::Index order) const;
 
     Eigen::Index rows_ = 0, width_ = 0, highest_order_ = 0;
     std::vector<Stretch> stretches_;
     std::vector<Eigen::MatrixXd> heads_, tails_;  // first and last rows of each stretch
     std::vector<Eigen::MatrixXd> full_products_;  // Σ z_t z_(t−j)ᵀ
-    mutable std::vector<std::vector<Eigen::MatrixXd>> products_of_order_;
+    mutable std::vector<Eigen::MatrixXd> products_of_order_;
 };
 
 /// One plausible noise model with its weight, and the fit under it.

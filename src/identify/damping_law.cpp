@@ -1,16 +1,18 @@
 #include "identify/damping_law.hpp"
 
 #include <algorithm>
+#include <array>
 #include <boost/numeric/odeint.hpp>
+#include <cassert>
 #include <cmath>
 
 namespace ringwright::identify {
 
 namespace {
 
-using State = std::vector<double>;  // x, v, then (∂x, ∂v) by each parameter
-using Stepper = boost::numeric::odeint::result_of::make_dense_output<
-    boost::numeric::odeint::runge_kutta_dopri5<State>>::type;
+// x, v, then (∂x, ∂v) by each parameter; of one size for any number of them, so that it needs no allocation.
+constexpr std::size_t most_parameters = 8;
+constexpr std::size_t motion_alone = 2, with_derivatives = 2 + 2 * most_parameters;
 
 constexpr double runaway = 100.0;  // lengths; the motions looked at are of the order of one
 constexpr double first_step = 0.05;
@@ -50,11 +52,13 @@ class Swing {
           asymmetry_(law[LawParameter::asymmetry]),
           quadratic_(law[LawParameter::quadratic]) {}
 
-    void operator()(const State& z, State& rate, double /*time*/) const {
+    template <std::size_t n>
+    void operator()(const std::array<double, n>& z, std::array<double, n>& rate, double /*time*/) const {
         const double x = z[0], v = z[1];
+        rate.fill(0.0);
         rate[0] = v;
         rate[1] = acceleration(x, v);
-        if (by_.empty()) return;
+        if constexpr (n == motion_alone) return;
         const double by_x = derivative_by_displacement(x), by_v = derivative_by_velocity(v);
         for (std::size_t i = 0; i < by_.size(); ++i) {
             const double dx = z[2 + 2 * i], dv = z[3 + 2 * i];
@@ -87,7 +91,12 @@ class Swing {
     double stiffness_, cubic_, friction_, damping_, asymmetry_, quadratic_;
 };
 
+template <std::size_t n>
 class Motion {
+    using State = std::array<double, n>;
+    using Stepper = typename boost::numeric::odeint::result_of::make_dense_output<
+        boost::numeric::odeint::runge_kutta_dopri5<State>>::type;
+
   public:
     Motion(const DampingLaw& law, Measured measured, const std::vector<double>& times,
            const std::vector<LawParameter>& by, double tolerance)
@@ -98,10 +107,10 @@ class Motion {
           swing_(law, by),
           stepper_(boost::numeric::odeint::make_dense_output(
               tolerance, tolerance, boost::numeric::odeint::runge_kutta_dopri5<State>())),
-          here_(2 + 2 * by.size(), 0.0) {
-        const auto n = static_cast<Eigen::Index>(times.size());
-        out_.value.resize(n);
-        out_.derivative.resize(n, static_cast<Eigen::Index>(by.size()));
+          here_{} {
+        const auto rows = static_cast<Eigen::Index>(times.size());
+        out_.value.resize(rows);
+        out_.derivative.resize(rows, static_cast<Eigen::Index>(by.size()));
     }
 
     LawMotion run() {
@@ -180,7 +189,7 @@ class Motion {
         int side = 0;
         for (int i = 0; i < 60 && high - low > enough; ++i) {
             const double middle = (low * high_v - high * low_v) / (high_v - low_v);
-            stepper_.calc_state(middle, scratch());
+            stepper_.calc_state(middle, scratch_);
             const double v = scratch_[1];
             if (std::abs(v) < 1e-15) return middle;
             if (v * swing_.direction > 0.0) {
@@ -198,14 +207,9 @@ class Motion {
         return 0.5 * (low + high);
     }
 
-    State& scratch() {
-        scratch_.resize(here_.size());
-        return scratch_;
-    }
-
     void write_until(double time) {
         for (; next_ < times_.size() && times_[next_] <= time; ++next_) {
-            stepper_.calc_state(std::max(times_[next_], stepper_.previous_time()), scratch());
+            stepper_.calc_state(std::max(times_[next_], stepper_.previous_time()), scratch_);
             write(scratch_);
         }
     }
@@ -252,7 +256,7 @@ class Motion {
     const std::vector<LawParameter>& by_;
     Swing swing_;
     Stepper stepper_;
-    State here_, scratch_;
+    State here_{}, scratch_{};
     std::size_t next_ = 0;
     LawMotion out_;
 };
@@ -297,7 +301,9 @@ double DampingLaw::angular_frequency() const {
 
 LawMotion move(const DampingLaw& law, Measured measured, const std::vector<double>& times,
                const std::vector<LawParameter>& by, double tolerance) {
-    return Motion(law, measured, times, by, tolerance).run();
+    if (by.empty()) return Motion<motion_alone>(law, measured, times, by, tolerance).run();
+    assert(by.size() <= most_parameters);
+    return Motion<with_derivatives>(law, measured, times, by, tolerance).run();
 }
 
 }  // namespace ringwright::identify

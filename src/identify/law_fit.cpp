@@ -283,7 +283,7 @@ std::vector<LawParameter> worth_trying(const LawFit& fit, const std::vector<LawP
 }
 
 // Adds terms one by one while each is worth its price. `misfit`: something is known to be left over, whatever
-// the score says.
+// the score says; strong friction is then the one that is far from a small change.
 LawFit grown(LawFit fit, bool misfit = false) {
     while (fit.terms.count() < most_terms) {
         const std::vector<LawParameter> missing = terms_not_in(fit.terms);
@@ -291,7 +291,9 @@ LawFit grown(LawFit fit, bool misfit = false) {
         const bool looks_needless = !score || *score < price_of_term(rows_of(fit.curve));
         if (looks_needless && !(misfit && fit.terms.count() == 0)) break;
         std::optional<LawFit> best;
-        for (const LawParameter added : worth_trying(fit, missing)) {
+        const std::vector<LawParameter> tried =
+            looks_needless ? std::vector{LawParameter::friction} : worth_trying(fit, missing);
+        for (const LawParameter added : tried) {
             auto trial = with_term(fit, added);
             if (trial && (!best || trial->criterion < best->criterion)) best = std::move(trial);
         }

@@ -12,7 +12,7 @@ using Eigen::VectorXd;
 
 namespace {
 
-constexpr double fit_tolerance = 1e-9;
+constexpr double fit_tolerance = 1e-7;  // of the swing; a recording of 80 dB has noise of 1e-4
 // Acceleration jumps at reversals, so that its mean over a block takes more points than that of a smooth
 // motion, for which two leave an error of 1e-6 of the amplitude.
 constexpr Index smooth_points = 2, jumping_points = 8;

@@ -126,12 +126,13 @@ RestrictedLikelihood::RestrictedLikelihood(const MatrixXd& design, const VectorX
     }
 }
 
-// products[i * (p + 1) + j], j ≥ i: Σ over t = p … end of z_(t−i) z_(t−j)ᵀ, all stretches longer than p.
-const std::vector<MatrixXd>& RestrictedLikelihood::lag_products(Index order) const {
-    auto& products = products_of_order_[static_cast<std::size_t>(order)];
-    if (!products.empty()) return products;
-    const Index side = order + 1;
-    products.assign(static_cast<std::size_t>(side * side), MatrixXd());
+// One column for each pair i ≤ j of 0 … p, in that order: the elements of P + Pᵀ (of P where i = j), where
+// P = Σ over t = p … end of z_(t−i) z_(t−j)ᵀ, all stretches longer than p.
+const MatrixXd& RestrictedLikelihood::lag_products(Index order) const {
+    MatrixXd& products = products_of_order_[static_cast<std::size_t>(order)];
+    if (products.size() > 0) return products;
+    products.resize(width_ * width_, (order + 1) * (order + 2) / 2);
+    Index column = 0;
     for (Index i = 0; i <= order; ++i) {
         for (Index j = i; j <= order; ++j) {
             const Index lag = j - i;
@@ -155,25 +156,25 @@ const std::vector<MatrixXd>& RestrictedLikelihood::lag_products(Index order) con
                         sum.noalias() -= later.transpose() * head.row(u - lag);
                 }
             }
-            products[static_cast<std::size_t>(i * side + j)] = std::move(sum);
+            if (j > i) sum += sum.transpose().eval();
+            products.col(column++) = sum.reshaped();
         }
     }
     return products;
 }
 
 MatrixXd RestrictedLikelihood::gram(const MatrixXd& predictors, const VectorXd& variances) const {
-    const Index order = predictors.rows() - 1, side = order + 1;
-    const auto& products = lag_products(order);
-    VectorXd filter(side);
+    const Index order = predictors.rows() - 1;
+    VectorXd filter(order + 1);
     filter(0) = 1.0;
     filter.tail(order) = -predictors.row(order).head(order).transpose();
-    MatrixXd diagonal = MatrixXd::Zero(width_, width_), upper = MatrixXd::Zero(width_, width_);
-    for (Index i = 0; i < side; ++i) {
-        diagonal += filter(i) * filter(i) * products[static_cast<std::size_t>(i * side + i)];
-        for (Index j = i + 1; j < side; ++j)
-            upper += filter(i) * filter(j) * products[static_cast<std::size_t>(i * side + j)];
-    }
-    MatrixXd sum = diagonal + upper + upper.transpose();
+    const MatrixXd& products = lag_products(order);
+    VectorXd weights(products.cols());
+    Index column = 0;
+    for (Index i = 0; i <= order; ++i)
+        for (Index j = i; j <= order; ++j) weights(column++) = filter(i) * filter(j);
+    MatrixXd sum(width_, width_);
+    sum.reshaped().noalias() = products * weights;
     for (std::size_t s = 0; s < stretches_.size(); ++s) {
         for (Index m = 0; m < std::min(order, stretches_[s].length); ++m) {
             Eigen::RowVectorXd innovation = heads_[s].row(m);
@@ -185,6 +186,15 @@ MatrixXd RestrictedLikelihood::gram(const MatrixXd& predictors, const VectorXd& 
 }
 
 WhitenedFit RestrictedLikelihood::evaluate(const VectorXd& partial) const {
+    return evaluate(partial, true);
+}
+
+double RestrictedLikelihood::criterion(const VectorXd& partial) const {
+    const WhitenedFit fit = evaluate(partial, false);
+    return fit.valid ? fit.criterion : std::numeric_limits<double>::infinity();
+}
+
+WhitenedFit RestrictedLikelihood::evaluate(const VectorXd& partial, bool with_coefficients) const {
     const MatrixXd predictors = predictors_of(partial);
     const VectorXd variances = relative_variances(partial);
     const MatrixXd sum = gram(predictors, variances);
@@ -199,10 +209,12 @@ WhitenedFit RestrictedLikelihood::evaluate(const VectorXd& partial) const {
     if (k > 0) {
         const Eigen::LLT<MatrixXd> factor(sum.topLeftCorner(k, k));
         if (factor.info() != Eigen::Success) return fit;
-        fit.coefficients = factor.solve(sum.col(k).head(k));
-        fit.unit_covariance = factor.solve(MatrixXd::Identity(k, k));
-        explained = fit.coefficients.dot(sum.col(k).head(k));
-        log_determinant += 2.0 * MatrixXd(factor.matrixL()).diagonal().array().log().sum();
+        explained = factor.matrixL().solve(sum.col(k).head(k)).squaredNorm();
+        log_determinant += 2.0 * factor.matrixLLT().diagonal().array().log().sum();
+        if (with_coefficients) {
+            fit.coefficients = factor.solve(sum.col(k).head(k));
+            fit.unit_covariance = factor.solve(MatrixXd::Identity(k, k));
+        }
     }
     fit.residual_sum = sum(k, k) - explained;
     if (!(fit.residual_sum > 0.0) || !std::isfinite(log_determinant)) return fit;
@@ -228,14 +240,18 @@ VectorXd to_partial(const VectorXd& unbounded) {
 constexpr double prior_exponent = 0.25;
 
 // −2 log posterior as a function of the inverse hyperbolic tangents of the partial autocorrelations.
+double minus_two_log_posterior(double criterion, const VectorXd& partial) {
+    return criterion + 2.0 * prior_exponent * (1.0 - partial.array().square()).log().sum();
+}
+
 double minus_two_log_posterior(const WhitenedFit& fit, const VectorXd& partial) {
-    if (!fit.valid) return std::numeric_limits<double>::infinity();
-    return fit.criterion + 2.0 * prior_exponent * (1.0 - partial.array().square()).log().sum();
+    return fit.valid ? minus_two_log_posterior(fit.criterion, partial)
+                     : std::numeric_limits<double>::infinity();
 }
 
 double minus_two_log_posterior(const RestrictedLikelihood& likelihood, const VectorXd& unbounded) {
     const VectorXd partial = to_partial(unbounded);
-    return minus_two_log_posterior(likelihood.evaluate(partial), partial);
+    return minus_two_log_posterior(likelihood.criterion(partial), partial);
 }
 
 VectorXd gradient_of(const RestrictedLikelihood& likelihood, const VectorXd& at) {
@@ -292,7 +308,8 @@ VectorXd minimise(const RestrictedLikelihood& likelihood, VectorXd at) {
 
 // Covariance of the unbounded parameters: inverse of half the curvature of −2 log posterior.
 MatrixXd posterior_covariance(const RestrictedLikelihood& likelihood, const VectorXd& at) {
-    constexpr double step = 0.02;
+    // Well inside the posterior, whose width falls with the root of the number of rows.
+    const double step = std::min(0.02, 0.4 / std::sqrt(static_cast<double>(likelihood.rows())));
     const Index n = at.size();
     MatrixXd hessian(n, n);
     for (Index i = 0; i < n; ++i) {
@@ -335,7 +352,8 @@ std::vector<NoiseDraw> draw_noise(const RestrictedLikelihood& likelihood, const 
             total += draws.back().weight;
         }
     }
-    if (draws.empty()) return {best};
+    // Beside a posterior much narrower than its curvature says, every draw weighs nothing.
+    if (!(total > 0.0)) return {best};
     for (NoiseDraw& draw : draws) draw.weight /= total;
     return draws;
 }
