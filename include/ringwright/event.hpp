@@ -17,9 +17,9 @@ enum class TestKind { pluck, tap, drop };
 [[nodiscard]] std::optional<TestKind> test_kind_from_text(std::string_view text);
 
 /// One free decay. Sample indices, half-open: [quiet_begin, quiet_end) is the undisturbed stretch before the
-/// hand or hammer (empty when there is none); [begin, end) runs from the first sample of free decay to the
-/// noise floor; [end, rest_end) is the stretch of noise after it, up to the next disturbance or the end of
-/// the recording.
+/// hand or hammer (empty when there is none, then at the end of what belongs to the event before); [begin,
+/// end) runs from the first sample of free decay to the noise floor; [end, rest_end) is the stretch of noise
+/// after it, up to the next disturbance or the end of the recording.
 struct Event {
     TestKind kind = TestKind::pluck;
     bool kind_known = false;  ///< said by the user, or certain from the signal

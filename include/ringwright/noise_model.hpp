@@ -4,6 +4,7 @@
 #include <Eigen/Core>
 #include <cstddef>
 #include <cstdint>
+#include <optional>
 #include <vector>
 
 namespace ringwright {
@@ -102,6 +103,8 @@ struct NoiseFit {
 
 struct NoiseOptions {
     Eigen::Index highest_order = 10;
+    /// Partial autocorrelations to start from: their order is kept, which costs a tenth of a search for it.
+    std::optional<Eigen::VectorXd> start{};
     int draws = 40;  ///< 0: none
     std::uint64_t seed = 1;
 };

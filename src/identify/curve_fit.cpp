@@ -83,17 +83,40 @@ void keep_decay_part(WhitenedFit& fit, Index columns) {
 
 }  // namespace
 
-bool estimate_noise(CurveFit& fit, const MatrixXd& all_columns, const VectorXd& residual, int draws,
-                    std::uint64_t seed) {
+NoiseOptions noise_with_draws(const CurveFitOptions& options) {
+    NoiseOptions noise;
+    noise.draws = options.noise_draws;
+    noise.seed = options.seed;
+    return noise;
+}
+
+NoiseOptions noise_alone() {
+    NoiseOptions options;
+    options.draws = 0;
+    return options;
+}
+
+NoiseOptions noise_no_higher(const CurveFit& fit) {
+    NoiseOptions options = noise_alone();
+    options.highest_order = fit.noise.noise.order();
+    return options;
+}
+
+NoiseOptions noise_from(const CurveFit& fit) {
+    NoiseOptions options = noise_alone();
+    options.start = fit.noise.noise.partial_autocorrelation;
+    return options;
+}
+
+bool estimate_noise(CurveFit& fit, const MatrixXd& all_columns, const VectorXd& residual,
+                    const NoiseOptions& options) {
     const Orthonormal design = orthonormalise(all_columns);
     if (!design.full_rank) return false;
     fit.residual = residual;
     fit.map = design.map;
     fit.basis = design.basis;
-    NoiseOptions options;
-    options.draws = draws;
-    options.seed = seed;
-    const RestrictedLikelihood likelihood = likelihood_of(fit, options.highest_order);
+    const RestrictedLikelihood likelihood =
+        likelihood_of(fit, options.start ? options.start->size() : options.highest_order);
     if (likelihood.rows() - likelihood.columns() < 4) return false;
     fit.noise = fit_noise(likelihood, options);
     if (!fit.noise.fit.valid) return false;
@@ -105,10 +128,10 @@ bool estimate_noise(CurveFit& fit, const MatrixXd& all_columns, const VectorXd& 
     return fit.noise.fit.valid;
 }
 
-bool estimate_noise(CurveFit& fit, int draws, std::uint64_t seed) {
+bool estimate_noise(CurveFit& fit, const NoiseOptions& options) {
     const VectorXd residual =
         fit.samples.value - linear_columns(fit.fit.model, fit.samples) * fit.fit.coefficients;
-    return estimate_noise(fit, full_design(fit.fit, fit.samples), residual, draws, seed);
+    return estimate_noise(fit, full_design(fit.fit, fit.samples), residual, options);
 }
 
 namespace {
@@ -129,14 +152,18 @@ double largest_move(const CurveFit& fit, const VectorXd& before) {
 }  // namespace
 
 bool settle(CurveFit& fit) {
+    if (!estimate_noise(fit, noise_alone())) return false;
+    Index order = fit.noise.noise.order();
     for (int round = 0; round < noise_rounds; ++round) {
-        if (!estimate_noise(fit, 0, 1)) return false;
         const VectorXd before = fit.fit.model.parameters();
         fit.fit = fit_projected(fit.fit.model, fit.samples, fit.noise.noise);
         if (!fit.fit.model.parameters().allFinite()) return false;
-        if (largest_move(fit, before) < settled) break;
+        const bool still = largest_move(fit, before) < settled || round + 1 == noise_rounds;
+        if (!estimate_noise(fit, still ? noise_alone() : noise_from(fit))) return false;
+        if (still && fit.noise.noise.order() == order) break;
+        order = fit.noise.noise.order();
     }
-    return estimate_noise(fit, 0, 1);
+    return true;
 }
 
 namespace {
@@ -371,7 +398,7 @@ CurveFit fit_decay(const Recording& recording, const Event& event, const CurveFi
     drop_covering_modes(fit);
     describe_components(fit);
     describe_slow_terms(fit);
-    fit.valid = estimate_noise(fit, options.noise_draws, options.seed);
+    fit.valid = estimate_noise(fit, noise_with_draws(options));
     if (fit.valid) fit.reason.clear();
     return fit;
 }

@@ -12,10 +12,17 @@ namespace ringwright::identify {
 [[nodiscard]] std::size_t end_of_fit(const Event& event);
 
 /// Estimates the noise of the residuals and the parameter map; false where the design has not full rank.
-bool estimate_noise(CurveFit& fit, int draws, std::uint64_t seed);
+bool estimate_noise(CurveFit& fit, const NoiseOptions& options);
 /// The same for a model with these columns (derivatives by all its parameters) and this residual.
 bool estimate_noise(CurveFit& fit, const Eigen::MatrixXd& all_columns, const Eigen::VectorXd& residual,
-                    int draws, std::uint64_t seed);
+                    const NoiseOptions& options);
+/// The search of the noise's order with the draws that the answer's uncertainty is read from, or without.
+[[nodiscard]] NoiseOptions noise_with_draws(const CurveFitOptions& options);
+[[nodiscard]] NoiseOptions noise_alone();
+/// The same for what differs from `fit` by terms that take up what its noise model had to: no higher order.
+[[nodiscard]] NoiseOptions noise_no_higher(const CurveFit& fit);
+/// From the noise as it is, whose order stays.
+[[nodiscard]] NoiseOptions noise_from(const CurveFit& fit);
 /// Generalised least squares to convergence: noise, parameters, noise … until neither moves.
 bool settle(CurveFit& fit);
 

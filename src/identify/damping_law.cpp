@@ -10,9 +10,11 @@ namespace ringwright::identify {
 
 namespace {
 
-// x, v, then (∂x, ∂v) by each parameter; of one size for any number of them, so that it needs no allocation.
-constexpr std::size_t most_parameters = 8;
-constexpr std::size_t motion_alone = 2, with_derivatives = 2 + 2 * most_parameters;
+// x, v, then (∂x, ∂v) by each of `parameters` parameters; of a size known to the compiler, so that it needs no
+// allocation.
+constexpr std::size_t state_size(std::size_t parameters) {
+    return 2 + 2 * parameters;
+}
 
 constexpr double runaway = 100.0;  // lengths; the motions looked at are of the order of one
 constexpr double first_step = 0.05;
@@ -58,7 +60,7 @@ class Swing {
         rate.fill(0.0);
         rate[0] = v;
         rate[1] = acceleration(x, v);
-        if constexpr (n == motion_alone) return;
+        if constexpr (n == state_size(0)) return;
         const double by_x = derivative_by_displacement(x), by_v = derivative_by_velocity(v);
         for (std::size_t i = 0; i < by_.size(); ++i) {
             const double dx = z[2 + 2 * i], dv = z[3 + 2 * i];
@@ -261,6 +263,16 @@ class Motion {
     LawMotion out_;
 };
 
+// The motion with as many derivatives as are asked for, `most` or fewer.
+template <std::size_t most>
+LawMotion move_by(const DampingLaw& law, Measured measured, const std::vector<double>& times,
+                  const std::vector<LawParameter>& by, double tolerance) {
+    if constexpr (most > 0)
+        if (by.size() < most) return move_by<most - 1>(law, measured, times, by, tolerance);
+    assert(by.size() == most);
+    return Motion<state_size(most)>(law, measured, times, by, tolerance).run();
+}
+
 }  // namespace
 
 bool LawTerms::has(LawParameter parameter) const {
@@ -301,9 +313,7 @@ double DampingLaw::angular_frequency() const {
 
 LawMotion move(const DampingLaw& law, Measured measured, const std::vector<double>& times,
                const std::vector<LawParameter>& by, double tolerance) {
-    if (by.empty()) return Motion<motion_alone>(law, measured, times, by, tolerance).run();
-    assert(by.size() <= most_parameters);
-    return Motion<with_derivatives>(law, measured, times, by, tolerance).run();
+    return move_by<law_parameter_count>(law, measured, times, by, tolerance);
 }
 
 }  // namespace ringwright::identify

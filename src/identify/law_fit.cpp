@@ -24,7 +24,9 @@ constexpr std::array extra_terms{LawParameter::friction, LawParameter::asymmetry
                                  LawParameter::cubic};
 constexpr int most_terms = 2;
 constexpr int noise_rounds = 4;
+// A first search decides only where the next one starts.
 constexpr int first_evaluations = 15, later_evaluations = 25;
+constexpr double first_tolerance = 1e-5, later_tolerance = 1e-8;  // of the residual sum
 constexpr double settled = 0.02;       // change between rounds in standard uncertainties
 constexpr double most_damping = 0.95;  // beyond it a decay shows too little of a law
 constexpr double fewest_cycles = 1.0;  // from the start to the noise
@@ -125,7 +127,7 @@ std::optional<Found> fit_once(const LawFit& fit, const LawModel& model, const La
     const LawProblem law(model, start, fit.curve.samples, noise);
     LeastSquaresOptions options;
     options.max_evaluations = evaluations;
-    options.tolerance = 1e-8;
+    options.tolerance = evaluations > first_evaluations ? later_tolerance : first_tolerance;
     const LeastSquaresFit found = fit_least_squares(law.problem(), model.pack(start), options);
     if (!found.parameters.allFinite() || !(found.residual_sum_of_squares > 0.0)) return std::nullopt;
     const LawState state = model.unpack(found.parameters, start);
@@ -133,11 +135,11 @@ std::optional<Found> fit_once(const LawFit& fit, const LawModel& model, const La
     return Found{state, found.residual_sum_of_squares};
 }
 
-bool estimate_law_noise(LawFit& fit, const LawModel& model, int draws, std::uint64_t seed) {
+bool estimate_law_noise(LawFit& fit, const LawModel& model, const NoiseOptions& options) {
     const MatrixXd columns = model.columns(fit.state);
     const VectorXd residual = fit.curve.samples.value - model.value(fit.state);
     if (!columns.allFinite() || !residual.allFinite()) return false;
-    return estimate_noise(fit.curve, columns, residual, draws, seed);
+    return estimate_noise(fit.curve, columns, residual, options);
 }
 
 double largest_move(const LawFit& fit, const VectorXd& move) {
@@ -155,15 +157,18 @@ double largest_move(const LawFit& fit, const VectorXd& move) {
 
 bool settle_law(LawFit& fit) {
     const LawModel model = fit.model();
+    if (!estimate_law_noise(fit, model, noise_alone())) return false;
+    Index order = fit.curve.noise.noise.order();
     for (int round = 0; round < noise_rounds; ++round) {
-        if (!estimate_law_noise(fit, model, 0, 1)) return false;
         const auto found = fit_once(fit, model, fit.state, fit.curve.noise.noise, later_evaluations);
         if (!found) return false;
         const double move = largest_move(fit, model.pack(found->state) - model.pack(fit.state));
         fit.state = found->state;
-        if (move < settled) break;
+        const bool still = move < settled || round + 1 == noise_rounds;
+        if (!estimate_law_noise(fit, model, still ? noise_alone() : noise_from(fit.curve))) return false;
+        if (still && fit.curve.noise.noise.order() == order) break;
+        order = fit.curve.noise.noise.order();
     }
-    if (!estimate_law_noise(fit, model, 0, 1)) return false;
     fit.criterion = criterion_of(fit.curve, fit.terms.count());
     return std::isfinite(fit.criterion);
 }
@@ -185,7 +190,7 @@ std::optional<double> score_of(const LawFit& fit, const std::vector<LawParameter
     MatrixXd columns(basis.rows(), basis.cols() + extra.cols());
     columns << basis, extra;
     CurveFit trial = fit.curve;
-    if (!estimate_noise(trial, columns, fit.curve.residual, 0, 1)) return std::nullopt;
+    if (!estimate_noise(trial, columns, fit.curve.residual, noise_no_higher(fit.curve))) return std::nullopt;
     return criterion_of(fit.curve, 0) - criterion_of(trial, 0);
 }
 
@@ -596,8 +601,8 @@ std::optional<LawFit> choose_law(const CurveFit& viscous, const Recording& recor
     if (fit.terms.friction && !settle_branches(fit)) return std::nullopt;
     constexpr double most_growth = 1.1;  // by chance, over a wider window
     if (residual_level(fit.curve) > most_growth * residual_level(*plain)) return std::nullopt;
-    if (!estimate_law_noise(fit, fit.model(), options.noise_draws, options.seed)) return std::nullopt;
-    if (!estimate_noise(fit.viscous, options.noise_draws, options.seed)) return std::nullopt;
+    if (!estimate_law_noise(fit, fit.model(), noise_with_draws(options))) return std::nullopt;
+    if (!estimate_noise(fit.viscous, noise_with_draws(options))) return std::nullopt;
     name_components_anew(fit.curve);
     return fit;
 }

@@ -13,6 +13,7 @@ using Eigen::VectorXd;
 namespace {
 
 constexpr double fit_tolerance = 1e-7;  // of the swing; a recording of 80 dB has noise of 1e-4
+constexpr double derivative_tolerance = 1e-5;  // relative: steers the search and gives the covariance
 // Acceleration jumps at reversals, so that its mean over a block takes more points than that of a smooth
 // motion, for which two leave an error of 1e-6 of the amplitude.
 constexpr Index smooth_points = 2, jumping_points = 8;
@@ -93,7 +94,7 @@ VectorXd LawModel::value(const LawState& state) const {
 }
 
 MatrixXd LawModel::law_columns(const DampingLaw& law, const std::vector<LawParameter>& by) const {
-    return block_means_of(move(law, measured_, times_, by, fit_tolerance).derivative);
+    return block_means_of(move(law, measured_, times_, by, derivative_tolerance).derivative);
 }
 
 MatrixXd LawModel::columns(const LawState& state) const {

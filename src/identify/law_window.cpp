@@ -108,6 +108,7 @@ bool fits_before(const LawFit& fit, std::size_t former_begin) {
 std::size_t earliest(const LawFit& fit, const Event& event) {
     if (event.quiet_end > event.quiet_begin && event.quiet_end < fit.curve.window.begin)
         return event.quiet_begin;
+    if (event.quiet_end > 0) return std::min(event.quiet_end, fit.curve.window.begin);
     const auto reach = static_cast<std::size_t>(farthest_without_quiet * period_samples(fit));
     return fit.curve.window.begin > reach ? fit.curve.window.begin - reach : 0;
 }
@@ -213,7 +214,7 @@ std::optional<Event> with_earlier_start(const CurveFit& fit, const Recording& re
     if (event.by_hand || !(event.noise_level > 0.0)) return std::nullopt;
     const double period = two_pi / fit.oscillator().angular_frequency() * recording.clock.sample_rate_hz;
     const auto window = static_cast<std::size_t>(period), quarter = window / 4;
-    const std::size_t limit = event.quiet_end > event.quiet_begin ? event.quiet_end : 0;
+    const std::size_t limit = event.quiet_end;
     if (quarter < fewest) return std::nullopt;
     std::size_t begin = event.begin;
     for (int i = 0; i < farthest && begin > limit + fewest; ++i) {

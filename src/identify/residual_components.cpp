@@ -140,7 +140,7 @@ std::optional<CurveFit> with_tone(const CurveFit& fit, double omega) {
     CurveFit trial = fit;
     trial.fit.model.tones.push_back(std::log(omega));
     trial.fit = fit_projected(trial.fit.model, trial.samples, trial.noise.noise, trial_evaluations);
-    if (!trial.fit.model.parameters().allFinite() || !estimate_noise(trial, 0, 1)) return std::nullopt;
+    if (!trial.fit.model.parameters().allFinite() || !estimate_noise(trial, noise_no_higher(fit))) return std::nullopt;
     if (!steady(trial)) return std::nullopt;
     return trial;
 }
@@ -155,7 +155,7 @@ std::optional<CurveFit> with_mode(const CurveFit& fit, double omega) {
         const Oscillator& added = trial.fit.model.oscillators.back();
         if (added.damping_ratio() <= 0.0 || added.damping_ratio() > most_damping_of_added_mode) continue;
         const double falls = added.slowest_rate() * trial.samples.time.maxCoeff();
-        if (falls < least_fall || !estimate_noise(trial, 0, 1)) continue;
+        if (falls < least_fall || !estimate_noise(trial, noise_no_higher(fit))) continue;
         if (!best || criterion_of(trial) < criterion_of(*best)) best = std::move(trial);
     }
     return best;

@@ -378,10 +378,15 @@ std::vector<NoiseDraw> draw_noise(const RestrictedLikelihood& likelihood, const 
 
 }  // namespace
 
-NoiseFit fit_noise(const RestrictedLikelihood& likelihood, const NoiseOptions& options) {
+namespace {
+
+VectorXd to_unbounded(const VectorXd& partial) {
+    return partial.array().max(-largest_partial).min(largest_partial).atanh();
+}
+
+// The unbounded parameters at the order that the Bayesian information criterion chooses.
+VectorXd best_of_orders(const RestrictedLikelihood& likelihood, Index highest) {
     const double spare = static_cast<double>(likelihood.rows() - likelihood.columns());
-    const Index highest = std::min({options.highest_order, likelihood.highest_order(),
-                                    std::max<Index>(0, static_cast<Index>(spare / 8.0))});
     VectorXd best, current;
     double best_criterion = std::numeric_limits<double>::infinity();
     Index since_best = 0;
@@ -399,6 +404,18 @@ NoiseFit fit_noise(const RestrictedLikelihood& likelihood, const NoiseOptions& o
             since_best = -1;
         }
     }
+    return best;
+}
+
+}  // namespace
+
+NoiseFit fit_noise(const RestrictedLikelihood& likelihood, const NoiseOptions& options) {
+    const double spare = static_cast<double>(likelihood.rows() - likelihood.columns());
+    const Index highest = std::min({options.highest_order, likelihood.highest_order(),
+                                    std::max<Index>(0, static_cast<Index>(spare / 8.0))});
+    const bool order_known = options.start && options.start->size() <= highest;
+    const VectorXd best = order_known ? minimise(likelihood, to_unbounded(*options.start))
+                                      : best_of_orders(likelihood, highest);
     NoiseFit result;
     result.noise.partial_autocorrelation = to_partial(best);
     result.fit = likelihood.evaluate(result.noise.partial_autocorrelation);
