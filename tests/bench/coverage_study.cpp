@@ -58,7 +58,7 @@ struct Cell {
     Truth truth;
     Tally fit, decrement, half_power;
     Score plain;  // damping ratio by ordinary least squares
-    int tested = 0, disagree = 0, residual_findings = 0, components = 0;
+    int tested = 0, disagree = 0, residual_findings = 0, components = 0, laws = 0;
 };
 
 void add(Tally& tally, const MethodResult& method, const Truth& truth) {
@@ -118,6 +118,7 @@ void run_one(Cell& cell, std::uint64_t seed, const Run& run, std::mutex& guard) 
     add(cell.decrement, result.logarithmic_decrement, cell.truth);
     add(cell.half_power, result.half_power_bandwidth, cell.truth);
     cell.plain.add(plain, cell.truth.damping_ratio, plain.value - cell.truth.damping_ratio);
+    cell.laws += result.curve_fit.status == MethodStatus::ok && result.curve_fit.model != "viscous";
     cell.tested += result.agreement.tested;
     cell.disagree += result.agreement.tested && !result.agreement.consistent;
     for (const Finding& finding : result.findings) {
@@ -157,7 +158,7 @@ void print_header() {
     fmt::print(
         "| ζ | cycles | dB | φ | dress | answered | f 68/95/99 % | ζ 68/95/99 % | scatter/bound f, ζ | plain "
         "LS ζ 95 % | "
-        "decrement: answered, f, ζ 95 % | half power: answered, f, ζ 95 % | disagree % |\n"
+        "decrement: answered, f, ζ 95 % | half power: answered, f, ζ 95 % | disagree, law % |\n"
         "|---|---|---|---|---|---|---|---|---|---|---|---|---|\n");
 }
 
@@ -173,14 +174,15 @@ void print_row(const Cell& cell, int recordings) {
                number(m.frequency.percent(m.frequency.in95), 1) + ", " +
                number(m.ratio.percent(m.ratio.in95), 1);
     };
-    fmt::print("| {:g} | {:g} | {:g} | {:g} |{} | {} | {} | {} | {} {} | {} | {} | {} | {} |\n",
+    fmt::print("| {:g} | {:g} | {:g} | {:g} |{} | {} | {} | {} | {} {} | {} | {} | {} | {}, {} |\n",
                t.damping_ratio, t.cycles, t.signal_to_noise_db, t.noise_correlation, dress(t),
                number(100.0 * cell.fit.ratio.count / recordings, 1), three(cell.fit.frequency),
                three(cell.fit.ratio), number(cell.fit.frequency.scatter(bound.log_frequency), 2),
                number(cell.fit.ratio.scatter(bound.damping_ratio), 2),
                number(cell.plain.percent(cell.plain.in95), 1), simple(cell.decrement),
                simple(cell.half_power),
-               number(cell.tested > 0 ? 100.0 * cell.disagree / cell.tested : NAN, 1));
+               number(cell.tested > 0 ? 100.0 * cell.disagree / cell.tested : NAN, 1),
+               number(100.0 * cell.laws / std::max(1, cell.fit.ratio.count), 1));
     std::fflush(stdout);
 }
 
