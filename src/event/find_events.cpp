@@ -260,7 +260,8 @@ bool believable(const Search& search, const Found& found) {
     return start.noise_rms < std::max(misfit * amplitude, 2.5 * noise);
 }
 
-/// Whether the recording is still for two cycles before the start: no drive that has long been running.
+/// Whether the recording is still for two cycles before the start, or for most of one where it begins there: a
+/// drive that has long been running would show all of its swing in that.
 bool starts_from_quiet(const Pyramid& pyramid, const Found& found) {
     constexpr double still = 0.25;  // of the amplitude
     const Start& start = found.start;
@@ -268,8 +269,9 @@ bool starts_from_quiet(const Pyramid& pyramid, const Found& found) {
     const double cycle = 2.0 * std::numbers::pi / start.fit.shape.undamped_angular_frequency;
     const std::size_t end = start.position >> start.level;
     const auto near = static_cast<std::size_t>(std::ceil(0.2 * cycle)),
-               far = static_cast<std::size_t>(std::ceil(2.2 * cycle));
-    if (end < far) return false;
+               enough = static_cast<std::size_t>(std::ceil(0.8 * cycle)),
+               far = std::min(end, static_cast<std::size_t>(std::ceil(2.2 * cycle)));
+    if (end < enough) return false;
     return range_of(means.subspan(end - far, far - near)) <
            2.0 * still * start.amplitude + 4.0 * start.fit.residual_rms();
 }
@@ -292,7 +294,8 @@ void try_onset(Search& search, const Onset& onset, const std::vector<Onset>& all
         found->course = follow_decay(search.pyramid, found->start, limits.latest);
         if (!believable(search, *found)) return;
     }
-    const bool still = found->course.fall > 0.0 && starts_from_quiet(search.pyramid, *found);
+    const bool may_fall = found->course.fall > -3.0 * found->course.fall_uncertainty;
+    const bool still = may_fall && starts_from_quiet(search.pyramid, *found);
     if (!found->course.falls() && !still) {
         search.steady = true;
         return;

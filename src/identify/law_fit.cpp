@@ -30,6 +30,7 @@ constexpr double first_tolerance = 1e-5, later_tolerance = 1e-8;  // of the resi
 constexpr double settled = 0.02;       // change between rounds in standard uncertainties
 constexpr double most_damping = 0.95;  // beyond it a decay shows too little of a law
 constexpr double fewest_cycles = 1.0;  // from the start to the noise
+constexpr double least_fall = 0.35;    // nepers: over less, no law can be told from another
 constexpr double same_mode = 0.3;      // of the logarithm of frequency
 constexpr double widths_aside = 3.0;   // of a resonance, within which a component is put aside
 
@@ -346,7 +347,8 @@ bool rings_enough(const CurveFit& fit) {
     const double amplitude = start_amplitude(fit.fit.model, fit.fit.coefficients, 0);
     const double to_noise = std::log(std::max(1.0, amplitude / noise)) / std::max(o.slowest_rate(), 1e-12);
     const double span = std::min(to_noise, fit.samples.time.maxCoeff());
-    return span * o.angular_frequency() / (2.0 * std::numbers::pi) > fewest_cycles && !rings_too_long(fit);
+    return span * o.angular_frequency() / (2.0 * std::numbers::pi) > fewest_cycles &&
+           span * o.slowest_rate() > least_fall && !rings_too_long(fit);
 }
 
 // Near the mode itself, or a multiple of it, where a law leaves its mark.

@@ -55,7 +55,8 @@ constexpr double most_cycles_of_law = 200.0;
 /// noise estimated anew); only where that is more than chance are laws fitted, one term added at a time, each
 /// where the Bayesian information criterion and a chi-squared test at `richer_law_level` over all terms both
 /// ask for it. Further modes and tones near the mode or its multiples, which stand for a law that was not
-/// there, are put aside and have to fit better than the law to stay.
+/// there, are put aside and have to fit better than the law to stay. A decay that falls by less than a third
+/// in the record (0.35 nepers) shows one amplitude only, at which every law is as good as viscous damping.
 [[nodiscard]] std::optional<LawFit> choose_law(const CurveFit& viscous, const Recording& recording,
                                                const Event& event, const CurveFitOptions& options);
 
