@@ -86,10 +86,12 @@ struct AutocorrelationFigure {
     double band = 0.0;           ///< half-width of the band in which white noise stays
 };
 
-/// Damping ratio against amplitude.
+/// Damping ratio against amplitude: stretches of the decay with their intervals, and the fitted model.
 struct CourseFigure {
     std::string signal_name, unit;
     std::vector<double> amplitude, damping_ratio, low, high;
+    std::string model;  ///< what the curve is called; empty: "fit"
+    std::vector<double> model_amplitude, model_damping_ratio, model_low, model_high;
 };
 
 /// One limit of a verdict: value, interval, limits, and the acceptance limits where a guard band is kept.

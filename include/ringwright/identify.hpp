@@ -61,7 +61,10 @@ struct DecayPicture {
     std::vector<double> residual_autocorrelation;  ///< lags 0, 1, …
     double residual_autocorrelation_band = 0.0;    ///< half-width of the 95 % band of white noise
     std::vector<double> course_amplitude, course_damping_ratio, course_low,
-        course_high;  ///< damping against amplitude
+        course_high;  ///< damping against amplitude, of stretches
+    /// Damping against amplitude after the fitted model, with the interval at the confidence level: a level
+    /// where the decay is viscous.
+    std::vector<double> model_amplitude, model_damping_ratio, model_low, model_high;
 };
 
 /// Damping and frequency of one stretch of the decay. The amplitude is that in its middle, in units of the

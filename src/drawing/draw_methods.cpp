@@ -85,32 +85,80 @@ void draw(Canvas& canvas, const AutocorrelationFigure& figure) {
              panel);
 }
 
-void draw(Canvas& canvas, const CourseFigure& figure) {
-    Range amplitudes, ratios;
-    amplitudes.include(figure.amplitude);
+namespace {
+
+constexpr Stroke interval_of_stretch{palette::ink, 1.0, Dash::solid};
+
+Range ratios_of(const CourseFigure& figure) {
+    Range ratios, wide;
     ratios.include(figure.damping_ratio);
-    Range with_intervals = ratios;
-    with_intervals.include(figure.low);
-    with_intervals.include(figure.high);
-    // An interval that is ten times wider than the course itself would flatten it.
-    const double reach = 4.0 * std::max(ratios.high - ratios.low, 0.1 * std::abs(ratios.high));
-    const double low = std::max(with_intervals.low, ratios.low - reach);
-    const double high = std::min(with_intervals.high, ratios.high + reach);
+    ratios.include(figure.model_damping_ratio);
+    wide = ratios;
+    wide.include(figure.low);
+    wide.include(figure.high);
+    // An interval that is much wider than the course itself would flatten it.
+    const double reach = 1.5 * std::max(ratios.high - ratios.low, 0.1 * std::abs(ratios.high));
+    Range shown;
+    shown.include(std::max(wide.low, ratios.low - reach));
+    shown.include(std::min(wide.high, ratios.high + reach));
+    // What hardly changes is to look so: a tenth of it above and below at least.
+    const double middle = 0.5 * (ratios.low + ratios.high);
+    shown.include(0.9 * middle);
+    shown.include(1.1 * middle);
+    // From zero, where that costs less than half of the picture.
+    if (shown.low > 0.0 && shown.low < shown.high - shown.low) shown.include(0.0);
+    return shown;
+}
+
+/// "fit: viscous + friction".
+std::string fit_name(const std::string& model) {
+    std::string name = model.empty() ? "fit" : "fit: ";
+    for (const char letter : model) {
+        const bool plus = letter == '+';
+        name.append(plus ? " + " : std::string(1, letter));
+    }
+    return name;
+}
+
+void draw_stretches(Canvas& canvas, Panel& panel, const CourseFigure& figure) {
+    const auto inside = [&](double ratio) {
+        return std::clamp(ratio, panel.y_axis().low, panel.y_axis().high);
+    };
+    const std::size_t count = std::min(figure.amplitude.size(), figure.damping_ratio.size());
+    for (std::size_t i = 0; i < count; ++i) {
+        if (i < figure.low.size() && i < figure.high.size()) {
+            const Point low = panel.place(figure.amplitude[i], inside(figure.low[i]));
+            const Point high = panel.place(figure.amplitude[i], inside(figure.high[i]));
+            canvas.line(low, high, interval_of_stretch);
+            for (const Point& end : {low, high})
+                canvas.line({end.x - 2.4, end.y}, {end.x + 2.4, end.y}, interval_of_stretch);
+        }
+        canvas.mark(Mark::disc, panel.place(figure.amplitude[i], inside(figure.damping_ratio[i])), 1.9,
+                    palette::ink);
+    }
+}
+
+}  // namespace
+
+void draw(Canvas& canvas, const CourseFigure& figure) {
+    Range amplitudes;
+    amplitudes.include(figure.amplitude);
+    amplitudes.include(figure.model_amplitude);
+    const Range ratios = ratios_of(figure);
     const Axis x = logarithmic_axis(amplitudes.empty ? 1.0 : amplitudes.low, amplitudes.high,
-                                    axis_label("amplitude", figure.unit));
-    const Axis y = linear_axis(std::min(low, 0.0), high, "damping ratio", 5, 0.05);
+                                    axis_label("amplitude", figure.unit), 0.04);
+    const Axis y = linear_axis(ratios.low, ratios.high, "damping ratio", 5, 0.05);
     Panel panel = framed(canvas, x, y);
-    const bool intervals = figure.low.size() == figure.amplitude.size() &&
-                           figure.high.size() == figure.amplitude.size() && !figure.low.empty();
-    if (intervals) panel.area(figure.amplitude, figure.low, figure.high, palette::band);
     const Stroke line{palette::fitted, 1.3, Dash::solid};
-    panel.curve(figure.amplitude, figure.damping_ratio, line);
-    if (figure.amplitude.size() <= 60)
-        panel.marks(figure.amplitude, figure.damping_ratio, Mark::disc, 1.9, palette::fitted);
+    if (figure.model_low.size() == figure.model_amplitude.size())
+        panel.area(figure.model_amplitude, figure.model_low, figure.model_high, palette::band);
+    panel.curve(figure.model_amplitude, figure.model_damping_ratio, line);
+    draw_stretches(canvas, panel, figure);
     panel.close();
-    std::vector<KeyEntry> key{{"damping ratio", line, false, false, Mark::disc}};
-    if (intervals)
-        key.push_back({"its interval", {palette::band, 1.0, Dash::solid}, true, false, Mark::disc});
+    std::vector<KeyEntry> key;
+    if (!figure.amplitude.empty()) key.push_back({"stretch", interval_of_stretch, false, true, Mark::disc});
+    if (!figure.model_amplitude.empty())
+        key.push_back({fit_name(figure.model), line, false, false, Mark::disc});
     draw_key(canvas, key, panel);
 }
 

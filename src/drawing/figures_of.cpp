@@ -66,17 +66,24 @@ Figure decrement_figure(const DecayPicture& picture, const SignalNames& names) {
     return figure;
 }
 
-Figure course_figure(const DecayPicture& picture, const SignalNames& names) {
+Figure course_figure(const EventIdentification& event, const SignalNames& names) {
+    const DecayPicture& picture = event.picture;
     return CourseFigure{names.name,
                         names.unit,
                         scaled(picture.course_amplitude, names.factor),
                         picture.course_damping_ratio,
                         picture.course_low,
-                        picture.course_high};
+                        picture.course_high,
+                        event.curve_fit.model,
+                        scaled(picture.model_amplitude, names.factor),
+                        picture.model_damping_ratio,
+                        picture.model_low,
+                        picture.model_high};
 }
 
-void add_release(std::vector<NamedFigure>& figures, const DecayPicture& picture, const SignalNames& names,
-                 std::size_t number) {
+void add_release(std::vector<NamedFigure>& figures, const EventIdentification& event,
+                 const SignalNames& names, std::size_t number) {
+    const DecayPicture& picture = event.picture;
     const auto add = [&](const char* name, const char* title, const char* caption, Figure figure) {
         figures.push_back({fmt::format("{}-{}", name, number), fmt::format("{}, release {}", title, number),
                            caption, std::move(figure)});
@@ -97,9 +104,11 @@ void add_release(std::vector<NamedFigure>& figures, const DecayPicture& picture,
         add("autocorrelation", "What the noise model leaves",
             "Inside the band the intervals rest on an adequate noise model.",
             AutocorrelationFigure{picture.residual_autocorrelation, picture.residual_autocorrelation_band});
-    if (picture.course_amplitude.size() > 1)
-        add("course", "Damping against amplitude", "Viscous damping is a level line.",
-            course_figure(picture, names));
+    if (picture.course_amplitude.size() > 1 || picture.model_amplitude.size() > 1)
+        add("course", "Damping against amplitude",
+            "Stretches of the decay, each as a viscous decay of its own, beside what was fitted to the "
+            "whole.",
+            course_figure(event, names));
 }
 
 }  // namespace
@@ -118,7 +127,7 @@ std::vector<NamedFigure> figures_of(const Identification& identification) {
                                "The marked stretches were analysed.",
                                recording_figure(identified, names, number + 1)});
         for (const EventIdentification& event : identified.events)
-            add_release(figures, event.picture, names, ++number);
+            add_release(figures, event, names, ++number);
     }
     return figures;
 }

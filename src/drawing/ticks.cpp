@@ -87,8 +87,10 @@ Axis logarithmic_axis(double low, double high, std::string label, double margin)
     const int last = static_cast<int>(std::ceil(std::log10(axis.high)));
     const int every = std::max(1, static_cast<int>(decades / 6.0));
     for (int exponent = first; exponent <= last; exponent += every)
-        for (const double factor : {1.0, 2.0, 5.0}) {
+        for (const double factor : {1.0, 2.0, 3.0, 5.0, 7.0}) {
             if (factor > 1.0 && decades > 2.5) continue;
+            const bool fine = factor == 3.0 || factor == 7.0;
+            if (fine && decades > 1.0) continue;
             const double value = factor * std::pow(10.0, exponent);
             if (value < axis.low || value > axis.high) continue;
             axis.ticks.push_back({value, logarithmic_label(value)});

@@ -24,7 +24,6 @@ namespace {
 
 constexpr double two_pi = 2.0 * std::numbers::pi;
 constexpr std::size_t fewest_stretches = 3, most_stretches = 8;
-constexpr double shortest_periods = 1.5;
 constexpr double coarsest = 0.3;  // relative standard uncertainty of the damping ratio of a stretch
 constexpr Index fewest_rows = 12;
 
@@ -59,11 +58,12 @@ double expected_uncertainty(const Outline& outline, double begin_s, double span_
 }
 
 // Successive stretches, each as short as this uncertainty allows.
-std::vector<Rows> split(const DecaySamples& samples, const Outline& outline, double uncertainty) {
+std::vector<Rows> split(const DecaySamples& samples, const Outline& outline, const CourseLimits& limits,
+                        double uncertainty) {
     std::vector<Rows> parts;
-    const double shortest = shortest_periods * two_pi / outline.omega;
+    const double shortest = limits.shortest_periods * two_pi / outline.omega;
     Index begin = 0;
-    for (Index end = 1; end < samples.size(); ++end) {
+    for (Index end = 1; end < samples.size() && samples.time(end) <= limits.end_s; ++end) {
         const double span = samples.time(end) - samples.time(begin);
         const Index rows = end - begin;
         if (span < shortest || rows < fewest_rows) continue;
@@ -77,13 +77,14 @@ std::vector<Rows> split(const DecaySamples& samples, const Outline& outline, dou
 }
 
 // As many stretches as tell enough, eight at most: a coarser uncertainty gives more of them.
-std::vector<Rows> best_split(const DecaySamples& samples, const Outline& outline) {
+std::vector<Rows> best_split(const DecaySamples& samples, const Outline& outline,
+                             const CourseLimits& limits) {
     double high = coarsest * outline.damping, low = 1e-4 * high;
-    std::vector<Rows> parts = split(samples, outline, high);
+    std::vector<Rows> parts = split(samples, outline, limits, high);
     if (parts.size() <= most_stretches) return parts;
     for (int i = 0; i < 24; ++i) {
         const double middle = std::sqrt(low * high);
-        std::vector<Rows> finer = split(samples, outline, middle);
+        std::vector<Rows> finer = split(samples, outline, limits, middle);
         if (finer.size() > most_stretches) {
             high = middle;
         } else {
@@ -183,11 +184,12 @@ double level_p_value(const std::vector<Local>& locals, double degrees_of_freedom
 
 }  // namespace
 
-AmplitudeCourse amplitude_course(const CurveFit& fit, const NoiseFit& noise, double confidence_level) {
+AmplitudeCourse amplitude_course(const CurveFit& fit, const NoiseFit& noise, double confidence_level,
+                                 const CourseLimits& limits) {
     AmplitudeCourse course;
     const Outline outline = outline_of(fit, noise);
     if (!(outline.damping > 0.0) || outline.damping > 0.7) return course;
-    const std::vector<Rows> parts = best_split(fit.samples, outline);
+    const std::vector<Rows> parts = best_split(fit.samples, outline, limits);
     if (parts.size() < fewest_stretches) return course;
     const VectorXd decay = bare_decay(fit);
     std::vector<Local> locals;
@@ -204,13 +206,20 @@ AmplitudeCourse amplitude_course(const CurveFit& fit, const NoiseFit& noise, dou
     return course;
 }
 
-void draw_course(DecayPicture& picture, const AmplitudeCourse& course) {
+void draw_course(DecayPicture& picture, const AmplitudeCourse& course, const MethodResult& fitted) {
     for (const AmplitudePoint& point : course.points) {
         picture.course_amplitude.push_back(point.amplitude);
         picture.course_damping_ratio.push_back(point.damping_ratio.value);
         picture.course_low.push_back(point.damping_ratio.interval.low);
         picture.course_high.push_back(point.damping_ratio.interval.high);
     }
+    const auto ratio = fitted.quantities.find(Quantity::damping_ratio);
+    if (course.points.empty() || !picture.model_amplitude.empty() || ratio == fitted.quantities.end()) return;
+    const auto [low, high] = std::ranges::minmax(picture.course_amplitude);
+    picture.model_amplitude = {high, low};
+    picture.model_damping_ratio.assign(2, ratio->second.value);
+    picture.model_low.assign(2, ratio->second.interval.low);
+    picture.model_high.assign(2, ratio->second.interval.high);
 }
 
 Findings describe_course(const AmplitudeCourse& course) {

@@ -204,6 +204,14 @@ void explain_by_law(Agreement& agreement, const std::string& model) {
         model);
 }
 
+// Where a law is known to be there, one cycle tells enough of it, and a mass that sticks tells nothing.
+AmplitudeCourse course_beside(const LawFit& law, const Recording& recording, double confidence_level) {
+    const double later =
+        recording.clock.time_of(law.viscous.window.begin) - recording.clock.time_of(law.curve.window.begin);
+    return amplitude_course(law.viscous, law.curve.noise, confidence_level,
+                            {1.0, last_reversal_s(law) - later});
+}
+
 }  // namespace
 
 EventIdentification identify_event(const Recording& recording, const Event& event,
@@ -237,7 +245,8 @@ EventIdentification identify_event(const Recording& recording, const Event& even
         append(result.findings, describe_law(*law, recording, *result.curve_fit.at_amplitude));
     else
         explain_missing(fit, result.curve_fit, result.findings);
-    result.course = amplitude_course(fit, law ? law->curve.noise : fit.noise, options.confidence_level);
+    result.course = law ? course_beside(*law, recording, options.confidence_level)
+                        : amplitude_course(fit, fit.noise, options.confidence_level);
     if (!law) append(result.findings, describe_course(result.course));
     add_drop(recording, fit, options, result);
     Findings known = result.findings;
@@ -247,8 +256,8 @@ EventIdentification identify_event(const Recording& recording, const Event& even
     if (law) explain_by_law(result.agreement, result.curve_fit.model);
     if (options.pictures) {
         result.picture = draw_decay(recording, law ? law->curve : fit, bootstrap);
-        if (law) draw_law(result.picture, *law);
-        draw_course(result.picture, result.course);
+        if (law) draw_law(result.picture, *law, options.confidence_level);
+        draw_course(result.picture, result.course, result.curve_fit);
     }
     return result;
 }

@@ -137,6 +137,32 @@ double last_instant(const LawFit& fit) {
     return fit.curve.samples.time.maxCoeff();
 }
 
+// How many of the swings stand above the noise.
+std::size_t above_noise(const LawFit& fit, const Swings& swings) {
+    const double noise = std::sqrt(fit.curve.noise.noise.variance()) * fit.curve.samples.scale;
+    std::size_t count = 0;
+    while (count < swings.amplitude.size() && swings.amplitude[count] > noise) ++count;
+    return count;
+}
+
+// ζ of a stretch at amplitude x: as the equivalent one, over the frequency that a cubic spring has there, to
+// first order ω²(1 + ¾ k₃X²/k) (Lindstedt–Poincaré; standard theory).
+Figure ratio_of_stretch(const DampingLaw& law, double x) {
+    const double w = law.angular_frequency(), change = 0.75 * law[LawParameter::cubic] * x * x;
+    const double square = std::max(w * w + change, 0.25 * w * w), here = std::sqrt(square);
+    const double s = law[LawParameter::damping], f = law[LawParameter::friction];
+    Figure figure;
+    figure.by(LawParameter::damping) = 1.0 / here;
+    figure.by(LawParameter::friction) = 2.0 / (pi * square * x);
+    figure.by(LawParameter::quadratic) = 4.0 * x / (3.0 * pi);
+    figure.value = s * figure.by(LawParameter::damping) + f * figure.by(LawParameter::friction) +
+                   law[LawParameter::quadratic] * figure.by(LawParameter::quadratic);
+    const double by_log_here = -s / here - 4.0 * f / (pi * square * x);
+    figure.by(LawParameter::log_frequency) = by_log_here * w * w / square;
+    figure.by(LawParameter::cubic) = by_log_here * 0.375 * x * x / square;
+    return figure;
+}
+
 }  // namespace
 
 Swings swings_of(const LawFit& fit) {
@@ -159,11 +185,15 @@ Swings swings_of(const LawFit& fit) {
     return swings;
 }
 
+double last_reversal_s(const LawFit& fit) {
+    const auto reversals =
+        fit.model().motion(fit.state.law, Measured::displacement, {last_instant(fit)}).reversals;
+    return reversals.empty() ? 0.0 : reversals.back() / fit.rate;
+}
+
 double middle_amplitude(const LawFit& fit) {
     const Swings swings = swings_of(fit);
-    const double noise = std::sqrt(fit.curve.noise.noise.variance()) * fit.curve.samples.scale;
-    std::size_t count = 0;
-    while (count < swings.amplitude.size() && swings.amplitude[count] > noise) ++count;
+    const std::size_t count = above_noise(fit, swings);
     if (count == 0) return to_two_digits(0.5 * fit.curve.samples.scale);
     const double middle = 0.5 * (swings.time_s.front() + swings.time_s[count - 1]);
     const auto after = std::ranges::lower_bound(swings.time_s, middle);
@@ -326,9 +356,34 @@ Findings describe_law(const LawFit& fit, const Recording& recording, double ampl
     return findings;
 }
 
-void draw_law(DecayPicture& picture, const LawFit& fit) {
+namespace {
+
+void draw_law_course(DecayPicture& picture, const LawFit& fit, const Swings& swings,
+                     double confidence_level) {
+    constexpr std::size_t points = 40;
+    const std::size_t count = above_noise(fit, swings);
+    if (count < 2) return;
+    const double high = swings.amplitude.front(), low = swings.amplitude[count - 1];
+    for (std::size_t i = 0; i < points; ++i) {
+        const double share = static_cast<double>(i) / (points - 1),
+                     amplitude = high * std::pow(low / high, share);
+        const double x = length_of_amplitude(fit, amplitude);
+        const Estimate ratio = estimate_of_figure(
+            fit, [x](const DampingLaw& law) { return ratio_of_stretch(law, x); }, 1.0, confidence_level,
+            Scale::linear);
+        picture.model_amplitude.push_back(amplitude);
+        picture.model_damping_ratio.push_back(ratio.value);
+        picture.model_low.push_back(ratio.interval.low);
+        picture.model_high.push_back(ratio.interval.high);
+    }
+}
+
+}  // namespace
+
+void draw_law(DecayPicture& picture, const LawFit& fit, double confidence_level) {
     const Swings swings = swings_of(fit);
     if (swings.time_s.size() < 2) return;
+    draw_law_course(picture, fit, swings, confidence_level);
     picture.offset = fit.state.coefficients(0) * fit.curve.samples.scale;
     picture.envelope.clear();
     std::size_t at = 0;

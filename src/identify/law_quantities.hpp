@@ -20,6 +20,9 @@ struct Swings {
 };
 [[nodiscard]] Swings swings_of(const LawFit& fit);
 
+/// The last reversal, s after the start of the fit: with friction the mass may stand still from there on.
+[[nodiscard]] double last_reversal_s(const LawFit& fit);
+
 /// Amplitude half-way in time between the first swing and the last that stands above the noise, to two
 /// digits.
 [[nodiscard]] double middle_amplitude(const LawFit& fit);
@@ -40,7 +43,8 @@ struct Swings {
 /// The law in words, with the ratios that can be told without a mass.
 [[nodiscard]] Findings describe_law(const LawFit& fit, const Recording& recording, double amplitude);
 
-/// Envelope and rest position of the law in place of those of a viscous decay.
-void draw_law(DecayPicture& picture, const LawFit& fit);
+/// Envelope and rest position of the law in place of those of a viscous decay, and its damping ratio against
+/// amplitude: the equivalent one, over the frequency that the spring has at that amplitude.
+void draw_law(DecayPicture& picture, const LawFit& fit, double confidence_level);
 
 }  // namespace ringwright::identify
