@@ -25,6 +25,8 @@ struct LedgerChart {
     std::vector<RunSignal> signals;
     std::vector<RunRule> rules;
     std::optional<LinearTrend> trend;  ///< slope per year
+    /// What the article has to keep, drawn beside the control limits; in the unit of the values.
+    std::optional<double> lower_specification, upper_specification;
     double confidence_level = 0.95;
 };
 /// Drawn in characters, at most `width` values wide (the last ones), with center and limits.

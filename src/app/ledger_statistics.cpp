@@ -100,25 +100,6 @@ int draw_statistics(const std::string& path, const nlohmann::ordered_json& docum
     return done;
 }
 
-int run_chart(const std::string& path, const StatisticsArguments& arguments) {
-    const Format format = format_from(arguments.answer);
-    const bool drawn = require_drawable(arguments.answer.output, arguments.drawing);
-    refuse_overwriting(arguments.answer.output, {path});
-    LedgerChart chart;
-    chart.rules = rules_from(arguments.rules);
-    chart.quantity = quantity_from(arguments.filter);
-    chart.values = values_from(path, arguments, "chart");
-    chart.chart = individuals_chart(numbers_of(chart.values));
-    chart.signals = run_signals(chart.chart, chart.rules);
-    chart.confidence_level = confidence_from(arguments.answer);
-    if (!arguments.filter.serial.empty())
-        chart.trend = linear_trend(years_of(chart.values), chart.chart.values, chart.confidence_level);
-    const auto document = [&] { return chart_document(chart, arguments.filter); };
-    if (drawn) return draw_statistics(path, document(), arguments);
-    write_answer(format == Format::text ? to_text(chart) : to_text(document()), arguments.answer.output);
-    return done;
-}
-
 /// The limit of the quantity in the sheet of the newest of the entries that has one.
 std::optional<Limit> newest_limit(const Ledger& ledger, const std::vector<LedgerValue>& values,
                                   Quantity quantity) {
@@ -152,13 +133,40 @@ std::optional<Limit> limit_from(const StatisticsArguments& arguments, Quantity q
     }
 }
 
+/// The limit that the options give, else that of the sheets.
+std::optional<Limit> known_limit(const std::string& path, const std::vector<LedgerValue>& values,
+                                 const StatisticsArguments& arguments, Quantity quantity) {
+    const auto given = limit_from(arguments, quantity);
+    return given ? given : newest_limit(Ledger::open_to_read(path), values, quantity);
+}
+
+int run_chart(const std::string& path, const StatisticsArguments& arguments) {
+    const Format format = format_from(arguments.answer);
+    const bool drawn = require_drawable(arguments.answer.output, arguments.drawing);
+    refuse_overwriting(arguments.answer.output, {path});
+    LedgerChart chart;
+    chart.rules = rules_from(arguments.rules);
+    chart.quantity = quantity_from(arguments.filter);
+    chart.values = values_from(path, arguments, "chart");
+    chart.chart = individuals_chart(numbers_of(chart.values));
+    chart.signals = run_signals(chart.chart, chart.rules);
+    chart.confidence_level = confidence_from(arguments.answer);
+    if (!arguments.filter.serial.empty())
+        chart.trend = linear_trend(years_of(chart.values), chart.chart.values, chart.confidence_level);
+    const auto limit = known_limit(path, chart.values, arguments, chart.quantity);
+    if (limit) chart.lower_specification = limit->lower, chart.upper_specification = limit->upper;
+    const auto document = [&] { return chart_document(chart, arguments.filter); };
+    if (drawn) return draw_statistics(path, document(), arguments);
+    write_answer(format == Format::text ? to_text(chart) : to_text(document()), arguments.answer.output);
+    return done;
+}
+
 int run_capability(const std::string& path, const StatisticsArguments& arguments) {
     refuse_drawn(arguments.answer.output);
     const Format format = format_from(arguments.answer);
     const Quantity quantity = quantity_from(arguments.filter);
-    const auto given = limit_from(arguments, quantity);
     const auto values = values_from(path, arguments, "judge");
-    const auto limit = given ? given : newest_limit(Ledger::open_to_read(path), values, quantity);
+    const auto limit = known_limit(path, values, arguments, quantity);
     if (!limit)
         throw UsageError({"--min, --max", "", fmt::format("no limit of the {} is known", name_of(quantity)),
                           "Give --min or --max; the sheets of these entries have none"});
@@ -262,18 +270,24 @@ void add_ledger_statistics_commands(CLI::App& ledger, Context& context, const Le
         });
         return std::pair(part, arguments);
     };
-    const auto [chart, chart_arguments] =
-        add("chart", "Individuals and moving ranges, signals, and the trend of one --serial", run_chart);
+    const auto [chart, chart_arguments] = add(
+        "chart",
+        "Individuals and moving ranges against the limits of the newest sheet or --min, --max, signals, and "
+        "the trend of one --serial",
+        run_chart);
     add_drawing_options(*chart, chart_arguments->drawing, "chart");
     chart->add_option("--rules", chart_arguments->rules, "Which patterns are signals: usual or all")
         ->type_name("usual|all")
         ->capture_default_str();
+    const auto add_limit_options = [](CLI::App& part, StatisticsArguments& arguments) {
+        part.add_option("--min", arguments.lower, "Lower limit, with its unit")->type_name("VALUE");
+        part.add_option("--max", arguments.upper, "Upper limit")->type_name("VALUE");
+    };
+    add_limit_options(*chart, *chart_arguments);
     const auto [capable, capability_arguments] =
         add("capability", "Cp, Cpk, Pp, Ppk against the limits of the newest sheet or --min, --max",
             run_capability);
-    capable->add_option("--min", capability_arguments->lower, "Lower limit, with its unit")
-        ->type_name("VALUE");
-    capable->add_option("--max", capability_arguments->upper, "Upper limit")->type_name("VALUE");
+    add_limit_options(*capable, *capability_arguments);
     const auto [gauge, gauge_arguments] =
         add("gauge", "Repeatability, reproducibility and articles, by analysis of variance", run_gauge);
     add_drawing_options(*gauge, gauge_arguments->drawing, "gauge");

@@ -102,11 +102,44 @@ void draw(Canvas& canvas, const VerdictFigure& figure) {
 
 namespace {
 
-void end_label(Canvas& canvas, const Panel& panel, std::optional<double> at, const std::string& name) {
-    if (!at) return;
-    const double y = panel.place(panel.x_axis().low, *at).y;
-    canvas.text(name, {panel.frame().right() + 0.4 * canvas.font_size(), y},
-                {0.88 * canvas.font_size(), palette::ink});
+struct LevelName {
+    double y = 0.0;
+    const char* name = "";
+};
+
+std::vector<LevelName> level_names(const Panel& panel, const ChartFigure& figure) {
+    std::vector<LevelName> names;
+    const auto add = [&](const std::optional<double>& level, const char* name) {
+        if (level) names.push_back({panel.place(panel.x_axis().low, *level).y, name});
+    };
+    add(figure.centre, "centre");
+    add(figure.lower_control, "lower control");
+    add(figure.upper_control, "upper control");
+    add(figure.lower_limit, "lower limit");
+    add(figure.upper_limit, "upper limit");
+    std::ranges::sort(names, {}, &LevelName::y);
+    return names;
+}
+
+/// The names of the levels at the right, moved apart where the levels lie close.
+void draw_level_names(Canvas& canvas, const Panel& panel, const ChartFigure& figure) {
+    const double size = 0.88 * canvas.font_size(), step = 1.15 * size;
+    std::vector<LevelName> names = level_names(panel, figure);
+    for (int pass = 0; pass < 20; ++pass)
+        for (std::size_t i = 1; i < names.size(); ++i) {
+            const double lacking = step - (names[i].y - names[i - 1].y);
+            if (lacking <= 0.0) continue;
+            names[i - 1].y -= 0.5 * lacking;
+            names[i].y += 0.5 * lacking;
+        }
+    for (const LevelName& name : names)
+        canvas.text(name.name, {panel.frame().right() + 0.4 * canvas.font_size(), name.y},
+                    {size, palette::ink});
+}
+
+bool outside_limits(const ChartFigure& figure, double value) {
+    return (figure.lower_limit && value < *figure.lower_limit) ||
+           (figure.upper_limit && value > *figure.upper_limit);
 }
 
 Axis chart_values(const ChartFigure& figure) {
@@ -119,26 +152,34 @@ Axis chart_values(const ChartFigure& figure) {
     return linear_axis(range.low, range.high, axis_label(figure.quantity, figure.unit), 5, 0.08);
 }
 
-/// As many of the points' labels as fit side by side.
-Axis chart_labels(Canvas& canvas, const ChartFigure& figure, double width) {
-    const double count = std::max(1.0, static_cast<double>(figure.points.size()));
-    Axis axis{0.5, count + 0.5, false, "", {}};
+/// Names at 1, 2, … as far as they fit side by side: every second, third … where they do not.
+Axis naming_axis(Canvas& canvas, const std::vector<std::string>& names, double width, std::string label) {
+    const double count = std::max(1.0, static_cast<double>(names.size()));
+    Axis axis{0.5, count + 0.5, false, std::move(label), {}};
     double widest = 1.0;
-    for (const ChartPoint& point : figure.points)
-        widest = std::max(widest, canvas.text_width(point.label, 0.92 * canvas.font_size()));
+    for (const std::string& name : names)
+        widest = std::max(widest, canvas.text_width(name, 0.92 * canvas.font_size()));
     const auto every = static_cast<std::size_t>(std::ceil(count * (widest + canvas.font_size()) / width));
-    for (std::size_t i = 0; i < figure.points.size(); i += std::max<std::size_t>(every, 1))
-        axis.ticks.push_back({static_cast<double>(i) + 1.0, figure.points[i].label});
+    for (std::size_t i = 0; i < names.size(); i += std::max<std::size_t>(every, 1))
+        axis.ticks.push_back({static_cast<double>(i) + 1.0, names[i]});
     return axis;
 }
 
-void draw_chart_point(Canvas& canvas, const Panel& panel, double number, const ChartPoint& point) {
-    const Colour colour = point.flagged ? palette::alarm : palette::fitted;
+std::vector<std::string> labels_of(const ChartFigure& figure) {
+    std::vector<std::string> labels;
+    for (const ChartPoint& point : figure.points) labels.push_back(point.label);
+    return labels;
+}
+
+void draw_chart_point(Canvas& canvas, const Panel& panel, double number, const ChartPoint& point,
+                      bool outside) {
+    const Colour colour = point.flagged || outside ? palette::alarm : palette::fitted;
     const Point at = panel.place(number, point.value.value);
     if (std::isfinite(point.value.low) && std::isfinite(point.value.high))
         canvas.line(panel.place(number, point.value.low), panel.place(number, point.value.high),
                     {colour, 1.0, Dash::solid});
-    canvas.mark(point.flagged ? Mark::square : Mark::disc, at, point.flagged ? 3.0 : 2.3, colour);
+    const Mark mark = outside ? Mark::triangle : point.flagged ? Mark::square : Mark::disc;
+    canvas.mark(mark, at, point.flagged || outside ? 3.0 : 2.3, colour);
     if (point.flagged)
         canvas.outline({at.x - 5.0, at.y - 5.0, 10.0, 10.0}, {palette::alarm, 1.0, Dash::solid});
 }
@@ -151,7 +192,7 @@ void draw(Canvas& canvas, const ChartFigure& figure) {
     const double names = figure.centre || figure.lower_limit || figure.upper_limit ? 6.6 * size : 0.0;
     const Rect outer{0.0, 0.0, canvas.width() - names, canvas.height()};
     Rect frame = frame_within(canvas, outer, {0.0, 1.0, false, "", {{0.0, "1"}}}, y);
-    Panel panel(canvas, frame, chart_labels(canvas, figure, frame.width), y);
+    Panel panel(canvas, frame, naming_axis(canvas, labels_of(figure), frame.width, ""), y);
     const Stroke control{palette::accent, 1.0, Dash::dashed}, limit{palette::ink, 1.4, Dash::solid};
     if (figure.centre) panel.level(*figure.centre, {palette::accent, 1.0, Dash::solid});
     if (figure.lower_control) panel.level(*figure.lower_control, control);
@@ -165,13 +206,9 @@ void draw(Canvas& canvas, const ChartFigure& figure) {
     }
     panel.curve(numbers, values, {palette::observed, 0.8, Dash::solid});
     for (std::size_t i = 0; i < numbers.size(); ++i)
-        draw_chart_point(canvas, panel, numbers[i], figure.points[i]);
+        draw_chart_point(canvas, panel, numbers[i], figure.points[i], outside_limits(figure, values[i]));
     panel.close();
-    end_label(canvas, panel, figure.centre, "centre");
-    end_label(canvas, panel, figure.lower_control, "lower control");
-    end_label(canvas, panel, figure.upper_control, "upper control");
-    end_label(canvas, panel, figure.lower_limit, "lower limit");
-    end_label(canvas, panel, figure.upper_limit, "upper limit");
+    draw_level_names(canvas, panel, figure);
 }
 
 namespace {
@@ -255,9 +292,7 @@ void draw_readings(Canvas& canvas, const GaugeFigure& figure, double height) {
     Range range;
     for (const GaugeReading& reading : figure.readings) range.include(reading.values);
     const Axis y = linear_axis(range.low, range.high, axis_label(figure.quantity, figure.unit), 5, 0.08);
-    Axis x{0.5, static_cast<double>(std::max<std::size_t>(articles.size(), 1)) + 0.5, false, "article", {}};
-    for (std::size_t i = 0; i < articles.size(); ++i)
-        x.ticks.push_back({static_cast<double>(i) + 1.0, articles[i]});
+    const Axis x = naming_axis(canvas, articles, canvas.width() - 6.0 * canvas.font_size(), "article");
     Panel panel(canvas, frame_within(canvas, {0, 0, canvas.width(), height}, x, y), x, y);
     const double spread = 0.6 / static_cast<double>(std::max<std::size_t>(operators.size(), 1));
     for (const GaugeReading& reading : figure.readings) {

@@ -90,14 +90,20 @@ NamedFigure chart_figure(const Json& chart) {
     figure.centre = number_at(chart, {"center"});
     figure.lower_control = number_at(chart, {"lower_limit"});
     figure.upper_control = number_at(chart, {"upper_limit"});
+    figure.lower_limit = number_at(chart, {"lower_specification"});
+    figure.upper_limit = number_at(chart, {"upper_specification"});
     const std::set<long long> flagged = flagged_entries(chart);
     const auto& values = list_at(chart, {"values"});
     const std::size_t first = values.size() > most_charted ? values.size() - most_charted : 0;
     for (std::size_t i = first; i < values.size(); ++i)
         figure.points.push_back(chart_point(values[i], flagged));
     std::string caption =
-        "The entries in the order of their tests; bars are twice the standard uncertainty. A square in a "
+        "The entries in the order of their tests; bars are twice the standard uncertainty. A mark in a "
         "frame completes a signal.";
+    if (figure.lower_limit || figure.upper_limit)
+        caption +=
+            " The control limits come of the values themselves, the limits are specified; a triangle lies "
+            "outside of them.";
     if (first > 0) caption += fmt::format(" The last {} of {} are drawn.", most_charted, values.size());
     return {"chart", "Control chart", caption, figure};
 }

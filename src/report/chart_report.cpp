@@ -41,6 +41,25 @@ std::string signal_text(const LedgerChart& chart, const RunSignal& signal) {
     return report::wrapped("  ◆ ", fmt::format("{}: {}", where, to_text(signal.rule)));
 }
 
+bool outside(const LedgerChart& chart, const LedgerValue& value) {
+    return (chart.lower_specification && value.value < *chart.lower_specification) ||
+           (chart.upper_specification && value.value > *chart.upper_specification);
+}
+
+std::string specification_text(const LedgerChart& chart) {
+    const auto& lower = chart.lower_specification;
+    const auto& upper = chart.upper_specification;
+    if (!lower && !upper) return "";
+    const std::string unit = unit_of_values(chart);
+    const std::string range = lower && upper ? fmt::format("{:.6g} … {:.6g}", *lower, *upper)
+                              : lower        ? fmt::format("≥ {:.6g}", *lower)
+                                             : fmt::format("≤ {:.6g}", *upper);
+    const auto count =
+        std::ranges::count_if(chart.values, [&](const LedgerValue& value) { return outside(chart, value); });
+    return fmt::format("\nSpecified: {}{}; {} of {} values outside.\n", range, unit.empty() ? "" : " " + unit,
+                       count, chart.values.size());
+}
+
 std::string trend_text(const LinearTrend& trend, const std::string& unit, double level) {
     return report::wrapped(
         "Trend: ",
@@ -78,6 +97,7 @@ std::string to_text(const LedgerChart& chart, std::size_t width) {
     text += report::draw_run({numbers.moving_ranges, beyond},
                              {{numbers.range_upper_limit, "upper limit"}, {numbers.range_center, "mean"}},
                              width, 8);
+    text += specification_text(chart);
     text += chart.signals.empty() ? "\nNo signal by the rules asked for.\n" : "\nSignals\n";
     for (const RunSignal& signal : chart.signals) text += signal_text(chart, signal);
     if (chart.trend)
@@ -97,6 +117,8 @@ ordered_json to_json(const LedgerChart& chart) {
                       {"moving_range_upper_limit", chart.chart.range_upper_limit},
                       {"values", ordered_json::array()},
                       {"signals", ordered_json::array()}};
+    if (chart.lower_specification) json["lower_specification"] = *chart.lower_specification;
+    if (chart.upper_specification) json["upper_specification"] = *chart.upper_specification;
     for (const LedgerValue& value : chart.values) json["values"].push_back(value_json(value));
     for (const RunSignal& signal : chart.signals) json["signals"].push_back(signal_json(chart, signal));
     if (chart.trend)

@@ -98,7 +98,13 @@ TEST_CASE("the ledger's entry, chart and gauge study are drawn in every form") {
     check_every_form(bench, {"ledger", "--ledger", ledger, "show", "3"});
     CHECK_THAT(bench.read("drawn.html"), Contains("sash damper S2") && Contains("0417"));
     check_every_form(bench, {"ledger", "--ledger", ledger, "chart"});
-    CHECK_THAT(bench.read("drawn.html"), Contains("upper control limit"));
+    // The sheets ask for 0.02 at least; --max adds a limit that one of the eight values exceeds.
+    CHECK_THAT(bench.read("drawn.html"), Contains("upper control limit") &&
+                                             Contains("≥ 0.02, 0 of 8 outside") && Contains(">lower limit<"));
+    check_every_form(bench, {"ledger", "--ledger", ledger, "chart", "--max", "0.0555"});
+    CHECK_THAT(bench.read("drawn.html"), Contains("≤ 0.0555, 1 of 8 outside") && Contains(">upper limit<"));
+    CHECK_THAT(bench.run({"ledger", "--ledger", ledger, "chart"}).out,
+               Contains("Specified: ≥ 0.02; 0 of 8 values outside."));
     check_every_form(bench, {"ledger", "--ledger", ledger, "gauge"});
     CHECK_THAT(bench.read("drawn.html"), Contains("repeatability") && Contains("night"));
     CHECK(bench.run({"ledger", "--ledger", ledger, "list", "-o", bench.path("list.pdf")}).status == 2);
