@@ -33,6 +33,10 @@ struct Arguments {
     AnalysisArguments analysis;
 };
 
+/// The intervals of the simple methods are in the result; only where it takes its numbers from one of them is
+/// their bootstrap run again. Two replicates are the fewest that have a deviation.
+constexpr int fewest_replicates = 2;
+
 std::string text_of(const Json& object, const char* key) {
     const auto found = object.find(key);
     return found != object.end() && found->is_string() ? found->get<std::string>() : "";
@@ -195,6 +199,8 @@ RunAgain run_again(const Json& result, const std::string& file, const std::vecto
             analysis_options(arguments.recording, arguments.article, arguments.answer, arguments.analysis);
         options.identify.pictures = true;
         options.keep_samples = true;
+        if (text_of(object_of(result, "result"), "method") == "curve_fit")
+            options.identify.replicates = fewest_replicates;
         std::vector<RecordingInput> inputs;
         if (read_recordings(result, file, folders, arguments, inputs, again.missing))
             again.identification = identify(std::move(inputs), options);

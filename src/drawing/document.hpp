@@ -81,6 +81,8 @@ struct Document {
 [[nodiscard]] std::string to_html(const Document& document);
 [[nodiscard]] std::string to_pdf(const Document& document, PaperSize paper);
 
+/// True when the figures stand side by side, or one stands small as if it had a neighbour.
+[[nodiscard]] bool set_beside(const Pictures& pictures);
 /// Width and font of a figure within a page: alone, or one of two beside each other.
 [[nodiscard]] FigureSize page_figure_size(const NamedFigure& figure, bool beside, double whole_width);
 

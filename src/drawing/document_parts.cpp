@@ -22,6 +22,74 @@ void add_fact(FactRows& rows, const char* name, const std::string& value) {
     if (!value.empty()) rows.emplace_back(name, value);
 }
 
+FactRows sheet_facts(const Json& result) {
+    FactRows rows;
+    const Json& sheet = at(result, {"test_sheet"});
+    add_fact(rows, "Article", text_at(sheet, {"article_type"}));
+    add_fact(rows, "Serial number", text_at(sheet, {"serial"}));
+    add_fact(rows, "Date of test", text_at(sheet, {"date"}));
+    add_fact(rows, "Tested by", text_at(sheet, {"operator"}));
+    return rows;
+}
+
+void add_sensor(FactRows& rows, const Json& result) {
+    const Json& sheet = at(result, {"test_sheet"});
+    add_fact(rows, "Sensor", text_at(sheet, {"sensor"}));
+    add_fact(rows, "Sensor calibrated", text_at(sheet, {"sensor_calibrated"}));
+    add_fact(rows, "Calibration due", text_at(sheet, {"sensor_due"}));
+}
+
+void add_provenance(FactRows& rows, const Json& result, const std::string& command) {
+    add_fact(rows, "Test sheet", text_at(result, {"test_sheet", "file"}));
+    add_fact(rows, "SHA-256 of the sheet", text_at(result, {"test_sheet", "sha256"}));
+    const std::string software = text_at(result, {"software", "name"});
+    if (!software.empty())
+        add_fact(rows, "Software", software + " " + text_at(result, {"software", "version"}));
+    add_fact(rows, "Command", command);
+}
+
+Document opened(const Json& result, const char* kind, const std::string& title) {
+    Document document;
+    document.kind = kind;
+    document.title = title;
+    document.number = report_number(result);
+    document.subject = article_name(result);
+    document.date = text_at(result, {"test_sheet", "date"});
+    document.creator = text_at(result, {"software", "name"}) + " " + text_at(result, {"software", "version"});
+    return document;
+}
+
+Note note_of(const Json& finding) {
+    return {text_at(finding, {"severity"}), text_at(finding, {"message"})};
+}
+
+void add_notes(std::vector<Block>& blocks, const Notes& notes) {
+    if (notes.notes.empty()) return;
+    blocks.push_back(Heading{2, "Findings"});
+    blocks.push_back(notes);
+}
+
+void add_signature(std::vector<Block>& blocks, const std::vector<std::string>& remarks) {
+    blocks.push_back(Heading{2, "Remarks and signature"});
+    for (const std::string& remark : remarks) blocks.push_back(Paragraph{remark, false});
+    blocks.push_back(SignatureLines{});
+}
+
+std::string with_unit(double value, const std::string& unit, int digits) {
+    return fmt::format("{:.{}g}", value, digits) + (unit == "1" || unit.empty() ? "" : " " + unit);
+}
+
+std::string p_text(std::optional<double> p) {
+    if (!p) return "—";
+    return *p < 1e-4 ? "< 0.0001" : fmt::format("{:.4f}", *p);
+}
+
+std::string range_text(std::optional<double> low, std::optional<double> high) {
+    if (low && high) return fmt::format("{:.6g} … {:.6g}", *low, *high);
+    if (low) return fmt::format("≥ {:.6g}", *low);
+    return high ? fmt::format("≤ {:.6g}", *high) : "";
+}
+
 std::string report_number(const Json& result) {
     const std::string result_json = result.dump(-1, ' ', false, Json::error_handler_t::replace);
     std::array<unsigned char, SHA256_DIGEST_LENGTH> hash{};
@@ -66,6 +134,22 @@ std::string quoted(const std::string& word) {
             text.push_back(letter);
     text.push_back('\'');
     return text;
+}
+
+std::string file_words(const std::string& file, const std::string& added_mass) {
+    std::string words(1, ' ');
+    words.append(quoted(file));
+    if (!added_mass.empty()) words.append(" --added-mass ").append(quoted(added_mass));
+    return words;
+}
+
+std::string closing_words(const Json& result) {
+    std::string words;
+    const std::string sheet = text_at(result, {"test_sheet", "file"});
+    if (!sheet.empty()) words.append(" --sheet ").append(quoted(sheet));
+    for (const Json& option : list_at(result, {"options"}))
+        if (option.is_string()) words.append(" ").append(quoted(option.get<std::string>()));
+    return words;
 }
 
 Json parsed_result(const std::string& text, const std::string& file) {

@@ -70,6 +70,17 @@ void draw_decay_curves(Canvas& canvas, Panel& panel, const DecayFigure& figure) 
     draw_key(canvas, key, panel);
 }
 
+/// The envelope is seen as far as it stays near the samples.
+void include_envelope(Range& values, const DecayFigure& figure) {
+    Range envelope;
+    envelope.include(figure.envelope_low);
+    envelope.include(figure.envelope_high);
+    if (values.empty || envelope.empty) return;
+    const double reach = 0.15 * (values.high - values.low);
+    values = {std::max(std::min(envelope.low, values.low), values.low - reach),
+              std::min(std::max(envelope.high, values.high), values.high + reach), false};
+}
+
 void draw_residuals(Canvas& canvas, const DecayFigure& figure, Rect frame, Axis x) {
     Range range;
     range.include(figure.residual);
@@ -121,6 +132,7 @@ void draw(Canvas& canvas, const DecayFigure& figure) {
     times.include(figure.time_s);
     values.include(figure.observed);
     values.include(figure.fitted);
+    include_envelope(values, figure);
     const bool with_residuals = !figure.residual.empty();
     const double size = canvas.font_size(), residual_height = with_residuals ? 8.2 * size : 0.0;
     Axis x = linear_axis(times.low, times.high, "time in s", 8);

@@ -112,7 +112,7 @@ class HtmlWriter {
         body += "</tbody></table></div>\n";
     }
     void operator()(const Pictures& pictures) {
-        const bool beside = pictures.figures.size() > 1 || small(pictures.figures.front());
+        const bool beside = set_beside(pictures);
         if (beside) body += "<div class=\"pair\">\n";
         for (const NamedFigure& figure : pictures.figures) picture(figure, beside);
         if (beside) body += "</div>\n";
@@ -142,11 +142,6 @@ class HtmlWriter {
             text += fmt::format("<{0}{1} dir=\"auto\">{2}</{0}>", tag,
                                 i < numeric.size() && numeric[i] ? " class=\"num\"" : "", escaped(cells[i]));
         return text + "</tr>";
-    }
-    /// A figure that stands in a pair although it has no partner.
-    static bool small(const NamedFigure& figure) {
-        return figure.name.starts_with("decrement") || figure.name.starts_with("spectrum") ||
-               figure.name.starts_with("autocorrelation") || figure.name.starts_with("course");
     }
     void picture(const NamedFigure& figure, bool beside) {
         const FigureSize size = page_figure_size(figure, beside, 482.0);

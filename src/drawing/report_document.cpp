@@ -29,6 +29,12 @@ Document document_of(const Json& result, const ReportInput& input) {
     return identification_document(result, input);
 }
 
+bool set_beside(const Pictures& pictures) {
+    const std::string& first = pictures.figures.front().name;
+    return pictures.figures.size() > 1 || first.starts_with("decrement") || first.starts_with("spectrum") ||
+           first.starts_with("autocorrelation") || first.starts_with("course");
+}
+
 FigureSize page_figure_size(const NamedFigure& figure, bool beside, double whole_width) {
     constexpr double gap = 14.0;
     FigureSize size;

@@ -66,6 +66,15 @@ std::string QuantityText::with_unit() const {
     return unit.empty() ? value : value + " " + unit;
 }
 
+std::string QuantityText::with_uncertainty() const {
+    if (uncertainty.empty() || uncertainty.find_first_not_of("0123456789.") != std::string::npos)
+        return uncertainty.empty() ? value : value + " ± " + uncertainty;
+    const bool below_one = uncertainty.starts_with("0.");
+    const std::size_t first = uncertainty.find_first_of("123456789");
+    if (first == std::string::npos) return value;
+    return value + "(" + (below_one ? uncertainty.substr(first) : uncertainty) + ")";
+}
+
 std::string QuantityText::interval() const {
     return low.empty() ? "" : low + " … " + high;
 }

@@ -23,7 +23,9 @@ using Json = nlohmann::ordered_json;
 struct QuantityText {
     std::string name, unit, value, uncertainty, low, high, degrees_of_freedom;
     [[nodiscard]] std::string with_unit() const;  ///< "4.2003 Hz"
-    [[nodiscard]] std::string interval() const;   ///< "4.1965 … 4.2041"; empty when there is none
+    /// "4.2003(19)", the uncertainty in the last digits; "2229(13)", "2228.9(7.3)".
+    [[nodiscard]] std::string with_uncertainty() const;
+    [[nodiscard]] std::string interval() const;  ///< "4.1965 … 4.2041"; empty when there is none
 };
 [[nodiscard]] QuantityText quantity_text(const std::string& key, const Json& entry);
 /// Degrees of freedom; so many that no factor would show it are ∞.
