@@ -89,13 +89,23 @@ AutocorrelationFigure autocorrelation() {
 }
 
 CourseFigure course() {
-    CourseFigure figure{"displacement", "mm", {}, {}, {}, {}};
-    for (int i = 0; i < 24; ++i) {
-        const double a = 12.0 * std::pow(0.87, i), ratio = 0.04 + 0.02 / (1.0 + a);
+    CourseFigure figure{"displacement", "mm", {}, {}, {}, {}, "viscous+friction", {}, {}, {}, {}};
+    const auto law = [](double amplitude) { return 0.04 + 0.03 / (0.5 + amplitude); };
+    Noise noise(13);
+    for (int i = 0; i < 7; ++i) {
+        const double a = 10.0 * std::pow(0.62, i), u = 0.0008 + 0.002 / (1.0 + a);
+        const double ratio = law(a) + 0.7 * u * noise();
         figure.amplitude.push_back(a);
         figure.damping_ratio.push_back(ratio);
-        figure.low.push_back(ratio - 0.001 - 0.004 / (1.0 + a));
-        figure.high.push_back(ratio + 0.001 + 0.004 / (1.0 + a));
+        figure.low.push_back(ratio - 2.0 * u);
+        figure.high.push_back(ratio + 2.0 * u);
+    }
+    for (int i = 0; i < 40; ++i) {
+        const double a = 12.0 * std::pow(0.92, i);
+        figure.model_amplitude.push_back(a);
+        figure.model_damping_ratio.push_back(law(a));
+        figure.model_low.push_back(law(a) - 0.001);
+        figure.model_high.push_back(law(a) + 0.001);
     }
     return figure;
 }
@@ -110,7 +120,7 @@ VerdictFigure verdict() {
 }
 
 ChartFigure chart() {
-    ChartFigure figure{"damping ratio", "1", {}, 0.281, 0.268, 0.294, {}, {}};
+    ChartFigure figure{"damping ratio", "1", {}, 0.281, 0.268, 0.294, 0.26, 0.31};
     Noise noise(17);
     for (int i = 0; i < 26; ++i) {
         const double value = i == 19 ? 0.299 : 0.281 + 0.007 * noise();

@@ -46,6 +46,7 @@ TEST_CASE("an axis of one value or of none still has a range") {
 TEST_CASE("a logarithmic axis has 1, 2 and 5 within few decades and only decades within many") {
     CHECK(labels(logarithmic_axis(0.9, 11.0, "a")) == std::vector<std::string>{"1", "2", "5", "10"});
     CHECK(labels(logarithmic_axis(1e-6, 1.0, "a")).front() == "10⁻⁶");
+    CHECK(labels(logarithmic_axis(2.5, 16.0, "a")) == std::vector<std::string>{"3", "5", "7", "10"});
 }
 
 TEST_CASE("a logarithmic axis of what has no logarithm still has a range") {

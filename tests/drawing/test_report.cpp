@@ -1,17 +1,11 @@
 // The report: what it says, that it says it safely, and that it says the same twice.
-#include <sys/wait.h>
-#include <unistd.h>
-
 #include <algorithm>
-#include <array>
 #include <catch2/catch.hpp>
-#include <cstdio>
-#include <filesystem>
-#include <fstream>
 #include <nlohmann/json.hpp>
 #include <set>
 
 #include "drawing/markup.hpp"
+#include "drawing/pdf_tools.hpp"
 #include "drawing/sample_figures.hpp"
 #include "ringwright/error.hpp"
 #include "ringwright/report_document.hpp"
@@ -106,34 +100,12 @@ ReportInput input_of(const Json& json) {
     return input;
 }
 
-/// What a command of poppler-utils prints about a PDF.
-std::string told_by(const std::string& tool, const std::string& pdf) {
-    const auto path =
-        std::filesystem::temp_directory_path() / ("ringwright-report-" + std::to_string(getpid()) + ".pdf");
-    std::ofstream(path, std::ios::binary) << pdf;
-    const std::string command =
-        tool + " '" + path.string() + "'" + (tool.starts_with("pdftotext") ? " -" : "");
-    FILE* pipe = popen(command.c_str(), "r");
-    REQUIRE(pipe != nullptr);
-    std::string text;
-    std::array<char, 4096> buffer{};
-    while (const std::size_t count = std::fread(buffer.data(), 1, buffer.size(), pipe))
-        text.append(buffer.data(), count);
-    REQUIRE(pclose(pipe) == 0);
-    std::filesystem::remove(path);
-    return text;
-}
-
-std::string pdf_text(const std::string& pdf) {
-    return told_by("pdftotext -layout", pdf);
-}
-
 }  // namespace
 
 TEST_CASE("the report says every number at the digits that its uncertainty supports") {
     // Two significant digits of the standard uncertainty (JCGM 100:2008, 7.2.6), by hand.
     const ReportInput input = input_of(result());
-    const std::string html = report_html(input), text = pdf_text(report_pdf(input));
+    const std::string html = report_html(input), text = pdf::text_of(report_pdf(input));
     for (const char* number :
          {"4.2003", "0.0019", "4.1964 … 4.2042", "0.04512", "0.00037", "2228.9", "7.3", "91.1 %"}) {
         INFO(number);
@@ -144,7 +116,7 @@ TEST_CASE("the report says every number at the digits that its uncertainty suppo
 
 TEST_CASE("the report says what a test report has to say") {
     const ReportInput input = input_of(with_sheet(result()));
-    const std::string html = report_html(input), text = pdf_text(report_pdf(input));
+    const std::string html = report_html(input), text = pdf::text_of(report_pdf(input));
     for (const char* said : {"sash damper S2", "0417", "bench 3", "2031-04-02", "laser L-07", "2031-01-15",
                              "Does not conform", "guarded acceptance", "Hum at 50 Hz.", "sash-damper.csv",
                              "bbbbbbbb", "ringwright 0.1.0", "curve fit (viscous)", "the record ends early",
@@ -184,7 +156,7 @@ TEST_CASE("names from outside change nothing but themselves") {
     CHECK(html.find("&lt;script&gt;alert(&#39;x&#39;)&lt;/script&gt; &amp; Ærø Ω") != std::string::npos);
     CHECK(html.find("בדיקה 12") != std::string::npos);
     const std::string pdf = report_pdf(input);
-    std::string text = pdf_text(pdf);
+    std::string text = pdf::text_of(pdf);
     CHECK(text.find("Ærø Ω") != std::string::npos);
     // The long serial wraps: all its digits are there, on several lines.
     CHECK(std::ranges::count(text, '7') >= 200);
@@ -208,7 +180,7 @@ TEST_CASE("the same input gives the same bytes") {
 
 TEST_CASE("the PDF has its pages, its size, its title and its date from the sheet") {
     const std::string pdf = report_pdf(input_of(with_sheet(result())));
-    const std::string facts = told_by("env TZ=UTC pdfinfo", pdf), text = pdf_text(pdf);
+    const std::string facts = pdf::told_by("env TZ=UTC pdfinfo", pdf), text = pdf::text_of(pdf);
     const std::size_t at = facts.find("Pages:");
     REQUIRE(at != std::string::npos);
     const int pages = std::stoi(facts.substr(at + 6));
@@ -216,13 +188,13 @@ TEST_CASE("the PDF has its pages, its size, its title and its date from the shee
     for (int page = 1; page <= pages; ++page)
         CHECK_THAT(text, Catch::Contains("page " + std::to_string(page) + " of " + std::to_string(pages)));
     CHECK_THAT(facts, Catch::Contains("A4") && Catch::Contains("sash damper S2") && Catch::Contains("2031"));
-    CHECK_THAT(told_by("pdfinfo", report_pdf(input_of(result()), PaperSize::letter)),
+    CHECK_THAT(pdf::told_by("pdfinfo", report_pdf(input_of(result()), PaperSize::letter)),
                Catch::Contains("letter"));
-    CHECK_THAT(told_by("pdfinfo", report_pdf(input_of(result()))), !Catch::Contains("CreationDate"));
+    CHECK_THAT(pdf::told_by("pdfinfo", report_pdf(input_of(result()))), !Catch::Contains("CreationDate"));
 }
 
 TEST_CASE("fonts are in the PDF") {
-    const std::string fonts = told_by("pdffonts", report_pdf(input_of(result())));
+    const std::string fonts = pdf::told_by("pdffonts", report_pdf(input_of(result())));
     CHECK(markup::count_of(fonts, "\n") > 2);
     CHECK(fonts.find(" no  ") == std::string::npos);  // the column "emb"
 }
@@ -231,7 +203,7 @@ TEST_CASE("figures that are missing are named") {
     ReportInput input{
         result().dump(), "result.json", {}, {"The figures of sash-damper.csv are missing: gone."}};
     CHECK_THAT(report_html(input), Catch::Contains("The figures of sash-damper.csv are missing: gone."));
-    CHECK_THAT(pdf_text(report_pdf(input)), Catch::Contains("are missing: gone."));
+    CHECK_THAT(pdf::text_of(report_pdf(input)), Catch::Contains("are missing: gone."));
 }
 
 TEST_CASE("figures of the result itself need no recording") {
