@@ -58,15 +58,22 @@ PaperSize paper_from(const std::string& text) {
         {"--paper", "", fmt::format("\"{}\" is no paper that is known", text), "Give a4 or letter"});
 }
 
-const NamedFigure& figure_named(const std::vector<NamedFigure>& figures, const std::string& name) {
-    if (figures.empty())
-        throw UsageError({"--figure", "", "this result has no figure", "Ask for the report: -o report.html"});
+/// `missing` says of which recordings there are no figures.
+const NamedFigure& figure_named(const std::vector<NamedFigure>& figures, const std::string& name,
+                                const std::vector<std::string>& missing) {
     const auto found = std::ranges::find(figures, name, &NamedFigure::name);
     if (found != figures.end()) return *found;
-    std::string names;
+    std::string names, gone;
     for (const NamedFigure& figure : figures) names += (names.empty() ? "" : ", ") + figure.name;
-    throw UsageError({"--figure", "", fmt::format("\"{}\" is not among the figures of this result", name),
-                      "Give one of " + names});
+    for (const std::string& sentence : missing) gone.append(". ").append(without_period(sentence));
+    throw UsageError(
+        {"--figure", "",
+         (figures.empty() ? std::string("this result has no figure")
+                          : fmt::format("\"{}\" is not among the figures of this result", name)) +
+             gone,
+         !missing.empty()  ? "Name the folder with the recording: --recordings FOLDER"
+         : figures.empty() ? std::string("Ask for the report: -o report.html")
+                           : "Give one of " + names});
 }
 
 ImageFormat image_format_from(DrawnForm form) {
@@ -86,8 +93,9 @@ std::string one_figure(const ReportInput& input, const std::string& name, DrawnF
                               : decay           ? "decay-1"
                               : figures.empty() ? ""
                                                 : figures.front().name;
-    return drawing().draw_figure(figure_named(figures, name.empty() ? first : name).figure,
-                                 image_format_from(form), {});
+    return drawing().draw_figure(
+        figure_named(figures, name.empty() ? first : name, input.missing_figures).figure,
+        image_format_from(form), {});
 }
 
 /// In lower case and without the point.

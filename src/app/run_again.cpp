@@ -6,6 +6,7 @@
 #include <CLI/Config.hpp>
 #include <CLI/Formatter.hpp>
 #include <algorithm>
+#include <cmath>
 #include <filesystem>
 #include <nlohmann/json.hpp>
 
@@ -170,22 +171,31 @@ std::string now_text(const Quantities& quantities, Quantity quantity) {
                : fmt::format("{:.9g} (u {:.3g})", now->second.value, now->second.standard_uncertainty);
 }
 
+/// Within a hundredth of the uncertainty: less than the digits that a report shows.
+bool shows_the_same(const Estimate& before, const Estimate& now) {
+    const double u = before.standard_uncertainty, room = 0.01 * u;
+    const bool value =
+        std::abs(now.value - before.value) <= room || match_of(before.value, now.value) != Match::different;
+    return value && std::abs(now.standard_uncertainty - u) <= room;
+}
+
+/// One sentence over all of them, or none.
 std::vector<std::string> differences_of(const Json& result, const Quantities& quantities,
                                         const std::string& file) {
-    std::vector<std::string> differences;
+    std::string differences;
     const Json filed = object_of(object_of(result, "result"), "quantities");
     for (const auto& [quantity, before] : quantities_from_json(filed, file)) {
         const auto now = quantities.find(quantity);
-        if (now != quantities.end() && match_of(before.value, now->second.value) != Match::different &&
-            match_of(before.standard_uncertainty, now->second.standard_uncertainty) != Match::different)
-            continue;
-        differences.push_back(fmt::format(
-            "Run again for the figures, the {} did not come out as in the result: it says {:.9g} (u {:.3g}), "
-            "now it "
-            "is {}. The numbers of this report are those of the result.",
-            name_of(quantity), before.value, before.standard_uncertainty, now_text(quantities, quantity)));
+        if (now != quantities.end() && shows_the_same(before, now->second)) continue;
+        differences += fmt::format("{}{}, in the result {:.9g} (u {:.3g}), now {}",
+                                   differences.empty() ? "" : "; ", name_of(quantity), before.value,
+                                   before.standard_uncertainty, now_text(quantities, quantity));
     }
-    return differences;
+    if (differences.empty()) return {};
+    return {
+        fmt::format("Run again for the figures, not all came out as in the result: {}. The numbers of this "
+                    "report are those of the result.",
+                    differences)};
 }
 
 }  // namespace

@@ -15,7 +15,7 @@ namespace ringwright::app {
 struct RunAgain {
     std::optional<Identification> identification;
     std::vector<std::string> missing;
-    std::vector<std::string> differences;  ///< a sentence for each quantity that comes out otherwise
+    std::vector<std::string> differences;  ///< a sentence over the quantities that come out otherwise
 };
 
 /// Looks for each recording under the path that the result names, then beside the result and in `folders`,

@@ -5,6 +5,7 @@
 #include <cairo.h>
 
 #include <memory>
+#include <optional>
 #include <string>
 #include <vector>
 
@@ -127,6 +128,7 @@ struct KeyEntry {
     bool is_area = false;
     bool is_mark = false;
     Mark mark = Mark::disc;
+    std::optional<Colour> hatch = std::nullopt;  ///< of an area
 };
 /// A key in one row that ends at `right`, its middle at height `y`.
 void draw_key(Canvas& canvas, const std::vector<KeyEntry>& entries, double right, double y);

@@ -16,6 +16,7 @@ namespace ringwright::drawing {
 struct Heading {
     int level = 2;  ///< 2: part, 3: section
     std::string text;
+    bool together = false;  ///< stands on one page with all that follows
 };
 struct Paragraph {
     std::string text;

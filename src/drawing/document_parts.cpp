@@ -70,7 +70,7 @@ void add_notes(std::vector<Block>& blocks, const Notes& notes) {
 }
 
 void add_signature(std::vector<Block>& blocks, const std::vector<std::string>& remarks) {
-    blocks.push_back(Heading{2, "Remarks and signature"});
+    blocks.push_back(Heading{2, "Remarks and signature", true});
     for (const std::string& remark : remarks) blocks.push_back(Paragraph{remark, false});
     blocks.push_back(SignatureLines{});
 }

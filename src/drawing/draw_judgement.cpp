@@ -96,7 +96,9 @@ void draw(Canvas& canvas, const VerdictFigure& figure) {
     std::vector<KeyEntry> key{
         {"value with interval", {palette::ink, 2.0, Dash::solid}, false, false, Mark::disc},
         {"within the limits", {palette::accepted, 1.0, Dash::solid}, true, false, Mark::disc}};
-    if (guarded) key.push_back({"guard band", {palette::guard, 1.0, Dash::solid}, true, false, Mark::disc});
+    if (guarded)
+        key.push_back(
+            {"guard band", {palette::guard, 1.0, Dash::solid}, true, false, Mark::disc, palette::accent});
     draw_key(canvas, key, canvas.width() - 0.9 * canvas.font_size(), top + 0.9 * canvas.font_size());
 }
 

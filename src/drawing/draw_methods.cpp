@@ -130,8 +130,11 @@ void draw_stretches(Canvas& canvas, Panel& panel, const CourseFigure& figure) {
             const Point low = panel.place(figure.amplitude[i], inside(figure.low[i]));
             const Point high = panel.place(figure.amplitude[i], inside(figure.high[i]));
             canvas.line(low, high, interval_of_stretch);
-            for (const Point& end : {low, high})
-                canvas.line({end.x - 2.4, end.y}, {end.x + 2.4, end.y}, interval_of_stretch);
+            // An end beyond the frame has no cap.
+            if (figure.low[i] >= panel.y_axis().low)
+                canvas.line({low.x - 2.4, low.y}, {low.x + 2.4, low.y}, interval_of_stretch);
+            if (figure.high[i] <= panel.y_axis().high)
+                canvas.line({high.x - 2.4, high.y}, {high.x + 2.4, high.y}, interval_of_stretch);
         }
         canvas.mark(Mark::disc, panel.place(figure.amplitude[i], inside(figure.damping_ratio[i])), 1.9,
                     palette::ink);
@@ -146,7 +149,7 @@ void draw(Canvas& canvas, const CourseFigure& figure) {
     amplitudes.include(figure.model_amplitude);
     const Range ratios = ratios_of(figure);
     const Axis x = logarithmic_axis(amplitudes.empty ? 1.0 : amplitudes.low, amplitudes.high,
-                                    axis_label("amplitude", figure.unit), 0.04);
+                                    axis_label("amplitude", figure.unit), 0.06);
     const Axis y = linear_axis(ratios.low, ratios.high, "damping ratio", 5, 0.05);
     Panel panel = framed(canvas, x, y);
     const Stroke line{palette::fitted, 1.3, Dash::solid};

@@ -29,7 +29,7 @@ p{margin:.5rem 0;max-width:46rem}.fine{font-size:.87rem;color:var(--muted)}
 .over{color:var(--muted);font-size:.87rem;margin:0 0 .3rem}
 dl{display:grid;grid-template-columns:minmax(7rem,auto) 1fr;gap:.15rem 1.2rem;margin:.6rem 0}
 dl.brief{grid-template-columns:auto 1fr auto 1fr}
-dt{color:var(--muted)}dd{margin:0;min-width:0}
+dt{color:var(--muted)}dd{margin:0;min-width:0;text-align:left}
 .answer{margin:1.2rem 0}.verdict{font-size:1.5rem;font-weight:700;line-height:1.25;margin:0;padding-left:.8rem;border-left:.4rem solid}
 .conforms{color:var(--good)}.does_not_conform{color:var(--bad)}.undecided{color:var(--open)}
 .answer>p{margin:.2rem 0 .8rem}
@@ -53,7 +53,7 @@ ul.notes b{font-weight:600;text-transform:capitalize}
 @page{margin:16mm 18mm}
 @media print{:root{color-scheme:light;--ink:#1f2328;--muted:#59636e;--rule:#d5dae0;--paper:#fff;--page:#fff;--tile:#fff;--good:#1a6b3c;--bad:#a01c28;--open:#8a5a00}
 :root .fig{LIGHT}
-body{font-size:10pt;background:none}main{max-width:none;margin:0;padding:0;border:0}h2,h3{break-after:avoid}figure,.answer,tr,li,.sign{break-inside:avoid}
+body{font-size:10pt;background:none}main{max-width:none;margin:0;padding:0;border:0}h2,h3{break-after:avoid}figure,.answer,tr,li,.sign{break-inside:avoid}.sign,.together~p{break-before:avoid}
 .newpage{break-before:page}.scroll,.wide{overflow:visible}dl.brief{grid-template-columns:auto 1fr auto 1fr}
 .tiles{grid-template-columns:repeat(4,1fr)}.pair{grid-template-columns:1fr 1fr}.wide svg{min-width:0}}
 )css";
@@ -81,7 +81,8 @@ class HtmlWriter {
     std::string body;
 
     void operator()(const Heading& heading) {
-        body += fmt::format("<h{0}{2}>{1}</h{0}>\n", heading.level, escaped(heading.text), take_break());
+        body += fmt::format("<h{0}{2}>{1}</h{0}>\n", heading.level, escaped(heading.text),
+                            heading.together ? " class=\"together\"" : take_break());
     }
     void operator()(const Paragraph& paragraph) {
         body += fmt::format("<p{} dir=\"auto\">{}</p>\n", paragraph.fine ? " class=\"fine\"" : "",

@@ -60,7 +60,10 @@ void PageWriter::table_row(const std::vector<std::string>& cells, const Table& t
 void PageWriter::operator()(const Table& table) {
     const std::vector<double> widths = column_widths(table);
     const double head = row_height(table.header, widths, true) + 5.0;
-    ensure(head + 20.0);
+    double height = head;
+    for (const auto& cells : table.rows) height += row_height(cells, widths, false) + 5.0;
+    // A short table stays in one piece.
+    ensure(height < 0.25 * geometry_.height ? height : head + 20.0);
     table_row(table.header, table, widths, true);
     for (const auto& cells : table.rows) {
         if (y_ + row_height(cells, widths, false) + 5.0 > geometry_.floor()) {

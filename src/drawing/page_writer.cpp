@@ -34,7 +34,10 @@ Layout PageWriter::laid_out(const std::string& text, double width, const TextLoo
     Layout layout = make_layout(cairo_, text, style.size, style.bold);
     pango_layout_set_width(layout.get(), static_cast<int>(width * PANGO_SCALE));
     pango_layout_set_wrap(layout.get(), PANGO_WRAP_WORD_CHAR);
-    pango_layout_set_alignment(layout.get(), style.alignment);
+    // Pango takes left for right in a paragraph that runs from right to left.
+    const bool turned =
+        style.beside_name && pango_layout_get_direction(layout.get(), 0) == PANGO_DIRECTION_RTL;
+    pango_layout_set_alignment(layout.get(), turned ? PANGO_ALIGN_RIGHT : style.alignment);
     pango_layout_set_line_spacing(layout.get(), 1.12F);
     return layout;
 }
@@ -101,7 +104,9 @@ void PageWriter::operator()(const Heading& heading) {
     const TextLook style{part ? 13.0 : 10.5, true, palette::ink, PANGO_ALIGN_LEFT};
     const double above = y_ > geometry_.top ? (part ? 16.0 : 10.0) : 0.0;
     const double height = height_of_text(heading.text, geometry_.text_width(), style);
-    ensure(above + height + (part ? 90.0 : 70.0));
+    // A part begins with some of its text; the signature stands below what is signed.
+    const double room = heading.together ? 170.0 : part ? 90.0 : 70.0;
+    ensure(above + height + room);
     if (y_ > geometry_.top) y_ += above;
     cairo_pdf_surface_add_outline(
         surface_, CAIRO_PDF_OUTLINE_ROOT, clean_utf8(heading.text).c_str(),
@@ -169,7 +174,7 @@ void PageWriter::facts_in_columns(const Facts& facts, std::size_t columns) {
     const double width = (geometry_.text_width() - (count - 1.0) * gap) / count;
     const double name_width = columns == 1 ? 104.0 : 78.0, value_width = width - name_width - 6.0;
     const TextLook name{9.0, false, palette::muted, PANGO_ALIGN_LEFT},
-        value{9.0, false, palette::ink, PANGO_ALIGN_LEFT};
+        value{9.0, false, palette::ink, PANGO_ALIGN_LEFT, true};
     for (std::size_t i = 0; i < facts.rows.size(); i += columns) {
         double height = 0.0;
         const std::size_t end = std::min(i + columns, facts.rows.size());

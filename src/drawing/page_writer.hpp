@@ -26,6 +26,7 @@ struct TextLook {
     bool bold = false;
     Colour colour = palette::ink;
     PangoAlignment alignment = PANGO_ALIGN_LEFT;
+    bool beside_name = false;  ///< begins at the left also where it runs from right to left
 };
 
 /// Sets the blocks of a document on the pages of a surface.

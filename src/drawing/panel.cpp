@@ -169,12 +169,17 @@ double key_width(Canvas& canvas, const std::vector<KeyEntry>& entries) {
     return width;
 }
 
+void draw_area_sample(Canvas& canvas, const KeyEntry& entry, const Rect& rect) {
+    canvas.fill(rect, entry.stroke.colour);
+    if (entry.hatch) canvas.hatch(rect, *entry.hatch);
+}
+
 void draw_sample(Canvas& canvas, const KeyEntry& entry, double from, double to, double y, double size) {
     const Stroke& stroke = entry.stroke;
     if (entry.is_mark)
         canvas.mark(entry.mark, {0.5 * (from + to), y}, 0.28 * size, stroke.colour);
     else if (entry.is_area)
-        canvas.fill({from, y - 0.35 * size, to - from, 0.7 * size}, stroke.colour);
+        draw_area_sample(canvas, entry, {from, y - 0.35 * size, to - from, 0.7 * size});
     else
         canvas.line({from, y}, {to, y}, {stroke.colour, std::max(1.2, stroke.width), stroke.dash});
 }

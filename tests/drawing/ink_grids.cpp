@@ -97,16 +97,16 @@ const std::map<std::string, std::string>& ink_grids() {
          "aaaaaaaaaaaaaaaagaaaaaaaaaaaaaaa\n"},
         {"course-1",
          "aaeeedaaaaaaaaaaaaaaaaefcddedeea\n"
-         "aadffcbbbbbbbbbbbbbbbbbcbbbccbda\n"
-         "bccdleaaaaaaaaaaaaaaaaaaaaaaaaca\n"
-         "aabaedgedaaaaaaaaaaaaaaaaaaaaaba\n"
-         "bdcaaaaclgbaaaaaaaaaaaaaaaaaaaca\n"
-         "aabaaaaacbggjaaaaaaaaaaaaaaaaaba\n"
-         "aabaaaaaaaaagggdcaaaaaaaaaaaaaba\n"
-         "bdcaaaaaaaaaaaadkggdcaaaaaaaaaca\n"
-         "aabaaaaaaaaaaaaacabdkgggjdbacaba\n"
-         "abbaaaaaaaaaaaaaaaaabaaaedfgkfba\n"
-         "bcbdcbbbbcbbbbbcbbbbbbdbbbbbdbca\n"
+         "aadedebbbbbbbbbbbbbbbbbcbbbccbda\n"
+         "bccbgkbaaaaaaaaaaaaaaaaaaaaaaaca\n"
+         "aabaafggccaaaaaaaaaaaaaaaaaaaaba\n"
+         "bdcaaaabhjcaaaaaaaaaaaaaaaaaaaca\n"
+         "aabaaaaabcfgjaaaaaaaaaaaaaaaaaba\n"
+         "aabaaaaaaaaafggdcaaaaaaaaaaaaaba\n"
+         "bdcaaaaaaaaaaaadkggccaaaaaaaaaca\n"
+         "aabaaaaaaaaaaaaacabekgggicbcaaba\n"
+         "abbaaaaaaaaaaaaaaaaabaaaeefjhdba\n"
+         "bcbcdbbbbcbbbbbcbbbbbbdbbbbcdbca\n"
          "aaaaaaaaaaaaaaegfedaaaaaaaaaaaaa\n"},
         {"chart",
          "aaeeedaaaaaaaaaaaaaaaaaaaaaaaaaa\n"
