@@ -56,7 +56,8 @@ struct Search {
     bool mode_meant = false;       ///< the user means one of many modes
     std::vector<Found> found;
     std::vector<RefusedFall> refused;
-    bool steady = false;  ///< something rang and did not fall
+    std::vector<SampleRange> paths = {};  ///< of a hand, or pulses
+    bool steady = false;                  ///< something rang and did not fall
 };
 
 /// The end of a clipped stretch that holds the position, or that lies within a cycle after it.
@@ -254,7 +255,6 @@ bool believable(const Search& search, const Found& found) {
     const bool blow = shows_acceleration(search.recording.quantity) && cycles < 2.0;
     if (blow && found.course.end < found.begin() + shortest_blow) return false;
     if (cycles < 2.0 && !abrupt(search.pyramid, found)) return false;
-    if (cycles < 2.0 && is_hand_or_pulse(search.pyramid, found)) return false;
     if (amplitude < least_amplitude_in_rest * spread_of_rest(values, found.course)) return false;
     if (blow && on_a_pulse(values, found, height, 3.0)) return false;
     return start.noise_rms < std::max(misfit * amplitude, 2.5 * noise);
@@ -276,6 +276,24 @@ bool starts_from_quiet(const Pyramid& pyramid, const Found& found) {
            2.0 * still * start.amplitude + 4.0 * start.fit.residual_rms();
 }
 
+/// Whether the decay is over within two cycles and begins, in motion, on a path that stood in for another
+/// one.
+bool on_known_path(const Search& search, const Found& found) {
+    if (found.start.from_rest || static_cast<double>(found.end() - found.begin()) > 2.0 * found.cycle())
+        return false;
+    return std::any_of(search.paths.begin(), search.paths.end(), [&](const SampleRange& path) {
+        return found.begin() >= path.begin && found.begin() < path.end;
+    });
+}
+
+/// Whether it is a path or a pulse, which is then remembered.
+bool follows_a_path(Search& search, const Found& found) {
+    if (static_cast<double>(found.end() - found.begin()) > 2.0 * found.cycle()) return false;
+    const std::optional<SampleRange> path = hand_or_pulse(search.pyramid, found);
+    if (path) search.paths.push_back(*path);
+    return path.has_value();
+}
+
 void try_onset(Search& search, const Onset& onset, const std::vector<Onset>& all) {
     if (taken(search, onset)) return;
     const StartLimits limits = limits_for(search, onset);
@@ -288,8 +306,10 @@ void try_onset(Search& search, const Onset& onset, const std::vector<Onset>& all
     near.latest = std::min(limits.latest,
                            onset.position + static_cast<std::size_t>(std::min(short_look * cycle, 1e15)));
     std::optional<Found> found = follow_onset(search, onset, near);
-    if (!found || !believable(search, *found)) return;
+    if (!found) return;
+    if (on_known_path(search, *found) || !believable(search, *found)) return;
     if (is_plateau_and_decay(search.pyramid, *found, all) || is_outlived(search.pyramid, *found, all)) return;
+    if (follows_a_path(search, *found)) return;
     if (near.latest < limits.latest) {
         found->course = follow_decay(search.pyramid, found->start, limits.latest);
         if (!believable(search, *found)) return;
@@ -334,13 +354,30 @@ void drop_weak(std::vector<Found>& found, std::span<const double> values) {
     });
 }
 
-/// What rings no more than a few times has to stand out of all that the recording shows elsewhere.
-void drop_wanderings(std::vector<Found>& found, const Pyramid& pyramid) {
-    constexpr double few_cycles = 3.0, stands_out = 3.0;
-    const std::vector<Found> all = found;
-    std::erase_if(found, [&](const Found& f) {
-        const double cycles = static_cast<double>(f.end() - f.begin()) / f.cycle();
-        return !f.is_drop() && cycles < few_cycles && swing_against_elsewhere(pyramid, f, all) < stands_out;
+/// The clipped stretches; where less than a cycle lies between two of them, as one.
+std::vector<SampleRange> clipped_stretches(const Search& search, double cycle) {
+    std::vector<SampleRange> stretches;
+    for (const SampleRange& range : search.recording.clipped) {
+        const std::size_t begin = search.series.position_of(range.begin);
+        const std::size_t end = search.series.position_of(range.end);
+        if (stretches.empty() ||
+            static_cast<double>(begin) > static_cast<double>(stretches.back().end) + cycle)
+            stretches.push_back({begin, end});
+        stretches.back().end = end;
+    }
+    return stretches;
+}
+
+/// A decay has to stand out of all that the recording shows elsewhere: noise wanders, and a mode that the
+/// ground keeps in motion rises and falls by chance.
+void drop_wanderings(Search& search) {
+    constexpr double stands_out = 4.0;
+    const std::vector<Found> all = search.found;
+    std::erase_if(search.found, [&](const Found& f) {
+        // Another mode than the one meant may well be in motion before.
+        if (f.is_drop() || (!is_brief(f) && search.mode_meant)) return false;
+        const std::vector<SampleRange> clipped = clipped_stretches(search, f.cycle());
+        return swing_against_elsewhere(search.pyramid, f, all, clipped) < stands_out;
     });
 }
 
@@ -582,7 +619,7 @@ EventSearch search_whole(const Recording& recording, const EventOptions& options
         hum_hz = std::move(cleaned->lines_hz);
     }
     const Pyramid pyramid(series.values());
-    Search search{recording, series, pyramid, options.kind, options.near_hz.has_value(), {}, {}, false};
+    Search search{recording, series, pyramid, options.kind, options.near_hz.has_value(), {}, {}, {}, false};
     look_for_drops(search);
     const std::vector<Onset> onsets = find_onsets(pyramid);
     for (const Onset& onset : onsets) try_onset(search, onset, onsets);
@@ -590,7 +627,7 @@ EventSearch search_whole(const Recording& recording, const EventOptions& options
               [](const Found& a, const Found& b) { return a.begin() < b.begin(); });
     drop_unlike(search.found);
     drop_weak(search.found, series.values());
-    drop_wanderings(search.found, pyramid);
+    drop_wanderings(search);
     drop_pulls(search.found);
     judge_interruptions(search.found, series, pyramid);
     note_double_hits(search.found, search);

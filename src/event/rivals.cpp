@@ -27,6 +27,10 @@ double half_sine(double u) {
 double half_sine_squared(double u) {
     return half_sine(u) * half_sine(u);
 }
+/// Logarithmic creep, which never ends; a tenth of the duration is its own time.
+double creep(double u) {
+    return std::log1p(10.0 * std::max(u, 0.0));
+}
 
 /// Residual sum of squares of a + b·path((k − begin)/duration).
 double sum_about(std::span<const double> points, Path path, double begin, double duration) {
@@ -56,7 +60,9 @@ PathFit fit_path(std::span<const double> points, Path path) {
     PathFit best{path};
     for (double d = 0.15 * n; d < 2.0 * n; d *= 1.15)
         for (double b = -0.9 * d; b < 0.9 * n; b += 0.06 * d) improve(points, best, b, d);
-    for (double step = 0.05; step > 1e-3;) {
+    constexpr int most_steps = 60;
+    int steps = 0;
+    for (double step = 0.05; step > 1e-3 && steps < most_steps; ++steps) {
         const PathFit from = best;
         for (const double way : {step, -step}) {
             improve(points, best, from.begin + way * from.duration, from.duration);
@@ -71,7 +77,7 @@ PathFit fit_path(std::span<const double> points, Path path) {
 
 PathFit fit_best_path(std::span<const double> points) {
     PathFit best = fit_path(points, straight);
-    for (const Path path : {half_cosine, least_jerk, half_sine, half_sine_squared}) {
+    for (const Path path : {half_cosine, least_jerk, half_sine, half_sine_squared, creep}) {
         const PathFit fit = fit_path(points, path);
         if (fit.sum < best.sum) best = fit;
     }
@@ -98,33 +104,88 @@ double independent_values(std::span<const double> points, const PathFit& fit) {
     return n * (1.0 - rho) / (1.0 + rho);
 }
 
+/// The blocks about the start of a decay that are compared with a path: [first, begin) before it, [begin,
+/// end) of it and its rest.
+struct Look {
+    std::span<const double> means;
+    std::size_t level = 0, first = 0, begin = 0, end = 0;
+    [[nodiscard]] bool nothing_before() const { return begin < first + 4; }
+    [[nodiscard]] std::span<const double> before() const { return means.subspan(first, begin - first); }
+    [[nodiscard]] std::span<const double> after() const { return means.subspan(begin, end - begin); }
+    [[nodiscard]] std::span<const double> whole() const {
+        return nothing_before() ? after() : means.subspan(first, end - first);
+    }
+};
+
+Look look_about(const Pyramid& pyramid, const Found& found, double length, double before) {
+    Look look;
+    while (look.level + 1 < pyramid.levels() &&
+           (length + before) / std::ldexp(1.0, static_cast<int>(look.level)) > 140.0)
+        ++look.level;
+    look.means = pyramid.level(look.level);
+    look.begin = (found.begin() + (std::size_t{1} << look.level) - 1) >> look.level;
+    const auto back = static_cast<std::size_t>(before) >> look.level;
+    look.first = std::max(look.begin > back ? look.begin - back : 0, found.quiet_end >> look.level);
+    const auto ahead = static_cast<std::size_t>(2.0 * length) >> look.level;
+    look.end = std::min({look.begin + std::max<std::size_t>(8, ahead), look.means.size(),
+                         found.course.rest_end >> look.level});
+    return look;
+}
+
+/// Positions of the series over which the path of the whole look runs.
+SampleRange span_of(const Look& look, const PathFit& path) {
+    const double first = static_cast<double>(look.nothing_before() ? look.begin : look.first);
+    const auto position = [&](double block) {
+        const double at = std::clamp(first + block, 0.0, static_cast<double>(look.means.size()));
+        return static_cast<std::size_t>(at) << look.level;
+    };
+    return {position(path.begin), position(path.begin + path.duration)};
+}
+
+/// Where the path runs that explains the look as well as a path and a decay after it do; nothing when none
+/// does.
+std::optional<SampleRange> path_through(const Look& look, const Found& found) {
+    // A path that leaves a tenth less, by this much of twice the log likelihood, is one.
+    constexpr double plainly_better = 0.9, surprising = 12.0;
+    // Where the two can be told apart, the decay has to be likelier by as many halves of ln n as it has
+    // numbers more to choose than the path (Schwarz 1978): six, or one where nothing was seen before it; by
+    // half of what a release would give where that is less. A decay that leaves no plateau may well begin on
+    // the path.
+    constexpr double price_with_path = 3.0, price_alone = 0.5, tells_from_rest = 1.0, tells_from_motion = 0.7,
+                     tells_alone = 3.0;
+    // What the likeliest of the paths leaves of a release at a damping ratio of 0.7, rms over such a look, as
+    // a share of the height; 1.5 to 3 times as much at any other (least squares on the noise-free release).
+    constexpr double least_misfit = 0.015;
+    if (look.begin + 6 > look.end) return {};
+    double decay =
+        fit_amplitudes(look.after(), at_level(found.start.shape, 0, look.level)).residual_sum + 1e-300;
+    if (!look.nothing_before()) decay += fit_best_path(look.before()).sum;
+    const PathFit rival = fit_best_path(look.whole());
+    const double values = independent_values(look.whole(), rival);
+    // Twice the gain in log likelihood of as many independent values as the residuals amount to.
+    const double gain = values * std::log(std::max(rival.sum, 1e-12 * decay) / decay);
+    const SampleRange run = span_of(look, rival);
+    if (rival.sum < plainly_better * decay && gain < -surprising) return run;
+    const double misfit = least_misfit * found.start.amplitude;
+    const double hoped =
+        values * std::log1p(misfit * misfit * static_cast<double>(look.whole().size()) / decay);
+    const double unit = std::log(std::max(values, std::numbers::e));
+    const double price = look.nothing_before() ? price_alone : price_with_path;
+    const double tells = look.nothing_before()   ? tells_alone
+                         : found.start.from_rest ? tells_from_rest
+                                                 : tells_from_motion;
+    if (hoped < tells * unit || gain > std::min(price * unit, 0.5 * hoped)) return {};
+    return run;
+}
+
 }  // namespace
 
-bool is_hand_or_pulse(const Pyramid& pyramid, const Found& found) {
-    constexpr double plainly_better = 0.9, surprising = 12.0;
+std::optional<SampleRange> hand_or_pulse(const Pyramid& pyramid, const Found& found) {
     const auto length = static_cast<double>(std::max<std::size_t>(8, found.end() - found.begin()));
     const double before = std::min(std::max(1.5 * length, 1.5 * found.cycle()), 4.0 * length);
-    std::size_t level = 0;
-    while (level + 1 < pyramid.levels() &&
-           (length + before) / std::ldexp(1.0, static_cast<int>(level)) > 140.0)
-        ++level;
-    const std::span<const double> means = pyramid.level(level);
-    const std::size_t begin = (found.begin() + (std::size_t{1} << level) - 1) >> level;
-    const auto back = static_cast<std::size_t>(before) >> level;
-    const std::size_t first = std::max(begin > back ? begin - back : 0, found.quiet_end >> level);
-    const auto ahead = static_cast<std::size_t>(2.0 * length) >> level;
-    const std::size_t end =
-        std::min({begin + std::max<std::size_t>(8, ahead), means.size(), found.course.rest_end >> level});
-    if (begin + 6 > end || begin < first + 4) return false;
-    const DecayShape shape = at_level(found.start.shape, 0, level);
-    const double decay = fit_best_path(means.subspan(first, begin - first)).sum +
-                         fit_amplitudes(means.subspan(begin, end - begin), shape).residual_sum;
-    const std::span<const double> whole = means.subspan(first, end - first);
-    const PathFit rival = fit_best_path(whole);
-    if (rival.sum > plainly_better * decay) return false;
-    // Twice the gain in log likelihood of as many independent values as the residuals amount to.
-    const double gain = std::log(decay / std::max(rival.sum, 1e-12 * decay));
-    return independent_values(whole, rival) * gain > surprising;
+    // A look that begins shortly before shows the path alone where the hand moved more than once.
+    if (const auto path = path_through(look_about(pyramid, found, length, before), found)) return path;
+    return path_through(look_about(pyramid, found, length, 0.5 * length), found);
 }
 
 namespace {
@@ -164,8 +225,14 @@ bool is_outlived(const Pyramid& pyramid, const Found& found, const std::vector<O
     return false;
 }
 
-double swing_against_elsewhere(const Pyramid& pyramid, const Found& found, const std::vector<Found>& all) {
-    constexpr double plenty = 1e9;
+bool is_brief(const Found& found) {
+    constexpr double few_cycles = 3.0;
+    return static_cast<double>(found.end() - found.begin()) < few_cycles * found.cycle();
+}
+
+double swing_against_elsewhere(const Pyramid& pyramid, const Found& found, const std::vector<Found>& all,
+                               const std::vector<SampleRange>& left_out) {
+    constexpr double plenty = 1e9, long_look = 10.0;
     constexpr std::size_t fewest = 40;
     const std::size_t level = found.start.level;
     const std::span<const double> means = pyramid.level(level);
@@ -173,15 +240,23 @@ double swing_against_elsewhere(const Pyramid& pyramid, const Found& found, const
     const double length = static_cast<double>((found.end() - found.begin()) >> level);
     const auto lag = static_cast<std::size_t>(
         std::clamp(std::min(0.5 * cycle, length), 2.0, 0.1 * static_cast<double>(means.size()) + 2.0));
+    // After a long decay another mode may die away later: what tells is the time before the first.
+    const bool brief = is_brief(found);
+    const std::size_t all_of_it = means.size() << level;
     const auto inside = [&](std::size_t k) {
-        return std::any_of(all.begin(), all.end(), [&](const Found& f) {
-            return k + lag >= f.begin() >> level && k <= f.end() >> level;
-        });
+        const auto covers = [&](std::size_t begin, std::size_t end) {
+            return k + lag >= begin >> level && k <= end >> level;
+        };
+        return std::any_of(all.begin(), all.end(),
+                           [&](const Found& f) { return covers(f.begin(), brief ? f.end() : all_of_it); }) ||
+               std::any_of(left_out.begin(), left_out.end(),
+                           [&](const SampleRange& range) { return covers(range.begin, range.end); });
     };
     std::vector<double> swings;
     for (std::size_t k = 0; k + lag < means.size(); ++k)
         if (!inside(k)) swings.push_back(std::abs(means[k + lag] - means[k]));
-    if (swings.size() < fewest) return plenty;
+    const auto needed = brief ? 0.0 : long_look * cycle;
+    if (swings.size() < fewest || static_cast<double>(swings.size()) < needed) return plenty;
     const auto quartile = swings.begin() + static_cast<std::ptrdiff_t>(swings.size() * 3 / 4);
     std::nth_element(swings.begin(), quartile, swings.end());
     double largest = 0.0;

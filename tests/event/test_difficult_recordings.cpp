@@ -185,3 +185,29 @@ TEST_CASE("a heavily damped release in noise does not begin on the plateau befor
         CHECK(well_found >= 36);
     }
 }
+
+// Unit height, white and coloured noise 30 and 45 dB below it. Half a cosine, a path of least jerk (Flash and
+// Hogan, J. Neurosci. 5 (1985) 1688), a step of 50 ms as a slipping clamp makes it, and logarithmic creep of
+// a mount under load (common practice, no source). Seed 811.
+TEST_CASE("a slow lowering, a soft step and creep are no decay") {
+    const auto path = [](int kind, double t) {
+        const double u = std::clamp((t - 2.0) / 1.6, 0.0, 1.0);
+        if (kind == 0) return 0.5 + 0.5 * std::cos(std::numbers::pi * u);
+        if (kind == 1) return 1.0 - u * u * u * (10.0 - 15.0 * u + 6.0 * u * u);
+        if (kind == 2) return 1.0 - std::clamp((t - 2.0) / 0.05, 0.0, 1.0);
+        return 1.0 - 0.29 * std::log1p(std::max(t - 2.0, 0.0) / 0.2);
+    };
+    for (const double phi : {0.0, 0.6})
+        for (const double noise_db : {30.0, 45.0})
+            for (int kind = 0; kind < 4; ++kind) {
+                INFO("kind " << kind << ", phi " << phi << ", noise " << noise_db << " dB");
+                Generator generator(811);
+                std::vector<double> samples(2000);
+                for (std::size_t i = 0; i < samples.size(); ++i)
+                    samples[i] = path(kind, static_cast<double>(i) / rate_hz);
+                simulator::add_noise(samples, 1.0, rate_hz, Noise{noise_db, phi}, generator);
+                const auto moved =
+                    simulator::with_samples(std::move(samples), rate_hz, MeasuredQuantity::displacement);
+                CHECK(find_events(moved.recording).events.empty());
+            }
+}
