@@ -116,8 +116,12 @@ std::optional<Onset> last_hit(const Pyramid& pyramid, const Onset& onset, std::s
     return hit;
 }
 
-std::optional<Start> locate_last_start(const Search& search, const Onset& onset, const StartLimits& limits) {
-    if (limits.drop) return locate_start(search.pyramid, onset, limits);
+/// Whether what follows a start may hold a second hit that the decay begins after.
+enum class SecondHits { looked_for, ignored };
+
+std::optional<Start> locate_last_start(const Search& search, const Onset& onset, const StartLimits& limits,
+                                       SecondHits second_hits) {
+    if (limits.drop || second_hits == SecondHits::ignored) return locate_start(search.pyramid, onset, limits);
     const std::optional<Onset> hit =
         last_hit(search.pyramid, onset, onset.level, onset.fit_block, onset.fit.shape);
     std::optional<Start> start = locate_start(search.pyramid, hit.value_or(onset), limits);
@@ -130,15 +134,16 @@ std::optional<Start> locate_last_start(const Search& search, const Onset& onset,
 }
 
 /// Start and course, the start a second time with the noise that the rest shows.
-std::optional<Found> follow_onset(const Search& search, const Onset& onset, StartLimits limits) {
-    std::optional<Start> start = locate_last_start(search, onset, limits);
+std::optional<Found> follow_onset(const Search& search, const Onset& onset, StartLimits limits,
+                                  SecondHits second_hits) {
+    std::optional<Start> start = locate_last_start(search, onset, limits, second_hits);
     if (!start || start->position + 8 > limits.latest) return {};
     // What does not stand out of the noise is not worth following through a long recording.
     if (start->amplitude < 0.8 * least_amplitude * start->noise_rms) return {};
     Course course = follow_decay(search.pyramid, *start, limits.latest);
     if (course.reaches_noise) {
         limits.rest = SampleRange{course.end, course.rest_end};
-        if (std::optional<Start> again = locate_last_start(search, onset, limits)) {
+        if (std::optional<Start> again = locate_last_start(search, onset, limits, second_hits)) {
             if (again->position + 8 <= limits.latest) {
                 start = again;
                 course = follow_decay(search.pyramid, *start, limits.latest);
@@ -260,8 +265,8 @@ bool believable(const Search& search, const Found& found) {
     return start.noise_rms < std::max(misfit * amplitude, 2.5 * noise);
 }
 
-/// Whether the recording is still for two cycles before the start, or for most of one where it begins there: a
-/// drive that has long been running would show all of its swing in that.
+/// Whether the recording is still for two cycles before the start, or for most of one where it begins there:
+/// a drive that has long been running would show all of its swing in that.
 bool starts_from_quiet(const Pyramid& pyramid, const Found& found) {
     constexpr double still = 0.25;  // of the amplitude
     const Start& start = found.start;
@@ -294,6 +299,28 @@ bool follows_a_path(Search& search, const Found& found) {
     return path.has_value();
 }
 
+/// Whether a decay follows that nothing else explains better.
+bool convincing(Search& search, const Found& found, const std::vector<Onset>& all) {
+    if (on_known_path(search, found) || !believable(search, found)) return false;
+    if (is_plateau_and_decay(search.pyramid, found, all) || is_outlived(search.pyramid, found, all))
+        return false;
+    return !follows_a_path(search, found);
+}
+
+/// The decay from the last hit on; where that is none, from the first: a mass that comes to stick surprises
+/// as a second hit does, and nothing rings after it.
+std::optional<Found> follow_convincingly(Search& search, const Onset& onset, const StartLimits& limits,
+                                         const std::vector<Onset>& all) {
+    std::optional<Found> last = follow_onset(search, onset, limits, SecondHits::looked_for);
+    if (!last) return {};
+    if (convincing(search, *last, all)) return last;
+    std::optional<Found> first = follow_onset(search, onset, limits, SecondHits::ignored);
+    if (!first || !first->course.reaches_noise) return {};
+    const auto later = static_cast<double>(last->begin()) - static_cast<double>(first->begin());
+    if (later > 0.5 * first->cycle() && convincing(search, *first, all)) return first;
+    return {};
+}
+
 void try_onset(Search& search, const Onset& onset, const std::vector<Onset>& all) {
     if (taken(search, onset)) return;
     const StartLimits limits = limits_for(search, onset);
@@ -305,11 +332,8 @@ void try_onset(Search& search, const Onset& onset, const std::vector<Onset>& all
     StartLimits near = limits;
     near.latest = std::min(limits.latest,
                            onset.position + static_cast<std::size_t>(std::min(short_look * cycle, 1e15)));
-    std::optional<Found> found = follow_onset(search, onset, near);
+    std::optional<Found> found = follow_convincingly(search, onset, near, all);
     if (!found) return;
-    if (on_known_path(search, *found) || !believable(search, *found)) return;
-    if (is_plateau_and_decay(search.pyramid, *found, all) || is_outlived(search.pyramid, *found, all)) return;
-    if (follows_a_path(search, *found)) return;
     if (near.latest < limits.latest) {
         found->course = follow_decay(search.pyramid, found->start, limits.latest);
         if (!believable(search, *found)) return;

@@ -33,6 +33,31 @@ bool has_finding(const Event& event, const std::string& code) {
                        [&](const Finding& finding) { return finding.code == code; });
 }
 
+/// 5 kg on 8000 N/m with 10 N·s/m and 6 N of dry friction, held at `pull_m` and let go after 0.366 s; the
+/// mass sticks where the spring no longer overcomes the friction (begins[1]). Each half cycle is a free decay
+/// about ±F/k (J. P. Den Hartog, Mechanical Vibrations, 4th ed., section 8.5, where c = 0).
+Simulated friction_release(double pull_m, double rate, Generator& generator) {
+    const double w = std::sqrt(8000.0 / 5.0), z = 10.0 / (2.0 * 5.0 * w), shift = 6.0 / 8000.0;
+    const Mode mode{w / (2.0 * std::numbers::pi), z};
+    const double half_s = std::numbers::pi / (w * std::sqrt(1.0 - z * z)), release_s = 0.366;
+    std::vector<double> samples(static_cast<std::size_t>(3.9 * rate));
+    double x0 = pull_m, since = release_s;
+    for (std::size_t i = 0; i < samples.size(); ++i) {
+        const double t = static_cast<double>(i) / rate;
+        const auto rest = [&] { return std::copysign(shift, x0); };
+        for (; std::abs(x0) > shift && t > since + half_s; since += half_s)
+            x0 = rest() + simulator::free_decay(mode, x0 - rest(), 0.0, half_s).x;
+        const bool moves = t > since && std::abs(x0) > shift;
+        samples[i] = moves ? rest() + simulator::free_decay(mode, x0 - rest(), 0.0, t - since).x : x0;
+    }
+    simulator::add_noise(samples, pull_m, rate, Noise{43.5}, generator);
+    Simulated truth = simulator::with_samples(std::move(samples), rate, MeasuredQuantity::displacement);
+    truth.begins = {static_cast<std::size_t>(std::ceil(release_s * rate)),
+                    static_cast<std::size_t>(std::ceil(since * rate))};
+    truth.samples_per_cycle = rate / mode.frequency_hz;
+    return truth;
+}
+
 }  // namespace
 
 TEST_CASE("noise of a tenth of the amplitude neither hides nor splits a running decay") {
@@ -127,6 +152,22 @@ TEST_CASE("a single tap or release is no double hit") {
         const EventSearch search = find_events(truth.recording);
         REQUIRE(search.events.size() == 1);
         CHECK_FALSE(has_finding(search.events[0], "double_hit"));
+    }
+}
+
+TEST_CASE("a mass that comes to stick is no second hit") {
+    for (const double pull_m : {0.013, 0.015, 0.017, 0.02}) {
+        for (const std::uint64_t seed : {346, 347, 348}) {
+            INFO("pulled by " << pull_m << " m, seed " << seed);
+            Generator generator(seed);
+            const Simulated truth = friction_release(pull_m, 500.0, generator);
+            const EventSearch search = find_events(truth.recording);
+            REQUIRE(search.events.size() == 1);
+            // 43.5 dB hide the first 2 % of a cycle after a release. A viscous decay does not fit the first
+            // swings of this one, and the search may pass them over, but not the last half cycle.
+            CHECK(begin_error_cycles(truth, search.events[0]) > -0.03);
+            CHECK(begin_error_cycles(truth, search.events[0], 1) < -0.5);
+        }
     }
 }
 
