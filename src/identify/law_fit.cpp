@@ -578,6 +578,20 @@ bool settle_branches(LawFit& fit) {
     return true;
 }
 
+// What the criterion does not know is how little a short record tells of slow noise, which a term may stand
+// for: with the noise integrated over what it may be, one of the terms at least has to differ from nothing.
+bool stands_out_of_noise(const LawFit& fit) {
+    const double level = 1.0 - richer_law_level / static_cast<double>(extra_terms.size());
+    return std::ranges::any_of(extra_terms, [&](LawParameter p) {
+        const auto row = fit.row_of(p);
+        if (!row) return false;
+        VectorXd gradient = VectorXd::Zero(fit.curve.map.rows());
+        gradient(*row) = 1.0;
+        const Spread spread = spread_of(fit.curve, gradient);
+        return std::abs(fit.state.law[p]) > student_t_factor(level, spread.degrees_of_freedom) * spread.scale;
+    });
+}
+
 }  // namespace
 
 std::optional<LawFit> choose_law(const CurveFit& viscous, const Recording& recording, const Event& event,
@@ -603,7 +617,8 @@ std::optional<LawFit> choose_law(const CurveFit& viscous, const Recording& recor
     if (fit.terms.friction && !settle_branches(fit)) return std::nullopt;
     constexpr double most_growth = 1.1;  // by chance, over a wider window
     if (residual_level(fit.curve) > most_growth * residual_level(*plain)) return std::nullopt;
-    if (!estimate_law_noise(fit, fit.model(), noise_with_draws(options))) return std::nullopt;
+    if (!estimate_law_noise(fit, fit.model(), noise_with_draws(options)) || !stands_out_of_noise(fit))
+        return std::nullopt;
     if (!estimate_noise(fit.viscous, noise_with_draws(options))) return std::nullopt;
     name_components_anew(fit.curve);
     return fit;
