@@ -42,12 +42,16 @@ double Oscillator::slowest_rate() const {
 }
 
 Index DecayModel::nonlinear_count() const {
-    return static_cast<Index>(2 * oscillators.size() + tones.size() + real_poles.size());
+    return static_cast<Index>(2 * oscillators.size() + tones.size() + real_poles.size()) +
+           (release ? 1 : 0);
 }
 
 Index DecayModel::linear_count() const {
-    return first_oscillator_column() +
-           static_cast<Index>(2 * oscillators.size() + 2 * tones.size() + real_poles.size());
+    return first_tone_column() + static_cast<Index>(2 * tones.size() + real_poles.size());
+}
+
+Index DecayModel::first_tone_column() const {
+    return first_oscillator_column() + static_cast<Index>(2 * oscillators.size()) - (release ? 1 : 0);
 }
 
 VectorXd DecayModel::parameters() const {
@@ -59,6 +63,7 @@ VectorXd DecayModel::parameters() const {
     }
     for (const double tone : tones) all(at++) = tone;
     for (const double pole : real_poles) all(at++) = pole;
+    if (release) all(at++) = *release;
     return all;
 }
 
@@ -70,6 +75,7 @@ void DecayModel::set_parameters(const VectorXd& parameters) {
     }
     for (double& tone : tones) tone = parameters(at++);
     for (double& pole : real_poles) pole = parameters(at++);
+    if (release) *release = parameters(at++);
 }
 
 namespace {
@@ -182,6 +188,24 @@ MatrixXd over_blocks(const DecaySamples& samples, Index columns, Fill fill) {
     return out;
 }
 
+// On the clock of a release, before which nothing has moved.
+Kernels kernels_since(const OscillatorConstants& k, const VectorXd& time, double release) {
+    return kernels_at(k, (time.array() - release).cwiseMax(0.0), 0.0, {});
+}
+
+struct Released {
+    ArrayXd by_damping, by_log_frequency, by_release;
+};
+
+Released released_derivatives(const OscillatorConstants& k, const VectorXd& time, double release) {
+    const Kernels kernels = kernels_since(k, time, release);
+    const ArrayXd since = (time.array() - release).cwiseMax(0.0);
+    const ArrayXd by_decay = kernels.s - since * (kernels.c + k.decay * kernels.s);
+    const ArrayXd by_p = -0.5 * since * kernels.s + k.decay * kernels.ds_dp;
+    return {by_decay * k.ds_dz + by_p * k.dp_dz, by_decay * k.decay + by_p * (2.0 * k.p),
+            k.omega * k.omega * kernels.s};
+}
+
 double common_step(const DecaySamples& samples) {
     return samples.uniform ? samples.step_s : 0.0;
 }
@@ -194,8 +218,13 @@ MatrixXd linear_columns(const DecayModel& model, const DecaySamples& samples) {
         Index column = 0;
         out.col(column++).setOnes();
         if (model.drift) out.col(column++) = time / span;
-        for (const Oscillator& o : model.oscillators) {
-            const OscillatorConstants k(o);
+        for (std::size_t i = 0; i < model.oscillators.size(); ++i) {
+            const OscillatorConstants k(model.oscillators[i]);
+            if (i == 0 && model.release) {
+                const Kernels kernels = kernels_since(k, time, *model.release);
+                out.col(column++) = kernels.c + k.decay * kernels.s;
+                continue;
+            }
             const Kernels kernels = kernels_at(k, time, common_step(samples), samples.stretches);
             out.col(column) = kernels.c;
             out.col(column + 1) = k.omega * kernels.s;
@@ -214,8 +243,16 @@ MatrixXd derivative_columns(const DecayModel& model, const DecaySamples& samples
                             const VectorXd& coefficients) {
     return over_blocks(samples, model.nonlinear_count(), [&](const VectorXd& time, MatrixXd& out) {
         Index column = 0, linear = model.first_oscillator_column();
-        for (const Oscillator& o : model.oscillators) {
-            const OscillatorConstants k(o);
+        for (std::size_t i = 0; i < model.oscillators.size(); ++i) {
+            const OscillatorConstants k(model.oscillators[i]);
+            if (i == 0 && model.release) {
+                const Released derivatives = released_derivatives(k, time, *model.release);
+                out.col(column++) = coefficients(linear) * derivatives.by_damping;
+                out.col(column++) = coefficients(linear) * derivatives.by_log_frequency;
+                out.col(out.cols() - 1) = coefficients(linear) * derivatives.by_release;
+                ++linear;
+                continue;
+            }
             const double a = coefficients(linear), b = coefficients(linear + 1);
             const Kernels kernels = kernels_at(k, time, common_step(samples), samples.stretches);
             const ArrayXd by_decay = -time.array() * (a * kernels.c + b * k.omega * kernels.s);
@@ -241,7 +278,12 @@ MatrixXd derivative_columns(const DecayModel& model, const DecaySamples& samples
 double start_amplitude(const DecayModel& model, const VectorXd& coefficients, std::size_t index) {
     const OscillatorConstants k(model.oscillators[index]);
     const Index column = model.first_oscillator_column() + 2 * static_cast<Index>(index);
-    const double a = coefficients(column), b = coefficients(column + 1);
+    if (model.release && index == 0) {  // b ω = a s
+        const double a = std::abs(coefficients(column));
+        return k.p <= 0.0 ? a * (1.0 + k.decay / k.omega) : a * std::hypot(1.0, k.decay / k.root);
+    }
+    const Index own = column - (model.release ? 1 : 0);
+    const double a = coefficients(own), b = coefficients(own + 1);
     if (k.p <= 0.0) return std::abs(a) + std::abs(b);
     return std::hypot(a, b * k.omega / k.root);
 }

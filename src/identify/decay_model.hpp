@@ -2,6 +2,7 @@
 // The smooth decay model and its derivatives: one form from undamped through critical to overdamped.
 
 #include <Eigen/Core>
+#include <optional>
 #include <vector>
 
 #include "ringwright/noise_model.hpp"
@@ -34,10 +35,14 @@ struct DecayModel {
     std::vector<double> tones;            ///< ln of angular frequencies of steady interference, rad/s
     std::vector<double> real_poles;       ///< ln of decay rates of nuisance exponentials (AC coupling), 1/s
     bool drift = false;                   ///< straight-line drift beside the offset
+    /// The first oscillator is held still until this instant (s, on the samples' clock) and then released
+    /// from rest: y = A until then and A e^(−s t) [C + s S] after it. It has one column instead of two.
+    std::optional<double> release{};
 
     [[nodiscard]] Eigen::Index nonlinear_count() const;
     [[nodiscard]] Eigen::Index linear_count() const;
     [[nodiscard]] Eigen::Index first_oscillator_column() const { return drift ? 2 : 1; }
+    [[nodiscard]] Eigen::Index first_tone_column() const;
     [[nodiscard]] Eigen::VectorXd parameters() const;
     void set_parameters(const Eigen::VectorXd& parameters);
 };
@@ -58,10 +63,11 @@ struct DecaySamples {
     [[nodiscard]] Eigen::Index size() const { return time.size(); }
 };
 
-/// Columns of the linear part: 1 [, t/T], then (C, ωS) of each oscillator, (cos, sin) of each tone, each real
-/// pole.
+/// Columns of the linear part: 1 [, t/T], then (C, ωS) of each oscillator (C + sS of one that is released from
+/// rest), (cos, sin) of each tone, each real pole.
 [[nodiscard]] Eigen::MatrixXd linear_columns(const DecayModel& model, const DecaySamples& samples);
-/// Derivative of columns · coefficients with respect to each nonlinear parameter.
+/// Derivative of columns · coefficients with respect to each nonlinear parameter: (z, w) of each oscillator,
+/// tones, real poles, the release.
 [[nodiscard]] Eigen::MatrixXd derivative_columns(const DecayModel& model, const DecaySamples& samples,
                                                  const Eigen::VectorXd& coefficients);
 

@@ -102,6 +102,7 @@ class Profile {
     [[nodiscard]] double residual_sum(const Oscillator& oscillator) const {
         DecayModel model = fit_.fit.model;
         model.oscillators[index_] = oscillator;
+        if (model.release) follow_release(model);
         const MatrixXd linear = linear_columns(model, fit_.samples);
         MatrixXd design(linear.rows(), linear.cols() + nuisance_.cols());
         design << linear, nuisance_;
@@ -110,6 +111,24 @@ class Profile {
         VectorXd rotated = response_;
         rotated.applyOnTheLeft(factor.householderQ().adjoint());
         return rotated.tail(rotated.size() - design.cols()).squaredNorm();
+    }
+
+    // The instant of a release moves with the oscillator, and not along a straight line.
+    void follow_release(DecayModel& model) const {
+        constexpr int steps = 3;
+        VectorXd coefficients = fit_.fit.coefficients;
+        const Index linear_count = coefficients.size();
+        for (int i = 0; i < steps; ++i) {
+            MatrixXd design(fit_.samples.size(), linear_count + 1);
+            const MatrixXd derivatives = derivative_columns(model, fit_.samples, coefficients);
+            design << linear_columns(model, fit_.samples), derivatives.rightCols(1);
+            whiten(fit_.noise.noise, fit_.samples.stretches, design);
+            const VectorXd best = design.householderQr().solve(response_);
+            if (!best.allFinite()) return;
+            coefficients = best.head(linear_count);
+            const double last = fit_.samples.time(fit_.samples.size() - 1);
+            model.release = std::clamp(*model.release + best(linear_count), 1e-3 * last, last);
+        }
     }
 
     const CurveFit& fit_;

@@ -11,6 +11,7 @@
 #include "identify/decay_picture.hpp"
 #include "identify/decay_quantities.hpp"
 #include "identify/drop_reading.hpp"
+#include "identify/held_release.hpp"
 #include "identify/law_fit.hpp"
 #include "identify/law_quantities.hpp"
 #include "identify/law_window.hpp"
@@ -214,25 +215,69 @@ AmplitudeCourse course_beside(const LawFit& law, const Recording& recording, dou
 
 }  // namespace
 
+namespace {
+
+// The decay of an event as viscous damping explains it, and the law that explains it better where there is
+// one.
+struct Explanation {
+    Event event;
+    CurveFit viscous;
+    /// Where noise hides the instant of the release: the fit of plateau, release and decay, which then is the
+    /// answer. `viscous` begins safely behind the release.
+    std::optional<CurveFit> held;
+    std::optional<LawFit> law;
+
+    [[nodiscard]] const CurveFit& fit() const { return law ? law->viscous : viscous; }
+    /// Whose residuals are those of the answer.
+    [[nodiscard]] const CurveFit& answer() const { return law ? law->curve : held ? *held : viscous; }
+};
+
+Explanation explain(const Recording& recording, const Event& event, const CurveFitOptions& options) {
+    Explanation explanation{event, fit_decay(recording, event, options), std::nullopt, std::nullopt};
+    CurveFit& viscous = explanation.viscous;
+    auto held = fit_held_release(viscous, recording, event, options);
+    if (held) {
+        explanation.event = held->behind(event, recording);
+        const bool too_early = viscous.window.begin < explanation.event.begin;
+        CurveFit later = fit_decay(recording, explanation.event, options);
+        if (!held->sharp()) explanation.held = std::move(held->curve);
+        if (explanation.held || (too_early && later.valid)) viscous = std::move(later);
+    } else {
+        explanation.law = law_from_earlier_start(viscous, recording, event, options);
+    }
+    if (!explanation.law) explanation.law = choose_law(viscous, recording, explanation.event, options);
+    if (explanation.law) explanation.held.reset();
+    return explanation;
+}
+
+EventIdentification unanswered(EventIdentification result) {
+    result.logarithmic_decrement.reason = result.half_power_bandwidth.reason = result.curve_fit.reason;
+    return result;
+}
+
+}  // namespace
+
 EventIdentification identify_event(const Recording& recording, const Event& event,
                                    const IdentifyOptions& options) {
     EventIdentification result;
-    result.event = event;
-    result.start_s = recording.clock.time_of(event.begin);
-    result.end_s = recording.clock.time_of(event.end > event.begin ? event.end - 1 : event.begin);
     CurveFitOptions fit_options;
     fit_options.near_hz = options.near_hz;
     fit_options.modes = options.modes;
     fit_options.seed = options.seed;
-    const CurveFit viscous = fit_decay(recording, event, fit_options);
-    auto law = law_from_earlier_start(viscous, recording, event, fit_options);
-    if (!law) law = choose_law(viscous, recording, event, fit_options);
-    const CurveFit& fit = law ? law->viscous : viscous;
-    result.curve_fit =
-        law ? law_result(*law, recording, options) : curve_fit_result(fit, options.confidence_level);
-    result.findings = law ? law->curve.findings : fit.findings;
-    if (result.curve_fit.status != MethodStatus::ok) {
-        result.logarithmic_decrement.reason = result.half_power_bandwidth.reason = result.curve_fit.reason;
+    const Explanation explanation = explain(recording, event, fit_options);
+    const std::optional<LawFit>& law = explanation.law;
+    const CurveFit& fit = explanation.fit();
+    result.event = explanation.event;
+    result.start_s = recording.clock.time_of(result.event.begin);
+    result.end_s = recording.clock.time_of(event.end > event.begin ? event.end - 1 : event.begin);
+    result.curve_fit = law ? law_result(*law, recording, options)
+                           : curve_fit_result(explanation.answer(), options.confidence_level);
+    result.findings = explanation.answer().findings;
+    if (result.curve_fit.status != MethodStatus::ok) return unanswered(std::move(result));
+    if (!fit.valid) {  // behind a release that noise hides is too little left for the simple methods
+        explain_missing(explanation.answer(), result.curve_fit, result.findings);
+        result.logarithmic_decrement.reason = result.half_power_bandwidth.reason = fit.reason;
+        if (options.pictures) result.picture = draw_decay(recording, explanation.answer(), {});
         return result;
     }
     MethodBootstrap bootstrap;
@@ -240,11 +285,11 @@ EventIdentification identify_event(const Recording& recording, const Event& even
         bootstrap = bootstrap_methods(fit, affordable_replicates(options.replicates, fit.samples.size()),
                                       options.seed);
     run_simple_methods(result, fit, bootstrap, options.confidence_level);
-    append(result.findings, check_residuals(law ? law->curve : fit));
+    append(result.findings, check_residuals(explanation.answer()));
     if (law)
         append(result.findings, describe_law(*law, recording, *result.curve_fit.at_amplitude));
     else
-        explain_missing(fit, result.curve_fit, result.findings);
+        explain_missing(explanation.answer(), result.curve_fit, result.findings);
     result.course = law ? course_beside(*law, recording, options.confidence_level)
                         : amplitude_course(fit, fit.noise, options.confidence_level);
     if (!law) append(result.findings, describe_course(result.course));
@@ -255,7 +300,7 @@ EventIdentification identify_event(const Recording& recording, const Event& even
     result.agreement = test_agreement(fit, bootstrap, known);
     if (law) explain_by_law(result.agreement, result.curve_fit.model);
     if (options.pictures) {
-        result.picture = draw_decay(recording, law ? law->curve : fit, bootstrap);
+        result.picture = draw_decay(recording, explanation.answer(), bootstrap);
         if (law) draw_law(result.picture, *law, options.confidence_level);
         draw_course(result.picture, result.course, result.curve_fit);
     }

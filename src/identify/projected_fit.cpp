@@ -20,7 +20,10 @@ constexpr double lowest_asinh_damping = -0.5;
 constexpr double fastest_fall = 5.0;
 constexpr double critical_asinh_damping = 0.881373587019543;
 
-bool usable(const DecayModel& model, double step_s) {
+bool usable(const DecayModel& model, const DecaySamples& samples) {
+    const double step_s = samples.step_s;
+    if (model.release && !(*model.release > 0.0 && *model.release < samples.time(samples.size() - 1)))
+        return false;
     for (const Oscillator& o : model.oscillators) {
         if (!(o.asinh_damping < widest_asinh_damping) || !(o.asinh_damping > lowest_asinh_damping) ||
             !(std::abs(o.log_frequency) < 40.0))
@@ -42,7 +45,7 @@ class Projection {
     void residual_at(const VectorXd& parameters, VectorXd& residual) {
         DecayModel trial = model_;
         trial.set_parameters(parameters);
-        if (!usable(trial, samples_.step_s)) {  // a wall, so that the step is shortened
+        if (!usable(trial, samples_)) {  // a wall, so that the step is shortened
             residual.setConstant(1e3 * (1.0 + response_.norm()));
             return;
         }
@@ -108,7 +111,7 @@ ProjectedFit fit_projected(const DecayModel& start, const DecaySamples& samples,
     const LeastSquaresFit found = fit_least_squares(problem, start.parameters(), options);
     if (!found.parameters.allFinite()) return projection.at(start.parameters());
     ProjectedFit fit = projection.at(found.parameters);
-    fit.converged = found.converged && usable(fit.model, samples.step_s);
+    fit.converged = found.converged && usable(fit.model, samples);
     return fit;
 }
 

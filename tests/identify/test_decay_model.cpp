@@ -90,6 +90,40 @@ TEST_CASE("derivative columns are the derivatives") {
     }
 }
 
+TEST_CASE("released from rest: still before, the pair of columns after, and the derivatives") {
+    for (const double ratio : ratios) {
+        DecayModel model;
+        model.oscillators = {Oscillator::from(ratio, 3.0)};
+        model.tones = {std::log(40.0)};
+        DecayModel pair = model;
+        model.release = 0.7512;
+        const DecaySamples samples = clock_of(300, 0.01);
+        const MatrixXd columns = linear_columns(model, samples);
+        REQUIRE(columns.cols() == model.linear_count());
+        CHECK(columns(75, 1) == 1.0);
+        DecaySamples since = samples;
+        since.time.array() -= 0.7512;
+        since.uniform = false;
+        const MatrixXd both = linear_columns(pair, since);
+        for (const Index i : {76, 120, 299})  // from rest: B = ζ A
+            CHECK(columns(i, 1) == Approx(both(i, 1) + ratio * both(i, 2)).epsilon(1e-12).margin(1e-12));
+        const VectorXd coefficients = VectorXd::LinSpaced(model.linear_count(), -1.0, 2.0);
+        const MatrixXd derivatives = derivative_columns(model, samples, coefficients);
+        for (Index k = 0; k < model.nonlinear_count(); ++k) {
+            VectorXd moved = model.parameters();
+            DecayModel up = model, down = model;
+            moved(k) += 1e-6;
+            up.set_parameters(moved);
+            moved(k) -= 2e-6;
+            down.set_parameters(moved);
+            const VectorXd numeric =
+                (linear_columns(up, samples) - linear_columns(down, samples)) * coefficients / 2e-6;
+            INFO("damping ratio " << ratio << " parameter " << k);
+            CHECK((numeric - derivatives.col(k)).cwiseAbs().maxCoeff() < 1e-6);
+        }
+    }
+}
+
 TEST_CASE("critical damping by hand") {
     // (1 + ωt) e^(−ωt): displacement released from rest at critical damping (textbook).
     DecayModel model;

@@ -1,0 +1,173 @@
+#include "identify/held_release.hpp"
+
+#include <algorithm>
+#include <array>
+#include <cmath>
+#include <numbers>
+
+#include "identify/curve_fit_steps.hpp"
+#include "identify/law_window.hpp"
+#include "ringwright/distributions.hpp"
+
+namespace ringwright::identify {
+
+using Eigen::Index;
+using Eigen::VectorXd;
+
+namespace {
+
+constexpr double two_pi = 2.0 * std::numbers::pi;
+constexpr double least_damping = 0.15;
+constexpr double worth_looking = 0.05;   // of a fit that a start on the plateau may have led astray
+constexpr double sharp_release = 0.008;  // of a period
+constexpr double plateau_false_alarm = 1e-3;
+constexpr double rows_in_fall = 40.0;  // a fall is over in a third of a period or more
+constexpr int first_evaluations = 30;
+
+bool can_be_held(const CurveFit& fit, const Recording& recording, const Event& event) {
+    const DecayModel& model = fit.fit.model;
+    const bool displaced =
+        recording.quantity == MeasuredQuantity::displacement || recording.quantity == MeasuredQuantity::angle;
+    return fit.valid && displaced && !event.by_hand && event.kind == TestKind::pluck &&
+           event.flights.empty() && model.oscillators.size() == 1 && fit.spikes.empty() &&
+           (fit.oscillator().damping_ratio() > worth_looking || model.drift || !model.real_poles.empty());
+}
+
+// Where the fitted curve leaves its start and reaches the rest: a tenth and nine tenths of the way, s after
+// the start of its window.
+struct Fall {
+    double begin_s = 0.0, length_s = 0.0;
+};
+
+std::optional<Fall> fall_of(const CurveFit& fit) {
+    VectorXd curve = fit.samples.value - fit.residual;
+    curve.array() -= curve.tail(curve.size() / 4).mean();  // whatever the fit makes of the rest
+    Index top = 0;
+    const double height = curve.cwiseAbs().maxCoeff(&top);
+    const double sign = curve(top) < 0.0 ? -1.0 : 1.0;
+    Index begin = top, end = top;
+    while (begin + 1 < curve.size() && sign * curve(begin) > 0.9 * height) ++begin;
+    end = begin;
+    while (end + 1 < curve.size() && sign * curve(end) > 0.1 * height) ++end;
+    const double length = fit.samples.time(end) - fit.samples.time(begin);
+    if (!(length > 0.0)) return std::nullopt;
+    return Fall{fit.samples.time(begin), length};
+}
+
+// Plateau and decay from `before` falls ahead of the fall, or from as far as the recording goes back; nothing
+// where that is too little.
+std::optional<CurveFit> window_from(const CurveFit& fit, const Recording& recording, const Event& event,
+                                    const Fall& fall, double before) {
+    constexpr double least_before = 0.4;
+    CurveFit held;
+    const double rate = fit.window.rate_hz,
+                 fall_begin = static_cast<double>(fit.window.begin) + fall.begin_s * rate;
+    const double limit = event.quiet_end > event.quiet_begin ? 0.0 : static_cast<double>(event.quiet_end);
+    const double begin = std::max(limit, fall_begin - before * fall.length_s * rate);
+    if (begin > fall_begin - least_before * fall.length_s * rate) return std::nullopt;
+    held.window =
+        cut_window(recording, static_cast<std::size_t>(begin), fit.window.begin + fit.window.size());
+    const auto block = static_cast<Index>(std::max(1.0, fall.length_s * rate / rows_in_fall));
+    held.samples = block_means(held.window, std::min(block, fit.samples.block * 4));
+    DecaySamples& samples = held.samples;
+    if (samples.stretches.size() != 1) return std::nullopt;
+    if (samples.block > 1 && samples.fine_time.size() == 0) {
+        samples.fine_time.resize(samples.size() * samples.block);
+        for (Index i = 0; i < samples.fine_time.size(); ++i)
+            samples.fine_time(i) = static_cast<double>(i) / rate;
+        samples.uniform = false;
+    }
+    return held;
+}
+
+// From several damping ratios, each with the frequency and the release that the fall gives it: from rest the
+// first tenth takes ωt = 0.45, the next eight about 1 + 1.1 ζ + 1.4 ζ².
+ProjectedFit best_start(const DecaySamples& samples, const DecayModel& like, double fall_begin_s,
+                        double fall_s) {
+    constexpr std::array damping{0.25, 0.5, 0.8, 1.2, 2.0};
+    std::optional<ProjectedFit> best;
+    for (const double ratio : damping) {
+        DecayModel start = like;
+        const double omega = (1.0 + 1.1 * ratio + 1.4 * ratio * ratio) / fall_s;
+        start.oscillators.front() = Oscillator::from(ratio, omega);
+        start.release = std::max(0.5 * fall_begin_s, fall_begin_s - 0.45 / omega);
+        ProjectedFit fit = fit_projected(start, samples, AutoregressiveNoise{}, first_evaluations);
+        if (fit.model.parameters().allFinite() && (!best || fit.residual_sum < best->residual_sum))
+            best = std::move(fit);
+    }
+    return *best;
+}
+
+bool rests_before_release(const CurveFit& held) {
+    const double release = *held.fit.model.release;
+    const Index rows = std::lower_bound(held.samples.time.begin(), held.samples.time.end(), release) -
+                       held.samples.time.begin();
+    constexpr Index fewest = 6;
+    if (rows < fewest) return false;
+    return held.innovations.head(rows).squaredNorm() <
+           chi_squared_quantile(1.0 - plateau_false_alarm, static_cast<double>(rows));
+}
+
+std::optional<CurveFit> fit_from(const CurveFit& fit, const Recording& recording, const Event& event,
+                                 const Fall& fall, double before) {
+    auto held = window_from(fit, recording, event, fall, before);
+    if (!held) return std::nullopt;
+    DecayModel like = fit.fit.model;
+    like.real_poles.clear();  // a start on the plateau asks for one
+    like.drift = false;
+    const double earlier_s = static_cast<double>(fit.window.begin - held->window.begin) / fit.window.rate_hz;
+    held->fit = best_start(held->samples, like, earlier_s + fall.begin_s, fall.length_s);
+    if (!settle(*held) || !held->fit.converged || !rests_before_release(*held)) return std::nullopt;
+    return held;
+}
+
+double release_uncertainty(const CurveFit& held) {
+    VectorXd gradient = VectorXd::Zero(held.map.rows());
+    gradient(gradient.size() - 1) = 1.0;
+    return spread_of(held, gradient).scale;
+}
+
+}  // namespace
+
+bool HeldRelease::sharp() const {
+    return uncertainty_s < sharp_release * two_pi / curve.oscillator().angular_frequency();
+}
+
+Event HeldRelease::behind(const Event& event, const Recording& recording) const {
+    constexpr double safely = 3.0;
+    const SampleClock& clock = recording.clock;
+    Event later = event;
+    later.begin = 0;
+    while (later.begin < event.end && clock.time_of(later.begin) < release_s + safely * uncertainty_s)
+        ++later.begin;
+    return later;
+}
+
+std::optional<HeldRelease> fit_held_release(const CurveFit& fit, const Recording& recording,
+                                            const Event& event, const CurveFitOptions& options) {
+    constexpr std::array falls_before{1.0, 1.8, 3.0, 5.0};
+    if (!can_be_held(fit, recording, event)) return std::nullopt;
+    const auto fall = fall_of(fit);
+    if (!fall) return std::nullopt;
+    std::optional<CurveFit> held;
+    for (const double before : falls_before) {
+        auto longer = fit_from(fit, recording, event, *fall, before);
+        if (!longer) break;
+        held = std::move(longer);
+    }
+    constexpr double most_growth = 1.15;  // of the residual, by chance, over a wider window
+    if (!held || held->oscillator().damping_ratio() < least_damping) return std::nullopt;
+    const double finer =
+        std::sqrt(static_cast<double>(fit.samples.block) / static_cast<double>(held->samples.block));
+    if (residual_level(*held) > most_growth * finer * residual_level(fit)) return std::nullopt;
+    if (!estimate_noise(*held, noise_with_draws(options))) return std::nullopt;
+    held->valid = true;
+    HeldRelease release;
+    release.uncertainty_s = release_uncertainty(*held);
+    release.release_s = recording.clock.time_of(held->window.begin) + *held->fit.model.release;
+    held->findings = fit.findings;
+    release.curve = std::move(*held);
+    return release;
+}
+
+}  // namespace ringwright::identify

@@ -1,0 +1,36 @@
+#pragma once
+// A heavily damped article that was held still and let go: the plateau, the instant of the release and the
+// decay in one model.
+
+#include <optional>
+
+#include "identify/curve_fit.hpp"
+#include "ringwright/event.hpp"
+#include "ringwright/recording.hpp"
+
+namespace ringwright::identify {
+
+/// Noise hides when a displaced mass is let go for about √(2σ/x₀)/ω. In a light decay that is a small part of
+/// many cycles; in one that is over within a cycle, a start on the plateau takes it for a slower decay, by
+/// more than any interval for a known start allows. Here the instant of the release is a parameter of the fit
+/// and its uncertainty goes into every interval.
+struct HeldRelease {
+    CurveFit curve;              ///< of plateau and decay, `fit.model.release` set
+    double release_s = 0.0;      ///< on the recording's clock
+    double uncertainty_s = 0.0;  ///< of the release
+
+    /// Seen within 0.8 % of a period (about 30 dB): then a decay that is taken from safely behind the release
+    /// says as much and does not suppose that the article was let go at once and from rest.
+    [[nodiscard]] bool sharp() const;
+    /// The event with its start three uncertainties behind the release.
+    [[nodiscard]] Event behind(const Event& event, const Recording& recording) const;
+};
+
+/// The decay that `fit` found, with what was held before it. Nothing where the damping ratio is too small for
+/// the start to matter (0.15), the recording shows no displacement, other components were fitted, it was hit
+/// or dropped, or no plateau of the same noise is recorded before the decay (chi-squared, one false alarm in
+/// a thousand).
+[[nodiscard]] std::optional<HeldRelease> fit_held_release(const CurveFit& fit, const Recording& recording,
+                                                          const Event& event, const CurveFitOptions& options);
+
+}  // namespace ringwright::identify
