@@ -23,8 +23,10 @@ void add_decay(DecayPicture& picture, const Recording& recording, const CurveFit
     const double amplitude = start_amplitude(fit.fit.model, fit.fit.coefficients, 0);
     const double offset = fit.fit.coefficients(0);
     picture.offset = offset * scale;
-    picture.envelope = to_vector(
-        scale * (offset + amplitude * (-fit.oscillator().slowest_rate() * fit.samples.time.array()).exp()));
+    const double released = fit.fit.model.release.value_or(0.0);
+    const Eigen::ArrayXd since = (fit.samples.time.array() - released).cwiseMax(0.0);
+    picture.envelope =
+        to_vector(scale * (offset + amplitude * (-fit.oscillator().slowest_rate() * since).exp()));
 }
 
 void add_spectrum(DecayPicture& picture, const CurveFit& fit, const MethodReadings& readings) {
