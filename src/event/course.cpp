@@ -4,6 +4,8 @@
 #include <cmath>
 #include <numbers>
 
+#include "event/beat.hpp"
+
 namespace ringwright::event_search {
 namespace {
 
@@ -24,6 +26,20 @@ std::vector<Cycle> cycles_of(std::span<const double> means, std::size_t first, s
     for (std::size_t k = first; k + width <= end; k += std::max<std::size_t>(1, width / 2)) {
         const DecayFit fit = fit_amplitudes(means.subspan(k, width), shape);
         cycles.push_back({k, fit.offset, std::hypot(fit.cosine_part, fit.sine_part / frequency)});
+    }
+    return cycles;
+}
+
+/// As many windows of one beat, a quarter of it apart; the amplitude is of both modes together.
+std::vector<Cycle> beats_of(std::span<const double> means, std::size_t first, std::size_t end,
+                            const TwoTermFit& pair, std::size_t width) {
+    std::vector<Cycle> cycles;
+    const double w1 = pair.first.damped_angular_frequency(), w2 = pair.second.damped_angular_frequency();
+    for (std::size_t k = first; k + width <= end; k += std::max<std::size_t>(1, width / 4)) {
+        const TwoTermFit fit = fit_two_amplitudes(means.subspan(k, width), pair.first, pair.second);
+        const double one = std::hypot(fit.first_cosine, fit.first_sine / w1),
+                     other = std::hypot(fit.second_cosine, fit.second_sine / w2);
+        cycles.push_back({k, fit.offset, std::hypot(one, other)});
     }
     return cycles;
 }
@@ -127,12 +143,7 @@ Knee find_knee(const std::vector<Cycle>& cycles, std::size_t count) {
     return knee;
 }
 
-Course follow_ringing(std::span<const double> means, const Start& start, std::size_t first,
-                      std::size_t limit) {
-    const double frequency = start.fit.shape.damped_angular_frequency();
-    const auto width =
-        std::max<std::size_t>(6, static_cast<std::size_t>(std::lround(2.0 * std::numbers::pi / frequency)));
-    const std::vector<Cycle> cycles = cycles_of(means, first, limit, start.fit.shape, width);
+Course course_of(const std::vector<Cycle>& cycles, const Start& start, std::size_t first, std::size_t limit) {
     const std::size_t undisturbed = first_disturbed(cycles, start.fit.residual_rms(), start.amplitude);
     const Knee knee = find_knee(cycles, undisturbed);
     Course course;
@@ -149,6 +160,14 @@ Course follow_ringing(std::span<const double> means, const Start& start, std::si
     course.reaches_noise = knee.seen;
     course.floor = knee.level;
     return course;
+}
+
+Course follow_ringing(std::span<const double> means, const Start& start, std::size_t first,
+                      std::size_t limit) {
+    const double frequency = start.fit.shape.damped_angular_frequency();
+    const auto width =
+        std::max<std::size_t>(6, static_cast<std::size_t>(std::lround(2.0 * std::numbers::pi / frequency)));
+    return course_of(cycles_of(means, first, limit, start.fit.shape, width), start, first, limit);
 }
 
 /// Index of the first block of the settled stretch whose running mean has left the rest position.
@@ -195,21 +214,45 @@ Course follow_settling(std::span<const double> means, const Start& start, std::s
     return course;
 }
 
+struct Blocks {
+    std::span<const double> means;
+    std::size_t first = 0, last = 0;
+};
+
+/// From the start to the limit; the block in which the start lies still holds some of the blow before it.
+Blocks blocks_of(const Pyramid& pyramid, const Start& start, std::size_t limit) {
+    Blocks blocks{pyramid.level(start.level), 0, 0};
+    blocks.first = (start.position + (std::size_t{1} << start.level) - 1) >> start.level;
+    blocks.last = std::max(blocks.first + 1, std::min(limit >> start.level, blocks.means.size()));
+    return blocks;
+}
+
+Course in_positions(Course course, const Blocks& blocks, std::size_t level, std::size_t limit) {
+    const bool whole = course.rest_end == blocks.last;
+    course.end = course.end == blocks.last && whole ? limit : course.end << level;
+    course.rest_end = whole ? limit : course.rest_end << level;
+    course.end = std::min(course.end, course.rest_end);
+    return course;
+}
+
 }  // namespace
 
 Course follow_decay(const Pyramid& pyramid, const Start& start, std::size_t limit) {
-    const std::span<const double> means = pyramid.level(start.level);
-    // The block in which the start lies still holds some of the blow before it.
-    const std::size_t first = (start.position + (std::size_t{1} << start.level) - 1) >> start.level;
-    const std::size_t last = std::max(first + 1, std::min(limit >> start.level, means.size()));
+    const Blocks blocks = blocks_of(pyramid, start, limit);
     const bool slow = start.shape.damping_ratio < cycle_by_cycle_damping;
-    Course course =
-        slow ? follow_ringing(means, start, first, last) : follow_settling(means, start, first, last);
-    const bool whole = course.rest_end == last;
-    course.end = course.end == last && whole ? limit : course.end << start.level;
-    course.rest_end = whole ? limit : course.rest_end << start.level;
-    course.end = std::min(course.end, course.rest_end);
-    return course;
+    const Course course = slow ? follow_ringing(blocks.means, start, blocks.first, blocks.last)
+                               : follow_settling(blocks.means, start, blocks.first, blocks.last);
+    return in_positions(course, blocks, start.level, limit);
+}
+
+std::optional<Course> follow_beat(const Pyramid& pyramid, const Start& start, const TwoTermFit& pair,
+                                  std::size_t limit) {
+    constexpr std::size_t fewest = 3;
+    const Blocks blocks = blocks_of(pyramid, start, limit);
+    const auto width = static_cast<std::size_t>(std::lround(beat_length(pair)));
+    const std::vector<Cycle> beats = beats_of(blocks.means, blocks.first, blocks.last, pair, width);
+    if (beats.size() < fewest) return {};
+    return in_positions(course_of(beats, start, blocks.first, blocks.last), blocks, start.level, limit);
 }
 
 }  // namespace ringwright::event_search

@@ -1,7 +1,10 @@
 #pragma once
 // How a decay goes on after its start: down to the noise, and on until something disturbs it.
 
+#include <optional>
+
 #include "event/start.hpp"
+#include "event/two_terms.hpp"
 
 namespace ringwright::event_search {
 
@@ -20,5 +23,9 @@ struct Course {
 
 /// Follows the decay from its start to `limit` at most.
 [[nodiscard]] Course follow_decay(const Pyramid& pyramid, const Start& start, std::size_t limit);
+/// The same of two modes that beat, with their shapes per block of start.level, beat by beat. Nothing when
+/// fewer than one and a half beats lie before the limit.
+[[nodiscard]] std::optional<Course> follow_beat(const Pyramid& pyramid, const Start& start,
+                                                const TwoTermFit& pair, std::size_t limit);
 
 }  // namespace ringwright::event_search

@@ -4,6 +4,7 @@
 #include <cmath>
 #include <numbers>
 
+#include "event/beat.hpp"
 #include "event/by_hand.hpp"
 #include "event/drops.hpp"
 #include "event/found.hpp"
@@ -347,6 +348,26 @@ void try_onset(Search& search, const Onset& onset, const std::vector<Onset>& all
     search.found.push_back(std::move(*found));
 }
 
+/// A decay of two close modes is followed through its beats; what was found on their rises belongs to it.
+void follow_beats(Search& search) {
+    std::vector<Found> kept;
+    for (Found& found : search.found) {
+        if (!kept.empty() && kept.back().beats && found.begin() < kept.back().course.rest_end) continue;
+        kept.push_back(std::move(found));
+        Found& last = kept.back();
+        if (last.is_drop() || search.mode_meant) continue;
+        const std::optional<TwoTermFit> pair = find_beat(search.pyramid, last.start, search.series.size());
+        if (!pair) continue;
+        const std::optional<Course> course =
+            follow_beat(search.pyramid, last.start, *pair, search.series.size());
+        if (!course || course->end < last.course.end) continue;
+        last.course = *course, last.beats = true;
+        last.start.shape = at_level(pair->first, last.start.level, 0);
+        last.start.companion = at_level(pair->second, last.start.level, 0);
+    }
+    search.found = std::move(kept);
+}
+
 /// One article does not both ring and creep: where something rings as strongly, what does not ring is the
 /// hand, the impact or the sensor's own answer (an AC-coupled one to a held pull).
 void drop_unlike(std::vector<Found>& found) {
@@ -569,6 +590,16 @@ void note_hum(const Search& search, const Series& recorded, EventSearch& result)
     if (hum) result.findings.push_back(*hum);
 }
 
+/// The mode that rings beside the one of the guessed frequency (cycles a step): of two that beat, the one
+/// stronger at the start may be the weaker of the spectrum.
+std::optional<DecayShape> beside(const Found& found, double guess) {
+    if (!found.beats) return found.start.companion;
+    const double step = 2.0 * std::numbers::pi * guess;
+    const double first = std::abs(step - found.start.shape.undamped_angular_frequency);
+    const double second = std::abs(step - found.start.companion->undamped_angular_frequency);
+    return second < first ? found.start.shape : found.start.companion;
+}
+
 Event to_event(const Found& found, const Search& search, const EventOptions& options) {
     const Series& series = search.series;
     Event event;
@@ -582,15 +613,16 @@ Event to_event(const Found& found, const Search& search, const EventOptions& opt
     event.start_amplitude = found.start.amplitude;
     event.kind = found.is_drop() ? TestKind::drop : options.kind.value_or(TestKind::pluck);
     event.kind_known = options.kind.has_value() || found.start.from_rest || found.is_drop();
-    if (const std::optional<DecayShape>& companion = found.start.companion) {
-        event.companion_hz =
-            companion->undamped_angular_frequency * series.rate_hz() / (2.0 * std::numbers::pi);
-        event.companion_damping_ratio = companion->damping_ratio;
-    }
     event.hold_seen = found.hold_seen;
     for (const Flight& flight : found.flights)
         event.flights.push_back({series.sample_at(flight.begin), series.sample_at(flight.end)});
     event.frequency_guess_hz = ringing_frequency(search.pyramid, series.rate_hz(), found, options.near_hz);
+    const double guess = event.frequency_guess_hz / series.rate_hz();
+    if (const std::optional<DecayShape> companion = beside(found, guess)) {
+        event.companion_hz =
+            companion->undamped_angular_frequency * series.rate_hz() / (2.0 * std::numbers::pi);
+        event.companion_damping_ratio = companion->damping_ratio;
+    }
     event.findings = found.findings;
     note_clipping(search, event);
     if (const auto finding = sampling_finding(found.cycle())) event.findings.push_back(*finding);
@@ -649,6 +681,7 @@ EventSearch search_whole(const Recording& recording, const EventOptions& options
     for (const Onset& onset : onsets) try_onset(search, onset, onsets);
     std::sort(search.found.begin(), search.found.end(),
               [](const Found& a, const Found& b) { return a.begin() < b.begin(); });
+    follow_beats(search);
     drop_unlike(search.found);
     drop_weak(search.found, series.values());
     drop_wanderings(search);

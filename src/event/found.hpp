@@ -17,6 +17,7 @@ struct Found {
     Findings findings;
     std::vector<Flight> flights = {};  ///< of a drop
     bool hold_seen = false;            ///< of a drop: the recording goes back before the release
+    bool beats = false;                ///< with the start's companion
     [[nodiscard]] std::size_t begin() const { return start.position; }
     [[nodiscard]] std::size_t end() const { return course.end; }
     /// First position that belongs to the test: of the fall, or of the decay.

@@ -111,6 +111,11 @@ TwoTermFit refine(const Eigen::VectorXd& values, Shapes shapes, double mean) {
     return to_fit(shapes, best, mean);
 }
 
+Shapes shapes_of(const DecayShape& first, const DecayShape& second) {
+    return {std::log(first.undamped_angular_frequency), std::log(std::max(first.damping_ratio, 1e-6)),
+            std::log(second.undamped_angular_frequency), std::log(std::max(second.damping_ratio, 1e-6))};
+}
+
 }  // namespace
 
 double TwoTermFit::value_at(double t) const {
@@ -131,10 +136,7 @@ std::optional<TwoTermFit> fit_two_terms(std::span<const double> points, const De
     const double mean = values.mean();
     values.array() -= mean;
     if (!(values.squaredNorm() > 0.0)) return {};
-    const Shapes shapes(
-        std::log(first.undamped_angular_frequency), std::log(std::max(first.damping_ratio, 1e-6)),
-        std::log(second.undamped_angular_frequency), std::log(std::max(second.damping_ratio, 1e-6)));
-    return refine(values, bounded(shapes), mean);
+    return refine(values, bounded(shapes_of(first, second)), mean);
 }
 
 std::optional<TwoTermFit> fit_two_terms(std::span<const double> points, const DecayShape& first) {
@@ -146,6 +148,17 @@ std::optional<TwoTermFit> fit_two_terms(std::span<const double> points, const De
     const std::optional<DecayFit> second = fit_decay(left);
     if (!second) return {};
     return fit_two_terms(points, first, second->shape);
+}
+
+TwoTermFit fit_two_amplitudes(std::span<const double> points, const DecayShape& first,
+                              const DecayShape& second) {
+    Eigen::VectorXd values =
+        Eigen::Map<const Eigen::VectorXd>(points.data(), static_cast<Eigen::Index>(points.size()));
+    const double mean = values.mean();
+    values.array() -= mean;
+    Columns columns(values.size(), static_cast<Eigen::Index>(linear_count));
+    const Shapes shapes = shapes_of(first, second);
+    return to_fit(shapes, project(values, shapes, columns), mean);
 }
 
 }  // namespace ringwright::event_search

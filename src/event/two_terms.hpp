@@ -26,5 +26,8 @@ struct TwoTermFit {
 /// The second shape from what the first leaves unexplained.
 [[nodiscard]] std::optional<TwoTermFit> fit_two_terms(std::span<const double> points,
                                                       const DecayShape& first);
+/// The amplitudes and the offset with both shapes held.
+[[nodiscard]] TwoTermFit fit_two_amplitudes(std::span<const double> points, const DecayShape& first,
+                                            const DecayShape& second);
 
 }  // namespace ringwright::event_search

@@ -76,6 +76,51 @@ TEST_CASE("a second mode neither delays the start nor passes for a second hit") 
     }
 }
 
+// The case of the design: 18.0 and 20.2 Hz. At equal amplitudes the envelope is all but zero after
+// 1/(2·2.2 Hz) = 0.23 s and as large as the damping leaves it at 0.45 s.
+TEST_CASE("two close modes that beat are one event, followed through the minima of the beat") {
+    for (const double share : {0.6, 1.0}) {
+        for (const auto& [z1, z2] : {std::pair{0.01, 0.01}, {0.006, 0.012}, {0.02, 0.015}}) {
+            INFO("share " << share << ", damping ratios " << z1 << " and " << z2);
+            Generator generator(607);
+            const Simulated truth = two_modes({18.0, z1}, {20.2, z2}, share, 1000.0, 5.0, generator);
+            const EventSearch search = find_events(truth.recording);
+            REQUIRE(search.events.size() == 1);
+            const Event& event = search.events[0];
+            // As above: the search keeps the start of the stronger mode within 0.4 cycles.
+            CHECK(std::abs(error_cycles(truth, event)) < 0.42);
+            CHECK_FALSE(has_finding(event, "double_hit"));
+            // The amplitude falls to 1 % of noise after ln(100)/(ζω) of the slower mode; less than half of
+            // that would be an end at a minimum.
+            const double slower = std::min(z1 * 18.0, z2 * 20.2) * 2.0 * std::numbers::pi;
+            const double followed_s = static_cast<double>(event.end - event.begin) / 1000.0;
+            CHECK(followed_s > 0.5 * std::min(4.5, std::log(100.0) / slower));
+            // Start values for the fit, which asks for no more than a bin.
+            const double one = std::min(event.companion_hz, event.frequency_guess_hz);
+            const double other = std::max(event.companion_hz, event.frequency_guess_hz);
+            CHECK(one == Approx(18.0).epsilon(0.01));
+            CHECK(other == Approx(20.2).epsilon(0.01));
+        }
+    }
+}
+
+TEST_CASE("a second strike on two close modes is a second event, in a minimum of the beat or not") {
+    for (const double after_s : {1.5, 1.82, 2.05, 2.27}) {
+        INFO("struck again after " << after_s << " s");
+        Generator generator(608);
+        Simulated truth = two_modes({18.0, 0.01}, {20.2, 0.01}, 1.0, 1000.0, 6.0, generator);
+        const auto delay = static_cast<std::size_t>(after_s * 1000.0);
+        const std::vector<double> once = truth.recording.samples;
+        for (std::size_t i = delay; i < once.size(); ++i) truth.recording.samples[i] += once[i - delay];
+        const EventSearch search = find_events(truth.recording);
+        REQUIRE(search.events.size() == 2);
+        const double again =
+            static_cast<double>(search.events[1].begin) - static_cast<double>(truth.begins[0] + delay);
+        CHECK(std::abs(again) < 0.42 * truth.samples_per_cycle);
+        CHECK(search.events[0].rest_end <= search.events[1].begin);
+    }
+}
+
 TEST_CASE("an AC-coupled sensor does not delay the start, and its own answer is no event") {
     // 1 Hz on a release of 4 Hz, ζ = 0.12: held long before it (the sensor has forgotten the pull), or from
     // the first sample (its answer to the pull dies away before the release).
