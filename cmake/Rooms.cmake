@@ -39,16 +39,37 @@ if(RINGWRIGHT_FUZZ)
   target_link_options(ringwright_flags INTERFACE -fsanitize=address,undefined)
 endif()
 
+# Libraries that the program carries within itself where Debian has them as archives, so that it starts without loading
+# them (docs/decisions/few-libraries.md). Everything else that is built links them as usual.
+option(RINGWRIGHT_FEW_LIBRARIES "The program carries FFTW, SQLite, libcrypto and the C++ library within itself" ON)
+if(RINGWRIGHT_SANITIZE OR RINGWRIGHT_FUZZ)
+  set(RINGWRIGHT_FEW_LIBRARIES OFF)
+endif()
+function(ringwright_carried variable archive usual)
+  find_library(RINGWRIGHT_ARCHIVE_${archive} lib${archive}.a)
+  mark_as_advanced(RINGWRIGHT_ARCHIVE_${archive})
+  if(RINGWRIGHT_FEW_LIBRARIES AND RINGWRIGHT_ARCHIVE_${archive})
+    # The property is that of the program or test that is linked in the end.
+    set(usual "$<IF:$<BOOL:$<TARGET_PROPERTY:RINGWRIGHT_CARRIES>>,${RINGWRIGHT_ARCHIVE_${archive}},${usual}>")
+  endif()
+  set(${variable} "${usual}" PARENT_SCOPE)
+endfunction()
+ringwright_carried(fftw fftw3 PkgConfig::FFTW3)
+ringwright_carried(crypto crypto OpenSSL::Crypto)
+ringwright_carried(sqlite sqlite3 sqlite3)
+ringwright_carried(sqlite_cpp SQLiteCpp SQLiteCpp)
+
 # What each room takes from outside the project.
 set(ringwright_value_libraries fmt::fmt)
-set(ringwright_recording_libraries PkgConfig::SNDFILE OpenSSL::Crypto fmt::fmt Threads::Threads)
-set(ringwright_event_libraries Eigen3::Eigen PkgConfig::FFTW3 fmt::fmt)
+# libsndfile is loaded when the first sound file is read.
+set(ringwright_recording_libraries ${crypto} fmt::fmt Threads::Threads ${CMAKE_DL_LIBS})
+set(ringwright_event_libraries Eigen3::Eigen ${fftw} fmt::fmt)
 set(ringwright_uncertainty_libraries Eigen3::Eigen Boost::headers fmt::fmt)
-set(ringwright_identify_libraries Eigen3::Eigen Boost::headers PkgConfig::FFTW3 fmt::fmt Threads::Threads)
+set(ringwright_identify_libraries Eigen3::Eigen Boost::headers ${fftw} fmt::fmt Threads::Threads)
 set(ringwright_property_libraries Boost::headers Eigen3::Eigen fmt::fmt)
 set(ringwright_analysis_libraries fmt::fmt Threads::Threads)
 set(ringwright_conformity_libraries Boost::headers Eigen3::Eigen fmt::fmt)
-set(ringwright_ledger_libraries SQLiteCpp sqlite3 OpenSSL::Crypto Boost::headers Eigen3::Eigen fmt::fmt
+set(ringwright_ledger_libraries ${sqlite_cpp} ${sqlite} ${crypto} Boost::headers Eigen3::Eigen fmt::fmt
     nlohmann_json::nlohmann_json)
 set(ringwright_report_libraries fmt::fmt nlohmann_json::nlohmann_json Boost::headers)
 set(ringwright_drawing_libraries fmt::fmt nlohmann_json::nlohmann_json OpenSSL::Crypto PkgConfig::CAIRO PkgConfig::PANGO
@@ -106,6 +127,10 @@ function(ringwright_program target library)
   set_target_properties(${target} PROPERTIES OUTPUT_NAME ringwright)
   # The drawing libraries stay out of the program: a third of the time of a short command went into loading them.
   target_link_options(${target} PRIVATE -Wl,--as-needed)
+  if(RINGWRIGHT_FEW_LIBRARIES)
+    set_target_properties(${target} PROPERTIES RINGWRIGHT_CARRIES ON)
+    target_link_options(${target} PRIVATE -static-libstdc++ -static-libgcc -no-pie)
+  endif()
   add_dependencies(${target} ringwright_drawing_module)
   target_include_directories(${target} PRIVATE ${PROJECT_SOURCE_DIR}/src)
   target_compile_definitions(${target} PRIVATE RINGWRIGHT_VERSION="${PROJECT_VERSION}")

@@ -2,8 +2,9 @@
 // How a command joins the program: it adds a subcommand with its options to the parser and says what to run.
 //
 // To add a command: write src/app/NAME_command.cpp with `void add_NAME_command(CLI::App& app, Context&
-// context)`, declare it here, and call it in main.cpp. The callback of the subcommand sets `context.run`;
-// what it throws and returns becomes the exit status.
+// context)`, declare it here, and name it in main.cpp. Only the command that the first word names is added,
+// so it must not count on another. The callback of the subcommand sets `context.run`; what it throws and
+// returns becomes the exit status.
 
 #include <functional>
 

@@ -6,11 +6,14 @@
 #include <CLI/App.hpp>
 #include <CLI/Config.hpp>
 #include <CLI/Formatter.hpp>
+#include <algorithm>
+#include <array>
 #include <csignal>
 #include <cstdio>
 #include <exception>
 #include <new>
 #include <string>
+#include <string_view>
 
 #include "app/command.hpp"
 #include "app/large_memory.hpp"
@@ -41,7 +44,33 @@ int guarded(const std::function<int()>& run) {
     }
 }
 
-void set_up(CLI::App& parser, app::Context& context) {
+struct Command {
+    std::string_view name;
+    void (*add)(CLI::App& parser, app::Context& context);
+};
+
+constexpr std::array<Command, 7> commands_in_order = {{{"inspect", app::add_inspect_command},
+                                                       {"identify", app::add_identify_command},
+                                                       {"verify", app::add_verify_command},
+                                                       {"compare", app::add_compare_command},
+                                                       {"sheet", app::add_sheet_command},
+                                                       {"ledger", app::add_ledger_command},
+                                                       {"report", app::add_report_command}}};
+
+/// The command that the first word names, if it names one.
+const Command* named_command(int argc, char** argv) {
+    const auto* found = std::ranges::find(commands_in_order, argc > 1 ? argv[1] : "", &Command::name);
+    return found == commands_in_order.end() ? nullptr : found;
+}
+
+/// All commands, or the one that is wanted alone: the options of all take longer to set up than a small file
+/// to read.
+void add_commands(CLI::App& parser, app::Context& context, const Command* wanted) {
+    for (const Command& command : commands_in_order)
+        if (wanted == nullptr || wanted == &command) command.add(parser, context);
+}
+
+void set_up(CLI::App& parser, app::Context& context, int argc, char** argv) {
     parser.set_version_flag("--version", "ringwright " + std::string(version()),
                             "Print the version and stop");
     parser.set_help_flag("-h,--help", "Print this help and stop");
@@ -51,13 +80,7 @@ void set_up(CLI::App& parser, app::Context& context) {
     parser.footer(
         "Each command explains itself: ringwright identify --help\nExample: ringwright identify pluck.csv "
         "--mass \"12.40(5) kg\"");
-    app::add_inspect_command(parser, context);
-    app::add_identify_command(parser, context);
-    app::add_verify_command(parser, context);
-    app::add_compare_command(parser, context);
-    app::add_sheet_command(parser, context);
-    app::add_ledger_command(parser, context);
-    app::add_report_command(parser, context);
+    add_commands(parser, context, named_command(argc, argv));
 }
 
 /// The word that stands where the name of a command was wanted; empty where there is none.
@@ -121,7 +144,7 @@ int main(int argc, char** argv) {
             "decay,\n"
             "each with its interval."};
         app::Context context;
-        set_up(parser, context);
+        set_up(parser, context, argc, argv);
         try {
             parser.parse(argc, argv);
         } catch (const CLI::ParseError& error) {

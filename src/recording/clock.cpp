@@ -20,6 +20,25 @@ struct Line {
     double worst = 0.0;  // half of the band about the line that holds every stamp
 };
 
+double first_of(const std::vector<double>& t) {
+    return t.front();
+}
+double last_of(const std::vector<double>& t) {
+    return t.back();
+}
+std::size_t count_of(const std::vector<double>& t) {
+    return t.size();
+}
+double first_of(const StampCourse& course) {
+    return course.first;
+}
+double last_of(const StampCourse& course) {
+    return course.last;
+}
+std::size_t count_of(const StampCourse& course) {
+    return course.count;
+}
+
 // Least squares of the stamps against their number, about the middle so that nothing cancels.
 Line fitted_line(const std::vector<double>& t) {
     const auto n = static_cast<double>(t.size());
@@ -36,30 +55,46 @@ Line fitted_line(const std::vector<double>& t) {
     return line;
 }
 
-// Moves the line to the middle of the band that holds every stamp: rounding and truncation then look alike.
-void centre(Line& line, const std::vector<double>& t) {
-    double low = 0.0, high = 0.0;
-    for (std::size_t i = 0; i < t.size(); ++i) {
-        const double distance = t[i] - line.start - line.step * static_cast<double>(i);
-        low = i == 0 ? distance : std::min(low, distance);
-        high = i == 0 ? distance : std::max(high, distance);
-    }
-    line.start += 0.5 * (low + high);
-    line.worst = 0.5 * (high - low);
+Line fitted_line(const StampCourse& course) {
+    const auto n = static_cast<long double>(course.count);
+    const long double middle = 0.5L * (n - 1.0L);
+    const long double step = (course.weighted - middle * course.sum) / (n * (n * n - 1.0L) / 12.0L);
+    Line line;
+    line.step = static_cast<double>(step);
+    line.start = static_cast<double>(course.first + course.sum / n - step * middle);
+    return line;
 }
 
-double worst_distance(const std::vector<double>& t, double start, double step) {
-    double worst = 0.0;
-    for (std::size_t i = 0; i < t.size(); ++i)
-        worst = std::max(worst, std::abs(t[i] - start - step * static_cast<double>(i)));
-    return worst;
+Band band_about(const std::vector<double>& t, double start, double step) {
+    Band band;
+    for (std::size_t i = 0; i < t.size(); ++i) {
+        const double distance = t[i] - start - step * static_cast<double>(i);
+        band.low = i == 0 ? distance : std::min(band.low, distance);
+        band.high = i == 0 ? distance : std::max(band.high, distance);
+    }
+    return band;
+}
+
+// Moves the line to the middle of the band that holds every stamp: rounding and truncation then look alike.
+template <typename Stamps>
+void centre(Line& line, const Stamps& t) {
+    const Band band = band_about(t, line.start, line.step);
+    line.start += 0.5 * (band.low + band.high);
+    line.worst = 0.5 * (band.high - band.low);
+}
+
+template <typename Stamps>
+double worst_distance(const Stamps& t, double start, double step) {
+    const Band band = band_about(t, start, step);
+    return std::max(std::abs(band.low), std::abs(band.high));
 }
 
 // How far a stamp of a steady clock may lie from the line: rounding to the last written digit (half a step of
 // it, a little more because the line is fitted to rounded stamps), the digits of a double, and a thousandth
 // of a sampling step, which no method here can feel.
-double tolerance(const std::vector<double>& t, double step, double rounding) {
-    const double magnitude = std::max(std::abs(t.front()), std::abs(t.back()));
+template <typename Stamps>
+double tolerance(const Stamps& t, double step, double rounding) {
+    const double magnitude = std::max(std::abs(first_of(t)), std::abs(last_of(t)));
     return 0.53 * rounding + 2e-3 * std::abs(step) + 8e-16 * magnitude;
 }
 
@@ -69,8 +104,8 @@ double rounded_to_digits(double value, int digits) {
 }
 
 // The rate with the fewest digits that the stamps allow: 2000 Hz, not 2000.0000013 Hz.
-std::optional<double> plain_rate(const std::vector<double>& t, const Line& line, double allowed) {
-    const double slack = std::max(allowed - line.worst, 0.1 * allowed) / static_cast<double>(t.size());
+std::optional<double> plain_rate(std::size_t count, const Line& line, double allowed) {
+    const double slack = std::max(allowed - line.worst, 0.1 * allowed) / static_cast<double>(count);
     const double rate = 1.0 / line.step;
     for (int digits = 1; digits <= 9; ++digits)
         for (const double candidate :
@@ -79,8 +114,9 @@ std::optional<double> plain_rate(const std::vector<double>& t, const Line& line,
     return std::nullopt;
 }
 
-std::optional<SampleClock> uniform_clock(const std::vector<double>& t, double rounding) {
-    if (t.size() < 3) return std::nullopt;
+template <typename Stamps>
+std::optional<SampleClock> uniform_clock(const Stamps& t, double rounding) {
+    if (count_of(t) < 3) return std::nullopt;
     Line line = fitted_line(t);
     if (!(line.step > 0.0) || !std::isfinite(line.step)) return std::nullopt;
     const double allowed = tolerance(t, line.step, rounding);
@@ -89,13 +125,14 @@ std::optional<SampleClock> uniform_clock(const std::vector<double>& t, double ro
     SampleClock clock;
     clock.sample_rate_hz = 1.0 / line.step;
     clock.start_s = line.start;
-    if (const auto plain = plain_rate(t, line, allowed)) {
+    if (const auto plain = plain_rate(count_of(t), line, allowed)) {
         clock.sample_rate_hz = *plain;
-        const double middle = 0.5 * static_cast<double>(t.size() - 1);
+        const double middle = 0.5 * static_cast<double>(count_of(t) - 1);
         clock.start_s = line.start + middle * (line.step - 1.0 / *plain);
     }
     // The first stamp itself where the line allows it, so that "0" stays 0.
-    if (worst_distance(t, t.front(), 1.0 / clock.sample_rate_hz) <= 2.0 * allowed) clock.start_s = t.front();
+    if (worst_distance(t, first_of(t), 1.0 / clock.sample_rate_hz) <= 2.0 * allowed)
+        clock.start_s = first_of(t);
     return clock;
 }
 
@@ -357,14 +394,32 @@ Timed clock_from_stamps(std::vector<double> times_s, std::vector<double> values,
     return timed;
 }
 
-Timed clock_from_rate(double rate_hz, double start_s, std::vector<double> values) {
+void scale_times(std::vector<double>& times, double seconds_per_unit) {
+    if (seconds_per_unit == 1.0) return;
+    const double units_per_second = std::round(1.0 / seconds_per_unit);
+    for (double& t : times) t = seconds_per_unit < 1.0 ? t / units_per_second : t * seconds_per_unit;
+}
+
+Timed on_clock(SampleClock clock, std::vector<double> values) {
     Timed timed;
     timed.values = std::move(values);
-    timed.clock.sample_rate_hz = rate_hz;
-    timed.clock.start_s = start_s;
+    timed.clock = std::move(clock);
+    const double step = 1.0 / timed.clock.sample_rate_hz;
     drop_missing(timed);
-    find_gaps(timed, 1.0 / rate_hz, 0.0);
+    find_gaps(timed, step, 0.0);
     return timed;
+}
+
+std::optional<SampleClock> steady_clock(const StampCourse& course, double rounding_s) {
+    if (!course.forward) return std::nullopt;
+    return uniform_clock(course, rounding_s);
+}
+
+Timed clock_from_rate(double rate_hz, double start_s, std::vector<double> values) {
+    SampleClock clock;
+    clock.sample_rate_hz = rate_hz;
+    clock.start_s = start_s;
+    return on_clock(std::move(clock), std::move(values));
 }
 
 }  // namespace ringwright

@@ -1,9 +1,11 @@
 #pragma once
 // From time stamps as they were recorded to the clock of a recording.
 
+#include <optional>
 #include <string>
 #include <vector>
 
+#include "recording/stamp_course.hpp"
 #include "ringwright/finding.hpp"
 #include "ringwright/recording.hpp"
 
@@ -24,6 +26,15 @@ struct Timed {
 /// `first_row` being the line of the first value in the file. Precondition: equal sizes.
 [[nodiscard]] Timed clock_from_stamps(std::vector<double> times_s, std::vector<double> values,
                                       double rounding_s);
+
+/// The clock that `clock_from_stamps` would find for these stamps where it is uniform; nothing otherwise.
+[[nodiscard]] std::optional<SampleClock> steady_clock(const StampCourse& course, double rounding_s);
+
+/// Values on a uniform clock; missing ones are left out with the times of the others kept.
+[[nodiscard]] Timed on_clock(SampleClock clock, std::vector<double> values);
+
+/// From numbers in a unit of so many seconds to seconds, divided where the unit is a fraction of a second.
+void scale_times(std::vector<double>& times, double seconds_per_unit);
 
 /// Clock times without a date begin again at midnight: adds a day at each such place. Seconds since midnight.
 void unwrap_midnight(std::vector<double>& times_s);

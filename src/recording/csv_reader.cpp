@@ -423,11 +423,7 @@ Timed place_in_time(const OpenTable& open, const TimeChoice& time, const ReadOpt
         return clock_from_rate(rate_without_times(open, options, recording), 0.0, std::move(rows.values));
     if (time.source == TimeSource::stamp && time.without_date) unwrap_midnight(rows.times);
     if (time.from_zero) start_at_zero(rows.times);
-    if (time.source == TimeSource::number && time.seconds_per_unit != 1.0) {
-        const double units_per_second = std::round(1.0 / time.seconds_per_unit);
-        for (double& t : rows.times)
-            t = time.seconds_per_unit < 1.0 ? t / units_per_second : t * time.seconds_per_unit;
-    }
+    if (time.source == TimeSource::number) scale_times(rows.times, time.seconds_per_unit);
     refuse_backward_time(rows.times, column_name(open.table, time.column), recording.origin.file);
     return clock_from_stamps(std::move(rows.times), std::move(rows.values), time.rounding_s);
 }
@@ -495,12 +491,18 @@ void read_csv(std::string_view bytes, const ReadOptions& options, Recording& rec
     append(recording.findings, signal.findings);
     recording.origin.channel = column_name(open.table, signal.column);
 
-    Rows rows = read_rows(open.rows(), plan_for(open.table, time, signal.column, options),
-                          std::max(1U, std::thread::hardware_concurrency()), options.progress);
+    const RowPlan plan = plan_for(open.table, time, signal.column, options);
+    const unsigned threads = std::max(1U, std::thread::hardware_concurrency());
+    std::optional<SteadyRows> steady;
+    if (!time.from_zero)
+        steady = read_steady_rows(open.rows(), plan, time.seconds_per_unit, time.rounding_s, threads,
+                                  options.progress);
+    Rows rows = steady ? std::move(steady->rows) : read_rows(open.rows(), plan, threads, options.progress);
     report_absences(rows, open.table, recording.origin.channel, recording.findings);
     const std::size_t row_count = rows.values.size();
     const Loss loss = commonest_loss(rows, open.table.first_line);
-    Timed timed = place_in_time(open, time, options, std::move(rows), recording);
+    Timed timed = steady ? on_clock(std::move(steady->clock), std::move(rows.values))
+                         : place_in_time(open, time, options, std::move(rows), recording);
     append(recording.findings, timed.findings);
     recording.samples = std::move(timed.values);
     recording.clock = std::move(timed.clock);

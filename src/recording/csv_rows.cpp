@@ -3,11 +3,16 @@
 #include <fast_float/fast_float.h>
 
 #include <algorithm>
+#include <array>
 #include <atomic>
 #include <cmath>
+#include <cstdint>
 #include <cstring>
 #include <limits>
-#include <thread>
+
+#include "recording/clock.hpp"
+#include "recording/in_pieces.hpp"
+#include "recording/input_bytes.hpp"
 
 namespace ringwright {
 namespace {
@@ -19,6 +24,39 @@ const char* find_byte(const char* first, const char* last, char byte) {
     return found == nullptr ? last : static_cast<const char*>(found);
 }
 
+// A decimal such as "-12.0345". Up to 2^53 its digits are a double exactly, and so are powers of ten up to
+// 10^22: one division then gives the nearest double (Clinger 1990, "How to read floating point numbers
+// accurately"). Reads up to the first byte that is none of the number's, so that some other byte has to
+// follow. False, with `at` where it was, when it is none of these or too long for that.
+bool plain_decimal(const char*& at, char decimal, double& value) {
+    static constexpr std::array<double, 19> powers_of_ten = {1e0,  1e1,  1e2,  1e3,  1e4,  1e5,  1e6,
+                                                             1e7,  1e8,  1e9,  1e10, 1e11, 1e12, 1e13,
+                                                             1e14, 1e15, 1e16, 1e17, 1e18};
+    const char* p = at;
+    const bool negative = *p == '-';
+    p += negative ? 1 : 0;
+    const char* const first = p;
+    std::uint64_t digits = 0;
+    const auto take_digits = [&] {
+        for (unsigned digit = 0; (digit = static_cast<unsigned>(*p) - '0') < 10; ++p)
+            digits = 10 * digits + digit;
+    };
+    take_digits();
+    std::ptrdiff_t count = p - first, places = 0;
+    if (*p == decimal) {
+        const char* const point = p++;
+        take_digits();
+        places = p - point - 1;
+        count += places;
+    }
+    constexpr std::uint64_t exact = std::uint64_t{1} << 53U;
+    if (count == 0 || count > 18 || digits > exact || (*p | 0x20) == 'e') return false;
+    const double size = static_cast<double>(digits) / powers_of_ten[static_cast<std::size_t>(places)];
+    value = negative ? -size : size;
+    at = p;
+    return true;
+}
+
 // Which cell of a row goes where, in the order of the columns.
 struct Wanted {
     std::size_t column;
@@ -27,8 +65,8 @@ struct Wanted {
 
 class ChunkReader {
   public:
-    ChunkReader(std::string_view text, const RowPlan& plan)
-        : plan_(plan), at_(text.data()), end_(text.data() + text.size()) {
+    ChunkReader(std::string_view text, const RowPlan& plan, Rows& rows)
+        : plan_(plan), at_(text.data()), end_(text.data() + text.size()), rows_(rows) {
         wanted_.push_back({plan.value_column, Wanted::value});
         if (plan.time_source != TimeSource::none) wanted_.push_back({plan.time_column, Wanted::time});
         if (plan.time_source == TimeSource::date_and_time)
@@ -37,15 +75,18 @@ class ChunkReader {
                   [](const Wanted& a, const Wanted& b) { return a.column < b.column; });
         options_ = fast_float::parse_options(fast_float::chars_format::general, plan.dialect.decimal);
         blanks_ = plan.dialect.delimiter == ' ';
+        const bool numbers = plan.time_source == TimeSource::none || plan.time_source == TimeSource::number;
+        // The quick way looks for no end: the last end of line stops it.
+        const std::size_t last = text.rfind(plan.end_of_line);
+        quick_end_ = numbers && !blanks_ && last != std::string_view::npos ? at_ + last : at_;
     }
 
-    Rows read() {
+    void read() {
         reserve();
         while (at_ < end_) {
-            read_row();
+            if (at_ >= quick_end_ || !quick_row()) read_row();
             ++rows_.lines;
         }
-        return std::move(rows_);
     }
 
   private:
@@ -56,6 +97,39 @@ class ChunkReader {
         const std::size_t rows = static_cast<std::size_t>(end_ - at_) / std::max<std::size_t>(length, 4) + 16;
         rows_.values.reserve(rows);
         if (plan_.time_source != TimeSource::none) rows_.times.reserve(rows);
+    }
+
+    // A row whose wanted cells are plain decimals and nothing else. False, with nothing moved, for any other
+    // row.
+    bool quick_row() {
+        const char delimiter = plan_.dialect.delimiter, end_of_line = plan_.end_of_line;
+        const char* at = at_;
+        std::size_t column = 0;
+        for (const Wanted& wanted : wanted_) {
+            for (; column < wanted.column; ++column, ++at)
+                for (; *at != delimiter; ++at)
+                    if (*at == end_of_line || *at == '"') return false;
+            if (!quick_cell(at, wanted.what == Wanted::value ? value_ : time_)) return false;
+        }
+        if (*at == '\r' && end_of_line == '\n') ++at;
+        if (*at == delimiter) at = find_byte(at, end_, end_of_line);
+        if (*at != end_of_line || is_overload(value_)) return false;
+        at_ = at + 1;
+        rows_.values.push_back(value_);
+        if (plan_.time_source != TimeSource::none) rows_.times.push_back(time_);
+        return true;
+    }
+
+    // Moves to the end of the cell.
+    bool quick_cell(const char*& at, double& value) const {
+        while (*at == ' ') ++at;
+        if (!plain_decimal(at, plan_.dialect.decimal, value)) {
+            if (*at != '-' && static_cast<unsigned>(*at) - '0' > 9) return false;
+            const auto result = fast_float::from_chars_advanced(at, end_, value, options_);
+            if (result.ec != std::errc() || !std::isfinite(value)) return false;
+            at = result.ptr;
+        }
+        return *at == plan_.dialect.delimiter || *at == plan_.end_of_line || *at == '\r';
     }
 
     void read_row() {
@@ -211,10 +285,11 @@ class ChunkReader {
     const RowPlan& plan_;
     const char* at_;
     const char* end_;
+    const char* quick_end_ = nullptr;
     std::vector<Wanted> wanted_;
     fast_float::parse_options options_;
     bool blanks_ = false;
-    Rows rows_;
+    Rows& rows_;
     double time_ = missing, value_ = missing;
     std::int64_t time_ns_ = 0, date_ns_ = 0;
     bool time_seen_ = false, date_seen_ = false;
@@ -222,29 +297,14 @@ class ChunkReader {
     bool cell_done_ = false;  // at_ stands at the end of a cell that was read
 };
 
-// Pieces of about equal size that end at the end of a line.
-std::vector<std::string_view> pieces_of(std::string_view text, std::size_t size, char end_of_line) {
-    std::vector<std::string_view> pieces;
-    while (!text.empty()) {
-        std::size_t end = text.size();
-        if (size < text.size()) {
-            const std::size_t line_end = text.find(end_of_line, size);
-            if (line_end != std::string_view::npos) end = line_end + 1;
-        }
-        pieces.push_back(text.substr(0, end));
-        text.remove_prefix(end);
-    }
-    return pieces;
-}
-
-void append(Rows& rows, Rows&& later) {
+void append(Rows& rows, const Rows& later) {
     rows.empty.merge(later.empty, rows.lines);
     rows.not_a_number.merge(later.not_a_number, rows.lines);
     rows.overflow.merge(later.overflow, rows.lines);
     rows.text.merge(later.text, rows.lines);
     rows.unreadable_time.merge(later.unreadable_time, rows.lines);
     rows.unreadable_row.merge(later.unreadable_row, rows.lines);
-    if (rows.first_text.empty()) rows.first_text = std::move(later.first_text);
+    if (rows.first_text.empty()) rows.first_text = later.first_text;
     rows.lines += later.lines;
     rows.times.insert(rows.times.end(), later.times.begin(), later.times.end());
     rows.values.insert(rows.values.end(), later.values.begin(), later.values.end());
@@ -257,35 +317,153 @@ void Absences::merge(const Absences& later, std::size_t lines_before) {
     count += later.count;
 }
 
+namespace {
+
+void forget(Rows& rows) {
+    Rows fresh;
+    fresh.times = std::move(rows.times);
+    fresh.values = std::move(rows.values);
+    fresh.times.clear();
+    fresh.values.clear();
+    rows = std::move(fresh);
+}
+
+// Room for all rows from what the first piece held: what is not used is never touched.
+void reserve_all(Rows& rows, const Rows& first, std::size_t first_bytes, std::size_t bytes) {
+    const double share =
+        static_cast<double>(bytes) / static_cast<double>(std::max<std::size_t>(first_bytes, 1));
+    const auto count = static_cast<std::size_t>(static_cast<double>(first.values.size()) * share * 1.05) + 64;
+    rows.values.reserve(count);
+    if (!first.times.empty()) rows.times.reserve(count);
+}
+
+// Lets the pieces be taken up one behind the other.
+class Turns {
+  public:
+    // False when a piece before has failed, so that its turn never ends.
+    [[nodiscard]] bool wait_for(std::size_t turn) {
+        for (std::size_t now = turn_; now != turn; now = turn_) {
+            if (now == abandoned) return false;
+            turn_.wait(now);
+        }
+        return true;
+    }
+    void pass() {
+        ++turn_;
+        turn_.notify_all();
+    }
+    void abandon() {
+        turn_ = abandoned;
+        turn_.notify_all();
+    }
+
+  private:
+    static constexpr std::size_t abandoned = std::numeric_limits<std::size_t>::max();
+    std::atomic<std::size_t> turn_{0};
+};
+
+// What turns the times of each piece into a course, when it is hoped that they are one steady clock.
+struct SteadyHope {
+    double seconds_per_unit = 1.0;
+    double rounding_s = 0.0;
+};
+
+// Reads the pieces of a long text on several threads and puts their rows together in order.
+class ParallelReader {
+  public:
+    ParallelReader(std::string_view text, const RowPlan& plan, unsigned threads,
+                   std::optional<SteadyHope> hope = std::nullopt)
+        : text_(text), plan_(plan), threads_(threads), hope_(hope), parts_(std::max(threads, 1U)) {}
+
+    // False when it turned out that there is no steady clock; the rows are then not whole.
+    [[nodiscard]] bool read(const std::vector<std::string_view>& pieces,
+                            const std::function<void(double)>& progress) {
+        for_each_piece(pieces.size(), threads_, [&](std::size_t i, unsigned thread) {
+            if (given_up_) return;
+            try {
+                read_piece(pieces[i], i, parts_[thread]);
+                const double done = static_cast<double>(i + 1) / static_cast<double>(pieces.size());
+                if (thread == 0 && progress) progress(done);
+            } catch (...) {
+                turns_.abandon();
+                throw;
+            }
+        });
+        return !given_up_;
+    }
+
+    [[nodiscard]] Rows take_rows() { return std::move(rows_); }
+    [[nodiscard]] const StampCourse& course() const { return course_; }
+
+  private:
+    void read_piece(std::string_view piece, std::size_t i, Rows& part) {
+        forget(part);
+        will_read(piece);
+        ChunkReader(piece, plan_, part).read();
+        StampCourse course;
+        if (hope_) course = course_without_times(part);
+        if (!turns_.wait_for(i)) return;
+        if (hope_ && !goes_on(course, i)) return give_up();
+        if (i == 0) reserve_all(rows_, part, piece.size(), text_.size());
+        append(rows_, part);
+        turns_.pass();
+    }
+
+    [[nodiscard]] StampCourse course_without_times(Rows& part) const {
+        scale_times(part.times, hope_->seconds_per_unit);
+        StampCourse course = course_of(part.times);
+        part.times.clear();
+        return course;
+    }
+
+    [[nodiscard]] bool goes_on(const StampCourse& course, std::size_t i) {
+        append(course_, course);
+        return course_.forward && (i > 0 || steady_clock(course_, hope_->rounding_s));
+    }
+
+    void give_up() {
+        given_up_ = true;
+        turns_.abandon();
+    }
+
+    std::string_view text_;
+    const RowPlan& plan_;
+    unsigned threads_;
+    std::optional<SteadyHope> hope_;
+    std::vector<Rows> parts_;  // one for each thread, used again and again
+    Rows rows_;
+    StampCourse course_;
+    Turns turns_;
+    std::atomic<bool> given_up_{false};
+};
+
+// Small enough for the caches, so that the numbers are copied to their place before they have left them.
+constexpr std::size_t piece_size = std::size_t{1} << 20;
+
+}  // namespace
+
 Rows read_rows(std::string_view text, const RowPlan& plan, unsigned threads,
                const std::function<void(double)>& progress) {
-    constexpr std::size_t piece_size = std::size_t{8} << 20;
     const auto pieces = pieces_of(text, piece_size, plan.end_of_line);
-    if (pieces.size() <= 1) return ChunkReader(text, plan).read();
-    std::vector<Rows> parts(pieces.size());
-    std::atomic<std::size_t> next{0}, done{0};
-    const auto work = [&](bool reports) {
-        for (std::size_t i = next++; i < pieces.size(); i = next++) {
-            parts[i] = ChunkReader(pieces[i], plan).read();
-            const double share = static_cast<double>(++done) / static_cast<double>(pieces.size());
-            if (reports && progress) progress(share);
-        }
-    };
-    std::vector<std::jthread> workers;
-    for (unsigned i = 1; i < std::min<std::size_t>(threads, pieces.size()); ++i)
-        workers.emplace_back(work, false);
-    work(true);
-    workers.clear();
-    std::size_t total = 0;
-    for (const Rows& part : parts) total += part.values.size();
-    Rows rows = std::move(parts.front());
-    rows.values.reserve(total);
-    if (plan.time_source != TimeSource::none) rows.times.reserve(total);
-    for (std::size_t i = 1; i < parts.size(); ++i) {
-        append(rows, std::move(parts[i]));
-        parts[i] = Rows{};
+    if (pieces.size() <= 1) {
+        Rows rows;
+        ChunkReader(text, plan, rows).read();
+        return rows;
     }
-    return rows;
+    ParallelReader reader(text, plan, threads);
+    static_cast<void>(reader.read(pieces, progress));
+    return reader.take_rows();
+}
+
+std::optional<SteadyRows> read_steady_rows(std::string_view text, const RowPlan& plan,
+                                           double seconds_per_unit, double rounding_s, unsigned threads,
+                                           const std::function<void(double)>& progress) {
+    if (plan.time_source != TimeSource::number || text.size() <= piece_size) return std::nullopt;
+    ParallelReader reader(text, plan, threads, SteadyHope{seconds_per_unit, rounding_s});
+    if (!reader.read(pieces_of(text, piece_size, plan.end_of_line), progress)) return std::nullopt;
+    auto clock = steady_clock(reader.course(), rounding_s);
+    if (!clock) return std::nullopt;
+    return SteadyRows{reader.take_rows(), std::move(*clock)};
 }
 
 }  // namespace ringwright

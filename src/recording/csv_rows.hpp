@@ -10,6 +10,7 @@
 #include <vector>
 
 #include "recording/csv_cells.hpp"
+#include "ringwright/recording.hpp"
 
 namespace ringwright {
 
@@ -57,5 +58,19 @@ struct Rows {
 /// is called with the share done, from the calling thread.
 [[nodiscard]] Rows read_rows(std::string_view text, const RowPlan& plan, unsigned threads,
                              const std::function<void(double)>& progress = {});
+
+/// Rows whose times are one steady clock, which stands in place of the times.
+struct SteadyRows {
+    Rows rows;
+    SampleClock clock;
+};
+
+/// The same for a long text whose times are numbers in a unit of so many seconds, written to `rounding_s`,
+/// without memory for the times. Nothing when the text is short or the clock is none that `clock_from_stamps`
+/// takes for uniform.
+[[nodiscard]] std::optional<SteadyRows> read_steady_rows(std::string_view text, const RowPlan& plan,
+                                                         double seconds_per_unit, double rounding_s,
+                                                         unsigned threads,
+                                                         const std::function<void(double)>& progress = {});
 
 }  // namespace ringwright

@@ -1,7 +1,12 @@
 #include "recording/csv_thousands.hpp"
 
 #include <algorithm>
+#include <array>
+#include <string>
+#include <thread>
 #include <vector>
+
+#include "recording/in_pieces.hpp"
 
 namespace ringwright {
 namespace {
@@ -14,6 +19,12 @@ bool digits_and_marks(std::string_view cell, const Dialect& dialect) {
     return std::all_of(cell.begin(), cell.end(), fits);
 }
 
+// What stands in a line that may hold the mark. With commas between the columns a comma in a number stands in
+// quotes.
+char sign_of(char mark, const Dialect& plain) {
+    return mark == plain.delimiter ? '"' : mark;
+}
+
 // Goes through the lines that hold the mark and looks at the cells that are no numbers without it.
 class MarkCounter {
   public:
@@ -24,8 +35,7 @@ class MarkCounter {
     }
 
     ThousandsMarks count() {
-        // With commas between the columns a comma in a number stands in quotes.
-        const char sought = grouped_.grouping == plain_.delimiter ? '"' : grouped_.grouping;
+        const char sought = sign_of(grouped_.grouping, plain_);
         std::size_t line_number = 0, counted_to = 0;
         for (std::size_t at = 0; (at = rows_.find(sought, at)) != std::string_view::npos;) {
             const std::size_t before = rows_.substr(0, at).rfind(table_.end_of_line);
@@ -84,7 +94,12 @@ bool decimals_at_the_start(std::string_view rows, const Table& table) {
 }  // namespace
 
 ThousandsMarks find_thousands_marks(std::string_view rows, const Table& table) {
-    for (const char mark : {table.dialect.decimal == ',' ? '.' : ',', '\'', ' '}) {
+    const std::array<char, 3> marks = {table.dialect.decimal == ',' ? '.' : ',', '\'', ' '};
+    std::string signs;
+    for (const char mark : marks) signs += sign_of(mark, table.dialect);
+    const std::string present = bytes_present(rows, signs, std::max(1U, std::thread::hardware_concurrency()));
+    for (const char mark : marks) {
+        if (present.find(sign_of(mark, table.dialect)) == std::string::npos) continue;
         if (table.dialect.grouping != '\0' || (mark == ' ' && table.dialect.delimiter == ' ')) continue;
         ThousandsMarks found = MarkCounter(rows, table, mark).count();
         if (found.grouped == 0) continue;

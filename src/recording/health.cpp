@@ -38,14 +38,63 @@ bool runs_into_rail(const std::vector<double>& x, std::size_t begin, std::size_t
            !grows_like_apex(x[end - 1], x[end], x[end + 1], x[end + 2]);
 }
 
-void runs_at(const std::vector<double>& x, double rail, double resolution, std::vector<SampleRange>& runs) {
-    for (std::size_t i = 0; i < x.size(); ++i) {
-        if (x[i] != rail) continue;
-        std::size_t end = i + 1;
-        while (end < x.size() && x[end] == rail) ++end;
-        if (end - i >= 3 && runs_into_rail(x, i, end, resolution)) runs.push_back({i, end});
-        i = end;
+// Lowest and highest sample of each block, so that a rail is sought only where it was reached.
+struct Extent {
+    double low = 0.0, high = 0.0;
+};
+constexpr std::size_t block_size = 8192;
+
+Extent extent_of(const double* begin, const double* end) {
+    Extent extent{*begin, *begin};
+    for (const double* x = begin + 1; x != end; ++x) {
+        extent.low = *x < extent.low ? *x : extent.low;
+        extent.high = *x > extent.high ? *x : extent.high;
     }
+    return extent;
+}
+
+std::vector<Extent> extents_of(const std::vector<double>& x) {
+    std::vector<Extent> extents;
+    for (std::size_t at = 0; at < x.size(); at += block_size)
+        extents.push_back(extent_of(x.data() + at, x.data() + std::min(at + block_size, x.size())));
+    return extents;
+}
+
+Extent whole_of(const std::vector<Extent>& extents) {
+    Extent whole = extents.front();
+    for (const Extent& extent : extents) {
+        whole.low = std::min(whole.low, extent.low);
+        whole.high = std::max(whole.high, extent.high);
+    }
+    return whole;
+}
+
+void runs_at(const std::vector<double>& x, const std::vector<Extent>& extents, double rail, double resolution,
+             std::vector<SampleRange>& runs) {
+    std::size_t i = 0;
+    for (std::size_t block = 0; block < extents.size(); ++block) {
+        if (extents[block].low != rail && extents[block].high != rail) continue;
+        const std::size_t block_end = std::min((block + 1) * block_size, x.size());
+        for (i = std::max(i, block * block_size); i < block_end; ++i) {
+            if (x[i] != rail) continue;
+            std::size_t end = i + 1;
+            while (end < x.size() && x[end] == rail) ++end;
+            if (end - i >= 3 && runs_into_rail(x, i, end, resolution)) runs.push_back({i, end});
+            i = end;
+        }
+    }
+}
+
+std::vector<SampleRange> clipped_in(const std::vector<double>& x, const std::vector<Extent>& extents,
+                                    double resolution) {
+    std::vector<SampleRange> runs;
+    const Extent whole = whole_of(extents);
+    if (whole.low == whole.high) return runs;
+    runs_at(x, extents, whole.high, resolution, runs);
+    runs_at(x, extents, whole.low, resolution, runs);
+    std::sort(runs.begin(), runs.end(),
+              [](const SampleRange& a, const SampleRange& b) { return a.begin < b.begin; });
+    return runs;
 }
 
 std::size_t samples_in(const std::vector<SampleRange>& runs) {
@@ -76,22 +125,16 @@ double smallest_step(const std::vector<double>& samples) {
 }
 
 std::vector<SampleRange> clipped_runs(const std::vector<double>& samples, double resolution) {
-    std::vector<SampleRange> runs;
-    if (samples.empty()) return runs;
-    const auto [low, high] = std::minmax_element(samples.begin(), samples.end());
-    if (*low == *high) return runs;
-    runs_at(samples, *high, resolution, runs);
-    runs_at(samples, *low, resolution, runs);
-    std::sort(runs.begin(), runs.end(),
-              [](const SampleRange& a, const SampleRange& b) { return a.begin < b.begin; });
-    return runs;
+    if (samples.empty()) return {};
+    return clipped_in(samples, extents_of(samples), resolution);
 }
 
 void examine_health(Recording& recording) {
     const auto& x = recording.samples;
     if (x.empty()) return;
-    const auto [low, high] = std::minmax_element(x.begin(), x.end());
-    const double range = *high - *low;
+    const std::vector<Extent> extents = extents_of(x);
+    const Extent whole = whole_of(extents);
+    const double range = whole.high - whole.low;
     if (range == 0.0) {
         add(recording, "constant_signal", Severity::defect,
             "Every sample has the same value. Check that the sensor was connected and that this is the right "
@@ -100,7 +143,7 @@ void examine_health(Recording& recording) {
         return;
     }
     recording.resolution = smallest_step(x);
-    recording.clipped = clipped_runs(x, recording.resolution);
+    recording.clipped = clipped_in(x, extents, recording.resolution);
     report_clipping(recording);
     const double levels = range / recording.resolution;
     if (levels < 64.0)

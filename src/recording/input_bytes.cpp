@@ -9,6 +9,7 @@
 #include <algorithm>
 #include <array>
 #include <cerrno>
+#include <cstdint>
 #include <cstring>
 #include <memory>
 
@@ -91,6 +92,17 @@ void InputBytes::read_all(int descriptor, const std::string& name) {
         owned_.append(buffer.get(), static_cast<std::size_t>(count));
     }
     view_ = owned_;
+}
+
+void will_read(std::string_view bytes) {
+#ifdef MADV_POPULATE_READ
+    static const auto page = static_cast<std::uintptr_t>(::sysconf(_SC_PAGESIZE));
+    const std::uintptr_t begin = reinterpret_cast<std::uintptr_t>(bytes.data()) / page * page;
+    const std::uintptr_t end = reinterpret_cast<std::uintptr_t>(bytes.data()) + bytes.size();
+    if (begin < end) ::madvise(reinterpret_cast<void*>(begin), end - begin, MADV_POPULATE_READ);
+#else
+    static_cast<void>(bytes);
+#endif
 }
 
 std::string sha256_hex(std::string_view bytes) {

@@ -29,6 +29,10 @@ class InputBytes {
     std::string_view view_;
 };
 
+/// Tells the system that these bytes of a file are read now, so that it maps them at once and not page by
+/// page. Only a hint.
+void will_read(std::string_view bytes);
+
 /// SHA-256 of the bytes as 64 lower-case hexadecimal digits (FIPS 180-4).
 [[nodiscard]] std::string sha256_hex(std::string_view bytes);
 

@@ -1,7 +1,6 @@
 #include "recording/sound_reader.hpp"
 
 #include <fmt/format.h>
-#include <sndfile.h>
 
 #include <algorithm>
 #include <array>
@@ -14,6 +13,7 @@
 #include "recording/channel_scale.hpp"
 #include "recording/quantity_words.hpp"
 #include "recording/signal_clarity.hpp"
+#include "recording/sound_library.hpp"
 #include "ringwright/error.hpp"
 #include "ringwright/measured_value.hpp"
 
@@ -100,10 +100,11 @@ class SoundFile {
   public:
     SoundFile(std::string_view bytes, const std::string& name) : file_{bytes, 0, data_length_patch(bytes)} {
         SF_VIRTUAL_IO io{file_length, seek_to, read_bytes, write_nothing, position};
-        handle_.reset(sf_open_virtual(&io, SFM_READ, &info_, &file_));
+        handle_.reset(sound_library().open_virtual(&io, SFM_READ, &info_, &file_));
         const bool usable = handle_ && info_.channels > 0 && info_.samplerate > 0 && info_.channels <= 4096;
         if (usable) return;
-        std::string reason = handle_ ? "it names no tracks or no sampling rate" : sf_strerror(nullptr);
+        std::string reason =
+            handle_ ? "it names no tracks or no sampling rate" : sound_library().strerror(nullptr);
         while (!reason.empty() && (reason.back() == '.' || reason.back() == '\n')) reason.pop_back();
         throw InputError(Problem{name, "", "the sound file cannot be decoded (" + reason + ")",
                                  "The file may be cut or damaged; export it again as WAV."});
@@ -116,10 +117,10 @@ class SoundFile {
     // Calls `take(block, frames)` with interleaved frames, from the first to the last that can be decoded.
     template <typename Take>
     void for_each_block(Take take) {
-        sf_seek(handle_.get(), 0, SEEK_SET);
+        sound_library().seek(handle_.get(), 0, SEEK_SET);
         std::vector<double> block(static_cast<std::size_t>(block_frames) * channels());
         for (sf_count_t done = 0; done < most_frames();) {
-            const sf_count_t frames = sf_readf_double(handle_.get(), block.data(), block_frames);
+            const sf_count_t frames = sound_library().readf_double(handle_.get(), block.data(), block_frames);
             if (frames <= 0) break;
             take(block, static_cast<std::size_t>(frames));
             done += frames;
@@ -139,7 +140,7 @@ class SoundFile {
     [[nodiscard]] std::string name_of(int format) const {
         SF_FORMAT_INFO names{};
         names.format = format;
-        if (sf_command(handle_.get(), SFC_GET_FORMAT_INFO, &names, sizeof names) != 0 ||
+        if (sound_library().command(handle_.get(), SFC_GET_FORMAT_INFO, &names, sizeof names) != 0 ||
             names.name == nullptr)
             return "";
         return names.name;
@@ -147,7 +148,7 @@ class SoundFile {
 
   private:
     struct Closer {
-        void operator()(SNDFILE* handle) const { sf_close(handle); }
+        void operator()(SNDFILE* handle) const { sound_library().close(handle); }
     };
     ByteFile file_;
     SF_INFO info_{};

@@ -297,3 +297,23 @@ TEST_CASE("help and version") {
         CHECK(help.out.find("--channel") != std::string::npos);
     }
 }
+
+TEST_CASE("a command waits for no library that it does not need") {
+    // Set, this variable makes the loader of glibc list what it loads and end (ld.so(8)).
+    const Bench bench;
+    ::setenv("LD_TRACE_LOADED_OBJECTS", "1", 1);
+    const std::string listed = bench.run({"--version"}).out;
+    ::unsetenv("LD_TRACE_LOADED_OBJECTS");
+    REQUIRE(listed.find("libc.so") != std::string::npos);
+    for (const char* library : {"libsndfile", "libFLAC", "libcairo", "libpango", "libplplot"}) {
+        INFO(library);
+        CHECK(listed.find(library) == std::string::npos);
+    }
+}
+
+TEST_CASE("a word that names a command is a file behind another command") {
+    const Bench bench;
+    const Outcome outcome = bench.run({"identify", "verify"});
+    CHECK(outcome.status == 3);
+    CHECK(outcome.err.find("there is no such file") != std::string::npos);
+}
