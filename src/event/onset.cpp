@@ -16,43 +16,89 @@ constexpr double weakest = 0.02;           ///< activity against the largest of 
 constexpr std::size_t most_places = 1500;  ///< per level
 constexpr double least_explained = 3.0;    ///< explained to residual sum of squares of a trial fit
 
-/// Range of the `reach` blocks from k on.
-std::vector<double> activity_of(std::span<const double> means) {
-    std::vector<double> activity(means.size() >= reach ? means.size() - reach + 1 : 0);
-    for (std::size_t k = 0; k < activity.size(); ++k) {
-        const auto [low, high] = std::minmax_element(means.begin() + static_cast<std::ptrdiff_t>(k),
-                                                     means.begin() + static_cast<std::ptrdiff_t>(k + reach));
-        activity[k] = *high - *low;
-    }
-    return activity;
-}
-
 struct Place {
     std::size_t block = 0;
     double activity = 0.0;
 };
 
-std::vector<Place> places_of(const std::vector<double>& activity) {
-    std::vector<Place> places;
-    if (activity.empty()) return places;
-    const double largest = *std::max_element(activity.begin(), activity.end());
-    if (!(largest > 0.0)) return places;
-    places.push_back({0, activity.front()});
+/// Ranges of the `reach` = 8 blocks from each block of a stretch on: a stretch of a long recording at a time,
+/// so that they need no memory as long as the recording.
+class Activity {
+  public:
+    explicit Activity(std::span<const double> means) : means_(means) {}
+
+    [[nodiscard]] std::size_t size() const { return means_.size() >= reach ? means_.size() - reach + 1 : 0; }
+
+    /// Of the blocks [begin, end); holds until the next call.
+    std::span<const double> of(std::size_t begin, std::size_t end) {
+        const std::size_t count = end - begin;
+        low_.assign(means_.begin() + static_cast<std::ptrdiff_t>(begin),
+                    means_.begin() + static_cast<std::ptrdiff_t>(end + reach - 1));
+        high_ = low_;
+        // Over 2, 4 and 8 blocks.
+        for (const std::size_t apart : {std::size_t{1}, std::size_t{2}, std::size_t{4}})
+            for (std::size_t k = 0; k + apart < low_.size(); ++k) {
+                low_[k] = low_[k + apart] < low_[k] ? low_[k + apart] : low_[k];
+                high_[k] = high_[k + apart] > high_[k] ? high_[k + apart] : high_[k];
+            }
+        for (std::size_t k = 0; k < count; ++k) high_[k] -= low_[k];
+        return {high_.data(), count};
+    }
+
+  private:
+    std::span<const double> means_;
+    std::vector<double> low_, high_;
+};
+
+constexpr std::size_t stretch_blocks = 16384;
+
+double largest_of(Activity& activity) {
+    double largest = 0.0;
+    for (std::size_t begin = 0; begin < activity.size(); begin += stretch_blocks)
+        for (const double range : activity.of(begin, std::min(begin + stretch_blocks, activity.size())))
+            largest = std::max(largest, range);
+    return largest;
+}
+
+/// How many times the activity at block k is that before it; 0 where it is weak. `at` is the activity from
+/// the block `first` on, which lies `reach + memory` before k or is the first of all.
+double ratio_at(std::span<const double> at, std::size_t first, std::size_t k, double largest) {
+    const double here = at[k - first];
+    if (k < 2 || here < weakest * largest) return 0.0;
+    double before = k >= reach ? at[k - reach - first] : at[0] * static_cast<double>(k) / reach;
+    for (std::size_t i = k > memory ? k - memory : 0; i + reach < k; ++i)
+        before = std::max(before, at[i - first]);
+    return here / (before + 1e-6 * largest);
+}
+
+/// Adds the places in [begin, end).
+void add_places(Activity& activity, std::size_t begin, std::size_t end, double largest,
+                std::vector<Place>& places) {
     const std::size_t n = activity.size();
-    std::vector<double> ratio(n, 0.0);
-    for (std::size_t k = 2; k < n; ++k) {
-        if (activity[k] < weakest * largest) continue;
-        double before = k >= reach ? activity[k - reach] : activity[0] * static_cast<double>(k) / reach;
-        for (std::size_t i = k > memory ? k - memory : 0; i + reach < k; ++i)
-            before = std::max(before, activity[i]);
-        ratio[k] = activity[k] / (before + 1e-6 * largest);
+    const std::size_t first_ratio = begin > reach ? begin - reach : 0;
+    const std::size_t first = first_ratio > memory + reach ? first_ratio - memory - reach : 0;
+    const std::size_t last = std::min(n, end + reach);
+    const std::span<const double> at = activity.of(first, last);
+    std::vector<double> ratio(last - first_ratio);
+    for (std::size_t k = first_ratio; k < last; ++k) ratio[k - first_ratio] = ratio_at(at, first, k, largest);
+    for (std::size_t k = std::max<std::size_t>(begin, 2); k < end; ++k) {
+        const double here = ratio[k - first_ratio];
+        if (here < rise) continue;
+        const auto from = static_cast<std::ptrdiff_t>((k > reach ? k - reach : 0) - first_ratio);
+        const auto to = static_cast<std::ptrdiff_t>(std::min(n, k + reach + 1) - first_ratio);
+        if (here >= *std::max_element(ratio.begin() + from, ratio.begin() + to))
+            places.push_back({k, at[k - first]});
     }
-    for (std::size_t k = 2; k < n; ++k) {
-        if (ratio[k] < rise) continue;
-        const auto from = ratio.begin() + static_cast<std::ptrdiff_t>(k > reach ? k - reach : 0);
-        const auto to = ratio.begin() + static_cast<std::ptrdiff_t>(std::min(n, k + reach + 1));
-        if (ratio[k] >= *std::max_element(from, to)) places.push_back({k, activity[k]});
-    }
+}
+
+std::vector<Place> places_of(std::span<const double> means) {
+    std::vector<Place> places;
+    Activity activity(means);
+    const double largest = largest_of(activity);
+    if (!(largest > 0.0)) return places;
+    places.push_back({0, activity.of(0, 1).front()});
+    for (std::size_t begin = 0; begin < activity.size(); begin += stretch_blocks)
+        add_places(activity, begin, std::min(begin + stretch_blocks, activity.size()), largest, places);
     const auto stronger = [](const Place& a, const Place& b) { return a.activity > b.activity; };
     if (places.size() > most_places) {
         std::nth_element(places.begin(), places.begin() + most_places, places.end(), stronger);
@@ -113,7 +159,7 @@ std::vector<Onset> find_onsets(const Pyramid& pyramid) {
     std::vector<Onset> onsets;
     for (std::size_t level = 0; level < pyramid.levels(); ++level) {
         const std::span<const double> means = pyramid.level(level);
-        for (const Place& place : places_of(activity_of(means))) {
+        for (const Place& place : places_of(means)) {
             if (hopeless(means, place)) continue;
             if (const auto onset = onset_at(pyramid, level, place.block)) onsets.push_back(*onset);
         }

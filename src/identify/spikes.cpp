@@ -2,8 +2,11 @@
 
 #include <fmt/format.h>
 
+#include <Eigen/QR>
 #include <algorithm>
+#include <bit>
 #include <cmath>
+#include <cstdint>
 #include <iterator>
 #include <utility>
 #include <vector>
@@ -23,26 +26,103 @@ constexpr double always_allowed = 4.0;
 constexpr std::size_t longest_spike = 3;  // samples
 constexpr std::size_t alone = 20;         // samples to the next one
 
+// The model at full sampling rate, a piece of the window at a time: columns for all of a long window would
+// take ten times its memory.
+class FullRate {
+  public:
+    explicit FullRate(const CurveFit& fit) : window_(fit.window), model_(fit.fit.model) {
+        span_ = std::max(window_.time_of(window_.size() - 1), 1.0 / window_.rate_hz);
+        // The fit's coefficients hold for block means; at full rate they are solved anew.
+        coefficients_ = size() <= piece
+                            ? solve_linear(model_, samples(0, size()), AutoregressiveNoise{}).coefficients
+                            : solved_in_pieces();
+    }
+
+    [[nodiscard]] VectorXd residual() const {
+        VectorXd all(size());
+        for (Index at = 0; at < size(); at += piece) {
+            const Index count = std::min(piece, size() - at);
+            all.segment(at, count) = value(at, count) - columns(at, count) * coefficients_;
+        }
+        return all;
+    }
+
+  private:
+    static constexpr Index piece = 16384;
+
+    [[nodiscard]] Index size() const { return static_cast<Index>(window_.size()); }
+
+    [[nodiscard]] Eigen::Map<const VectorXd> value(Index begin, Index count) const {
+        return {window_.value.data() + begin, count};
+    }
+
+    [[nodiscard]] DecaySamples samples(Index begin, Index count) const {
+        DecaySamples part;
+        part.time.resize(count);
+        for (Index i = 0; i < count; ++i) part.time(i) = window_.time_of(static_cast<std::size_t>(begin + i));
+        part.step_s = 1.0 / window_.rate_hz;
+        part.value = value(begin, count);
+        part.stretches = {{0, count}};
+        return part;
+    }
+
+    [[nodiscard]] Eigen::MatrixXd columns(Index begin, Index count) const {
+        const DecaySamples part = samples(begin, count);
+        Eigen::MatrixXd all = linear_columns(model_, part);
+        // The drift runs to 1 at the end of the window, not of the piece.
+        if (model_.drift) all.col(1) *= std::max(part.time.maxCoeff(), part.step_s) / span_;
+        return all;
+    }
+
+    // The triangle of all pieces from that of those before and one more (sequential QR; Golub & Van Loan,
+    // Matrix Computations, 4th ed., 5.2 and 6.5): the same least squares as that of all rows at once.
+    [[nodiscard]] VectorXd solved_in_pieces() const {
+        const Index width = model_.linear_count() + 1;
+        Eigen::MatrixXd triangle = Eigen::MatrixXd::Zero(width, width);
+        for (Index at = 0; at < size(); at += piece) {
+            const Index count = std::min(piece, size() - at);
+            Eigen::MatrixXd rows(width + count, width);
+            rows.topRows(width) = triangle;
+            rows.bottomLeftCorner(count, width - 1) = columns(at, count);
+            rows.bottomRightCorner(count, 1) = value(at, count);
+            const Eigen::HouseholderQR<Eigen::Ref<Eigen::MatrixXd>> factor(rows);
+            triangle = rows.topRows(width).triangularView<Eigen::Upper>();
+        }
+        return triangle.topLeftCorner(width - 1, width - 1)
+            .triangularView<Eigen::Upper>()
+            .solve(triangle.topRightCorner(width - 1, 1));
+    }
+
+    const DecayWindow& window_;
+    const DecayModel& model_;
+    double span_ = 1.0;
+    VectorXd coefficients_;
+};
+
 VectorXd residual_at_full_rate(const CurveFit& fit) {
-    DecaySamples full;
-    const auto n = static_cast<Index>(fit.window.size());
-    full.time.resize(n);
-    for (Index i = 0; i < n; ++i) full.time(i) = fit.window.time_of(static_cast<std::size_t>(i));
-    full.step_s = 1.0 / fit.window.rate_hz;
-    // The fit's coefficients hold for block means; at full rate they are solved anew.
-    DecayWindow unclipped = fit.window;
-    full.value = Eigen::Map<const VectorXd>(unclipped.value.data(), n);
-    full.stretches = {{0, n}};
-    const ProjectedFit solved = solve_linear(fit.fit.model, full, AutoregressiveNoise{});
-    return full.value - linear_columns(solved.model, full) * solved.coefficients;
+    return FullRate(fit).residual();
+}
+
+// The value at place size/2 of the sizes in order, found among those that share its leading 16 bits: the bits
+// of positive numbers stand in the order of the numbers.
+double median_size(const VectorXd& values) {
+    const auto leading = [](double v) { return std::bit_cast<std::uint64_t>(std::abs(v)) >> 48U; };
+    std::vector<std::size_t> counts(std::size_t{1} << 16U, 0);
+    for (const double v : values) ++counts[leading(v)];
+    std::size_t bin = 0, before = 0;
+    const auto middle = static_cast<std::size_t>(values.size() / 2);
+    while (before + counts[bin] <= middle) before += counts[bin++];
+    std::vector<double> sharing;
+    sharing.reserve(counts[bin]);
+    for (const double v : values)
+        if (leading(v) == bin) sharing.push_back(std::abs(v));
+    const auto place = sharing.begin() + static_cast<std::ptrdiff_t>(middle - before);
+    std::nth_element(sharing.begin(), place, sharing.end());
+    return *place;
 }
 
 double robust_deviation(const VectorXd& residual) {
-    std::vector<double> size(residual.begin(), residual.end());
-    for (double& r : size) r = std::abs(r);
-    const auto middle = size.begin() + static_cast<std::ptrdiff_t>(size.size() / 2);
-    std::nth_element(size.begin(), middle, size.end());
-    return *middle / 0.6744897501960817;
+    return median_size(residual) / 0.6744897501960817;
 }
 
 // Runs of at most three samples beyond the limit that stand alone: where many stand together, the model is
