@@ -6,6 +6,7 @@
 #include <complex>
 #include <cstddef>
 #include <numbers>
+#include <numeric>
 
 namespace ringwright::event_search {
 namespace {
@@ -31,16 +32,49 @@ Pieces pieces_of(std::size_t size, double line) {
     return pieces;
 }
 
+/// Phasors of neighbouring values that turn on together, so that none waits for the one before.
+template <std::size_t lanes>
+struct Phasors {
+    std::array<double, lanes> real{}, imaginary{};
+
+    /// At start, start + turn …; each step is as long as all lanes.
+    Phasors(double start, double turn) : step_(std::polar(1.0, turn * static_cast<double>(lanes))) {
+        for (std::size_t lane = 0; lane < lanes; ++lane) {
+            real[lane] = std::cos(start + turn * static_cast<double>(lane));
+            imaginary[lane] = std::sin(start + turn * static_cast<double>(lane));
+        }
+    }
+    void advance() {
+        for (std::size_t lane = 0; lane < lanes; ++lane) {
+            const double next = real[lane] * step_.real() - imaginary[lane] * step_.imag();
+            imaginary[lane] = real[lane] * step_.imag() + imaginary[lane] * step_.real();
+            real[lane] = next;
+        }
+    }
+
+  private:
+    Complex step_;
+};
+
 /// Amplitude and phase (at the first value of the recording) of a line in one piece, under a Hann window.
 Complex line_in(std::span<const double> values, std::size_t first, std::size_t length, double line) {
+    constexpr std::size_t lanes = 8;
+    const std::span<const double> piece = values.subspan(first, length);
     double mean = 0.0;
-    for (std::size_t k = 0; k < length; ++k) mean += values[first + k] / static_cast<double>(length);
-    const double turn = 2.0 * std::numbers::pi * line,
-                 bell = 2.0 * std::numbers::pi / static_cast<double>(length);
-    Complex sum = 0.0, phasor = std::polar(1.0, -turn * static_cast<double>(first)), window = 1.0;
-    const Complex step = std::polar(1.0, -turn), window_step = std::polar(1.0, bell);
-    for (std::size_t k = 0; k < length; ++k, phasor *= step, window *= window_step)
-        sum += (values[first + k] - mean) * (1.0 - window.real()) * phasor;
+    for (const double value : piece) mean += value;
+    mean /= static_cast<double>(length);
+    const double turn = -2.0 * std::numbers::pi * line;
+    Phasors<lanes> phasor(turn * static_cast<double>(first), turn);
+    Phasors<lanes> window(0.0, 2.0 * std::numbers::pi / static_cast<double>(length));
+    std::array<double, lanes> real{}, imaginary{};
+    for (std::size_t k = 0; k < length; k += lanes, phasor.advance(), window.advance())
+        for (std::size_t lane = 0; lane < std::min(lanes, length - k); ++lane) {
+            const double weighted = (piece[k + lane] - mean) * (1.0 - window.real[lane]);
+            real[lane] += weighted * phasor.real[lane];
+            imaginary[lane] += weighted * phasor.imaginary[lane];
+        }
+    const Complex sum(std::accumulate(real.begin(), real.end(), 0.0),
+                      std::accumulate(imaginary.begin(), imaginary.end(), 0.0));
     return 2.0 * sum / static_cast<double>(length);
 }
 

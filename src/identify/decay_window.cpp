@@ -61,7 +61,8 @@ DecayWindow cut_window(const Recording& recording, std::size_t begin, std::size_
     window.begin = begin;
     window.rate_hz = recording.clock.sample_rate_hz;
     const auto first = static_cast<std::ptrdiff_t>(begin), last = static_cast<std::ptrdiff_t>(end);
-    window.value.assign(recording.samples.begin() + first, recording.samples.begin() + last);
+    window.value = WindowValues(
+        std::vector<double>(recording.samples.begin() + first, recording.samples.begin() + last));
     if (!recording.clock.uniform()) {
         window.time_s.assign(recording.clock.times_s.begin() + first, recording.clock.times_s.begin() + last);
         const double start = window.time_s.empty() ? 0.0 : window.time_s.front();
@@ -105,13 +106,14 @@ DecaySamples block_means(const DecayWindow& window, Index block) {
     samples.time.resize(count);
     samples.value.resize(count);
     const bool fine = block > 1 && !window.time_s.empty();
+    const double* value = window.value.data();
     if (fine) samples.fine_time.resize(count * block);
     Index at = 0;
     for (const SampleRange& run : window.runs) {
         for (std::size_t i = run.begin; i + width <= run.end; i += width, ++at) {
             double sum = 0.0, time = 0.0;
             for (std::size_t j = i; j < i + width; ++j) {
-                sum += window.value[j];
+                sum += value[j];
                 time += window.time_of(j);
                 if (fine) samples.fine_time(at * block + static_cast<Index>(j - i)) = window.time_of(j);
             }

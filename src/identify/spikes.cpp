@@ -199,7 +199,7 @@ bool replace_spikes(CurveFit& fit) {
             ++count;
         }
         const double around = count > 0 ? sum / count : 0.0;
-        fit.window.value[spike] += around - residual(static_cast<Index>(spike));
+        fit.window.value.add_to(spike, around - residual(static_cast<Index>(spike)));
     }
     tell_spikes(fit, spikes);
     return true;
