@@ -1,5 +1,7 @@
 #include "identify/held_release.hpp"
 
+#include <fmt/format.h>
+
 #include <algorithm>
 #include <array>
 #include <cmath>
@@ -166,6 +168,16 @@ std::optional<HeldRelease> fit_held_release(const CurveFit& fit, const Recording
     release.uncertainty_s = release_uncertainty(*held);
     release.release_s = recording.clock.time_of(held->window.begin) + *held->fit.model.release;
     held->findings = fit.findings;
+    std::erase_if(held->findings, [](const Finding& finding) {
+        return finding.code == "drift" || finding.code == "slow_exponential";
+    });
+    held->findings.push_back(
+        {"release_hidden", Severity::note,
+         fmt::format(
+             "Noise hides when the article was let go; plateau, release and decay were fitted together "
+             "(release at {:.4g} s, standard uncertainty {:.2g} s), and the intervals contain that. Less "
+             "noise or a larger displacement narrows them.",
+             release.release_s, release.uncertainty_s)});
     release.curve = std::move(*held);
     return release;
 }
