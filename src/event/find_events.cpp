@@ -152,6 +152,8 @@ std::optional<Found> follow_onset(const Search& search, const Onset& onset, Star
         }
     }
     // Among many modes two do not explain the recording.
+    if (!search.mode_meant && start->noise_rms > misfit_of_short * start->amplitude)
+        explained_by_two(search.pyramid, *start, course.rest_end);
     if (!search.mode_meant) go_back_jointly(search.pyramid, *start, limits);
     return Found{*start, course, 0, 0, {}, {}, false};
 }

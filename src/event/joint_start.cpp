@@ -35,11 +35,15 @@ double rms_after(const Look& look) {
     return fit ? fit->residual_rms() : fit_amplitudes(points, look.shape).residual_rms();
 }
 
+std::size_t level_of_look(const Pyramid& pyramid, double cycle) {
+    return std::min(static_cast<std::size_t>(std::log2(std::max(1.0, cycle / blocks_a_cycle))),
+                    pyramid.levels() - 1);
+}
+
 std::optional<Look> look_at(const Pyramid& pyramid, const Start& start, const StartLimits& limits) {
     Look look;
     const double cycle = 2.0 * std::numbers::pi / start.shape.undamped_angular_frequency;
-    look.level = std::min(static_cast<std::size_t>(std::log2(std::max(1.0, cycle / blocks_a_cycle))),
-                          pyramid.levels() - 1);
+    look.level = level_of_look(pyramid, cycle);
     look.values = pyramid.level(look.level);
     look.shape = at_level(start.shape, 0, look.level);
     look.cycle = 2.0 * std::numbers::pi / look.shape.undamped_angular_frequency;
@@ -127,6 +131,24 @@ std::size_t refine(const Look& look, const Candidate& candidate) {
 }
 
 }  // namespace
+
+bool explained_by_two(const Pyramid& pyramid, Start& start, std::size_t limit) {
+    constexpr double ringing = 0.1, left_of_single = 0.35, left_of_amplitude = 0.06;
+    if (start.shape.damping_ratio > most_damping) return false;
+    const double cycle = 2.0 * std::numbers::pi / start.shape.undamped_angular_frequency;
+    const std::size_t level = level_of_look(pyramid, cycle), block = std::size_t{1} << level;
+    const std::size_t first = (start.position + block - 1) >> level;
+    const std::size_t last = std::min(limit, start.position + static_cast<std::size_t>(cycles_after * cycle));
+    if ((last >> level) < first + 16) return false;
+    const std::span<const double> points = pyramid.level(level).subspan(first, (last >> level) - first);
+    const std::optional<TwoTermFit> two = fit_two_terms(points, at_level(start.shape, 0, level));
+    if (!two || !apart(*two) || two->second.damping_ratio > ringing) return false;
+    const double left = two->residual_rms();
+    if (left > left_of_single * start.noise_rms || left > left_of_amplitude * start.amplitude) return false;
+    start.companion = at_level(two->second, level, 0);
+    start.noise_rms = left;
+    return true;
+}
 
 void go_back_jointly(const Pyramid& pyramid, Start& start, const StartLimits& limits) {
     if (start.shape.damping_ratio > most_damping || limits.drop || !moves_before(pyramid, start)) return;

@@ -12,5 +12,8 @@ namespace ringwright::event_search {
 /// answer of an AC-coupled sensor. Leaves a start alone that is preceded by rest, or by what two decays do
 /// not explain either (a second hit).
 void go_back_jointly(const Pyramid& pyramid, Start& start, const StartLimits& limits);
+/// Whether a second ringing decay explains most of what the first leaves over its first three cycles, up to
+/// `limit`: then it becomes the start's companion, and noise_rms what both leave.
+bool explained_by_two(const Pyramid& pyramid, Start& start, std::size_t limit);
 
 }  // namespace ringwright::event_search

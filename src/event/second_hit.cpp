@@ -96,10 +96,13 @@ bool rings_before(const Pyramid& pyramid, const Start& start) {
 
 bool moves_before(const Pyramid& pyramid, const Start& start) {
     constexpr double shortest = 0.35, moves_share = 0.15;
-    if (start.from_rest) return false;
+    // Beside another mode a crest of the one may pass for a plateau.
+    if (start.from_rest && !start.companion) return false;
     const std::span<const double> means = pyramid.level(start.level);
     const std::size_t block = std::min(start.position >> start.level, means.size());
-    const double moves = moves_share * start.amplitude + 5.0 * start.fit.residual_rms();
+    // What one decay leaves where two are known is the other, and no noise.
+    const double noise = start.companion ? start.noise_rms : start.fit.residual_rms();
+    const double moves = moves_share * start.amplitude + 5.0 * noise;
     const std::size_t since = motion_begins(means, block, cycle_of(start.fit.shape), moves);
     return static_cast<double>(block - since) > shortest * static_cast<double>(cycle_of(start.fit.shape));
 }

@@ -104,6 +104,36 @@ TEST_CASE("two close modes that beat are one event, followed through the minima 
     }
 }
 
+// A mode of two fifths of the amplitude leaves more unexplained by the other alone than a single decay may
+// leave. Held until the release, as a displacement shows it.
+TEST_CASE("a release of two modes far apart is an event, the second as strong as two fifths of the first") {
+    for (const auto& [first, second] : {std::pair{Mode{9.5, 0.05}, Mode{27.9, 0.01}},
+                                        {Mode{9.8, 0.05}, Mode{39.8, 0.01}},
+                                        {Mode{5.0, 0.1}, Mode{14.0, 0.01}}}) {
+        INFO(first.frequency_hz << " and " << second.frequency_hz << " Hz");
+        constexpr double released_s = 1.2, rate_hz = 1000.0, share = 0.4;
+        std::vector<double> samples(5000);
+        for (std::size_t i = 0; i < samples.size(); ++i) {
+            const double t = static_cast<double>(i) / rate_hz - released_s;
+            samples[i] = t < 0.0 ? 1.0 + share
+                                 : simulator::free_decay(first, 1.0, 0.0, t).x +
+                                       share * simulator::free_decay(second, 1.0, 0.0, t).x;
+        }
+        Generator generator(609);
+        simulator::add_noise(samples, 1.0 + share, rate_hz, Noise{45.0}, generator);
+        Simulated truth =
+            simulator::with_samples(std::move(samples), rate_hz, MeasuredQuantity::displacement);
+        truth.begins = {1200}, truth.samples_per_cycle = rate_hz / first.frequency_hz;
+        const EventSearch search = find_events(truth.recording);
+        REQUIRE(search.events.size() == 1);
+        CHECK(std::abs(error_cycles(truth, search.events[0])) < 0.42);  // as above
+        CHECK_FALSE(has_finding(search.events[0], "double_hit"));
+        // Start values for the fit.
+        CHECK(search.events[0].frequency_guess_hz == Approx(first.frequency_hz).epsilon(0.02));
+        CHECK(search.events[0].companion_hz == Approx(second.frequency_hz).epsilon(0.02));
+    }
+}
+
 TEST_CASE("a second strike on two close modes is a second event, in a minimum of the beat or not") {
     for (const double after_s : {1.5, 1.82, 2.05, 2.27}) {
         INFO("struck again after " << after_s << " s");
