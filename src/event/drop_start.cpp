@@ -94,24 +94,43 @@ double sum_about_flight(std::span<const double> points, MeasuredQuantity quantit
     return std::max(squares, 0.0);
 }
 
-/// Whether flight and decay apart explain the recording better than a decay that began with the flight, by
-/// more than their three further numbers would.
-bool is_flight(const Look& look, const Flight& flight, const After& after, MeasuredQuantity quantity) {
-    constexpr double surprising = 25.0;
-    const std::size_t begin = look.block_at(flight.begin), end = flight.end >> look.level;
-    if (end < begin + 4 || after.first <= begin) return true;
-    const std::optional<After> whole = fit_after(look, begin, after.fit.shape);
-    if (!whole) return true;
-    const double apart =
-        sum_about_flight(look.values.subspan(begin, end - begin), quantity) + after.fit.residual_sum;
-    double together = 0.0;
+/// Sum of squares of flight and decay where the mass was held still up to block `release` and swung from
+/// there on. Nothing where that cannot be fitted.
+std::optional<double> sum_of_release(const Look& look, std::size_t begin, std::size_t end,
+                                     std::size_t release, const After& after) {
+    const std::optional<After> whole = fit_after(look, release, after.fit.shape);
+    if (!whole) return {};
+    double together = 0.0, mean = 0.0;
+    for (std::size_t k = begin; k < release; ++k)
+        mean += look.values[k] / static_cast<double>(release - begin);
     for (std::size_t k = begin; k < look.end; ++k) {
         if (k >= end && k < after.first) continue;
-        const double r = look.values[k] - whole->value_at(k);
+        const double r = look.values[k] - (k < release ? mean : whole->value_at(k));
         together += r * r;
     }
+    return together;
+}
+
+/// Whether flight and decay apart explain the recording better than a decay that began with the flight, or
+/// within it after a hold, by more than their three further numbers would. An accelerometer shows the same
+/// level in a hold as in a flight.
+bool is_flight(const Look& look, const Flight& flight, const After& after, MeasuredQuantity quantity) {
+    constexpr double surprising = 25.0;
+    constexpr std::size_t releases = 12;
+    const std::size_t begin = look.block_at(flight.begin), end = flight.end >> look.level;
+    if (end < begin + 4 || after.first <= begin) return true;
+    const double apart =
+        sum_about_flight(look.values.subspan(begin, end - begin), quantity) + after.fit.residual_sum;
     const auto spare = static_cast<double>(end - begin + after.fit.points) - 8.0;
-    return together - apart > 3.0 * surprising * apart / std::max(spare, 4.0);
+    const double more = 3.0 * surprising * apart / std::max(spare, 4.0);
+    const bool held = quantity == MeasuredQuantity::displacement;
+    const std::size_t step = held ? std::max<std::size_t>(1, (end - begin) / releases) : end - begin;
+    for (std::size_t release = begin; release < end; release += step) {
+        const std::optional<double> together = sum_of_release(look, begin, end, release, after);
+        if (!together && release == begin) return true;
+        if (together && *together - apart <= more) return false;
+    }
+    return true;
 }
 
 /// Push of spring and damper as the recording shows it at each block: how far a displacement lies below first
@@ -235,13 +254,17 @@ std::optional<Start> locate_drop_start(const Pyramid& pyramid, Fall& fall, Measu
     while (!fall.flights.empty()) {
         const std::size_t end = fall.flights.back().end;
         const std::optional<Onset> onset = onset_after(pyramid, end, limits.latest);
-        if (!onset) return {};
-        const Look look = look_at(pyramid, rate_hz, *onset, limits.latest);
-        const DecayShape shape = at_level(onset->fit.shape, onset->level, look.level);
-        const std::optional<After> after = after_last(look, fall, shape, quantity);
-        if (!after) return {};
-        if (is_flight(look, fall.flights.back(), *after, quantity))
-            return to_start(pyramid, look, *after, first_value(pyramid, look, fall, *after, quantity));
+        if (onset) {
+            const Look look = look_at(pyramid, rate_hz, *onset, limits.latest);
+            const DecayShape shape = at_level(onset->fit.shape, onset->level, look.level);
+            const std::optional<After> after = after_last(look, fall, shape, quantity);
+            if (after && is_flight(look, fall.flights.back(), *after, quantity))
+                return to_start(pyramid, look, *after, first_value(pyramid, look, fall, *after, quantity));
+            if (!after && fall.flights.size() == 1) return {};
+        } else if (fall.flights.size() == 1) {
+            return {};
+        }
+        // Noise after the decay, or a crest of it, may pass for a flight; the fall itself stays.
         fall.flights.pop_back();
     }
     return {};

@@ -13,8 +13,8 @@ namespace ringwright::event_search {
 namespace {
 
 constexpr double standard_gravity = 9.80665;  // m/s²
-/// What the decay may leave unexplained, as a share of its amplitude.
-constexpr double misfit = 0.125;
+/// What the decay may leave unexplained: as a share of its amplitude, or against the noise in the fall.
+constexpr double misfit = 0.125, misfit_to_noise = 1.5;
 constexpr double least_amplitude = 3.0;  ///< against the noise
 constexpr std::size_t shortest_decay = 14;
 /// Departure of what an accelerometer shows at rest from gravity, as a share of it.
@@ -48,16 +48,28 @@ std::string refusal_of_rest(const Fall& fall, double rest) {
         weight_at(fall, rest));
 }
 
+/// Whether what follows a fall that hardly stands out of the noise creeps to rest: a hand or a slipping clamp
+/// sets off as abruptly.
+bool creeps_after_a_hint(const Found& drop, const Fall& fall, double rate_hz) {
+    constexpr double creeps = 0.7, plain = 15.0;
+    const Flight& first = fall.flights.front();
+    const double time = static_cast<double>(first.end - first.begin) / rate_hz;
+    const double bow = first.acceleration * time * time / 8.0;
+    return drop.start.shape.damping_ratio > creeps && bow < plain * first.noise;
+}
+
 /// Why what follows a fall is no decay of a mass on a spring; empty when it is one.
-std::string refusal_of(const Found& drop, const Fall& fall, MeasuredQuantity quantity) {
+std::string refusal_of(const Found& drop, const Fall& fall, MeasuredQuantity quantity, double rate_hz) {
     const Start& start = drop.start;
     if (quantity == MeasuredQuantity::acceleration &&
         std::abs(weight_at(fall, start.fit.offset) - 1.0) > off_rest)
         return "but what follows the impact does not swing about the rest position";
     const bool over = drop.course.end < drop.begin() + shortest_decay;
     if (over || start.amplitude < least_amplitude * start.noise_rms ||
-        start.noise_rms > misfit * start.amplitude)
+        start.noise_rms > std::max(misfit * start.amplitude, misfit_to_noise * fall.flights.front().noise))
         return "but what follows the impact does not swing about a rest position as a mass on a spring does";
+    if (quantity == MeasuredQuantity::displacement && creeps_after_a_hint(drop, fall, rate_hz))
+        return "but what follows the impact creeps to rest, and the noise hides whether anything fell";
     if (start.shape.damping_ratio < 0.5 && !drop.course.falls())
         return "but the motion after the impact does not die away";
     return {};
@@ -93,7 +105,7 @@ Drops find_drops(const Pyramid& pyramid, double rate_hz, MeasuredQuantity quanti
             drop.course = follow_decay(pyramid, drop.start, limits.latest);
             drop.flights = fall.flights;
             drop.hold_seen = fall.hold_seen;
-            reason = refusal_of(drop, fall, quantity);
+            reason = refusal_of(drop, fall, quantity, rate_hz);
         }
         if (!reason.empty() && quantity == MeasuredQuantity::acceleration) {
             const double rest =

@@ -12,9 +12,11 @@ constexpr double standard_gravity = 9.80665;  // m/s² (NIST SP 811, appendix B.
 /// What gravity as recorded may differ by: the error of a sensor's scale, a slope, friction in a guide.
 constexpr double tolerance = 0.15;
 constexpr double block_s = 0.0025, window_s = 0.025;
-constexpr std::size_t fewest_blocks = 8, window_sizes = 4;
-/// Height of the bow, or of the ramp, against the scatter about it.
-constexpr double plain = 15.0;
+constexpr std::size_t fewest_blocks = 8, window_sizes = 7;
+constexpr double next_window = 1.42;  // times the one before
+/// Height of the bow, or of the ramp, against the scatter about it, and against its own uncertainty under
+/// white scatter: either will do.
+constexpr double plain = 15.0, plain_to_tell = 8.0;
 
 /// c0 + c1·x + c2·x², x in blocks from the middle of the points.
 struct Curve {
@@ -53,7 +55,38 @@ struct Blocks {
     double step_s = 0.0;
     std::size_t window = 0;  ///< the shortest
     bool bent = true;        ///< displacement: a parabola; velocity: a straight line
+    double quiet = 0.0;      ///< scatter where the recording is at its quietest
 };
+
+/// A stretch that stays level.
+struct Plateau {
+    std::size_t begin = 0, end = 0;  ///< blocks
+    double level = 0.0, rms = 0.0;
+};
+
+Plateau level_of(const Blocks& blocks, std::size_t begin, std::size_t end) {
+    Plateau plateau{begin, end, 0.0, 0.0};
+    const auto n = static_cast<double>(end - begin);
+    for (std::size_t i = begin; i < end; ++i) plateau.level += blocks.means[i] / n;
+    for (std::size_t i = begin; i < end; ++i)
+        plateau.rms += (blocks.means[i] - plateau.level) * (blocks.means[i] - plateau.level) / (n - 1.0);
+    plateau.rms = std::sqrt(plateau.rms);
+    return plateau;
+}
+
+/// Scatter of the blocks where the recording is at its quietest: the lower third of its stretches of a tenth
+/// of a second.
+double quiet_scatter(const Blocks& blocks) {
+    constexpr double stretch_s = 0.1;
+    const auto length = std::max(fewest_blocks, static_cast<std::size_t>(stretch_s / blocks.step_s));
+    std::vector<double> scatters;
+    for (std::size_t k = 0; k + length <= blocks.means.size(); k += length)
+        scatters.push_back(level_of(blocks, k, k + length).rms);
+    if (scatters.empty()) return 0.0;
+    const auto third = scatters.begin() + static_cast<std::ptrdiff_t>(scatters.size() / 3);
+    std::nth_element(scatters.begin(), third, scatters.end());
+    return *third;
+}
 
 Blocks blocks_of(const Pyramid& pyramid, double rate_hz, bool bent) {
     Blocks blocks;
@@ -64,6 +97,7 @@ Blocks blocks_of(const Pyramid& pyramid, double rate_hz, bool bent) {
     blocks.step_s = std::ldexp(1.0, static_cast<int>(blocks.level)) / rate_hz;
     blocks.window = std::max(fewest_blocks, static_cast<std::size_t>(std::ceil(window_s / blocks.step_s)));
     blocks.bent = bent;
+    blocks.quiet = quiet_scatter(blocks);
     return blocks;
 }
 
@@ -96,11 +130,39 @@ struct Stretch {
     Curve curve;
 };
 
-/// The stretch from `begin` to `end`, as far on either side as the curve goes on.
+/// Standard deviation of a bow's or a ramp's height, against the scatter of the points about it.
+double height_scatter(const Blocks& blocks, std::size_t count) {
+    const double share = blocks.bent ? std::sqrt(180.0) / 4.0 : std::sqrt(12.0) / 2.0;
+    return share / std::sqrt(static_cast<double>(count));
+}
+
+/// Whether it bends as gravity bends it, with no more scatter than noise.
+bool falls_in_noise(const Blocks& blocks, const Stretch& stretch) {
+    constexpr double as_quiet = 1.5;
+    const std::size_t count = stretch.end - stretch.begin;
+    return like_gravity(acceleration_of(blocks, stretch.curve)) &&
+           stretch.curve.rms < as_quiet * blocks.quiet &&
+           height_of(blocks, count) > plain_to_tell * height_scatter(blocks, count) * stretch.curve.rms;
+}
+
+/// Whether it bends as gravity bends it, plainly so whatever the noise.
+bool falls_plainly(const Blocks& blocks, const Stretch& stretch) {
+    return like_gravity(acceleration_of(blocks, stretch.curve)) &&
+           height_of(blocks, stretch.end - stretch.begin) > plain * stretch.curve.rms;
+}
+
+bool falls(const Blocks& blocks, const Stretch& stretch) {
+    return falls_plainly(blocks, stretch) || falls_in_noise(blocks, stretch);
+}
+
+/// The stretch from `begin` to `end`, as far on either side as the curve goes on: what lies beyond must
+/// neither bend it away from gravity nor scatter more.
 Stretch grow(const Blocks& blocks, std::size_t begin, std::size_t end) {
-    constexpr double share = 0.003, scatters = 4.0;
+    constexpr double share = 0.003, scatters = 4.0, more_scatter = 1.25;
     Stretch stretch{begin, end, fit_curve(blocks.means, begin, end, blocks.bent)};
+    const double scatter = std::max(stretch.curve.rms, blocks.quiet);
     for (;;) {
+        const Stretch before_growth = stretch;
         const std::size_t length = stretch.end - stretch.begin;
         const double allowed = std::max(scatters * stretch.curve.rms, share * height_of(blocks, length));
         const auto follows = [&](std::size_t k) {
@@ -115,36 +177,61 @@ Stretch grow(const Blocks& blocks, std::size_t begin, std::size_t end) {
             if (!follows(stretch.begin - 1) && !follows(stretch.begin - 2)) break;
         if (added == 0) return stretch;
         stretch.curve = fit_curve(blocks.means, stretch.begin, stretch.end, blocks.bent);
+        const double most_scatter = std::max(more_scatter * scatter, share * height_of(blocks, length));
+        if (stretch.curve.rms > most_scatter || !falls(blocks, stretch)) return before_growth;
     }
 }
 
-bool falls(const Blocks& blocks, const Stretch& stretch) {
-    return like_gravity(acceleration_of(blocks, stretch.curve)) &&
-           height_of(blocks, stretch.end - stretch.begin) > plain * stretch.curve.rms;
+/// Takes from the ends what the curve of the middle does not go on to.
+Stretch trimmed(const Blocks& blocks, const Stretch& stretch) {
+    constexpr double share = 0.003, scatters = 4.0;
+    const std::size_t length = stretch.end - stretch.begin, edge = length / 7;
+    if (length < 2 * fewest_blocks) return stretch;
+    Stretch inner{stretch.begin + edge, stretch.end - edge, {}};
+    inner.curve = fit_curve(blocks.means, inner.begin, inner.end, blocks.bent);
+    const double allowed = std::max(scatters * inner.curve.rms, share * height_of(blocks, length));
+    const auto follows = [&](std::size_t k) {
+        return std::abs(blocks.means[k] - inner.curve.at(static_cast<double>(k))) < allowed;
+    };
+    while (inner.end < stretch.end && follows(inner.end)) ++inner.end;
+    while (inner.begin > stretch.begin && follows(inner.begin - 1)) --inner.begin;
+    inner.curve = fit_curve(blocks.means, inner.begin, inner.end, blocks.bent);
+    return falls(blocks, inner) ? inner : stretch;
 }
 
+/// Adds the falls seen through windows of one length that those found before do not hold.
+void look_through(const Blocks& blocks, std::size_t window, bool (*fall)(const Blocks&, const Stretch&),
+                  std::vector<Stretch>& found) {
+    const std::size_t step = std::max<std::size_t>(1, window / 4);
+    for (std::size_t k = 0; k + window <= blocks.means.size(); k += step) {
+        if (!may_fall(blocks, k, window)) continue;
+        const Stretch seed{k, k + window, fit_curve(blocks.means, k, k + window, blocks.bent)};
+        if (!fall(blocks, seed)) continue;
+        const bool known = std::any_of(found.begin(), found.end(), [&](const Stretch& other) {
+            return k < other.end && k + window > other.begin;
+        });
+        if (known) continue;
+        const Stretch whole = trimmed(blocks, grow(blocks, seed.begin, seed.end));
+        const std::size_t middle = (whole.begin + whole.end) / 2;
+        const bool covered = std::any_of(found.begin(), found.end(), [&](const Stretch& other) {
+            return middle >= other.begin && middle < other.end;
+        });
+        if (covered || !falls(blocks, whole)) continue;
+        found.push_back(whole);
+        k = std::max(k, whole.end > step ? whole.end - step : 0);
+    }
+}
+
+/// Long windows tell a fall from noise best; short ones come last, since a swing looks like a fall to them.
 std::vector<Stretch> stretches_of(const Blocks& blocks) {
+    std::vector<std::size_t> windows;
+    for (double window = static_cast<double>(blocks.window); windows.size() < window_sizes;
+         window *= next_window)
+        windows.push_back(static_cast<std::size_t>(std::lround(window)));
     std::vector<Stretch> found;
-    for (std::size_t size = 0; size < window_sizes; ++size) {
-        const std::size_t window = blocks.window << size, step = std::max<std::size_t>(1, window / 4);
-        for (std::size_t k = 0; k + window <= blocks.means.size(); k += step) {
-            if (!may_fall(blocks, k, window)) continue;
-            const Stretch seed{k, k + window, fit_curve(blocks.means, k, k + window, blocks.bent)};
-            if (!falls(blocks, seed)) continue;
-            const bool known = std::any_of(found.begin(), found.end(), [&](const Stretch& other) {
-                return k < other.end && k + window > other.begin;
-            });
-            if (known) continue;
-            const Stretch whole = grow(blocks, seed.begin, seed.end);
-            const std::size_t middle = (whole.begin + whole.end) / 2;
-            const bool covered = std::any_of(found.begin(), found.end(), [&](const Stretch& other) {
-                return middle >= other.begin && middle < other.end;
-            });
-            if (covered || !falls(blocks, whole)) continue;
-            found.push_back(whole);
-            k = std::max(k, whole.end > step ? whole.end - step : 0);
-        }
-    }
+    for (auto window = windows.rbegin(); window != windows.rend(); ++window)
+        look_through(blocks, *window, falls_in_noise, found);
+    for (const std::size_t window : windows) look_through(blocks, window, falls_plainly, found);
     std::sort(found.begin(), found.end(),
               [](const Stretch& a, const Stretch& b) { return a.begin < b.begin; });
     return found;
@@ -166,7 +253,7 @@ Speeds speeds_of(const Blocks& blocks, const Stretch& stretch) {
 
 /// A fall begins at rest after a hold that is still; a bounce begins with the speed at which it ends.
 bool from_rest(const Blocks& blocks, const Stretch& stretch) {
-    constexpr double share_of_speed = 0.35, share_of_way = 0.1;
+    constexpr double share_of_speed = 0.3, share_of_way = 0.1, range_of_scatter = 5.0;
     const std::span<const double> y = blocks.means;
     const std::size_t length = stretch.end - stretch.begin;
     if (stretch.begin == 0) return true;
@@ -175,9 +262,11 @@ bool from_rest(const Blocks& blocks, const Stretch& stretch) {
         std::minmax_element(y.begin() + static_cast<std::ptrdiff_t>(stretch.begin - before),
                             y.begin() + static_cast<std::ptrdiff_t>(stretch.begin + 1));
     const double way = std::abs(y[stretch.end - 1] - y[stretch.begin]);
-    if (*high - *low > share_of_way * way) return false;
+    if (*high - *low > share_of_way * way + range_of_scatter * stretch.curve.rms) return false;
+    if (!blocks.bent) return true;
     const Speeds speeds = speeds_of(blocks, stretch);
-    return !blocks.bent || std::abs(speeds.begin) < share_of_speed * std::abs(speeds.end);
+    const double gained = std::copysign(speeds.end, speeds.end * stretch.curve.c2);
+    return std::abs(speeds.begin) < share_of_speed * gained;
 }
 
 Flight to_flight(const Blocks& blocks, const Stretch& stretch) {
@@ -198,37 +287,41 @@ std::vector<Fall> falls_of_motion(const Blocks& blocks) {
     return all;
 }
 
-/// A stretch of an accelerometer's record that stays level.
-struct Plateau {
-    std::size_t begin = 0, end = 0;  ///< blocks
-    double level = 0.0, rms = 0.0;
-};
+/// The window from block `k`, carried on for as long as the recording stays within `allowed` of its level:
+/// one block off it may be noise, two are the end.
+Plateau carry_on(const Blocks& blocks, std::size_t k, double allowed) {
+    const std::span<const double> y = blocks.means;
+    Plateau plateau = level_of(blocks, k, k + blocks.window);
+    const auto off = [&](std::size_t i) { return std::abs(y[i] - plateau.level) > allowed; };
+    double sum = plateau.level * static_cast<double>(blocks.window);
+    std::size_t end = plateau.end;
+    for (; end < y.size() && !(off(end) && (end + 1 >= y.size() || off(end + 1))); ++end) {
+        sum += y[end];
+        plateau.level = sum / static_cast<double>(end + 1 - k);
+    }
+    return level_of(blocks, k, end);
+}
 
 std::vector<Plateau> plateaus_of(const Blocks& blocks) {
-    constexpr double flat = 0.15 * standard_gravity;
+    constexpr double flat = 0.075 * standard_gravity, most = 0.5 * standard_gravity;
+    constexpr double deviations = 4.0, as_quiet = 1.5;
+    const double noise = blocks.quiet;
+    const double allowed = std::clamp(deviations * noise, flat, most);
     std::vector<Plateau> found;
     const std::span<const double> y = blocks.means;
     for (std::size_t k = 0; k + blocks.window <= y.size();) {
-        double low = y[k], high = y[k];
-        std::size_t end = k;
-        for (; end < y.size(); ++end) {
-            low = std::min(low, y[end]), high = std::max(high, y[end]);
-            if (high - low > flat) break;
-        }
-        if (end < k + blocks.window) {
+        const Plateau seed = level_of(blocks, k, k + blocks.window);
+        const auto [low, high] = std::minmax_element(y.begin() + static_cast<std::ptrdiff_t>(seed.begin),
+                                                     y.begin() + static_cast<std::ptrdiff_t>(seed.end));
+        if (*high - *low > 2.0 * flat && (seed.rms > as_quiet * noise || *high - *low > 2.0 * allowed)) {
             ++k;
             continue;
         }
+        const Plateau whole = carry_on(blocks, k, allowed);
         // The edges belong to the change of level.
-        const std::size_t trimmed = end - k > 2 * fewest_blocks ? 1 : 0;
-        Plateau plateau{k + trimmed, end - trimmed, 0.0, 0.0};
-        const auto n = static_cast<double>(plateau.end - plateau.begin);
-        for (std::size_t i = plateau.begin; i < plateau.end; ++i) plateau.level += y[i] / n;
-        for (std::size_t i = plateau.begin; i < plateau.end; ++i)
-            plateau.rms += (y[i] - plateau.level) * (y[i] - plateau.level) / (n - 1.0);
-        plateau.rms = std::sqrt(plateau.rms);
-        found.push_back(plateau);
-        k = end;
+        const std::size_t trimmed = whole.end - k > 2 * fewest_blocks ? 1 : 0;
+        found.push_back(level_of(blocks, k + trimmed, whole.end - trimmed));
+        k = whole.end;
     }
     return found;
 }

@@ -185,7 +185,7 @@ void run_simple_methods(EventIdentification& result, const CurveFit& fit, const 
 std::optional<LawFit> law_from_earlier_start(const CurveFit& viscous, const Recording& recording,
                                              const Event& event, const CurveFitOptions& options) {
     constexpr double most_noise = 2.0;
-    if (!viscous.valid || rings_too_long(viscous)) return std::nullopt;
+    if (!viscous.valid || rings_too_long(viscous) || !event.flights.empty()) return std::nullopt;
     const auto earlier = with_earlier_start(viscous, recording, event);
     if (!earlier) return std::nullopt;
     auto law = choose_law(fit_decay(recording, *earlier, options), recording, *earlier, options);

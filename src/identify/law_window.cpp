@@ -171,7 +171,8 @@ void widen(LawFit& fit, const Recording& recording, const Event& event) {
     const DecayModel& others = fit.state.others;
     if (event.by_hand || others.drift || !others.oscillators.empty() || !others.real_poles.empty()) return;
     LawFit wider = fit;
-    widen_backwards(wider, recording, event);
+    // Before the decay of a drop lie flights and bounces: another motion, however well a law may fit its end.
+    if (event.flights.empty()) widen_backwards(wider, recording, event);
     widen_forwards(wider, recording, event);
     const bool changed = wider.curve.window.begin != fit.curve.window.begin ||
                          wider.curve.window.size() != fit.curve.window.size();
