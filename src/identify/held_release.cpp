@@ -159,8 +159,8 @@ std::optional<HeldRelease> fit_held_release(const CurveFit& fit, const Recording
     }
     constexpr double most_growth = 1.15;  // of the residual, by chance, over a wider window
     if (!held || held->oscillator().damping_ratio() < least_damping) return std::nullopt;
-    const double finer =
-        std::sqrt(static_cast<double>(fit.samples.block) / static_cast<double>(held->samples.block));
+    const double finer = std::max(
+        1.0, std::sqrt(static_cast<double>(fit.samples.block) / static_cast<double>(held->samples.block)));
     if (residual_level(*held) > most_growth * finer * residual_level(fit)) return std::nullopt;
     if (!estimate_noise(*held, noise_with_draws(options))) return std::nullopt;
     held->valid = true;

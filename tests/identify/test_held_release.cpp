@@ -12,12 +12,14 @@ using namespace ringwright::identify;
 
 namespace {
 
-simulated::Sample held_sample(double damping_ratio, double decibel, double held_cycles, std::uint64_t seed) {
+simulated::Sample held_sample(double damping_ratio, double decibel, double held_cycles, std::uint64_t seed,
+                              double correlation = 0.0) {
     simulated::Truth truth;
     truth.damping_ratio = damping_ratio;
     truth.cycles = 5.0;
     truth.signal_to_noise_db = decibel;
     truth.held_cycles = held_cycles;
+    truth.noise_correlation = correlation;
     simulated::Deviates deviates(seed);
     return simulated::draw(truth, deviates);
 }
@@ -42,15 +44,19 @@ TEST_CASE("a start on the plateau does not spoil the intervals of a heavily damp
     // given the frequency is held in a third of them or less.
     IdentifyOptions options;
     options.replicates = 0;
-    for (const double damping : {0.7, 1.5}) {
+    struct Condition {
+        double damping, decibel, correlation;
+    };
+    for (const auto& [damping, decibel, correlation] :
+         {Condition{0.7, 20.0, 0.0}, Condition{1.5, 20.0, 0.0}, Condition{1.5, 30.0, 0.8}}) {
         int frequency = 0, ratio = 0;
         for (std::uint64_t seed = 7100; seed < 7160; ++seed) {
-            const simulated::Sample sample = held_sample(damping, 20.0, 1.5, seed);
+            const simulated::Sample sample = held_sample(damping, decibel, 1.5, seed, correlation);
             const EventIdentification result = identify_event(sample.recording, begun_early(sample), options);
             frequency += holds(result.curve_fit.quantities, Quantity::natural_frequency, 5.0);
             ratio += holds(result.curve_fit.quantities, Quantity::damping_ratio, damping);
         }
-        INFO("damping ratio " << damping);
+        INFO("damping ratio " << damping << ", " << decibel << " dB, correlation " << correlation);
         CHECK(frequency >= 51);
         CHECK(ratio >= 51);
     }
