@@ -117,7 +117,9 @@ std::optional<CurveFit> fit_from(const CurveFit& fit, const Recording& recording
     DecayModel like = fit.fit.model;
     like.real_poles.clear();  // a start on the plateau asks for one
     like.drift = false;
-    const double earlier_s = static_cast<double>(fit.window.begin - held->window.begin) / fit.window.rate_hz;
+    const double earlier_s =  // below zero where the fit began on the plateau long before the fall
+        (static_cast<double>(fit.window.begin) - static_cast<double>(held->window.begin)) /
+        fit.window.rate_hz;
     held->fit = best_start(held->samples, like, earlier_s + fall.begin_s, fall.length_s);
     if (!settle(*held) || !held->fit.converged || !rests_before_release(*held)) return std::nullopt;
     return held;

@@ -77,6 +77,20 @@ TEST_CASE("the release is found within what is said of it") {
     }
 }
 
+TEST_CASE("the release is found where the fit began long before it") {
+    for (std::uint64_t seed = 7250; seed < 7255; ++seed) {
+        const simulated::Sample sample = held_sample(0.7, 26.0, 4.0, seed);
+        Event event = sample.event;
+        event.begin -= 200;  // two cycles
+        const auto held =
+            fit_held_release(fit_decay(sample.recording, event, {}), sample.recording, event, {});
+        INFO("seed " << seed);
+        REQUIRE(held.has_value());
+        const double truth = sample.recording.clock.time_of(sample.event.begin);
+        CHECK(std::abs(held->release_s - truth) < 4.0 * held->uncertainty_s);
+    }
+}
+
 TEST_CASE("what was not held, or is seen sharply, keeps a start of its own") {
     const simulated::Sample cut = held_sample(0.7, 26.0, 0.0, 7301);
     CHECK_FALSE(fit_held_release(fit_decay(cut.recording, cut.event, {}), cut.recording, cut.event, {}));
