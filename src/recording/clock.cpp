@@ -162,14 +162,6 @@ double median_of(std::vector<double> values) {
     return *middle;
 }
 
-double median_forward_step(const std::vector<double>& t) {
-    std::vector<double> steps;
-    steps.reserve(t.size());
-    for (std::size_t i = 1; i < t.size(); ++i)
-        if (t[i] > t[i - 1]) steps.push_back(t[i] - t[i - 1]);
-    return median_of(std::move(steps));
-}
-
 void add(Findings& findings, const char* code, Severity severity, std::string message) {
     findings.push_back(Finding{code, severity, std::move(message)});
 }
@@ -303,42 +295,20 @@ void drop_missing(Timed& timed) {
 
 void find_gaps(Timed& timed, double step, double rounding) {
     const std::vector<double>& t = timed.clock.times_s;
-    double lost = 0.0, longest = 0.0, longest_at = 0.0;
+    StepCourse steps;
     for (std::size_t i = 1; i < t.size(); ++i) {
-        const double wide = t[i] - t[i - 1];
-        if (wide <= gap_steps * step + 2.0 * rounding) continue;
+        if (!is_gap(t[i - 1], t[i], step, rounding)) continue;
         timed.gaps.push_back({i - 1, i});
-        lost += wide - step;
-        if (wide > longest) longest = wide, longest_at = t[i - 1];
+        add_gap(steps, t[i - 1], t[i], step);
     }
-    if (timed.gaps.empty()) return;
-    add(timed.findings, "gaps", Severity::caution,
-        fmt::format(
-            "Time is lost at {}, {:.4g} s in all (the longest: {:.4g} s after {:.6g} s). The times as "
-            "recorded are used.",
-            counted(timed.gaps.size(), "place"), lost, longest, longest_at));
-}
-
-// Scatter of the steps that are no gaps, as a share of the usual step.
-double jitter_share(const std::vector<double>& t, double step) {
-    double sum = 0.0;
-    std::size_t count = 0;
-    for (std::size_t i = 1; i < t.size(); ++i) {
-        const double deviation = (t[i] - t[i - 1]) / step - 1.0;
-        if (deviation > gap_steps - 1.0) continue;
-        sum += deviation * deviation;
-        ++count;
-    }
-    return count == 0 ? 0.0 : std::sqrt(sum / static_cast<double>(count));
+    report_gaps(steps, timed.findings);
 }
 
 void report_jitter(Timed& timed, double step, double rounding) {
-    const double share = jitter_share(timed.clock.times_s, step);
-    const double by_rounding = rounding / step;
-    if (share < 0.005 || share < 0.6 * by_rounding) return;
-    add(timed.findings, "jittering_time_stamps", share > 0.2 ? Severity::caution : Severity::note,
-        fmt::format("The sampling steps scatter by {:.2g} % about {:.6g} s. The times as recorded are used.",
-                    100.0 * share, step));
+    const std::vector<double>& t = timed.clock.times_s;
+    StepCourse steps;
+    for (std::size_t i = 1; i < t.size(); ++i) add_scatter(steps, t[i - 1], t[i], step);
+    report_jitter(steps, step, rounding, timed.findings);
 }
 
 // The rate then hangs on the places where the stamp changes: a sample or so at the ends.
@@ -354,6 +324,58 @@ void report_coarse(Timed& timed, double rounding) {
 }
 
 }  // namespace
+
+double median_forward_step(const std::vector<double>& t) {
+    std::vector<double> steps;
+    steps.reserve(t.size());
+    for (std::size_t i = 1; i < t.size(); ++i)
+        if (t[i] > t[i - 1]) steps.push_back(t[i] - t[i - 1]);
+    return median_of(std::move(steps));
+}
+
+bool is_gap(double from_s, double to_s, double usual_s, double rounding_s) {
+    return !(to_s - from_s <= gap_steps * usual_s + 2.0 * rounding_s);
+}
+
+void add_gap(StepCourse& steps, double from_s, double to_s, double usual_s) {
+    const double wide = to_s - from_s;
+    ++steps.gaps;
+    steps.lost_s += wide - usual_s;
+    if (wide > steps.longest_s) steps.longest_s = wide, steps.longest_at_s = from_s;
+}
+
+void add_scatter(StepCourse& steps, double from_s, double to_s, double usual_s) {
+    const double deviation = (to_s - from_s) / usual_s - 1.0;
+    if (deviation > gap_steps - 1.0) return;
+    steps.scatter += deviation * deviation;
+    ++steps.even;
+}
+
+void append(StepCourse& steps, const StepCourse& later) {
+    steps.gaps += later.gaps;
+    steps.even += later.even;
+    steps.lost_s += later.lost_s;
+    steps.scatter += later.scatter;
+    if (later.longest_s > steps.longest_s)
+        steps.longest_s = later.longest_s, steps.longest_at_s = later.longest_at_s;
+}
+
+void report_gaps(const StepCourse& steps, Findings& findings) {
+    if (steps.gaps == 0) return;
+    add(findings, "gaps", Severity::caution,
+        fmt::format(
+            "Time is lost at {}, {:.4g} s in all (the longest: {:.4g} s after {:.6g} s). The times as "
+            "recorded are used.",
+            counted(steps.gaps, "place"), steps.lost_s, steps.longest_s, steps.longest_at_s));
+}
+
+void report_jitter(const StepCourse& steps, double usual_s, double rounding_s, Findings& findings) {
+    const double share = steps.even == 0 ? 0.0 : std::sqrt(steps.scatter / static_cast<double>(steps.even));
+    if (share < 0.005 || share < 0.6 * rounding_s / usual_s) return;
+    add(findings, "jittering_time_stamps", share > 0.2 ? Severity::caution : Severity::note,
+        fmt::format("The sampling steps scatter by {:.2g} % about {:.6g} s. The times as recorded are used.",
+                    100.0 * share, usual_s));
+}
 
 void unwrap_midnight(std::vector<double>& times_s) {
     double days = 0.0;

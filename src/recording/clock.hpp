@@ -18,6 +18,24 @@ struct Timed {
     Findings findings;
 };
 
+/// What the steps between samples say: where time was lost, and how the others scatter.
+struct StepCourse {
+    std::size_t gaps = 0, even = 0;  ///< steps that are gaps, and that are none
+    double lost_s = 0.0, longest_s = 0.0, longest_at_s = 0.0;
+    double scatter = 0.0;  ///< sum of squares of the even steps' departures from the usual one, as a share
+};
+/// Whether from one sample to the next, at these times, time was lost. `usual_s` is the usual step.
+[[nodiscard]] bool is_gap(double from_s, double to_s, double usual_s, double rounding_s);
+/// Adds a gap.
+void add_gap(StepCourse& steps, double from_s, double to_s, double usual_s);
+/// Adds a step to the scatter where it is no gap.
+void add_scatter(StepCourse& steps, double from_s, double to_s, double usual_s);
+void append(StepCourse& steps, const StepCourse& later);
+void report_gaps(const StepCourse& steps, Findings& findings);
+void report_jitter(const StepCourse& steps, double usual_s, double rounding_s, Findings& findings);
+/// Of the steps that go forward; 0 when none does.
+[[nodiscard]] double median_forward_step(const std::vector<double>& times_s);
+
 /// Time stamps in seconds, one for each value, with the step to which they were rounded when they were
 /// written (0: not known). Uniform where every stamp agrees with equal steps within that rounding: the rate
 /// then comes from a straight line through all of them. Else rows with repeated or backward stamps are left

@@ -10,6 +10,7 @@
 #include "recording/channel_scale.hpp"
 #include "recording/clock.hpp"
 #include "recording/csv_columns.hpp"
+#include "recording/csv_open.hpp"
 #include "recording/csv_rows.hpp"
 #include "recording/csv_table.hpp"
 #include "recording/csv_thousands.hpp"
@@ -29,16 +30,6 @@ void add(Findings& findings, const char* code, Severity severity, std::string me
 void append(Findings& findings, const Findings& more) {
     findings.insert(findings.end(), more.begin(), more.end());
 }
-
-// A text file with its table found.
-struct OpenTable {
-    DecodedText decoded;
-    std::string_view text;
-    Table table;
-    RowSample sample;
-    ThousandsMarks thousands;
-    [[nodiscard]] std::string_view rows() const { return text.substr(table.begin); }
-};
 
 std::size_t most_cells_in_a_row(std::string_view text) {
     LineReader reader(text);
@@ -297,8 +288,10 @@ const char* were(std::size_t count) {
     return count == 1 ? "was" : "were";
 }
 
-// Missing and odd cells of the chosen column, in words.
-void report_absences(const Rows& rows, const Table& table, const std::string& channel, Findings& findings) {
+}  // namespace
+
+void report_absences(const Rows& rows, std::size_t row_count, const Table& table, const std::string& channel,
+                     Findings& findings) {
     const auto line = [&](const Absences& absences) { return table.first_line + absences.first_line; };
     const std::size_t missing = rows.empty.count + rows.not_a_number.count;
     if (missing > 0) {
@@ -307,7 +300,7 @@ void report_absences(const Rows& rows, const Table& table, const std::string& ch
             (rows.empty.count > 0 && rows.empty.first_line < rows.not_a_number.first_line);
         add(findings, "missing_values", Severity::caution,
             fmt::format("{} of {} {} no value in channel {} (first in line {}) and {} left out.", missing,
-                        counted(rows.values.size(), "row"), missing == 1 ? "has" : "have", channel,
+                        counted(row_count, "row"), missing == 1 ? "has" : "have", channel,
                         line(empty_first ? rows.empty : rows.not_a_number), were(missing)));
     }
     if (rows.overflow.count > 0)
@@ -334,6 +327,8 @@ void report_absences(const Rows& rows, const Table& table, const std::string& ch
                         counted(rows.unreadable_time.count, "row has", "rows have"),
                         line(rows.unreadable_time), were(rows.unreadable_time.count)));
 }
+
+namespace {
 
 RowPlan plan_for(const Table& table, const TimeChoice& time, std::size_t channel,
                  const ReadOptions& options) {
@@ -384,6 +379,8 @@ void refuse_useless_time(const OpenTable& open, const std::string& file) {
                 "Give the sampling rate with --rate HZ, or name the time column with --time-column."});
 }
 
+}  // namespace
+
 double rate_without_times(const OpenTable& open, const ReadOptions& options, Recording& recording) {
     if (options.rate_hz) return *options.rate_hz;
     const auto stated = rate_in_preamble(open.table.preamble);
@@ -395,6 +392,8 @@ double rate_without_times(const OpenTable& open, const ReadOptions& options, Rec
             stated->rate_hz, label_text(stated->line, open.decoded.latin1)));
     return stated->rate_hz;
 }
+
+namespace {
 
 void start_at_zero(std::vector<double>& times) {
     const auto first = std::find_if(times.begin(), times.end(), [](double t) { return !std::isnan(t); });
@@ -479,27 +478,48 @@ void refuse_stopped_clock(const Recording& recording) {
 
 }  // namespace
 
-void read_csv(std::string_view bytes, const ReadOptions& options, Recording& recording) {
+ChosenTable choose_columns(std::string_view bytes, const ReadOptions& options, Recording& recording) {
     const std::string& file = recording.origin.file;
-    const OpenTable open = open_table(bytes, options, file);
+    ChosenTable chosen{open_table(bytes, options, file), {}, {}, {}};
+    const OpenTable& open = chosen.open;
     report_form(open, recording.findings);
-    const TimeChoice time = choose_time(open.table, open.sample, options);
-    append(recording.findings, time.findings);
-    if (!options.rate_hz && time.source == TimeSource::none && !rate_in_preamble(open.table.preamble))
+    chosen.time = choose_time(open.table, open.sample, options);
+    append(recording.findings, chosen.time.findings);
+    if (!options.rate_hz && chosen.time.source == TimeSource::none && !rate_in_preamble(open.table.preamble))
         refuse_no_clock(open, file);
-    const SignalChoice signal = choose_signal(open.table, open.rows(), time, options, file);
-    append(recording.findings, signal.findings);
-    recording.origin.channel = column_name(open.table, signal.column);
+    chosen.signal = choose_signal(open.table, open.rows(), chosen.time, options, file);
+    append(recording.findings, chosen.signal.findings);
+    recording.origin.channel = column_name(open.table, chosen.signal.column);
+    chosen.plan = plan_for(open.table, chosen.time, chosen.signal.column, options);
+    return chosen;
+}
 
-    const RowPlan plan = plan_for(open.table, time, signal.column, options);
+ChannelScale scale_of(const ChosenTable& chosen, const ReadOptions& options) {
+    const Column& column = chosen.open.table.columns[chosen.signal.column];
+    return scale_channel({column.name, column.unit_text, column.unit}, options);
+}
+
+void take_scale(const ChannelScale& scale, Recording& recording) {
+    recording.unit = scale.unit;
+    recording.scaled = scale.scaled;
+    recording.quantity = scale.quantity;
+    recording.quantity_known = scale.quantity_known;
+    append(recording.findings, scale.findings);
+}
+
+void read_csv(std::string_view bytes, const ReadOptions& options, Recording& recording) {
+    const ChosenTable chosen = choose_columns(bytes, options, recording);
+    const OpenTable& open = chosen.open;
+    const TimeChoice& time = chosen.time;
+    const RowPlan& plan = chosen.plan;
     const unsigned threads = std::max(1U, std::thread::hardware_concurrency());
     std::optional<SteadyRows> steady;
     if (!time.from_zero)
         steady = read_steady_rows(open.rows(), plan, time.seconds_per_unit, time.rounding_s, threads,
                                   options.progress);
     Rows rows = steady ? std::move(steady->rows) : read_rows(open.rows(), plan, threads, options.progress);
-    report_absences(rows, open.table, recording.origin.channel, recording.findings);
     const std::size_t row_count = rows.values.size();
+    report_absences(rows, row_count, open.table, recording.origin.channel, recording.findings);
     const Loss loss = commonest_loss(rows, open.table.first_line);
     Timed timed = steady ? on_clock(std::move(steady->clock), std::move(rows.values))
                          : place_in_time(open, time, options, std::move(rows), recording);
@@ -510,15 +530,10 @@ void read_csv(std::string_view bytes, const ReadOptions& options, Recording& rec
     refuse_short(recording, row_count, loss);
     refuse_stopped_clock(recording);
 
-    const Column& column = open.table.columns[signal.column];
-    ChannelScale scale = scale_channel({column.name, column.unit_text, column.unit}, options);
+    const ChannelScale scale = scale_of(chosen, options);
     if (scale.factor != 1.0)
         for (double& sample : recording.samples) sample *= scale.factor;
-    recording.unit = scale.unit;
-    recording.scaled = scale.scaled;
-    recording.quantity = scale.quantity;
-    recording.quantity_known = scale.quantity_known;
-    append(recording.findings, scale.findings);
+    take_scale(scale, recording);
 }
 
 namespace {

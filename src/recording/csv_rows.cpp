@@ -400,6 +400,7 @@ class ParallelReader {
         forget(part);
         will_read(piece);
         ChunkReader(piece, plan_, part).read();
+        was_read(piece);
         StampCourse course;
         if (hope_) course = course_without_times(part);
         if (!turns_.wait_for(i)) return;
@@ -441,6 +442,13 @@ class ParallelReader {
 constexpr std::size_t piece_size = std::size_t{1} << 20;
 
 }  // namespace
+
+void read_piece(std::string_view piece, const RowPlan& plan, Rows& rows) {
+    forget(rows);
+    will_read(piece);
+    ChunkReader(piece, plan, rows).read();
+    was_read(piece);
+}
 
 Rows read_rows(std::string_view text, const RowPlan& plan, unsigned threads,
                const std::function<void(double)>& progress) {

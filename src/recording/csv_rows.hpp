@@ -59,6 +59,9 @@ struct Rows {
 [[nodiscard]] Rows read_rows(std::string_view text, const RowPlan& plan, unsigned threads,
                              const std::function<void(double)>& progress = {});
 
+/// Reads the rows of one piece of a text in place of what `rows` holds, in its memory.
+void read_piece(std::string_view piece, const RowPlan& plan, Rows& rows);
+
 /// Rows whose times are one steady clock, which stands in place of the times.
 struct SteadyRows {
     Rows rows;

@@ -7,6 +7,7 @@
 #include <vector>
 
 #include "recording/in_pieces.hpp"
+#include "recording/input_bytes.hpp"
 
 namespace ringwright {
 namespace {
@@ -44,6 +45,7 @@ class MarkCounter {
             line_number += static_cast<std::size_t>(
                 std::count(rows_.begin() + static_cast<std::ptrdiff_t>(counted_to),
                            rows_.begin() + static_cast<std::ptrdiff_t>(begin), table_.end_of_line));
+            was_read(rows_.substr(counted_to, begin - counted_to));
             counted_to = begin;
             count_line(rows_.substr(begin, end - begin), line_number);
             at = end;

@@ -86,9 +86,8 @@ void runs_at(const std::vector<double>& x, const std::vector<Extent>& extents, d
 }
 
 std::vector<SampleRange> clipped_in(const std::vector<double>& x, const std::vector<Extent>& extents,
-                                    double resolution) {
+                                    const Extent& whole, double resolution) {
     std::vector<SampleRange> runs;
-    const Extent whole = whole_of(extents);
     if (whole.low == whole.high) return runs;
     runs_at(x, extents, whole.high, resolution, runs);
     runs_at(x, extents, whole.low, resolution, runs);
@@ -103,9 +102,8 @@ std::size_t samples_in(const std::vector<SampleRange>& runs) {
     return count;
 }
 
-void report_clipping(Recording& recording) {
+void report_clipping(Recording& recording, double at) {
     if (recording.clipped.empty()) return;
-    const double at = recording.clock.time_of(recording.clipped.front().begin);
     add(recording, "clipped_samples", Severity::caution,
         fmt::format("{} at the end of the measuring range, in {} (first at {:.6g} s): the true motion went "
                     "further. Use a larger range or a weaker excitation.",
@@ -126,15 +124,18 @@ double smallest_step(const std::vector<double>& samples) {
 
 std::vector<SampleRange> clipped_runs(const std::vector<double>& samples, double resolution) {
     if (samples.empty()) return {};
-    return clipped_in(samples, extents_of(samples), resolution);
+    const std::vector<Extent> extents = extents_of(samples);
+    return clipped_in(samples, extents, whole_of(extents), resolution);
 }
 
-void examine_health(Recording& recording) {
-    const auto& x = recording.samples;
-    if (x.empty()) return;
-    const std::vector<Extent> extents = extents_of(x);
-    const Extent whole = whole_of(extents);
-    const double range = whole.high - whole.low;
+std::vector<SampleRange> clipped_runs_at(const std::vector<double>& samples, double low, double high,
+                                         double resolution) {
+    if (samples.empty()) return {};
+    return clipped_in(samples, extents_of(samples), {low, high}, resolution);
+}
+
+void report_health(Recording& recording, double low, double high, double clipped_s) {
+    const double range = high - low;
     if (range == 0.0) {
         add(recording, "constant_signal", Severity::defect,
             "Every sample has the same value. Check that the sensor was connected and that this is the right "
@@ -142,9 +143,7 @@ void examine_health(Recording& recording) {
             "(--channel).");
         return;
     }
-    recording.resolution = smallest_step(x);
-    recording.clipped = clipped_in(x, extents, recording.resolution);
-    report_clipping(recording);
+    report_clipping(recording, clipped_s);
     const double levels = range / recording.resolution;
     if (levels < 64.0)
         add(recording, "few_levels", levels < 16.0 ? Severity::caution : Severity::note,
@@ -152,6 +151,20 @@ void examine_health(Recording& recording) {
                 "The signal uses only about {:.0f} steps of the recorder's resolution; small motion is lost "
                 "between them. Use a smaller measuring range.",
                 levels));
+}
+
+void examine_health(Recording& recording) {
+    const auto& x = recording.samples;
+    if (x.empty()) return;
+    const std::vector<Extent> extents = extents_of(x);
+    const Extent whole = whole_of(extents);
+    if (whole.high - whole.low != 0.0) {
+        recording.resolution = smallest_step(x);
+        recording.clipped = clipped_in(x, extents, whole, recording.resolution);
+    }
+    const bool clipped = !recording.clipped.empty();
+    report_health(recording, whole.low, whole.high,
+                  clipped ? recording.clock.time_of(recording.clipped.front().begin) : 0.0);
 }
 
 }  // namespace ringwright

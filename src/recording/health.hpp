@@ -12,6 +12,14 @@ namespace ringwright {
 /// plateau or the flat top of a coarse signal is none.
 [[nodiscard]] std::vector<SampleRange> clipped_runs(const std::vector<double>& samples, double resolution);
 
+/// The same for part of a signal that runs from `low` to `high` as a whole.
+[[nodiscard]] std::vector<SampleRange> clipped_runs_at(const std::vector<double>& samples, double low,
+                                                       double high, double resolution);
+
+/// Adds the findings on a signal that runs from `low` to `high`, whose resolution and clipped runs are filled
+/// in; the first of these is at `clipped_s`.
+void report_health(Recording& recording, double low, double high, double clipped_s);
+
 /// Fills resolution and clipped, and adds the findings.
 void examine_health(Recording& recording);
 

@@ -55,6 +55,7 @@ std::string bytes_present(std::string_view text, std::string_view sought, unsign
         will_read(part);
         for (std::size_t k = 0; k < sought.size(); ++k)
             if (!seen[k] && std::memchr(part.data(), sought[k], part.size()) != nullptr) seen[k] = true;
+        was_read(part);
     });
     std::string present;
     for (std::size_t k = 0; k < sought.size(); ++k)

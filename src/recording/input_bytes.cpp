@@ -12,11 +12,60 @@
 #include <cstdint>
 #include <cstring>
 #include <memory>
+#include <mutex>
+#include <vector>
 
 #include "ringwright/error.hpp"
 
 namespace ringwright {
 namespace {
+
+/// Mapped files up to this size stay in memory once they were read: they are read more than once.
+constexpr std::size_t largest_kept = std::size_t{1} << 28;
+/// Of larger ones, the bytes after which what was read is given back.
+constexpr std::size_t read_at_once = std::size_t{1} << 25;
+
+/// The large files that are mapped, so that nothing else is ever given back: of memory that holds no file it
+/// would be lost.
+class LargeMappings {
+  public:
+    void add(std::string_view bytes) {
+        const std::scoped_lock lock(guard_);
+        mappings_.push_back({bytes, 0});
+    }
+    void remove(std::string_view bytes) {
+        const std::scoped_lock lock(guard_);
+        std::erase_if(mappings_, [&](const Mapping& m) { return m.bytes.data() == bytes.data(); });
+    }
+    void was_read(std::string_view bytes) {
+        const std::scoped_lock lock(guard_);
+        for (Mapping& mapping : mappings_) {
+            const auto first = address(mapping.bytes), at = address(bytes);
+            if (at < first || at >= first + mapping.bytes.size()) continue;
+            mapping.read += bytes.size();
+            if (mapping.read < read_at_once) return;
+            mapping.read = 0;
+            ::madvise(const_cast<char*>(mapping.bytes.data()), mapping.bytes.size(), MADV_DONTNEED);
+            return;
+        }
+    }
+
+  private:
+    struct Mapping {
+        std::string_view bytes;
+        std::size_t read = 0;
+    };
+    static std::uintptr_t address(std::string_view bytes) {
+        return reinterpret_cast<std::uintptr_t>(bytes.data());
+    }
+    std::mutex guard_;
+    std::vector<Mapping> mappings_;
+};
+
+LargeMappings& large_mappings() {
+    static LargeMappings mappings;
+    return mappings;
+}
 
 class Descriptor {
   public:
@@ -67,7 +116,9 @@ InputBytes::InputBytes(const std::string& path) {
 }
 
 InputBytes::~InputBytes() {
-    if (mapping_ != nullptr) ::munmap(mapping_, mapping_size_);
+    if (mapping_ == nullptr) return;
+    if (mapping_size_ > largest_kept) large_mappings().remove(view_);
+    ::munmap(mapping_, mapping_size_);
 }
 
 void InputBytes::map(int descriptor, std::size_t size) {
@@ -77,6 +128,7 @@ void InputBytes::map(int descriptor, std::size_t size) {
     mapping_size_ = size;
     ::madvise(mapping, size, MADV_SEQUENTIAL);
     view_ = {static_cast<const char*>(mapping), size};
+    if (size > largest_kept) large_mappings().add(view_);
 }
 
 void InputBytes::read_all(int descriptor, const std::string& name) {
@@ -105,12 +157,21 @@ void will_read(std::string_view bytes) {
 #endif
 }
 
+void was_read(std::string_view bytes) {
+    large_mappings().was_read(bytes);
+}
+
 std::string sha256_hex(std::string_view bytes) {
     std::array<unsigned char, EVP_MAX_MD_SIZE> digest{};
     unsigned int length = 0;
     const std::unique_ptr<EVP_MD_CTX, decltype(&EVP_MD_CTX_free)> context(EVP_MD_CTX_new(), &EVP_MD_CTX_free);
     EVP_DigestInit_ex(context.get(), EVP_sha256(), nullptr);
-    EVP_DigestUpdate(context.get(), bytes.data(), bytes.size());
+    constexpr std::size_t block = std::size_t{1} << 20;
+    for (std::size_t at = 0; at < bytes.size(); at += block) {
+        const std::string_view part = bytes.substr(at, block);
+        EVP_DigestUpdate(context.get(), part.data(), part.size());
+        was_read(part);
+    }
     EVP_DigestFinal_ex(context.get(), digest.data(), &length);
     constexpr std::string_view hex = "0123456789abcdef";
     std::string text;

@@ -33,6 +33,11 @@ class InputBytes {
 /// page. Only a hint.
 void will_read(std::string_view bytes);
 
+/// Tells that these bytes were read and are not needed soon. Of a large mapped file the memory is given back
+/// now and then, so that no more of it than some ten megabytes is held; the bytes can be read again at any
+/// time. Does nothing for other bytes. From any thread.
+void was_read(std::string_view bytes);
+
 /// SHA-256 of the bytes as 64 lower-case hexadecimal digits (FIPS 180-4).
 [[nodiscard]] std::string sha256_hex(std::string_view bytes);
 

@@ -7,8 +7,10 @@
 #include "recording/csv_reader.hpp"
 #include "recording/health.hpp"
 #include "recording/input_bytes.hpp"
+#include "recording/long_csv.hpp"
 #include "recording/sound_reader.hpp"
 #include "ringwright/error.hpp"
+#include "ringwright/long_recording.hpp"
 #include "ringwright/recording.hpp"
 
 namespace ringwright {
@@ -94,6 +96,25 @@ Recording read_recording_from_memory(std::string_view bytes, const std::string& 
         throw InputError(Problem{shown_name(name), "", "the file is empty",
                                  "Export the recording again; the logger may have been stopped too soon."});
     return recording_from(bytes, name, options);
+}
+
+std::unique_ptr<LongRecording> open_long_recording(const std::string& path, const ReadOptions& options,
+                                                   const LongLimits& limits) {
+    const auto input = std::make_shared<const InputBytes>(path);
+    const std::string_view bytes = input->view();
+    const bool sound = is_sound(bytes);
+    const std::size_t samples = sound ? frames_stated(bytes, shown_name(path)) : rows_estimate(bytes);
+    if (samples <= limits.held_whole) return nullptr;
+    check_options(options);
+    Recording facts;
+    facts.origin.file = shown_name(path);
+    facts.origin.bytes = bytes.size();
+    auto hash = hash_beside(bytes);
+    if (!sound) refuse_foreign(bytes, facts.origin.file);
+    auto recording = sound ? open_long_sound(input, options, std::move(facts), limits)
+                           : open_long_csv(input, options, std::move(facts), limits);
+    if (recording) recording->name(path, hash.get());
+    return recording;
 }
 
 FileSummary summarise_file(const std::string& path, const ReadOptions& options) {

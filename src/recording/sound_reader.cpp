@@ -8,12 +8,15 @@
 #include <cstring>
 #include <limits>
 #include <memory>
+#include <mutex>
 #include <optional>
 
 #include "recording/channel_scale.hpp"
+#include "recording/health.hpp"
 #include "recording/quantity_words.hpp"
 #include "recording/signal_clarity.hpp"
-#include "recording/sound_library.hpp"
+#include "recording/signal_digest.hpp"
+#include "recording/sound_file.hpp"
 #include "ringwright/error.hpp"
 #include "ringwright/measured_value.hpp"
 
@@ -21,8 +24,6 @@ namespace ringwright {
 namespace {
 
 using namespace std::string_view_literals;
-
-constexpr sf_count_t block_frames = 4096;
 
 void add(Findings& findings, const char* code, Severity severity, std::string message) {
     findings.push_back(Finding{code, severity, std::move(message)});
@@ -33,127 +34,6 @@ std::uint32_t little_endian(std::string_view bytes, std::size_t at) {
     for (std::size_t i = 4; i-- > 0;) value = (value << 8) | static_cast<unsigned char>(bytes[at + i]);
     return value;
 }
-
-// Four bytes of a header that are read otherwise than they stand there.
-struct Patch {
-    std::size_t at = 0;
-    std::array<char, 4> bytes{};
-    bool active = false;
-};
-
-// A recorder that lost power leaves a data chunk of length 0: it is read to the end of the file.
-Patch data_length_patch(std::string_view bytes) {
-    Patch patch;
-    if (!bytes.starts_with("RIFF")) return patch;
-    for (std::size_t at = 12; at + 8 <= bytes.size();) {
-        const std::uint32_t size = little_endian(bytes, at + 4);
-        if (bytes.substr(at, 4) == "data") {
-            const std::size_t there = std::min<std::size_t>(bytes.size() - at - 8, 0x7FFFFFF0);
-            patch.active = size == 0 && there > 64;
-            patch.at = at + 4;
-            for (std::size_t i = 0; i < 4; ++i) patch.bytes[i] = static_cast<char>((there >> (8 * i)) & 0xFF);
-            return patch;
-        }
-        at += std::size_t{8} + size + (size & 1U);
-    }
-    return patch;
-}
-
-// The bytes as libsndfile's virtual file.
-struct ByteFile {
-    std::string_view bytes;
-    sf_count_t at = 0;
-    Patch patch;
-};
-
-sf_count_t file_length(void* user) {
-    return static_cast<sf_count_t>(static_cast<ByteFile*>(user)->bytes.size());
-}
-
-sf_count_t seek_to(sf_count_t offset, int whence, void* user) {
-    auto* file = static_cast<ByteFile*>(user);
-    const sf_count_t base = whence == SEEK_SET ? 0 : whence == SEEK_CUR ? file->at : file_length(user);
-    file->at = std::clamp<sf_count_t>(base + offset, 0, file_length(user));
-    return file->at;
-}
-
-sf_count_t read_bytes(void* target, sf_count_t count, void* user) {
-    auto* file = static_cast<ByteFile*>(user);
-    const sf_count_t available = std::clamp<sf_count_t>(count, 0, file_length(user) - file->at);
-    const auto begin = static_cast<std::size_t>(file->at), size = static_cast<std::size_t>(available);
-    std::memcpy(target, file->bytes.data() + begin, size);
-    for (std::size_t i = 0; file->patch.active && i < 4; ++i)
-        if (const std::size_t place = file->patch.at + i; place >= begin && place < begin + size)
-            static_cast<char*>(target)[place - begin] = file->patch.bytes[i];
-    file->at += available;
-    return available;
-}
-
-sf_count_t write_nothing(const void*, sf_count_t, void*) {
-    return 0;
-}
-sf_count_t position(void* user) {
-    return static_cast<ByteFile*>(user)->at;
-}
-
-class SoundFile {
-  public:
-    SoundFile(std::string_view bytes, const std::string& name) : file_{bytes, 0, data_length_patch(bytes)} {
-        SF_VIRTUAL_IO io{file_length, seek_to, read_bytes, write_nothing, position};
-        handle_.reset(sound_library().open_virtual(&io, SFM_READ, &info_, &file_));
-        const bool usable = handle_ && info_.channels > 0 && info_.samplerate > 0 && info_.channels <= 4096;
-        if (usable) return;
-        std::string reason =
-            handle_ ? "it names no tracks or no sampling rate" : sound_library().strerror(nullptr);
-        while (!reason.empty() && (reason.back() == '.' || reason.back() == '\n')) reason.pop_back();
-        throw InputError(Problem{name, "", "the sound file cannot be decoded (" + reason + ")",
-                                 "The file may be cut or damaged; export it again as WAV."});
-    }
-
-    [[nodiscard]] const SF_INFO& info() const { return info_; }
-    [[nodiscard]] std::size_t channels() const { return static_cast<std::size_t>(info_.channels); }
-    [[nodiscard]] std::size_t byte_count() const { return file_.bytes.size(); }
-
-    // Calls `take(block, frames)` with interleaved frames, from the first to the last that can be decoded.
-    template <typename Take>
-    void for_each_block(Take take) {
-        sound_library().seek(handle_.get(), 0, SEEK_SET);
-        std::vector<double> block(static_cast<std::size_t>(block_frames) * channels());
-        for (sf_count_t done = 0; done < most_frames();) {
-            const sf_count_t frames = sound_library().readf_double(handle_.get(), block.data(), block_frames);
-            if (frames <= 0) break;
-            take(block, static_cast<std::size_t>(frames));
-            done += frames;
-        }
-    }
-
-    // Samples bounded by the bytes: packed silence must not grow without end.
-    [[nodiscard]] sf_count_t most_frames() const {
-        return static_cast<sf_count_t>(byte_count()) * 64 + 1'000'000;
-    }
-
-    [[nodiscard]] bool is_float() const {
-        const int subtype = info_.format & SF_FORMAT_SUBMASK;
-        return subtype == SF_FORMAT_FLOAT || subtype == SF_FORMAT_DOUBLE;
-    }
-
-    [[nodiscard]] std::string name_of(int format) const {
-        SF_FORMAT_INFO names{};
-        names.format = format;
-        if (sound_library().command(handle_.get(), SFC_GET_FORMAT_INFO, &names, sizeof names) != 0 ||
-            names.name == nullptr)
-            return "";
-        return names.name;
-    }
-
-  private:
-    struct Closer {
-        void operator()(SNDFILE* handle) const { sound_library().close(handle); }
-    };
-    ByteFile file_;
-    SF_INFO info_{};
-    std::unique_ptr<SNDFILE, Closer> handle_;
-};
 
 std::optional<std::size_t> track_named(const std::string& wanted, std::size_t channels) {
     const std::string name = folded(wanted);
@@ -180,7 +60,27 @@ std::size_t clearest_track(SoundFile& sound) {
     return best_channel(merits, true);
 }
 
-std::size_t choose_track(SoundFile& sound, const ReadOptions& options, Findings& findings) {
+// The same of a recording that is not to be held whole: from stretches all over it, `most` samples in all.
+std::size_t clearest_track_by_looks(SoundFile& sound, std::size_t most) {
+    constexpr std::size_t looks = 32;
+    const std::size_t channels = sound.channels(),
+                      length = std::max<std::size_t>(most / channels / looks, 64);
+    const auto frames = static_cast<std::size_t>(std::max<sf_count_t>(sound.info().frames, 0));
+    std::vector<std::vector<double>> tracks(channels);
+    for (std::size_t look = 0; look < looks; ++look)
+        sound.for_each_block_from(static_cast<sf_count_t>(frames / looks * look),
+                                  static_cast<sf_count_t>(std::min(length, frames / looks)),
+                                  [&](const std::vector<double>& block, std::size_t count) {
+                                      for (std::size_t i = 0; i < count * channels; ++i)
+                                          tracks[i % channels].push_back(block[i]);
+                                  });
+    std::vector<ChannelMerit> merits;
+    for (const auto& track : tracks) merits.push_back(merit_of(track));
+    return best_channel(merits, true);
+}
+
+// `held` is how many samples may be held for the choice; 0: as many as the file has, within reason.
+std::size_t choose_track(SoundFile& sound, const ReadOptions& options, std::size_t held, Findings& findings) {
     if (options.channel) {
         if (const auto track = track_named(*options.channel, sound.channels())) return *track;
         throw UsageError(Problem{"--channel", "",
@@ -188,7 +88,7 @@ std::size_t choose_track(SoundFile& sound, const ReadOptions& options, Findings&
                                  fmt::format("Give a number from 1 to {}.", sound.channels())});
     }
     if (sound.channels() == 1) return 0;
-    const std::size_t track = clearest_track(sound);
+    const std::size_t track = held > 0 ? clearest_track_by_looks(sound, held) : clearest_track(sound);
     add(findings, "channel_chosen", Severity::caution,
         fmt::format("Of {} tracks number {} was taken because its signal is the clearest. Say otherwise with "
                     "--channel.",
@@ -263,7 +163,8 @@ std::optional<FullScale> calibration(const SoundFile& sound, const ReadOptions& 
     return std::nullopt;
 }
 
-void scale_track(const SoundFile& sound, const ReadOptions& options, Recording& recording) {
+// Fills unit and quantity; gives what the samples are to be multiplied by.
+double scale_track(const SoundFile& sound, const ReadOptions& options, Recording& recording) {
     const auto scale = calibration(sound, options, recording.findings);
     ReadOptions shown = options;
     if (scale) shown.unit.reset();
@@ -283,10 +184,8 @@ void scale_track(const SoundFile& sound, const ReadOptions& options, Recording& 
     }
     recording.unit = channel.unit;
     recording.scaled = channel.scaled;
-    const double factor = channel.factor * (scale ? scale->value : 1.0);
-    if (factor != 1.0)
-        for (double& sample : recording.samples) sample *= factor;
     recording.findings.insert(recording.findings.end(), channel.findings.begin(), channel.findings.end());
+    return channel.factor * (scale ? scale->value : 1.0);
 }
 
 void report_lossy(const SoundFile& sound, Findings& findings) {
@@ -296,7 +195,117 @@ void report_lossy(const SoundFile& sound, Findings& findings) {
         "The file was compressed with loss, which can shorten a decay. Record as WAV or FLAC.");
 }
 
+void refuse_unusable(const Recording& recording, std::size_t samples, bool finite) {
+    if (samples >= 16 && finite) return;
+    throw InputError(Problem{recording.origin.file, "track " + recording.origin.channel,
+                             finite ? fmt::format("only {} samples can be read", samples)
+                                    : std::string("there are samples that are no numbers"),
+                             "The file may be cut or damaged; export it again as WAV."});
+}
+
+// Frames in one part of a long recording: what is known of it is kept part by part.
+constexpr std::size_t part_frames = std::size_t{1} << 18;
+
+class LongSound final : public LongRecording {
+  public:
+    LongSound(std::shared_ptr<const InputBytes> input, const ReadOptions& options, Recording facts,
+              const LongLimits& limits)
+        : input_(std::move(input)), sound_(input_->view(), facts.origin.file) {
+        facts_ = std::move(facts);
+        limits_ = limits;
+        report_cut(input_->view(), facts_.findings);
+        report_lossy(sound_, facts_.findings);
+        track_ = choose_track(sound_, options, limits.stretch, facts_.findings);
+        facts_.origin.channel = std::to_string(track_ + 1);
+        facts_.clock.sample_rate_hz = options.rate_hz.value_or(static_cast<double>(sound_.info().samplerate));
+        factor_ = scale_track(sound_, options, facts_);
+        examine(options.progress);
+    }
+
+    [[nodiscard]] Recording stretch(SampleRange range) const override {
+        Recording part = like_facts(range);
+        part.clock.start_s = facts_.clock.time_of(range.begin);
+        part.samples.reserve(range.end - range.begin);
+        const std::scoped_lock lock(guard_);
+        sound_.for_each_block_from(
+            static_cast<sf_count_t>(range.begin), static_cast<sf_count_t>(range.end - range.begin),
+            [&](const std::vector<double>& block, std::size_t frames) { take(block, frames, part.samples); });
+        if (part.samples.size() < range.end - range.begin)
+            throw InputError(Problem{facts_.origin.file, "track " + facts_.origin.channel,
+                                     "the file has become shorter while it was read",
+                                     "Analyse it when the recorder has finished."});
+        return part;
+    }
+
+  private:
+    void take(const std::vector<double>& block, std::size_t frames, std::vector<double>& samples) const {
+        for (std::size_t f = 0; f < frames; ++f)
+            samples.push_back(block[f * sound_.channels() + track_] * factor_);
+    }
+
+    void examine(const ReadProgress& progress) {
+        const auto claimed = static_cast<double>(std::max<sf_count_t>(sound_.info().frames, 1));
+        std::vector<double> samples;
+        bool finite = true;
+        sound_.for_each_block([&](const std::vector<double>& block, std::size_t frames) {
+            take(block, frames, samples);
+            if (samples.size() < part_frames) return;
+            finite = finite && add_part(samples);
+            if (progress) progress(std::min(1.0, static_cast<double>(size_) / claimed));
+        });
+        finite = add_part(samples) && finite;
+        refuse_unusable(facts_, size_, finite);
+        last_s_ = facts_.clock.time_of(size_ - 1);
+        gather_health();
+    }
+
+    bool add_part(std::vector<double>& samples) {
+        const bool finite =
+            std::all_of(samples.begin(), samples.end(), [](double v) { return std::isfinite(v); });
+        if (!samples.empty()) parts_.push_back({size_, digest_of(samples)});
+        size_ += samples.size();
+        samples.clear();
+        return finite;
+    }
+
+    void gather_health() {
+        SignalDigest whole;
+        overview_ = like_facts({0, 0});
+        for (DigestedPart& part : parts_) {
+            append(whole, part.digest);
+            add_overview(part.digest, facts_.clock.time_of(part.begin),
+                         facts_.clock.time_of(part.begin + part.digest.count), overview_);
+            part.digest.blocks = {};
+        }
+        overview_.clock.start_s = overview_.clock.times_s.front();
+        if (whole.low != whole.high) facts_.resolution = whole.smallest_step;
+        facts_.clipped = clipped_runs(*this, parts_, whole);
+        const double clipped_s =
+            facts_.clipped.empty() ? 0.0 : facts_.clock.time_of(facts_.clipped.front().begin);
+        report_health(facts_, whole.low, whole.high, clipped_s);
+    }
+
+    std::shared_ptr<const InputBytes> input_;
+    mutable std::mutex guard_;
+    mutable SoundFile sound_;
+    std::size_t track_ = 0;
+    double factor_ = 1.0;
+    std::vector<DigestedPart> parts_;
+};
+
 }  // namespace
+
+std::size_t frames_stated(std::string_view bytes, const std::string& file) {
+    return static_cast<std::size_t>(std::max<sf_count_t>(SoundFile(bytes, file).info().frames, 0));
+}
+
+std::unique_ptr<LongRecording> open_long_sound(std::shared_ptr<const InputBytes> input,
+                                               const ReadOptions& options, Recording facts,
+                                               const LongLimits& limits) {
+    auto recording = std::make_unique<LongSound>(std::move(input), options, std::move(facts), limits);
+    if (recording->size() <= limits.held_whole) return nullptr;
+    return recording;
+}
 
 bool is_sound(std::string_view bytes) {
     static constexpr std::string_view signs[] = {"RIFF"sv, "RIFX"sv,   "RF64"sv, "riff\x2E\x91\xCF\x11"sv,
@@ -310,18 +319,16 @@ void read_sound(std::string_view bytes, const ReadOptions& options, Recording& r
     SoundFile sound(bytes, recording.origin.file);
     report_cut(bytes, recording.findings);
     report_lossy(sound, recording.findings);
-    const std::size_t track = choose_track(sound, options, recording.findings);
+    const std::size_t track = choose_track(sound, options, 0, recording.findings);
     recording.origin.channel = std::to_string(track + 1);
     recording.samples = read_track(sound, track, options.progress);
     const bool finite = std::all_of(recording.samples.begin(), recording.samples.end(),
                                     [](double v) { return std::isfinite(v); });
-    if (recording.samples.size() < 16 || !finite)
-        throw InputError(Problem{recording.origin.file, "track " + recording.origin.channel,
-                                 finite ? fmt::format("only {} samples can be read", recording.samples.size())
-                                        : std::string("there are samples that are no numbers"),
-                                 "The file may be cut or damaged; export it again as WAV."});
+    refuse_unusable(recording, recording.samples.size(), finite);
     recording.clock.sample_rate_hz = options.rate_hz.value_or(static_cast<double>(sound.info().samplerate));
-    scale_track(sound, options, recording);
+    const double factor = scale_track(sound, options, recording);
+    if (factor != 1.0)
+        for (double& sample : recording.samples) sample *= factor;
 }
 
 void summarise_sound(std::string_view bytes, const ReadOptions&, FileSummary& summary) {
