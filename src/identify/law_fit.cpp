@@ -38,6 +38,10 @@ double rows_of(const CurveFit& fit) {
     return fit.noise.degrees_of_freedom + static_cast<double>(fit.map.cols());
 }
 
+// What compression and rebound share, frequency and damping ratio hardly feel; the other terms move both by
+// many times what the viscous fit is uncertain by, and are believed at a tenth of the level.
+constexpr double strict_share = 0.1;
+
 // What one more term has to gain.
 double price_of_term(double rows) {
     static const double by_chance =
@@ -340,6 +344,17 @@ bool rings_too_long(const CurveFit& fit) {
 
 namespace {
 
+// What a law has to gain beyond the price of its terms. A decay that is over within a swing shows one
+// amplitude at a time, and slow noise stands for any law: twice the price is asked there.
+double surcharge(const LawTerms& terms, const CurveFit& viscous) {
+    constexpr double over_in_a_swing = 0.6;
+    if (viscous.oscillator().damping_ratio() > over_in_a_swing)
+        return price_of_term(rows_of(viscous)) * terms.count();
+    if (terms.asymmetry) return 0.0;
+    const double level = richer_law_level / static_cast<double>(extra_terms.size());
+    return chi_squared_quantile(1.0 - strict_share * level, 1.0) - chi_squared_quantile(1.0 - level, 1.0);
+}
+
 bool rings_enough(const CurveFit& fit) {
     const Oscillator& o = fit.oscillator();
     if (o.damping_ratio() > most_damping) return false;
@@ -581,10 +596,12 @@ bool settle_branches(LawFit& fit) {
 // What the criterion does not know is how little a short record tells of slow noise, which a term may stand
 // for: with the noise integrated over what it may be, one of the terms at least has to differ from nothing.
 bool stands_out_of_noise(const LawFit& fit) {
-    const double level = 1.0 - richer_law_level / static_cast<double>(extra_terms.size());
+    const double terms = static_cast<double>(extra_terms.size());
     return std::ranges::any_of(extra_terms, [&](LawParameter p) {
         const auto row = fit.row_of(p);
         if (!row) return false;
+        const double share = p == LawParameter::asymmetry ? 1.0 : strict_share;
+        const double level = 1.0 - share * richer_law_level / terms;
         VectorXd gradient = VectorXd::Zero(fit.curve.map.rows());
         gradient(*row) = 1.0;
         const Spread spread = spread_of(fit.curve, gradient);
@@ -604,8 +621,8 @@ std::optional<LawFit> choose_law(const CurveFit& viscous, const Recording& recor
         const auto trial = without_components(viscous, options.near_hz.has_value(), keep_slow_terms);
         if (!trial || !rings_enough(*trial)) continue;
         LawFit law = law_from(*trial, measured_of(recording.quantity), leaves_more_than_noise(*trial, event));
-        const bool beats =
-            law.terms.count() > 0 && law.criterion < criterion_with_components(viscous, *trial);
+        const bool beats = law.terms.count() > 0 && law.criterion + surcharge(law.terms, *trial) <
+                                                        criterion_with_components(viscous, *trial);
         if (!beats || (chosen && chosen->criterion < law.criterion)) continue;
         chosen = std::move(law);
         plain = trial;
