@@ -42,8 +42,7 @@ double Oscillator::slowest_rate() const {
 }
 
 Index DecayModel::nonlinear_count() const {
-    return static_cast<Index>(2 * oscillators.size() + tones.size() + real_poles.size()) +
-           (release ? 1 : 0);
+    return static_cast<Index>(2 * oscillators.size() + tones.size() + real_poles.size()) + (release ? 1 : 0);
 }
 
 Index DecayModel::linear_count() const {
@@ -51,7 +50,8 @@ Index DecayModel::linear_count() const {
 }
 
 Index DecayModel::first_tone_column() const {
-    return first_oscillator_column() + static_cast<Index>(2 * oscillators.size()) - (release ? 1 : 0);
+    return first_oscillator_column() + static_cast<Index>(2 * oscillators.size()) -
+           (has_one_column() ? 1 : 0);
 }
 
 VectorXd DecayModel::parameters() const {
@@ -222,7 +222,10 @@ MatrixXd linear_columns(const DecayModel& model, const DecaySamples& samples) {
             const OscillatorConstants k(model.oscillators[i]);
             if (i == 0 && model.release) {
                 const Kernels kernels = kernels_since(k, time, *model.release);
-                out.col(column++) = kernels.c + k.decay * kernels.s;
+                const ArrayXd falling = kernels.c + k.decay * kernels.s;
+                const auto after = time.array() >= *model.release;
+                out.col(column++) = model.let_go_slowly ? after.select(falling, 0.0).eval() : falling;
+                if (model.let_go_slowly) out.col(column++) = after.select(ArrayXd::Zero(time.size()), 1.0);
                 continue;
             }
             const Kernels kernels = kernels_at(k, time, common_step(samples), samples.stretches);
@@ -250,7 +253,7 @@ MatrixXd derivative_columns(const DecayModel& model, const DecaySamples& samples
                 out.col(column++) = coefficients(linear) * derivatives.by_damping;
                 out.col(column++) = coefficients(linear) * derivatives.by_log_frequency;
                 out.col(out.cols() - 1) = coefficients(linear) * derivatives.by_release;
-                ++linear;
+                linear += model.has_one_column() ? 1 : 2;
                 continue;
             }
             const double a = coefficients(linear), b = coefficients(linear + 1);
@@ -282,7 +285,7 @@ double start_amplitude(const DecayModel& model, const VectorXd& coefficients, st
         const double a = std::abs(coefficients(column));
         return k.p <= 0.0 ? a * (1.0 + k.decay / k.omega) : a * std::hypot(1.0, k.decay / k.root);
     }
-    const Index own = column - (model.release ? 1 : 0);
+    const Index own = column - (model.has_one_column() ? 1 : 0);
     const double a = coefficients(own), b = coefficients(own + 1);
     if (k.p <= 0.0) return std::abs(a) + std::abs(b);
     return std::hypot(a, b * k.omega / k.root);

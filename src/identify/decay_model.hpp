@@ -38,10 +38,15 @@ struct DecayModel {
     /// The first oscillator is held still until this instant (s, on the samples' clock) and then released
     /// from rest: y = A until then and A e^(−s t) [C + s S] after it. It has one column instead of two.
     std::optional<double> release{};
+    /// What is held has a height of its own, and the decay from the release on keeps both columns: a mass
+    /// that is let go within τ starts as if it were let go at once from 1 + (ωτ)²/24 times its displacement.
+    bool let_go_slowly = false;
 
     [[nodiscard]] Eigen::Index nonlinear_count() const;
     [[nodiscard]] Eigen::Index linear_count() const;
     [[nodiscard]] Eigen::Index first_oscillator_column() const { return drift ? 2 : 1; }
+    /// Of the first oscillator: it is released at once.
+    [[nodiscard]] bool has_one_column() const { return release && !let_go_slowly; }
     [[nodiscard]] Eigen::Index first_tone_column() const;
     [[nodiscard]] Eigen::VectorXd parameters() const;
     void set_parameters(const Eigen::VectorXd& parameters);
@@ -63,8 +68,8 @@ struct DecaySamples {
     [[nodiscard]] Eigen::Index size() const { return time.size(); }
 };
 
-/// Columns of the linear part: 1 [, t/T], then (C, ωS) of each oscillator (C + sS of one that is released from
-/// rest), (cos, sin) of each tone, each real pole.
+/// Columns of the linear part: 1 [, t/T], then (C, ωS) of each oscillator (C + sS of one that is released
+/// from rest; where it is let go slowly that and then what is held), (cos, sin) of each tone, each real pole.
 [[nodiscard]] Eigen::MatrixXd linear_columns(const DecayModel& model, const DecaySamples& samples);
 /// Derivative of columns · coefficients with respect to each nonlinear parameter: (z, w) of each oscillator,
 /// tones, real poles, the release.

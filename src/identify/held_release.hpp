@@ -13,16 +13,19 @@ namespace ringwright::identify {
 /// Noise hides when a displaced mass is let go for about √(2σ/x₀)/ω. In a light decay that is a small part of
 /// many cycles; in one that is over within a cycle, a start on the plateau takes it for a slower decay, by
 /// more than any interval for a known start allows. Here the instant of the release is a parameter of the fit
-/// and its uncertainty goes into every interval.
+/// and its uncertainty goes into every interval. A hand or a clamp lets go within a tenth of a period: where
+/// the recording can tell, the decay begins at a height of its own (`DecayModel::let_go_slowly`).
 struct HeldRelease {
     CurveFit curve;              ///< of plateau and decay, `fit.model.release` set
     double release_s = 0.0;      ///< on the recording's clock
     double uncertainty_s = 0.0;  ///< of the release
+    bool explained = true;       ///< noise explains what is left about the release (one false alarm in 100)
 
-    /// Seen within 0.8 % of a period (about 30 dB): then a decay that is taken from safely behind the release
-    /// says as much and does not suppose that the article was let go at once and from rest.
+    /// Seen within 0.05 % of a period, or let go in a way that the model does not know: then a decay that is
+    /// taken from safely behind the release says as much and supposes nothing of how the article was let go.
     [[nodiscard]] bool sharp() const;
-    /// The event with its start three uncertainties behind the release.
+    /// The event with its start three uncertainties behind the release, or a tenth of a period where the
+    /// model does not explain it.
     [[nodiscard]] Event behind(const Event& event, const Recording& recording) const;
 };
 

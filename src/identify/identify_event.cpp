@@ -232,18 +232,29 @@ struct Explanation {
     [[nodiscard]] const CurveFit& answer() const { return law ? law->curve : held ? *held : viscous; }
 };
 
+// The viscous fit made again from behind the release, and plateau, release and decay as the answer unless the
+// release is sharp.
+void take_held(Explanation& explanation, HeldRelease held, const Recording& recording,
+               const CurveFitOptions& options) {
+    CurveFit& viscous = explanation.viscous;
+    explanation.event = held.behind(explanation.event, recording);
+    const bool too_early = viscous.window.begin < explanation.event.begin;
+    CurveFit later = fit_decay(recording, explanation.event, options);
+    if (!held.sharp()) explanation.held = std::move(held.curve);
+    if (explanation.held || (too_early && later.valid)) viscous = std::move(later);
+}
+
 Explanation explain(const Recording& recording, const Event& event, const CurveFitOptions& options) {
     Explanation explanation{event, fit_decay(recording, event, options), std::nullopt, std::nullopt};
     CurveFit& viscous = explanation.viscous;
     auto held = fit_held_release(viscous, recording, event, options);
-    if (held) {
-        explanation.event = held->behind(event, recording);
-        const bool too_early = viscous.window.begin < explanation.event.begin;
-        CurveFit later = fit_decay(recording, explanation.event, options);
-        if (!held->sharp()) explanation.held = std::move(held->curve);
-        if (explanation.held || (too_early && later.valid)) viscous = std::move(later);
-    } else {
+    if (!held || !held->explained)
         explanation.law = law_from_earlier_start(viscous, recording, event, options);
+    if (held && !explanation.law) {
+        const double start_s = recording.clock.time_of(viscous.window.begin);
+        if (start_s > held->release_s + held->uncertainty_s)
+            explanation.law = choose_law(viscous, recording, event, options);
+        take_held(explanation, std::move(*held), recording, options);
     }
     if (!explanation.law) explanation.law = choose_law(viscous, recording, explanation.event, options);
     if (explanation.law) explanation.held.reset();

@@ -114,6 +114,14 @@ TEST_CASE("released from rest: still before, the pair of columns after, and the 
             CHECK(columns(i, 1) == Approx(both(i, 1) + ratio * both(i, 2)).epsilon(1e-12).margin(1e-12));
         INFO("damping ratio " << ratio);
         check_derivatives(model, samples);
+
+        model.let_go_slowly = true;  // the same fall, and what is held in a column of its own
+        const MatrixXd apart = linear_columns(model, samples);
+        REQUIRE(apart.cols() == model.linear_count());
+        CHECK((apart.col(1) + apart.col(2) - columns.col(1)).cwiseAbs().maxCoeff() < 1e-15);
+        CHECK(apart(75, 1) == 0.0);
+        CHECK(apart(76, 2) == 0.0);
+        check_derivatives(model, samples);
     }
 }
 

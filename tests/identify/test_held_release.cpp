@@ -62,6 +62,53 @@ TEST_CASE("a start on the plateau does not spoil the intervals of a heavily damp
     }
 }
 
+TEST_CASE("a release that takes a tenth of a period does not spoil the intervals") {
+    // 60 recordings, limit as above. Taken for a release at once, the damping ratio is held in a quarter.
+    IdentifyOptions options;
+    options.replicates = 0;
+    int frequency = 0, ratio = 0;
+    for (std::uint64_t seed = 7400; seed < 7460; ++seed) {
+        simulated::Truth truth;
+        truth.damping_ratio = 0.3;
+        truth.cycles = 5.0;
+        truth.signal_to_noise_db = 40.0;
+        truth.held_cycles = 1.0;
+        truth.letting_go_cycles = 0.1;
+        simulated::Deviates deviates(seed);
+        const simulated::Sample sample = simulated::draw(truth, deviates);
+        const EventSearch found = find_events(sample.recording);
+        REQUIRE(found.events.size() == 1);
+        const EventIdentification result = identify_event(sample.recording, found.events.front(), options);
+        frequency += holds(result.curve_fit.quantities, Quantity::natural_frequency, 5.0);
+        ratio += holds(result.curve_fit.quantities, Quantity::damping_ratio, 0.3);
+    }
+    CHECK(frequency >= 51);
+    CHECK(ratio >= 51);
+}
+
+TEST_CASE("beyond critical damping a start behind the release would throw away what tells the damping") {
+    // 40 recordings. Errors within five of the Cramér-Rao bound of a known release, which a release that is
+    // not known does not quite reach (scatter 1.3 of it). A start three uncertainties behind left one in ten
+    // beyond.
+    IdentifyOptions options;
+    options.replicates = 0;
+    for (std::uint64_t seed = 7500; seed < 7540; ++seed) {
+        simulated::Truth truth;
+        truth.damping_ratio = 1.5;
+        truth.cycles = 5.0;
+        truth.signal_to_noise_db = 40.0;
+        truth.held_cycles = 1.0;
+        simulated::Deviates deviates(seed);
+        const simulated::Sample sample = simulated::draw(truth, deviates);
+        const EventSearch found = find_events(sample.recording);
+        REQUIRE(found.events.size() == 1);
+        const EventIdentification result = identify_event(sample.recording, found.events.front(), options);
+        const double error = result.curve_fit.quantities.at(Quantity::damping_ratio).value - 1.5;
+        INFO("seed " << seed);
+        CHECK(std::abs(error) < 5.0 * simulated::cramer_rao(truth).damping_ratio);
+    }
+}
+
 TEST_CASE("the release is found within what is said of it") {
     // Four standard uncertainties: one false alarm in 16,000 for each.
     for (std::uint64_t seed = 7200; seed < 7210; ++seed) {

@@ -23,6 +23,18 @@ double pluck(double frequency_hz, double zeta, double t) {
     return 0.5 * (slow + fast) + 0.5 * s * (slow - fast) / root;
 }
 
+// The same where the holding force falls to nothing along a straight line: the mean of releases at each
+// instant of it, by the midpoint rule.
+double let_go(const Truth& truth, double t) {
+    const double length = truth.letting_go_cycles / truth.frequency_hz;
+    if (length == 0.0) return pluck(truth.frequency_hz, truth.damping_ratio, t);
+    constexpr int parts = 50;
+    double sum = 0.0;
+    for (int i = 0; i < parts; ++i)
+        sum += pluck(truth.frequency_hz, truth.damping_ratio, t - length * (i + 0.5) / parts);
+    return sum / parts;
+}
+
 }  // namespace
 
 double Deviates::normal() {
@@ -56,7 +68,7 @@ Sample draw(const Truth& truth, Deviates& deviates) {
         const double jitter = truth.jitter_share * deviates.normal() / rate;
         const double t = (static_cast<double>(i) - static_cast<double>(held)) / rate + jitter;
         if (truth.jitter_share > 0.0) recording.clock.times_s.push_back(t);
-        double y = pluck(truth.frequency_hz, truth.damping_ratio, t) + truth.offset + noise;
+        double y = let_go(truth, t) + truth.offset + noise;
         y += truth.hum_share * std::sin(two_pi * truth.hum_hz * t + hum_phase);
         if (truth.clip_share > 0.0) {
             const double high = truth.offset + truth.clip_share, low = truth.offset - truth.clip_share;

@@ -19,10 +19,11 @@ struct Truth {
     double noise_correlation = 0.0;    // φ of AR(1) noise
     double hum_share = 0.0;            // amplitude of 50 Hz hum over the start amplitude
     double hum_hz = 50.0;
-    int bits = 0;               // 0: not quantised; else steps over ±1.2 start amplitudes
-    double clip_share = 0.0;    // rail as share of the start amplitude; 0: no rail
-    double jitter_share = 0.0;  // standard deviation of the sampling instants in steps
-    double held_cycles = 0.0;   // plateau before the release, undamped periods
+    int bits = 0;                    // 0: not quantised; else steps over ±1.2 start amplitudes
+    double clip_share = 0.0;         // rail as share of the start amplitude; 0: no rail
+    double jitter_share = 0.0;       // standard deviation of the sampling instants in steps
+    double held_cycles = 0.0;        // plateau before the release, undamped periods
+    double letting_go_cycles = 0.0;  // over which the holding force falls to nothing, undamped periods
     double offset = 0.3;
 };
 
