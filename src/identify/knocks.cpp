@@ -29,7 +29,7 @@ struct Blocks {
 };
 
 double robust_variance(const VectorXd& innovations) {
-    std::vector<double> squares(innovations.size());
+    std::vector<double> squares(static_cast<std::size_t>(innovations.size()));
     for (std::size_t i = 0; i < squares.size(); ++i)
         squares[i] = innovations(static_cast<Index>(i)) * innovations(static_cast<Index>(i));
     const auto middle = squares.begin() + static_cast<std::ptrdiff_t>(squares.size() / 2);

@@ -6,6 +6,7 @@
 #include <array>
 #include <cmath>
 #include <cstdint>
+#include <limits>
 
 #include "report/text_table.hpp"
 #include "ringwright/inspection.hpp"
@@ -28,10 +29,18 @@ Extremes extremes_of(const std::vector<double>& samples) {
     if (!(extremes.low <= extremes.high)) return {-1.0, 1.0};
     // A constant gets a band to lie in.
     if (extremes.low == extremes.high) {
+        constexpr double most = std::numeric_limits<double>::max();
         const double room = extremes.low == 0.0 ? 1.0 : 0.1 * std::abs(extremes.low);
-        return {extremes.low - room, extremes.high + room};
+        return {std::max(extremes.low - room, -most), std::min(extremes.high + room, most)};
     }
     return extremes;
+}
+
+/// Where in the range, 0 at its top and 1 at its bottom. Halves, as samples of ±1e308 are further apart than
+/// a double can say; a range too narrow to be divided has its middle only.
+double depth_in(const Extremes& range, double value) {
+    const double span = 0.5 * range.high - 0.5 * range.low;
+    return span > 0.0 ? std::clamp((0.5 * range.high - 0.5 * value) / span, 0.0, 1.0) : 0.5;
 }
 
 /// Dots, 2 × 4 to a character.
@@ -121,8 +130,8 @@ void draw_curve(Canvas& canvas, const Recording& recording, const Extremes& rang
     const auto columns = static_cast<double>(canvas.dot_columns());
     const bool sparse = recording.size() > 1 && recording.size() < canvas.dot_columns();
     const auto row_of = [&](double value) {
-        const double part = std::clamp((range.high - value) / (range.high - range.low), 0.0, 1.0);
-        return static_cast<std::size_t>(std::lround(part * static_cast<double>(canvas.dot_rows() - 1)));
+        const double lowest = static_cast<double>(canvas.dot_rows() - 1);
+        return static_cast<std::size_t>(std::lround(depth_in(range, value) * lowest));
     };
     for (std::size_t column = 0; column < canvas.dot_columns(); ++column) {
         const double from = axis.at(static_cast<double>(column) / columns);
@@ -140,8 +149,8 @@ std::string event_bars(const Recording& recording, const std::vector<Event>& eve
     const auto cell_of = [&](std::size_t sample) {
         const double time = recording.clock.time_of(std::min(sample, recording.size() - 1));
         const double part = (time - axis.start_s) / (axis.end_s - axis.start_s);
-        return std::min(static_cast<std::size_t>(std::max(part, 0.0) * static_cast<double>(width)),
-                        width - 1);
+        const double inside = part > 0.0 ? std::min(part, 1.0) : 0.0;  // 0 too where no time passes
+        return std::min(static_cast<std::size_t>(inside * static_cast<double>(width)), width - 1);
     };
     for (std::size_t i = 0; i < events.size(); ++i) {
         const std::size_t first = cell_of(events[i].begin), last = std::max(first, cell_of(events[i].end));

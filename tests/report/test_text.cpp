@@ -106,3 +106,20 @@ TEST_CASE("a drawing of few, constant or missing samples") {
     event.end = 3;
     CHECK(lines_of(draw(recording_of({0.0, 1.0, -1.0}), {event}, 60, 4))[4].find("1") != std::string::npos);
 }
+
+TEST_CASE("a drawing of samples at the end of the range of doubles") {
+    // 3·10³⁰⁸ apart is more than a double can say; damaged sound files of 64-bit floats hold such samples.
+    Recording recording = recording_of({1.5e308, -1.5e308, 1.5e308});
+    recording.unit = {"m", Dimension::length, 1.0};
+    const std::vector<std::string> apart = lines_of(draw(recording, {}, 60, 4));
+    REQUIRE(apart.size() == 5);
+    CHECK(apart[0].starts_with("  1.5e+308▕"));
+    CHECK(apart[3].starts_with(" -1.5e+308▕"));
+    for (const double end : {std::numeric_limits<double>::max(), std::numeric_limits<double>::denorm_min()}) {
+        recording.samples = {end, end, end};
+        const std::string constant = draw(recording, {}, 60, 4);
+        CHECK(lines_of(constant).size() == 5);
+        CHECK(constant.find("nan") == std::string::npos);
+        CHECK(constant.find("inf") == std::string::npos);
+    }
+}
