@@ -279,7 +279,9 @@ EventIdentification identify_event(const Recording& recording, const Event& even
     const std::optional<LawFit>& law = explanation.law;
     const CurveFit& fit = explanation.fit();
     result.event = explanation.event;
-    result.start_s = recording.clock.time_of(result.event.begin);
+    // A law may have been fitted from earlier on than the search for viscous decays saw.
+    result.start_s = recording.clock.time_of(law ? std::min(result.event.begin, law->curve.window.begin)
+                                                 : result.event.begin);
     result.end_s = recording.clock.time_of(event.end > event.begin ? event.end - 1 : event.begin);
     result.curve_fit = law ? law_result(*law, recording, options)
                            : curve_fit_result(explanation.answer(), options.confidence_level);

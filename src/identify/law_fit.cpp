@@ -55,6 +55,30 @@ double criterion_of(const CurveFit& fit, int terms) {
            std::log(rows) * static_cast<double>(fit.noise.noise.order()) + price_of_term(rows) * terms;
 }
 
+// What stands beside offset and mode: each parameter costs, and the frequency of a tone or a further mode was
+// searched for among half as many as there are rows.
+double price_beside(const CurveFit& fit, Index parameters, std::size_t searched) {
+    const double rows = rows_of(fit);
+    return std::log(rows) * static_cast<double>(parameters) +
+           2.0 * std::log(0.5 * rows) * static_cast<double>(searched);
+}
+
+double criterion_of(const CurveFit& viscous) {
+    constexpr Index offset_and_mode = 5;
+    const DecayModel& model = viscous.fit.model;
+    return criterion_of(viscous, 0) + price_beside(viscous, viscous.map.rows() - offset_and_mode,
+                                                   model.oscillators.size() - 1 + model.tones.size());
+}
+
+double criterion_of(const LawFit& fit) {
+    constexpr Index offset = 1;
+    const DecayModel& others = fit.state.others;
+    const auto law = static_cast<Index>(fit.model().free().size());
+    return criterion_of(fit.curve, fit.terms.count()) +
+           price_beside(fit.curve, fit.curve.map.rows() - offset - law,
+                        others.oscillators.size() + others.tones.size());
+}
+
 // The mode meant as a law of no other terms, in units of its own frequency.
 DampingLaw viscous_law(const CurveFit& fit, Measured measured) {
     const Oscillator& o = fit.oscillator();
@@ -174,7 +198,7 @@ bool settle_law(LawFit& fit) {
         if (still && fit.curve.noise.noise.order() == order) break;
         order = fit.curve.noise.noise.order();
     }
-    fit.criterion = criterion_of(fit.curve, fit.terms.count());
+    fit.criterion = criterion_of(fit);
     return std::isfinite(fit.criterion);
 }
 
@@ -227,8 +251,12 @@ std::vector<LawState> starts_with(const LawFit& fit, LawParameter added) {
                     changed(0.4 * s, 0.6 * s * 3.0 * pi / (2.0 * swing))};
         case LawParameter::asymmetry:
             return {changed(s, 0.1 * s), changed(s, -0.1 * s)};
-        default:
-            return {changed(s, 0.0)};
+        default: {  // also as strong as the softening and hardening that move the frequency by a tenth
+            LawState soft = changed(s, -0.25 / (swing * swing)), hard = changed(s, 0.25 / (swing * swing));
+            soft.law[LawParameter::log_frequency] += 0.05;
+            hard.law[LawParameter::log_frequency] -= 0.05;
+            return {changed(s, 0.0), soft, hard};
+        }
     }
 }
 
@@ -276,6 +304,42 @@ std::optional<LawFit> with_term(const LawFit& fit, LawParameter added) {
     return trial;
 }
 
+// The best branch under the noise as it is now known, and the others that are not far behind.
+bool settle_branches(LawFit& fit) {
+    constexpr double least_weight = 1e-3;
+    for (int round = 0; round < 2; ++round) {
+        const LawModel model = fit.model();
+        const AutoregressiveNoise& noise = fit.curve.noise.noise;
+        const auto here = fit_once(fit, model, fit.state, noise, later_evaluations);
+        if (!here) return true;
+        const std::vector<Found> others =
+            neighbours_of(fit, model, here->state, noise, {0.75, 0.88, 0.94, 1.06, 1.12, 1.3});
+        fit.branches.clear();
+        if (others.empty()) return true;
+        if (least(others).residual_sum < here->residual_sum - 1e-3 * noise.innovation_variance) {
+            fit.state = least(others).state;
+            if (!settle_law(fit)) return false;
+            continue;
+        }
+        for (const Found& other : others) {
+            const double behind = (other.residual_sum - here->residual_sum) / noise.innovation_variance;
+            const double moved =
+                other.state.law[LawParameter::friction] / fit.state.law[LawParameter::friction];
+            const auto same = [&](const LawBranch& branch) {
+                return std::abs(branch.state.law[LawParameter::friction] /
+                                    other.state.law[LawParameter::friction] -
+                                1.0) < 1e-3;
+            };
+            const double weight = std::exp(-0.5 * behind);
+            if (weight > least_weight && std::abs(moved - 1.0) > 1e-3 &&
+                std::ranges::none_of(fit.branches, same))
+                fit.branches.push_back({other.state, weight});
+        }
+        return true;
+    }
+    return true;
+}
+
 // The terms whose own score comes near the best one's; strong friction, which is far from a small change of a
 // viscous decay, always.
 std::vector<LawParameter> worth_trying(const LawFit& fit, const std::vector<LawParameter>& terms) {
@@ -293,7 +357,7 @@ std::vector<LawParameter> worth_trying(const LawFit& fit, const std::vector<LawP
 }
 
 // Adds terms one by one while each is worth its price. `misfit`: something is known to be left over, whatever
-// the score says; strong friction is then the one that is far from a small change.
+// the score says, which knows only small changes; then every term is tried.
 LawFit grown(LawFit fit, bool misfit = false) {
     while (fit.terms.count() < most_terms) {
         const std::vector<LawParameter> missing = terms_not_in(fit.terms);
@@ -301,14 +365,15 @@ LawFit grown(LawFit fit, bool misfit = false) {
         const bool looks_needless = !score || *score < price_of_term(rows_of(fit.curve));
         if (looks_needless && !(misfit && fit.terms.count() == 0)) break;
         std::optional<LawFit> best;
-        const std::vector<LawParameter> tried =
-            looks_needless ? std::vector{LawParameter::friction} : worth_trying(fit, missing);
+        const std::vector<LawParameter> tried = looks_needless ? missing : worth_trying(fit, missing);
         for (const LawParameter added : tried) {
             auto trial = with_term(fit, added);
             if (trial && (!best || trial->criterion < best->criterion)) best = std::move(trial);
         }
         if (!best || best->criterion >= fit.criterion) break;
         fit = std::move(*best);
+        // A second term makes up for a wrong number of half swings before friction stops the mass.
+        if (fit.terms.friction && fit.terms.count() == 1 && !settle_branches(fit)) break;
     }
     return fit;
 }
@@ -449,12 +514,6 @@ std::optional<CurveFit> without_components(const CurveFit& fit, bool mode_given,
     return plain;
 }
 
-// Criterion of the fit with its further modes and tones, each parameter of which costs.
-double criterion_with_components(const CurveFit& fit, const CurveFit& plain) {
-    const auto added = static_cast<double>(fit.map.rows() - plain.map.rows());
-    return criterion_of(fit, 0) + std::log(rows_of(fit)) * added;
-}
-
 // Findings about components that were put aside no longer hold.
 void name_components_anew(CurveFit& fit) {
     std::erase_if(fit.findings, [](const Finding& finding) {
@@ -500,6 +559,61 @@ bool leaves_more_than_noise(const CurveFit& fit, const Event& event) {
     return std::sqrt(fit.noise.noise.variance()) * fit.samples.scale > clearly * event.noise_level;
 }
 
+// Takes a drift, a mode (but the first `kept`), a tone or a pole out of the model and its coefficients; false
+// where there is none of that number.
+bool erase_component(DecayModel& model, VectorXd& coefficients, std::size_t number, std::size_t kept) {
+    const auto at = [](auto& list, std::size_t i) { return list.begin() + static_cast<std::ptrdiff_t>(i); };
+    Index column = 1, columns = 2;
+    std::size_t i = number;
+    if (model.drift && i-- == 0) {
+        columns = 1;
+        model.drift = false;
+    } else if (i < model.oscillators.size() - kept) {
+        column = model.first_oscillator_column() + 2 * static_cast<Index>(kept + i);
+        model.oscillators.erase(at(model.oscillators, kept + i));
+    } else if ((i -= model.oscillators.size() - kept) < model.tones.size()) {
+        column = model.first_tone_column() + 2 * static_cast<Index>(i);
+        model.tones.erase(at(model.tones, i));
+    } else if ((i -= model.tones.size()) < model.real_poles.size()) {
+        columns = 1;
+        column = model.linear_count() - static_cast<Index>(model.real_poles.size() - i);
+        model.real_poles.erase(at(model.real_poles, i));
+    } else {
+        return false;
+    }
+    const VectorXd all = coefficients;
+    coefficients.resize(all.size() - columns);
+    coefficients << all.head(column), all.tail(all.size() - column - columns);
+    return true;
+}
+
+// The fit with one component less; nothing where there is none of that number.
+std::optional<LawFit> without_component(const LawFit& fit, std::size_t number) {
+    LawFit less = fit;
+    ProjectedFit& beside = less.curve.fit;
+    if (!erase_component(less.state.others, less.state.coefficients, number, 0) ||
+        !erase_component(beside.model, beside.coefficients, number, 1))
+        return std::nullopt;
+    return less;
+}
+
+// What stood for the law beside a viscous decay takes from the law what it tells of itself: dropped where it
+// is not worth its price beside the law.
+LawFit without_needless(LawFit fit) {
+    bool dropped = false;
+    for (std::size_t number = 0;;) {
+        auto less = without_component(fit, number);
+        if (!less) break;
+        if (settle_law(*less) && less->criterion < fit.criterion) {
+            fit = std::move(*less);
+            dropped = true;
+        } else {
+            ++number;
+        }
+    }
+    return dropped ? pruned(grown(std::move(fit))) : fit;
+}
+
 // The law that grows from a viscous fit, which is all there is where no term is worth its price.
 LawFit law_from(const CurveFit& viscous, Measured measured, bool misfit) {
     LawFit fit;
@@ -507,8 +621,9 @@ LawFit law_from(const CurveFit& viscous, Measured measured, bool misfit) {
     fit.measured = measured;
     fit.rate = viscous.oscillator().angular_frequency();
     fit.state = viscous_state(viscous, measured);
-    fit.criterion = criterion_of(viscous, 0);
-    return pruned(grown(std::move(fit), misfit));
+    fit.criterion = criterion_of(viscous);
+    fit = pruned(grown(std::move(fit), misfit));
+    return fit.terms.count() > 0 ? without_needless(std::move(fit)) : fit;
 }
 
 // Rows but those that hold a sample next to one of these instants (s).
@@ -557,42 +672,6 @@ LawFit without_jumps(const LawFit& fit) {
     return again.terms.friction ? again : fit;
 }
 
-// The best branch under the noise as it is now known, and the others that are not far behind.
-bool settle_branches(LawFit& fit) {
-    constexpr double least_weight = 1e-3;
-    for (int round = 0; round < 2; ++round) {
-        const LawModel model = fit.model();
-        const AutoregressiveNoise& noise = fit.curve.noise.noise;
-        const auto here = fit_once(fit, model, fit.state, noise, later_evaluations);
-        if (!here) return true;
-        const std::vector<Found> others =
-            neighbours_of(fit, model, here->state, noise, {0.75, 0.88, 0.94, 1.06, 1.12, 1.3});
-        fit.branches.clear();
-        if (others.empty()) return true;
-        if (least(others).residual_sum < here->residual_sum - 1e-3 * noise.innovation_variance) {
-            fit.state = least(others).state;
-            if (!settle_law(fit)) return false;
-            continue;
-        }
-        for (const Found& other : others) {
-            const double behind = (other.residual_sum - here->residual_sum) / noise.innovation_variance;
-            const double moved =
-                other.state.law[LawParameter::friction] / fit.state.law[LawParameter::friction];
-            const auto same = [&](const LawBranch& branch) {
-                return std::abs(branch.state.law[LawParameter::friction] /
-                                    other.state.law[LawParameter::friction] -
-                                1.0) < 1e-3;
-            };
-            const double weight = std::exp(-0.5 * behind);
-            if (weight > least_weight && std::abs(moved - 1.0) > 1e-3 &&
-                std::ranges::none_of(fit.branches, same))
-                fit.branches.push_back({other.state, weight});
-        }
-        return true;
-    }
-    return true;
-}
-
 // What the criterion does not know is how little a short record tells of slow noise, which a term may stand
 // for: with the noise integrated over what it may be, one of the terms at least has to differ from nothing.
 bool stands_out_of_noise(const LawFit& fit) {
@@ -621,8 +700,8 @@ std::optional<LawFit> choose_law(const CurveFit& viscous, const Recording& recor
         const auto trial = without_components(viscous, options.near_hz.has_value(), keep_slow_terms);
         if (!trial || !rings_enough(*trial)) continue;
         LawFit law = law_from(*trial, measured_of(recording.quantity), leaves_more_than_noise(*trial, event));
-        const bool beats = law.terms.count() > 0 && law.criterion + surcharge(law.terms, *trial) <
-                                                        criterion_with_components(viscous, *trial);
+        const bool beats =
+            law.terms.count() > 0 && law.criterion + surcharge(law.terms, *trial) < criterion_of(viscous);
         if (!beats || (chosen && chosen->criterion < law.criterion)) continue;
         chosen = std::move(law);
         plain = trial;

@@ -24,17 +24,30 @@ double period_samples(const LawFit& fit) {
     return two_pi / (fit.rate * fit.state.law.angular_frequency()) * fit.curve.window.rate_hz;
 }
 
+double unrest(const std::vector<double>& samples, std::size_t begin, std::size_t end) {
+    const auto n = static_cast<double>(end - begin);
+    double sum = 0.0, square = 0.0;
+    for (std::size_t i = begin; i < end; ++i) sum += samples[i];
+    for (std::size_t i = begin; i < end; ++i) square += (samples[i] - sum / n) * (samples[i] - sum / n);
+    return std::sqrt(square / (n - 1.0));
+}
+
 std::size_t end_of(const LawFit& fit) {
     return fit.curve.window.begin + fit.curve.window.size();
 }
 
 // Where the motion was `seconds` before: the same equation with friction and damping that drive instead of
 // brake, run forwards in mirrored time.
-void turn_back(const LawModel& model, DampingLaw& law, double seconds) {
+DampingLaw mirrored_in_time(const DampingLaw& law) {
     DampingLaw mirrored = law;
     mirrored[LawParameter::velocity] = -law[LawParameter::velocity];
     for (const LawParameter p : {LawParameter::damping, LawParameter::friction, LawParameter::quadratic})
         mirrored[p] = -law[p];
+    return mirrored;
+}
+
+void turn_back(const LawModel& model, DampingLaw& law, double seconds) {
+    const DampingLaw mirrored = mirrored_in_time(law);
     const LawMotion x = model.motion(mirrored, Measured::displacement, {seconds});
     const LawMotion v = model.motion(mirrored, Measured::velocity, {seconds});
     law[LawParameter::displacement] = x.value(0);
@@ -113,16 +126,73 @@ std::size_t earliest(const LawFit& fit, const Event& event) {
     return fit.curve.window.begin > reach ? fit.curve.window.begin - reach : 0;
 }
 
+// Samples from the fit's first to where the motion turns next to it; below zero before it. Nothing where it
+// turns nowhere near.
+std::optional<double> nearest_turn(const LawFit& fit) {
+    constexpr double near = 0.2;  // periods
+    const LawModel model = fit.model();
+    const double reach_s = near * period_samples(fit) / fit.curve.window.rate_hz;
+    const auto first = [&](const DampingLaw& law) {
+        const auto turns = model.motion(law, Measured::displacement, {reach_s}).reversals;
+        return turns.empty() ? 2.0 * reach_s : turns.front() / fit.rate;
+    };
+    const double before = first(mirrored_in_time(fit.state.law)), after = first(fit.state.law);
+    if (std::min(before, after) > reach_s) return std::nullopt;
+    return (before < after ? -before : after) * fit.curve.window.rate_hz;
+}
+
+// Whether the article lay still until a moment before this sample: no swing turned there, it was let go.
+bool held_until(const LawFit& fit, const Recording& recording, double sample) {
+    constexpr double apart = 0.03, looked_at = 0.5, fewest = 4.0;  // the first two in periods
+    constexpr double loud = 3.0;
+    const double period = period_samples(fit), end = sample - apart * period;
+    const double begin = std::max(0.0, end - looked_at * period);
+    if (end - begin < std::max(fewest, 0.1 * period)) return false;
+    const double noise =
+        std::sqrt(fit.curve.noise.noise.variance() * static_cast<double>(fit.curve.samples.block)) *
+        fit.curve.samples.scale;
+    return unrest(recording.samples, static_cast<std::size_t>(begin), static_cast<std::size_t>(end)) <
+           loud * noise;
+}
+
+// Where an article that was held was let go, in samples of the recording.
+std::optional<double> release_of(const LawFit& fit, const Recording& recording, const Event& event) {
+    if (fit.measured != Measured::displacement || event.by_hand || !event.flights.empty())
+        return std::nullopt;
+    const auto turn = nearest_turn(fit);
+    if (!turn) return std::nullopt;
+    const double release = static_cast<double>(fit.curve.window.begin) + *turn;
+    return held_until(fit, recording, release) ? std::optional(release) : std::nullopt;
+}
+
 // The samples between the release and where it rises above the noise belong to the plateau as well as to the
 // swing; they are left out, as the viscous fit does.
-std::size_t hidden_release(const LawFit& fit, const Event& event) {
+double hidden_release(const LawFit& fit) {
     constexpr double largest_share = 0.03;  // of a period
-    if (fit.measured != Measured::displacement || event.by_hand) return 0;
-    const double amplitude = std::max(std::abs(fit.state.law[LawParameter::displacement]), 1e-3);
+    const double amplitude = std::max(
+        std::hypot(fit.state.law[LawParameter::displacement], fit.state.law[LawParameter::velocity]), 1e-3);
     const double noise =
         std::sqrt(fit.curve.noise.noise.variance() * static_cast<double>(fit.curve.samples.block));
     const double hidden = std::sqrt(2.0 * std::min(noise / amplitude, 1.0)) / two_pi;
-    return static_cast<std::size_t>(std::ceil(std::min(hidden, largest_share) * period_samples(fit)));
+    return std::min(hidden, largest_share) * period_samples(fit);
+}
+
+// A few samples of the plateau are within the noise of a swing that turns there, and draw its turn towards
+// them: taken off until the swing, fitted without them, turns before its first sample. True where some were.
+bool leave_plateau(LawFit& fit, const Recording& recording, const Event& event) {
+    constexpr int most_rounds = 6;
+    bool left = false;
+    for (int round = 0; round < most_rounds; ++round) {
+        const auto release = release_of(fit, recording, event);
+        if (!release) break;
+        const auto begin = static_cast<std::size_t>(std::ceil(*release + hidden_release(fit)));
+        if (begin <= fit.curve.window.begin) break;
+        auto later = on_window(fit, recording, begin, end_of(fit));
+        if (!later) break;
+        fit = std::move(*later);
+        left = true;
+    }
+    return left;
 }
 
 void widen_forwards(LawFit& fit, const Recording& recording, const Event& event) {
@@ -141,8 +211,13 @@ void widen_forwards(LawFit& fit, const Recording& recording, const Event& event)
     if (below > behind_false_alarm / 2.0 && below < 1.0 - behind_false_alarm / 2.0) fit = *longer;
 }
 
+bool starts_before_release(const LawFit& fit, const Recording& recording, const Event& event) {
+    const auto release = release_of(fit, recording, event);
+    return release && *release > static_cast<double>(fit.curve.window.begin);
+}
+
 void widen_backwards(LawFit& fit, const Recording& recording, const Event& event) {
-    const std::size_t limit = earliest(fit, event), former = fit.curve.window.begin;
+    const std::size_t limit = earliest(fit, event);
     double step = first_step;
     while (step >= last_step && fit.curve.window.begin > limit) {
         const auto samples = std::max(static_cast<std::size_t>(step * period_samples(fit)),
@@ -150,14 +225,11 @@ void widen_backwards(LawFit& fit, const Recording& recording, const Event& event
         const std::size_t begin = fit.curve.window.begin;
         const auto longer =
             begin >= limit + samples ? on_window(fit, recording, begin - samples, end_of(fit)) : std::nullopt;
-        if (longer && fits_before(*longer, begin))
+        if (longer && fits_before(*longer, begin) && !starts_before_release(*longer, recording, event))
             fit = *longer;
         else
             step /= 2.0;
     }
-    if (fit.curve.window.begin == former) return;
-    const std::size_t begin = std::min(former, fit.curve.window.begin + hidden_release(fit, event));
-    if (const auto shorter = on_window(fit, recording, begin, end_of(fit))) fit = *shorter;
 }
 
 }  // namespace
@@ -169,10 +241,17 @@ double residual_level(const CurveFit& fit) {
 
 void widen(LawFit& fit, const Recording& recording, const Event& event) {
     const DecayModel& others = fit.state.others;
-    if (event.by_hand || others.drift || !others.oscillators.empty() || !others.real_poles.empty()) return;
+    if (event.by_hand) return;
+    const bool alone = !others.drift && others.oscillators.empty() && others.real_poles.empty();
+    if (LawFit later = fit; leave_plateau(later, recording, event) && settle_law(later))
+        fit = std::move(later);
+    if (!alone) return;
     LawFit wider = fit;
     // Before the decay of a drop lie flights and bounces: another motion, however well a law may fit its end.
-    if (event.flights.empty()) widen_backwards(wider, recording, event);
+    if (event.flights.empty()) {
+        widen_backwards(wider, recording, event);
+        leave_plateau(wider, recording, event);
+    }
     widen_forwards(wider, recording, event);
     const bool changed = wider.curve.window.begin != fit.curve.window.begin ||
                          wider.curve.window.size() != fit.curve.window.size();
@@ -184,14 +263,6 @@ void widen(LawFit& fit, const Recording& recording, const Event& event) {
 }
 
 namespace {
-
-double unrest(const std::vector<double>& samples, std::size_t begin, std::size_t end) {
-    const auto n = static_cast<double>(end - begin);
-    double sum = 0.0, square = 0.0;
-    for (std::size_t i = begin; i < end; ++i) sum += samples[i];
-    for (std::size_t i = begin; i < end; ++i) square += (samples[i] - sum / n) * (samples[i] - sum / n);
-    return std::sqrt(square / (n - 1.0));
-}
 
 // End of the first quarter of a period in [begin, end) that swings at least half as much as any: the release
 // lies in it or before it.

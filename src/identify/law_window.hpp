@@ -11,7 +11,9 @@ namespace ringwright::identify {
 /// the viscous fit may have left out the first swings. Takes earlier samples, a quarter of a period at a time
 /// and then less, while the law fitted with them leaves no more than noise there (chi-squared, one false
 /// alarm in ten thousand), and the rest behind the decay where it has the same noise (F, one in a thousand).
-/// Leaves windows given by hand, and fits with a drift, further modes or real poles, as they are.
+/// Of a displacement that was held still before, samples before the release and those in which noise hides it
+/// are taken off: the release is where the fitted swing turns. Leaves windows given by hand as they are, and
+/// widens no fit with a drift, further modes or real poles.
 void widen(LawFit& fit, const Recording& recording, const Event& event);
 
 /// Root mean square of the residual, in units of the recording.
