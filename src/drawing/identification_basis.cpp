@@ -97,13 +97,58 @@ void add_traceability(std::vector<Block>& blocks, const Json& result) {
     }
 }
 
-void add_methods_text(std::vector<Block>& blocks) {
+namespace {
+
+constexpr const char* viscous_text =
+    "Curve fit: a decaying oscillation, from light to heavy damping in one model, fitted by variable "
+    "projection "
+    "(Golub and Pereyra, 1973) under an autoregressive model of the noise.";
+
+// The terms that a law's name lists, in words.
+std::string terms_of(const std::string& model) {
+    const auto named = [&](const char* term) { return model.find(term) != std::string::npos; };
+    std::string text =
+        named("two-way") ? "one coefficient for compression and one for rebound" : "viscous damping";
+    if (named("friction")) text += ", dry friction with a stop where it holds the mass";
+    if (named("quadratic")) text += ", damping by the square of the velocity";
+    if (named("hardening")) text += ", a spring that stiffens with the cube of its deflection";
+    if (named("softening")) text += ", a spring that softens with the cube of its deflection";
+    return text;
+}
+
+std::string law_text(const std::string& model) {
+    return fmt::format(
+        "Curve fit ({}): the equation of motion with {}, integrated from reversal to reversal (Dormand and "
+        "Prince, 1980) and fitted by least squares under an autoregressive model of the noise. The terms "
+        "beside viscous damping were chosen by an information criterion (Schwarz, 1978), the simpler model "
+        "in "
+        "a tie. The damping ratio is that of the viscous damper that takes the same energy in a cycle at the "
+        "amplitude stated (Jacobsen, 1930).",
+        model, terms_of(model));
+}
+
+// The models that were fitted, each once, in the order of the releases.
+std::vector<std::string> models_of(const Json& result) {
+    std::vector<std::string> models;
+    for (const Json& recording : list_at(result, {"recordings"}))
+        for (const Json& event : list_at(recording, {"events"})) {
+            const std::string model = text_at(event, {"methods", "curve_fit", "model"});
+            if (!model.empty() && std::ranges::find(models, model) == models.end()) models.push_back(model);
+        }
+    return models;
+}
+
+}  // namespace
+
+void add_methods_text(std::vector<Block>& blocks, const Json& result) {
     blocks.push_back(Heading{2, "Methods"});
+    const std::vector<std::string> models = models_of(result);
+    const bool viscous = std::ranges::find(models, "viscous") != models.end();
+    if (models.empty() || viscous) blocks.push_back(Paragraph{viscous_text, false});
+    for (const std::string& model : models)
+        if (model != "viscous") blocks.push_back(Paragraph{law_text(model), false});
     for (const char* text :
-         {"Curve fit: a decaying oscillation, from light to heavy damping in one model, fitted by variable "
-          "projection "
-          "(Golub and Pereyra, 1973) under an autoregressive model of the noise.",
-          "Logarithmic decrement: a weighted straight line through the logarithms of successive swings.",
+         {"Logarithmic decrement: a weighted straight line through the logarithms of successive swings.",
           "Half-power bandwidth: the width of the spectrum at 1/√2 of its peak, by the exact relation for a "
           "free decay.",
           "Intervals of the two simple methods come from a bootstrap with the fitted noise; repeats are "

@@ -177,7 +177,7 @@ Document identification_document(const Json& result, const ReportInput& input) {
     add_evidence(blocks, result, input, main_figure);
     add_budget(blocks, result);
     add_traceability(blocks, result);
-    add_methods_text(blocks);
+    add_methods_text(blocks, result);
     add_closing(blocks);
     return document;
 }

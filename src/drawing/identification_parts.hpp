@@ -20,6 +20,7 @@ void add_evidence(std::vector<Block>& blocks, const Json& result, const ReportIn
 void add_budget(std::vector<Block>& blocks, const Json& result);
 /// Sensor, article, sheet, software, command, and each recording with its hash.
 void add_traceability(std::vector<Block>& blocks, const Json& result);
-void add_methods_text(std::vector<Block>& blocks);
+/// What each method does; of the curve fit, the models that were fitted.
+void add_methods_text(std::vector<Block>& blocks, const Json& result);
 
 }  // namespace ringwright::drawing

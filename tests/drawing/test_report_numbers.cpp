@@ -104,6 +104,8 @@ TEST_CASE("the report holds every number of a pooled result with its budget") {
     Reports reports = reports_of(json, figures);
     check_numbers(json, reports);
     CHECK(reports.checked > 60);
+    CHECK(reports.html.find("variable projection") != std::string::npos);
+    CHECK(reports.html.find("the equation of motion") == std::string::npos);
 }
 
 TEST_CASE("the report holds the numbers of a damping law and of its stretches") {
@@ -115,6 +117,9 @@ TEST_CASE("the report holds the numbers of a damping law and of its stretches") 
     CHECK(std::ranges::find(figures, "course-1", &NamedFigure::name) != figures.end());
     Reports reports = reports_of(json, figures);
     check_numbers(json, reports);
+    // The methods are those of the law, not of the viscous fit.
+    CHECK(reports.html.find("Curve fit (viscous+friction): the equation of motion") != std::string::npos);
+    CHECK(reports.html.find("variable projection") == std::string::npos);
     REQUIRE(event.contains("amplitude_course"));
     for (const Json& point : event["amplitude_course"]["points"])
         for (const char* key : {"natural_frequency", "damping_ratio"})
