@@ -18,6 +18,7 @@
 #include "ringwright/distributions.hpp"
 #include "ringwright/identify.hpp"
 #include "support/simulated_decay.hpp"
+#include "support/simulated_law.hpp"
 
 namespace {
 
@@ -127,18 +128,24 @@ void run_one(Cell& cell, std::uint64_t seed, const Run& run, std::mutex& guard) 
     }
 }
 
-void run_cell(Cell& cell, std::uint64_t seed, const Run& run) {
-    std::mutex guard;
+// Every number below `recordings`, on all processors.
+template <typename Work>
+void for_each_recording(int recordings, const Work& one) {
     std::atomic<int> next{0};
     const auto work = [&] {
-        for (int i = next++; i < run.recordings; i = next++)
-            run_one(cell, seed + static_cast<std::uint64_t>(i), run, guard);
+        for (int i = next++; i < recordings; i = next++) one(i);
     };
     std::vector<std::thread> threads;
     for (unsigned i = 1; i < std::max(1u, std::thread::hardware_concurrency()); ++i)
         threads.emplace_back(work);
     work();
     for (std::thread& thread : threads) thread.join();
+}
+
+void run_cell(Cell& cell, std::uint64_t seed, const Run& run) {
+    std::mutex guard;
+    for_each_recording(run.recordings,
+                       [&](int i) { run_one(cell, seed + static_cast<std::uint64_t>(i), run, guard); });
 }
 
 std::string number(double value, int digits) {
@@ -186,7 +193,105 @@ void print_row(const Cell& cell, int recordings) {
     std::fflush(stdout);
 }
 
+// One damping law, recorded under one condition: 5 kg on 8 kN/m, released from 30 mm.
+struct LawCell {
+    std::string model;
+    simulated::Law law;
+    std::vector<Quantity> coefficients;
+    simulated::Bench bench;
+    int answered = 0, named = 0, beyond = 0;
+    Score frequency;
+    std::vector<Score> scores{};
+};
+
+double coefficient_of(const simulated::Law& law, Quantity quantity) {
+    switch (quantity) {
+        case Quantity::friction_force:
+            return law.friction;
+        case Quantity::compression_damping:
+            return law.compression;
+        case Quantity::rebound_damping:
+            return law.rebound;
+        case Quantity::quadratic_damping:
+            return law.quadratic;
+        case Quantity::cubic_stiffness:
+            return law.cubic;
+        default:
+            return 0.5 * (law.compression + law.rebound);
+    }
+}
+
+std::vector<LawCell> law_cells() {
+    LawCell friction{"viscous+friction", {}, {Quantity::friction_force, Quantity::damping_coefficient}, {}};
+    friction.law.friction = 6.0;
+    LawCell two_way{"two-way", {}, {Quantity::compression_damping, Quantity::rebound_damping}, {}};
+    two_way.law.compression = 60.0;
+    two_way.law.rebound = 180.0;
+    LawCell quadratic{
+        "viscous+quadratic", {}, {Quantity::quadratic_damping, Quantity::damping_coefficient}, {}};
+    quadratic.law.compression = quadratic.law.rebound = 20.0;
+    quadratic.law.quadratic = 60.0;
+    LawCell softening{
+        "viscous+softening", {}, {Quantity::cubic_stiffness, Quantity::damping_coefficient}, {}};
+    softening.law.compression = softening.law.rebound = 20.0;
+    softening.law.cubic = -2e6;
+    LawCell hardening = softening;
+    hardening.model = "viscous+hardening";
+    hardening.law.cubic = 3e6;
+    return {friction, two_way, quadratic, hardening, softening};
+}
+
+void add_law(LawCell& cell, const MethodResult& fit) {
+    if (fit.status != MethodStatus::ok) return;
+    ++cell.answered;
+    cell.named += fit.model == cell.model;
+    const double f = cell.law.angular_frequency() / two_pi;
+    const Estimate& found = fit.quantities.at(Quantity::natural_frequency);
+    cell.frequency.add(found, f, std::log(found.value / f));
+    cell.scores.resize(cell.coefficients.size());
+    bool beyond = false;
+    for (std::size_t i = 0; i < cell.coefficients.size(); ++i) {
+        const auto estimate = fit.per_mass.find(cell.coefficients[i]);
+        const double truth = coefficient_of(cell.law, cell.coefficients[i]) / cell.law.mass;
+        beyond =
+            beyond || estimate == fit.per_mass.end() || std::abs(estimate->second.value / truth - 1.0) > 0.1;
+        if (estimate != fit.per_mass.end())
+            cell.scores[i].add(estimate->second, truth, estimate->second.value / truth - 1.0);
+    }
+    cell.beyond += beyond;
+}
+
+void run_law(LawCell& cell, std::uint64_t seed, const Run& run) {
+    std::mutex guard;
+    for_each_recording(run.recordings, [&](int i) {
+        simulated::Deviates deviates(seed + static_cast<std::uint64_t>(i));
+        const simulated::Sample sample = simulated::draw(cell.law, cell.bench, deviates);
+        const std::optional<Event> event = event_of(sample, run.search);
+        if (!event) return;
+        const MethodResult fit = identify_event(sample.recording, *event, run.options).curve_fit;
+        const std::scoped_lock lock(guard);
+        add_law(cell, fit);
+    });
+}
+
+void print_law(const LawCell& cell, int recordings) {
+    std::string coverage, scatter;
+    for (const Score& score : cell.scores) {
+        coverage += (coverage.empty() ? "" : ", ") + number(score.percent(score.in95), 1);
+        scatter += (scatter.empty() ? "" : ", ") + number(100.0 * score.scatter(1.0), 1);
+    }
+    const bool displacement = cell.bench.quantity == MeasuredQuantity::displacement;
+    fmt::print("| {} | {} | {:g} | {:g} | {} | {} | {} | {} | {} | {} |\n", cell.model,
+               displacement ? "displacement" : "acceleration", cell.bench.signal_to_noise_db,
+               cell.bench.noise_correlation, number(100.0 * cell.answered / recordings, 1),
+               number(100.0 * cell.named / std::max(1, cell.answered), 1),
+               number(cell.frequency.percent(cell.frequency.in95), 1), coverage, scatter,
+               number(100.0 * cell.beyond / std::max(1, cell.answered), 1));
+    std::fflush(stdout);
+}
+
 struct Grid {
+    bool laws = false;
     std::vector<double> ratios{0.002, 0.02, 0.1, 0.3, 0.7, 1.0, 1.5}, cycles{3, 10, 30}, decibels{20, 40, 60},
         correlations{0.0, 0.8, 0.95};
     Truth base;
@@ -202,6 +307,9 @@ void add_options(CLI::App& app, Grid& grid) {
     app.add_option("--replicates", grid.run.options.replicates, "Of the bootstrap; 0: curve fit only")
         ->capture_default_str();
     app.add_option("--seed", grid.run.seed, "Of the first recording")->capture_default_str();
+    app.add_flag("--laws", grid.laws,
+                 "Decays under the damping laws in place of viscous ones, displacement and acceleration; of "
+                 "the grid, --decibel and --correlation hold");
     app.add_flag("--search", grid.run.search, "Let the program find the event, as it does for a user");
     app.add_option("--held", grid.base.held_cycles, "Undamped periods of plateau before the release");
     app.add_option("--samples-per-cycle", grid.base.samples_per_cycle, "Sampling")->capture_default_str();
@@ -231,6 +339,26 @@ void run_grid(const Grid& grid) {
                 }
 }
 
+void run_laws(const Grid& grid) {
+    fmt::print(
+        "| law | measured | dB | φ | answered % | named % | f 95 % | its coefficients 95 % | scatter of "
+        "these "
+        "% | one beyond 10 % or missing, % |\n|---|---|---|---|---|---|---|---|---|---|\n");
+    std::uint64_t seed = grid.run.seed;
+    for (const LawCell& law : law_cells())
+        for (const auto quantity : {MeasuredQuantity::displacement, MeasuredQuantity::acceleration})
+            for (const double decibel : grid.decibels)
+                for (const double correlation : grid.correlations) {
+                    LawCell cell = law;
+                    cell.bench.quantity = quantity;
+                    cell.bench.signal_to_noise_db = decibel;
+                    cell.bench.noise_correlation = correlation;
+                    run_law(cell, seed, grid.run);
+                    seed += static_cast<std::uint64_t>(grid.run.recordings);
+                    print_law(cell, grid.run.recordings);
+                }
+}
+
 }  // namespace
 
 int main(int argc, char** argv) {
@@ -240,6 +368,6 @@ int main(int argc, char** argv) {
     Grid grid;
     add_options(app, grid);
     CLI11_PARSE(app, argc, argv);
-    run_grid(grid);
+    grid.laws ? run_laws(grid) : run_grid(grid);
     return 0;
 }
