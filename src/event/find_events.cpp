@@ -151,6 +151,8 @@ std::optional<Found> follow_onset(const Search& search, const Onset& onset, Star
             }
         }
     }
+    if (rings_on_a_tail(search.pyramid, onset, *start, limits))
+        course = follow_decay(search.pyramid, *start, limits.latest);
     // Among many modes two do not explain the recording.
     if (!search.mode_meant && start->noise_rms > misfit_of_short * start->amplitude)
         explained_by_two(search.pyramid, *start, course.rest_end);

@@ -5,6 +5,7 @@
 #include <numbers>
 #include <span>
 
+#include "event/coupled_release.hpp"
 #include "event/second_hit.hpp"
 #include "event/two_terms.hpp"
 
@@ -15,9 +16,10 @@ namespace {
 constexpr double blocks_a_cycle = 40.0;
 constexpr double most_cycles_back = 6.0, cycles_after = 3.0;
 constexpr double most_damping = 0.5;
-/// What two decays may leave unexplained against what they leave after the late start, and as a share of the
-/// amplitude.
+/// What two decays may leave unexplained against the noise, and as a share of the amplitude.
 constexpr double as_well = 1.12, tolerated_share = 0.003;
+/// Of leaving a block out of both decays, in noise variances: as for one decay.
+constexpr double cost_of_leaving_out = 5.0;
 
 struct Look {
     std::span<const double> values;
@@ -56,6 +58,9 @@ std::optional<Look> look_at(const Pyramid& pyramid, const Start& start, const St
                          look.late + static_cast<std::size_t>(std::ceil(cycles_after * look.cycle))});
     if (look.end < look.late + 16 || look.late < look.earliest + 2) return {};
     look.noise = std::max(rms_after(look), tolerated_share * start.amplitude);
+    // The few blocks after a late start show correlated noise too small; a long rest shows it as it is.
+    const std::optional<RestNoise> rest = noise_of_rest(look.values, look.level, limits.rest);
+    if (rest && rest->is_long()) look.noise = std::max(look.noise, std::sqrt(rest->variance));
     return look;
 }
 
@@ -96,21 +101,25 @@ bool apart(const TwoTermFit& fit) {
     return std::abs(tune) > 2.0 * widest;
 }
 
-/// The earliest place, in steps of an eighth of a cycle, from which two decays explain the recording.
-std::optional<Candidate> earliest_explained(const Look& look) {
+/// Of the places in steps of an eighth of a cycle before the late start, the one from which two decays
+/// explain the recording most cheaply; nothing when the late start is the cheapest.
+std::optional<Candidate> cheapest_explained(const Look& look) {
     constexpr double step_cycles = 0.125;
     const auto step = std::max<std::size_t>(1, static_cast<std::size_t>(step_cycles * look.cycle));
-    std::optional<Candidate> best;
+    const double price = cost_of_leaving_out * look.noise * look.noise;
+    const double late_sum = look.noise * look.noise * static_cast<double>(look.end - look.late);
+    double least = late_sum + price * static_cast<double>(look.late - look.earliest);
+    std::optional<Candidate> best, last;
     for (std::size_t first = look.late; first >= look.earliest + step;) {
         first -= step;
-        const std::optional<TwoTermFit> fit = fit_from(look, first, best);
-        if (fit && fit->residual_rms() < as_well * look.noise && apart(*fit)) {
-            const Candidate candidate{first, *fit};
-            if (explains_head(look, candidate)) best = candidate;
-        }
-        // Beyond two cycles without an explanation lies something else.
+        const std::optional<TwoTermFit> fit = fit_from(look, first, last);
         const std::size_t since = best ? best->first : look.late;
+        // Beyond two cycles without an explanation lies something else.
         if (static_cast<double>(since - first) > 2.0 * look.cycle) break;
+        if (!fit || !apart(*fit) || fit->residual_rms() > as_well * look.noise) continue;
+        last = Candidate{first, *fit};
+        const double cost = fit->residual_sum + price * static_cast<double>(first - look.earliest);
+        if (cost < least && explains_head(look, *last)) best = last, least = cost;
     }
     return best;
 }
@@ -128,6 +137,93 @@ std::size_t refine(const Look& look, const Candidate& candidate) {
     const std::size_t stop = std::max(look.earliest, first > most ? first - most : 0);
     while (first > stop && follows(first - 1)) --first;
     return first;
+}
+
+/// The first position after a moment in blocks: a block mean is centred half a block after its first value.
+std::size_t position_after(double moment, std::size_t level) {
+    const double position = std::ldexp(moment + 0.5, static_cast<int>(level)) - 0.5;
+    return static_cast<std::size_t>(std::max(0.0, std::ceil(position)));
+}
+
+/// Position at which a hold ends and the two decays begin: noise lets two decays reach back into what was
+/// held. Nothing where no release from a hold explains the recording.
+std::optional<std::size_t> end_of_hold(const Look& look, const Candidate& candidate) {
+    constexpr double hold_cycles = 0.5, before_cycles = 0.25, after_cycles = 0.5, explained = 1.25;
+    const auto hold = static_cast<std::size_t>(hold_cycles * look.cycle);
+    if (candidate.first < look.earliest + hold) return {};
+    const std::size_t from = candidate.first - hold;
+    const double guess = static_cast<double>(hold);
+    const std::optional<CoupledRelease> release =
+        fit_coupled_release(look.values.subspan(from, look.end - from), candidate.fit.first,
+                            guess - before_cycles * look.cycle, guess + after_cycles * look.cycle);
+    if (!release || release->residual_rms() > explained * look.noise) return {};
+    return position_after(static_cast<double>(from) + release->moment, look.level);
+}
+
+/// First position of the two decays.
+std::size_t position_of(const Look& look, const Candidate& candidate, const StartLimits& limits) {
+    if (!limits.displacement) return refine(look, candidate) << look.level;
+    if (const std::optional<std::size_t> released = end_of_hold(look, candidate)) return *released;
+    // A plateau turns into decay smoothly: part of it passes for decay.
+    return (candidate.first + static_cast<std::size_t>(0.0625 * look.cycle)) << look.level;
+}
+
+/// The blocks about an onset that may be a release on the tail of an AC-coupled sensor.
+struct TailLook {
+    std::span<const double> means;
+    std::size_t level = 0, first = 0, onset = 0, end = 0;
+    double cycle = 0.0;  ///< blocks
+    DecayShape guess;
+    [[nodiscard]] std::span<const double> points() const { return means.subspan(first, end - first); }
+};
+
+std::optional<TailLook> look_at_tail(const Pyramid& pyramid, const Onset& onset, const StartLimits& limits) {
+    constexpr double before_cycles = 0.6;
+    TailLook look;
+    const DecayShape single = at_level(onset.fit.shape, onset.level, 0);
+    look.level = level_of_look(pyramid, 2.0 * std::numbers::pi / single.undamped_angular_frequency);
+    look.means = pyramid.level(look.level);
+    look.guess = at_level(single, 0, look.level);
+    look.cycle = 2.0 * std::numbers::pi / look.guess.undamped_angular_frequency;
+    look.onset = onset.position >> look.level;
+    const auto before = static_cast<std::size_t>(before_cycles * look.cycle);
+    if (look.onset < before + (limits.earliest >> look.level)) return {};
+    look.first = look.onset - before;
+    look.end = std::min({look.means.size(), limits.latest >> look.level,
+                         look.onset + static_cast<std::size_t>(cycles_after * look.cycle)});
+    if (look.end < look.onset + 16) return {};
+    return look;
+}
+
+/// A release that rings with a good part of what is seen and leaves plainly less of it than one decay does:
+/// no more than noise, or little of the ring.
+std::optional<CoupledRelease> release_on_tail(const TailLook& look, double left_by_one,
+                                              const StartLimits& limits) {
+    constexpr double around_cycles = 0.4, plainly_less = 0.6, rings = 0.35, share_of_height = 0.3;
+    constexpr double left_of_ring = 0.03, as_quiet = 1.25;
+    const double middle = static_cast<double>(look.onset - look.first);
+    const std::optional<CoupledRelease> release = fit_coupled_release(
+        look.points(), look.guess, middle - around_cycles * look.cycle, middle + around_cycles * look.cycle);
+    if (!release || release->ring.damping_ratio > rings) return {};
+    const auto [low, high] = std::minmax_element(look.points().begin(), look.points().end());
+    if (release->ring_amplitude() < share_of_height * (*high - *low)) return {};
+    const std::optional<RestNoise> rest = noise_of_rest(look.means, look.level, limits.rest);
+    const double quiet = rest ? as_quiet * std::sqrt(rest->variance) : 0.0;
+    const double left = release->residual_rms();
+    if (left > plainly_less * left_by_one) return {};
+    return left < std::max(left_of_ring * release->ring_amplitude(), quiet) ? release : std::nullopt;
+}
+
+void take_over(const TailLook& look, const CoupledRelease& release, const StartLimits& limits, Start& start) {
+    const double moment = static_cast<double>(look.first) + release.moment;
+    start.position = std::max(limits.earliest, position_after(moment, look.level));
+    start.shape = at_level(release.ring, look.level, 0);
+    start.level = look.level;
+    start.fit_block = (start.position + (std::size_t{1} << look.level) - 1) >> look.level;
+    start.fit = fit_amplitudes(look.means.subspan(start.fit_block, look.end - start.fit_block), release.ring);
+    start.amplitude = release.ring_amplitude();
+    start.noise_rms = release.residual_rms();
+    start.from_rest = true;
 }
 
 }  // namespace
@@ -150,18 +246,28 @@ bool explained_by_two(const Pyramid& pyramid, Start& start, std::size_t limit) {
     return true;
 }
 
+bool rings_on_a_tail(const Pyramid& pyramid, const Onset& onset, Start& start, const StartLimits& limits) {
+    constexpr double well_followed = 0.06;  // left unexplained of the amplitude
+    const bool followed =
+        start.shape.damping_ratio < most_damping && start.noise_rms < well_followed * start.amplitude;
+    if (followed || !limits.displacement || limits.drop) return false;
+    const std::optional<TailLook> look = look_at_tail(pyramid, onset, limits);
+    if (!look) return false;
+    const std::optional<CoupledRelease> release = release_on_tail(*look, start.noise_rms, limits);
+    if (!release) return false;
+    take_over(*look, *release, limits, start);
+    return true;
+}
+
 void go_back_jointly(const Pyramid& pyramid, Start& start, const StartLimits& limits) {
     if (start.shape.damping_ratio > most_damping || limits.drop || !moves_before(pyramid, start)) return;
     const std::optional<Look> look = look_at(pyramid, start, limits);
     if (!look) return;
-    const std::optional<Candidate> candidate = earliest_explained(*look);
+    const std::optional<Candidate> candidate = cheapest_explained(*look);
     // Less than that is no other decay but the end of a blow or a plateau.
     constexpr double worthwhile = 0.4;  // of a cycle
     if (!candidate || static_cast<double>(look->late - candidate->first) < worthwhile * look->cycle) return;
-    // A plateau turns into decay smoothly: part of it passes for decay.
-    const auto smooth = static_cast<std::size_t>(0.0625 * look->cycle);
-    const std::size_t first = limits.displacement ? candidate->first + smooth : refine(*look, *candidate);
-    start.position = std::max(limits.earliest, first << look->level);
+    start.position = std::max(limits.earliest, position_of(*look, *candidate, limits));
     start.from_rest = false;
     if (candidate->fit.second.damping_ratio < most_damping)
         start.companion = at_level(candidate->fit.second, look->level, 0);

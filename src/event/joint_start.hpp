@@ -16,4 +16,9 @@ void go_back_jointly(const Pyramid& pyramid, Start& start, const StartLimits& li
 /// `limit`: then it becomes the start's companion, and noise_rms what both leave.
 bool explained_by_two(const Pyramid& pyramid, Start& start, std::size_t limit);
 
+/// Takes a start whose decay does not ring, or leaves much unexplained, for what an AC-coupled displacement
+/// sensor makes of a release from a hold: a ring on the sensor's slow tail. False, and nothing done, where
+/// that leaves not plainly less of the recording unexplained.
+bool rings_on_a_tail(const Pyramid& pyramid, const Onset& onset, Start& start, const StartLimits& limits);
+
 }  // namespace ringwright::event_search

@@ -122,41 +122,14 @@ double noise_variance(std::span<const double> means, const std::vector<Trial>& t
     return std::max(least, 0.0);
 }
 
-/// What the rest after the decay shows on one level.
-struct RestNoise {
-    double variance = 0.0;     ///< about a straight line
-    double independent = 0.0;  ///< number of blocks over their correlation length
-};
-
-/// Nothing when the rest is too short.
-std::optional<RestNoise> noise_of_rest(std::span<const double> values, std::size_t level,
-                                       const std::optional<SampleRange>& rest) {
-    if (!rest) return {};
-    constexpr std::size_t fewest = 12, most = 4096;
-    const std::size_t begin = (rest->begin >> level) + 1, end = std::min(rest->end >> level, begin + most);
-    if (end < begin + fewest) return {};
-    const auto n = static_cast<double>(end - begin);
-    double y1 = 0.0, yy = 0.0, xy = 0.0, xx = 0.0, steps = 0.0;
-    for (std::size_t k = begin; k < end; ++k) {
-        const double x = static_cast<double>(k - begin) - 0.5 * (n - 1.0), y = values[k] - values[begin];
-        y1 += y, yy += y * y, xy += x * y, xx += x * x;
-        if (k > begin) steps += (values[k] - values[k - 1]) * (values[k] - values[k - 1]);
-    }
-    const double about_line = std::max(0.0, yy - y1 * y1 / n - xy * xy / xx);
-    const double rho = about_line > 0.0 ? std::clamp(1.0 - 0.5 * steps / about_line, 0.0, 0.98) : 0.0;
-    const double length = (1.0 + rho) / (1.0 - rho);
-    return RestNoise{about_line / std::max(n - 2.0 * length, 0.3 * n), n / length};
-}
-
 /// The noise variance of one block: of the rest where it is long, else of the rest or the trials, whichever
 /// shows more.
 double block_noise(std::span<const double> means, std::size_t level, const std::vector<Trial>& trials,
                    const StartLimits& limits) {
-    constexpr double long_rest = 30.0;
     const double fitted = noise_variance(means, trials, limits.drop);
     const std::optional<RestNoise> rest = noise_of_rest(means, level, limits.rest);
     if (!rest) return fitted;
-    return rest->independent < long_rest && !limits.drop ? std::max(rest->variance, fitted) : rest->variance;
+    return !rest->is_long() && !limits.drop ? std::max(rest->variance, fitted) : rest->variance;
 }
 
 const Trial* cheapest(const std::vector<Trial>& trials, double variance, std::size_t from) {
@@ -277,6 +250,25 @@ void refine_position(const Pyramid& pyramid, Start& start, const StartLimits& li
 }
 
 }  // namespace
+
+std::optional<RestNoise> noise_of_rest(std::span<const double> values, std::size_t level,
+                                       const std::optional<SampleRange>& rest) {
+    if (!rest) return {};
+    constexpr std::size_t fewest = 12, most = 4096;
+    const std::size_t begin = (rest->begin >> level) + 1, end = std::min(rest->end >> level, begin + most);
+    if (end < begin + fewest) return {};
+    const auto n = static_cast<double>(end - begin);
+    double y1 = 0.0, yy = 0.0, xy = 0.0, xx = 0.0, steps = 0.0;
+    for (std::size_t k = begin; k < end; ++k) {
+        const double x = static_cast<double>(k - begin) - 0.5 * (n - 1.0), y = values[k] - values[begin];
+        y1 += y, yy += y * y, xy += x * y, xx += x * x;
+        if (k > begin) steps += (values[k] - values[k - 1]) * (values[k] - values[k - 1]);
+    }
+    const double about_line = std::max(0.0, yy - y1 * y1 / n - xy * xy / xx);
+    const double rho = about_line > 0.0 ? std::clamp(1.0 - 0.5 * steps / about_line, 0.0, 0.98) : 0.0;
+    const double length = (1.0 + rho) / (1.0 - rho);
+    return RestNoise{about_line / std::max(n - 2.0 * length, 0.3 * n), n / length};
+}
 
 std::optional<Start> locate_start(const Pyramid& pyramid, const Onset& onset, const StartLimits& limits) {
     Start start;

@@ -28,6 +28,17 @@ struct StartLimits {
     std::optional<SampleRange> rest;  ///< positions that show the noise alone, once they are known
 };
 
+/// What the rest after the decay shows on one level.
+struct RestNoise {
+    double variance = 0.0;     ///< of one block, about a straight line
+    double independent = 0.0;  ///< number of blocks over their correlation length
+    [[nodiscard]] bool is_long() const { return independent >= 30.0; }
+};
+
+/// Nothing when the rest is too short.
+[[nodiscard]] std::optional<RestNoise> noise_of_rest(std::span<const double> means, std::size_t level,
+                                                     const std::optional<SampleRange>& rest);
+
 /// Refines the start of an onset. The samples that one free decay explains, as far back as it does.
 [[nodiscard]] std::optional<Start> locate_start(const Pyramid& pyramid, const Onset& onset,
                                                 const StartLimits& limits);
