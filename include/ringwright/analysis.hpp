@@ -1,6 +1,7 @@
 #pragma once
 // The whole pipeline in memory: recordings in, one identification out.
 
+#include <memory>
 #include <optional>
 #include <string>
 #include <vector>
@@ -16,6 +17,8 @@ namespace ringwright {
 struct RecordingInput {
     Recording recording;
     std::optional<MeasuredValue> added_mass;
+    /// Of a recording that is read a stretch at a time: `recording` is then its facts.
+    std::shared_ptr<const LongRecording> stretches = nullptr;
 };
 
 struct AnalysisOptions {
@@ -26,7 +29,8 @@ struct AnalysisOptions {
     std::optional<double> sensor_gain_relative;  ///< relative standard uncertainty of the sensor's gain
     unsigned jobs =
         0;  ///< threads over events; 0: as many as the machine has. The answer does not depend on it
-    bool keep_samples = false;  ///< keep the samples in the result; off to save memory
+    /// Keep the samples in the result, of a long recording its overview; off to save memory.
+    bool keep_samples = false;
 };
 
 struct RecordingIdentification {
@@ -64,7 +68,9 @@ struct Identification {
 /// releases that any method answers, else from the logarithmic decrement, else from the half-power bandwidth.
 /// Recordings with different added masses are pooled loading by loading; the frequency and damping stated are
 /// then those with the least added, and a finding says so. Never throws for what is in the samples; throws
-/// UsageError where from/to lie outside a recording or the article is contradictory (derive_properties).
+/// UsageError where from/to lie outside a recording or the article is contradictory (derive_properties), and
+/// InputError where a long recording has become shorter. Of a long recording it holds one stretch at a time,
+/// and what the fit wants of as many events as there are jobs.
 [[nodiscard]] Identification identify(std::vector<RecordingInput> recordings,
                                       const AnalysisOptions& options = {});
 

@@ -8,6 +8,7 @@
 #include <vector>
 
 #include "ringwright/finding.hpp"
+#include "ringwright/long_recording.hpp"
 #include "ringwright/recording.hpp"
 
 namespace ringwright {
@@ -44,6 +45,7 @@ struct EventOptions {
     std::optional<TestKind> kind;
     std::optional<double> from_s, to_s;  ///< a window by hand, on the recording's clock
     std::optional<double> near_hz;       ///< the mode meant
+    ReadProgress progress;               ///< called while a long recording is searched
 };
 
 struct EventSearch {
@@ -56,5 +58,9 @@ struct EventSearch {
 /// recording with no usable event gives an empty list with the reason. Throws UsageError when from/to lie
 /// outside the recording.
 [[nodiscard]] EventSearch find_events(const Recording& recording, const EventOptions& options = {});
+/// The same for a recording that is read a stretch at a time; stretches overlap, and what a stretch's end
+/// cuts is looked at again in one that begins before it. Where a decay alone is longer than a stretch, its
+/// first part stands for it, which is a finding. A window by hand may be as long as a stretch.
+[[nodiscard]] EventSearch find_events(const LongRecording& recording, const EventOptions& options = {});
 
 }  // namespace ringwright

@@ -2,6 +2,7 @@
 // What is in a recording file: channels, clock, health, events, and a drawing for the terminal.
 
 #include <cstddef>
+#include <memory>
 #include <nlohmann/json_fwd.hpp>
 #include <optional>
 #include <string>
@@ -17,8 +18,10 @@ namespace ringwright {
 struct Inspection {
     FileSummary file;
     std::optional<Recording> recording;
+    /// Of a recording that is read a stretch at a time: `recording` is then its facts.
+    std::shared_ptr<const LongRecording> stretches = nullptr;
     std::optional<Problem> problem;
-    EventSearch events;
+    EventSearch events = {};
 };
 
 /// For people, lines of `width` columns (40 … 400) where they can be cut.

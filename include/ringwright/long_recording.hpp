@@ -48,6 +48,8 @@ class LongRecording {
     /// belongs to them. Precondition: begin < end ≤ size(). Throws InputError when the file has
     /// become shorter. From any thread.
     [[nodiscard]] virtual Recording stretch(SampleRange range) const = 0;
+    /// When sample i < size() was taken.
+    [[nodiscard]] double time_of(std::size_t sample) const;
     /// First sample that was not taken before this time; size() when there is none.
     [[nodiscard]] virtual std::size_t sample_at(double time_s) const;
 
@@ -68,5 +70,15 @@ class LongRecording {
 [[nodiscard]] std::unique_ptr<LongRecording> open_long_recording(const std::string& path,
                                                                  const ReadOptions& options = {},
                                                                  const LongLimits& limits = {});
+
+/// A recording, whole or as one that is read a stretch at a time.
+struct OpenedRecording {
+    Recording recording;  ///< where `stretches` is there, its facts
+    std::shared_ptr<const LongRecording> stretches;
+};
+/// Reads a recording as `read_recording` does, or opens it where `open_long_recording` would; goes once
+/// through standard input or a pipe.
+[[nodiscard]] OpenedRecording open_recording(const std::string& path, const ReadOptions& options = {},
+                                             const LongLimits& limits = {});
 
 }  // namespace ringwright

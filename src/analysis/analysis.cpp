@@ -5,11 +5,13 @@
 #include <algorithm>
 #include <atomic>
 #include <cmath>
+#include <exception>
 #include <functional>
 #include <optional>
 #include <thread>
 #include <utility>
 
+#include "analysis/long_events.hpp"
 #include "analysis/result.hpp"
 #include "analysis/series.hpp"
 
@@ -17,7 +19,7 @@ namespace ringwright {
 namespace {
 
 /// Runs task(0) … task(count − 1) on as many threads as asked; each task writes only its own place, so that
-/// the result does not depend on the number of threads. Tasks do not throw.
+/// the result does not depend on the number of threads. What a task throws is thrown when all have ended.
 void for_each_index(std::size_t count, unsigned jobs, const std::function<void(std::size_t)>& task) {
     const unsigned hardware = std::max(1U, std::thread::hardware_concurrency());
     const std::size_t threads = std::min<std::size_t>(jobs == 0 ? hardware : jobs, count);
@@ -26,23 +28,36 @@ void for_each_index(std::size_t count, unsigned jobs, const std::function<void(s
         return;
     }
     std::atomic<std::size_t> next{0};
-    std::vector<std::jthread> pool;
-    for (std::size_t t = 0; t < threads; ++t)
-        pool.emplace_back([&] {
+    std::vector<std::exception_ptr> failures(threads);
+    const auto work = [&](std::size_t thread) {
+        try {
             for (std::size_t i = next++; i < count; i = next++) task(i);
-        });
+        } catch (...) {
+            failures[thread] = std::current_exception();
+            next = count;
+        }
+    };
+    std::vector<std::jthread> pool;
+    for (std::size_t t = 0; t < threads; ++t) pool.emplace_back(work, t);
+    pool.clear();
+    for (const std::exception_ptr& failure : failures)
+        if (failure) std::rethrow_exception(failure);
 }
 
-RecordingIdentification search(RecordingInput input, const EventOptions& options) {
+using Stretches = std::shared_ptr<const LongRecording>;
+
+RecordingIdentification search(RecordingInput input, const AnalysisOptions& options) {
     RecordingIdentification result;
-    EventSearch found = find_events(input.recording, options);
-    result.sample_count = input.recording.size();
-    result.duration_s = input.recording.duration_s();
+    const Stretches& stretches = input.stretches;
+    EventSearch found =
+        stretches ? find_events(*stretches, options.event) : find_events(input.recording, options.event);
+    result.sample_count = stretches ? stretches->size() : input.recording.size();
+    result.duration_s = stretches ? stretches->duration_s() : input.recording.duration_s();
     result.findings = input.recording.findings;
     result.findings.insert(result.findings.end(), found.findings.begin(), found.findings.end());
     result.reason = std::move(found.reason);
     result.added_mass = std::move(input.added_mass);
-    result.recording = std::move(input.recording);
+    result.recording = stretches && options.keep_samples ? stretches->overview() : std::move(input.recording);
     for (Event& event : found.events) {
         result.events.emplace_back();
         result.events.back().event = std::move(event);
@@ -62,16 +77,31 @@ void note_open_intervals(EventIdentification& event) {
         }
 }
 
-void identify_all(std::vector<RecordingIdentification>& recordings, const AnalysisOptions& options,
+/// What is analysed, and where the samples are that are not held.
+struct Series {
+    std::vector<RecordingIdentification> recordings;
+    std::vector<Stretches> stretches;  ///< one for each recording; empty where its samples are held
+};
+
+struct Work {
+    const Recording* recording = nullptr;
+    const LongRecording* stretches = nullptr;
+    EventIdentification* event = nullptr;
+};
+
+void identify_all(Series& series, const AnalysisOptions& options,
                   const std::function<bool(const EventIdentification&)>& wanted) {
-    std::vector<std::pair<const Recording*, EventIdentification*>> work;
-    for (RecordingIdentification& recording : recordings)
-        for (EventIdentification& event : recording.events)
-            if (wanted(event)) work.emplace_back(&recording.recording, &event);
+    std::vector<Work> work;
+    for (std::size_t i = 0; i < series.recordings.size(); ++i)
+        for (EventIdentification& event : series.recordings[i].events)
+            if (wanted(event))
+                work.push_back({&series.recordings[i].recording, series.stretches[i].get(), &event});
     for_each_index(work.size(), options.jobs, [&](std::size_t i) {
-        const Event event = work[i].second->event;
-        *work[i].second = identify_event(*work[i].first, event, options.identify);
-        note_open_intervals(*work[i].second);
+        const Event event = work[i].event->event;
+        *work[i].event = work[i].stretches != nullptr
+                             ? analysis::identify_within(*work[i].stretches, event, options.identify)
+                             : identify_event(*work[i].recording, event, options.identify);
+        note_open_intervals(*work[i].event);
     });
 }
 
@@ -95,14 +125,13 @@ std::optional<double> common_amplitude(const std::vector<RecordingIdentification
     return *middle;
 }
 
-void state_at_one_amplitude(std::vector<RecordingIdentification>& recordings,
-                            const AnalysisOptions& options) {
-    if (options.identify.at_amplitude || recordings.empty()) return;
-    const std::optional<double> amplitude = common_amplitude(recordings);
+void state_at_one_amplitude(Series& series, const AnalysisOptions& options) {
+    if (options.identify.at_amplitude || series.recordings.empty()) return;
+    const std::optional<double> amplitude = common_amplitude(series.recordings);
     if (!amplitude) return;
     AnalysisOptions again = options;
     again.identify.at_amplitude = amplitude;
-    identify_all(recordings, again, [&](const EventIdentification& event) {
+    identify_all(series, again, [&](const EventIdentification& event) {
         return event.curve_fit.at_amplitude.has_value() && *event.curve_fit.at_amplitude != *amplitude;
     });
 }
@@ -124,11 +153,15 @@ Identification identify(std::vector<RecordingInput> recordings, const AnalysisOp
     Identification identification;
     identification.confidence_level = options.identify.confidence_level;
     identification.article = options.article;
-    for (RecordingInput& recording : recordings)
-        identification.recordings.push_back(search(std::move(recording), options.event));
+    Series series;
+    for (RecordingInput& recording : recordings) {
+        series.stretches.push_back(recording.stretches);
+        series.recordings.push_back(search(std::move(recording), options));
+    }
     const AnalysisOptions located = with_gravity(options);
-    identify_all(identification.recordings, located, [](const EventIdentification&) { return true; });
-    state_at_one_amplitude(identification.recordings, located);
+    identify_all(series, located, [](const EventIdentification&) { return true; });
+    state_at_one_amplitude(series, located);
+    identification.recordings = std::move(series.recordings);
     identification.result = analysis::combine(identification.recordings, options);
     if (!options.keep_samples) release_samples(identification.recordings);
     return identification;

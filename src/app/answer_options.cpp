@@ -145,6 +145,7 @@ AnalysisOptions analysis_options(const RecordingArguments& recording, const Arti
                                  const AnswerArguments& answer, const AnalysisArguments& analysis) {
     AnalysisOptions options;
     options.event = event_options(recording);
+    options.event.progress = search_progress();
     options.identify.near_hz = near_hz(recording);
     options.identify.modes = mode_count(recording);
     options.identify.confidence_level = confidence_from(answer);
@@ -164,10 +165,14 @@ AnalysisOptions analysis_options(const RecordingArguments& recording, const Arti
     return options;
 }
 
+RecordingInput input_of(OpenedRecording opened, const std::optional<MeasuredValue>& added_mass) {
+    return {std::move(opened.recording), added_mass, std::move(opened.stretches)};
+}
+
 std::vector<RecordingInput> read_all(const std::vector<LoadedFile>& files, const ReadOptions& options) {
     std::vector<RecordingInput> inputs;
     for (const LoadedFile& file : files)
-        inputs.push_back({read_with_progress(file.file, options), file.added_mass});
+        inputs.push_back(input_of(open_with_progress(file.file, options), file.added_mass));
     return inputs;
 }
 

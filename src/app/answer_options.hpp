@@ -33,6 +33,7 @@ void add_analysis_options(CLI::App& command, AnalysisArguments& arguments);
                                                const ArticleArguments& article, const AnswerArguments& answer,
                                                const AnalysisArguments& analysis);
 
+[[nodiscard]] RecordingInput input_of(OpenedRecording opened, const std::optional<MeasuredValue>& added_mass);
 /// Reads every file and hands it on with its added mass.
 [[nodiscard]] std::vector<RecordingInput> read_all(const std::vector<LoadedFile>& files,
                                                    const ReadOptions& options);

@@ -9,6 +9,7 @@
 #include <algorithm>
 #include <exception>
 #include <functional>
+#include <mutex>
 #include <new>
 #include <nlohmann/json.hpp>
 
@@ -66,8 +67,13 @@ SeparateAnswer failed(const Batch& batch, const std::string& file, const Problem
 
 SeparateAnswer identify_file(const Batch& batch, const LoadedFile& file) {
     std::vector<RecordingInput> input;
-    input.push_back({read_recording(file.file, batch.read), file.added_mass});
+    input.push_back(input_of(open_recording(file.file, batch.read), file.added_mass));
+    // Of those that do not fit into memory one at a time.
+    static std::mutex one_long_recording;
+    std::unique_lock lock(one_long_recording, std::defer_lock);
+    if (input.front().stretches) lock.lock();
     const Identification identification = identify(std::move(input), batch.options);
+    if (lock) lock.unlock();
     SeparateAnswer answer;
     switch (batch.format) {
         case Format::json:
@@ -272,6 +278,7 @@ int identify_separately(const IdentifyArguments& arguments, const std::vector<Lo
         kept.emplace(arguments.resume);
         refuse_overwriting(arguments.answer.output, {arguments.resume});
     }
+    options.event.progress = {};  // the run shows its own
     const Batch batch{arguments, read_options(arguments.recording), options, format_from(arguments.answer)};
     BatchRun run(batch, std::move(list), shard, kept ? &*kept : nullptr);
     const std::string& output = arguments.answer.output;

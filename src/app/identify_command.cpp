@@ -113,6 +113,7 @@ void add_identify_command(CLI::App& app, Context& context) {
         ->group("About the answer");
     command->footer(
         "Several FILEs are repeats on one article and are pooled, unless --separate is given.\n"
+        "Recordings of more than 12 million samples are read in stretches (docs/formats.md).\n"
         "Example: ringwright identify pluck.csv --mass \"3.20(1) kg\"\n"
         "Example: ringwright identify bare.csv --added-mass \"0 kg\" loaded.csv --added-mass \"1.000(1) "
         "kg\"\n"

@@ -41,9 +41,12 @@ Inspection inspect(const std::string& path, const ReadOptions& read, const Event
     inspection.file = summarise_file(input.path(), read);
     inspection.file.file = path;
     try {
-        inspection.recording = read_with_progress(input.path(), read);
+        OpenedRecording opened = open_with_progress(input.path(), read);
+        inspection.recording = std::move(opened.recording);
         inspection.recording->origin.file = path;
-        inspection.events = find_events(*inspection.recording, event);
+        inspection.stretches = std::move(opened.stretches);
+        inspection.events = inspection.stretches ? find_events(*inspection.stretches, event)
+                                                 : find_events(*inspection.recording, event);
     } catch (const InputError& error) {
         inspection.problem = error.problem();
         inspection.problem->file = path == "-" ? "standard input" : path;
@@ -66,7 +69,8 @@ std::string inspection_text(const Inspection& inspection, Format format, bool on
 int run_inspect(const InspectArguments& arguments) {
     const Format format = format_from(AnswerArguments{"0.95", arguments.format, arguments.output});
     const ReadOptions read = read_options(arguments.recording);
-    const EventOptions event = event_options(arguments.recording);
+    EventOptions event = event_options(arguments.recording);
+    event.progress = search_progress();
     require_known_ending(arguments.output, false);
     refuse_overwriting(arguments.output, arguments.files);
     std::string text;
@@ -99,7 +103,9 @@ void add_inspect_command(CLI::App& app, Context& context) {
         ->type_name("text|json|csv")
         ->capture_default_str();
     command->add_option("-o,--output", arguments->output, "Write the answer to this file")->type_name("FILE");
-    command->footer("Example: ringwright inspect pluck.csv --channel laser");
+    command->footer(
+        "Recordings of more than 12 million samples are read in stretches (docs/formats.md).\n"
+        "Example: ringwright inspect pluck.csv --channel laser");
     command->callback(
         [arguments, &context] { context.run = [arguments] { return run_inspect(*arguments); }; });
 }

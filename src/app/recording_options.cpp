@@ -9,6 +9,7 @@
 #include <chrono>
 #include <cmath>
 #include <cstdio>
+#include <memory>
 
 #include "ringwright/error.hpp"
 #include "ringwright/measured_value.hpp"
@@ -37,11 +38,13 @@ std::optional<double> positive_if_given(const std::string& text, const char* opt
 /// Text on standard error that is wiped when the work is done.
 class ProgressLine {
   public:
-    explicit ProgressLine(std::string file) : file_(std::move(file)), started_(Clock::now()) {}
+    explicit ProgressLine(std::string what) : what_(std::move(what)), started_(Clock::now()) {}
     ProgressLine(const ProgressLine&) = delete;
     ProgressLine& operator=(const ProgressLine&) = delete;
-    ~ProgressLine() {
+    ~ProgressLine() { wipe(); }
+    void wipe() {
         if (shown_) std::fputs("\r\033[K", stderr);
+        shown_ = false;
     }
     void show(double share) {
         if (Clock::now() - started_ < std::chrono::milliseconds(500)) return;
@@ -49,13 +52,13 @@ class ProgressLine {
         if (percent == percent_) return;
         percent_ = percent;
         shown_ = true;
-        fmt::print(stderr, "\rreading {} {:3d} %\033[K", file_, percent);
+        fmt::print(stderr, "\r{} {:3d} %\033[K", what_, percent);
         std::fflush(stderr);
     }
 
   private:
     using Clock = std::chrono::steady_clock;
-    std::string file_;
+    std::string what_;
     Clock::time_point started_;
     int percent_ = -1;
     bool shown_ = false;
@@ -131,10 +134,20 @@ std::optional<int> mode_count(const RecordingArguments& arguments) {
     return static_cast<int>(*number);
 }
 
-Recording read_with_progress(const std::string& path, ReadOptions options) {
-    ProgressLine line(path == "-" ? "standard input" : path);
+OpenedRecording open_with_progress(const std::string& path, ReadOptions options) {
+    ProgressLine line("reading " + (path == "-" ? "standard input" : path));
     if (::isatty(STDERR_FILENO) != 0) options.progress = [&line](double share) { line.show(share); };
-    return read_recording(path, options);
+    return open_recording(path, options);
+}
+
+ReadProgress search_progress() {
+    if (::isatty(STDERR_FILENO) == 0) return {};
+    return [line = std::make_shared<ProgressLine>("searching")](double share) {
+        if (share < 1.0)
+            line->show(share);
+        else
+            line->wipe();
+    };
 }
 
 }  // namespace ringwright::app

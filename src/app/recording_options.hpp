@@ -5,6 +5,7 @@
 #include <string>
 
 #include "ringwright/event.hpp"
+#include "ringwright/long_recording.hpp"
 #include "ringwright/recording.hpp"
 
 namespace CLI {
@@ -26,7 +27,10 @@ void add_recording_options(CLI::App& command, RecordingArguments& arguments);
 [[nodiscard]] std::optional<double> near_hz(const RecordingArguments& arguments);
 [[nodiscard]] std::optional<int> mode_count(const RecordingArguments& arguments);
 
-/// read_recording with its progress shown on standard error: only on a terminal, only after half a second.
-[[nodiscard]] Recording read_with_progress(const std::string& path, ReadOptions options);
+/// open_recording with its progress shown on standard error: only on a terminal, only after half a second.
+[[nodiscard]] OpenedRecording open_with_progress(const std::string& path, ReadOptions options);
+
+/// Shows how far the search of a long recording has come, likewise; empty where there is no terminal.
+[[nodiscard]] ReadProgress search_progress();
 
 }  // namespace ringwright::app

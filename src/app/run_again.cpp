@@ -112,7 +112,7 @@ std::vector<fs::path> places_of(const std::string& named, const std::string& res
 }
 
 /// The recording with the hash that the result names, or nothing and why.
-std::optional<Recording> find_recording(const Json& wanted, const std::vector<fs::path>& places,
+std::optional<OpenedRecording> find_recording(const Json& wanted, const std::vector<fs::path>& places,
                                         const ReadOptions& options, std::string& why) {
     const std::string hash = text_of(wanted, "sha256");
     why = "the recording was not found";
@@ -120,8 +120,8 @@ std::optional<Recording> find_recording(const Json& wanted, const std::vector<fs
         std::error_code error;
         if (!fs::is_regular_file(place, error)) continue;
         try {
-            Recording recording = read_with_progress(place.string(), options);
-            if (!hash.empty() && recording.origin.sha256 == hash) return recording;
+            OpenedRecording opened = open_with_progress(place.string(), options);
+            if (!hash.empty() && opened.recording.origin.sha256 == hash) return opened;
             why = place.string() + " is another recording (its hash differs)";
         } catch (const InputError& error_in_file) {
             why = without_period(to_text(error_in_file.problem()));
@@ -144,7 +144,7 @@ bool read_recordings(const Json& result, const std::string& file, const std::vec
                 fmt::format("The figures of {} are missing: {}.", text_of(wanted, "file"), why));
             continue;
         }
-        RecordingInput input{std::move(*found), std::nullopt};
+        RecordingInput input = input_of(std::move(*found), std::nullopt);
         const std::string added = text_of(object_of(wanted, "added_mass"), "as_written");
         if (!added.empty()) input.added_mass = parse_measured_value(added, "added_mass", Dimension::mass);
         inputs.push_back(std::move(input));

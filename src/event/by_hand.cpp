@@ -26,31 +26,6 @@ std::size_t sample_at_time(const Recording& recording, double time_s) {
     return std::min(static_cast<std::size_t>(std::max(0.0, position)), recording.size());
 }
 
-SampleRange window_of(const Recording& recording, const EventOptions& options) {
-    const std::size_t n = recording.size();
-    const double start_s = n > 0 ? recording.clock.time_of(0) : 0.0;
-    const double end_s = n > 0 ? recording.clock.time_of(n - 1) : 0.0;
-    const double from_s = options.from_s.value_or(start_s), to_s = options.to_s.value_or(end_s);
-    const std::string place = !options.to_s     ? fmt::format("from {:.6g} s", from_s)
-                              : !options.from_s ? fmt::format("to {:.6g} s", to_s)
-                                                : fmt::format("{:.6g} s to {:.6g} s", from_s, to_s);
-    if (options.from_s && options.to_s && !(from_s < to_s))
-        throw UsageError({"--from/--to", place, "the window ends before it begins",
-                          "Give a window whose end is later than its start."});
-    if (!(from_s < end_s) || !(to_s > start_s))
-        throw UsageError({"--from/--to", place,
-                          fmt::format("the recording runs from {:.6g} s to {:.6g} s", start_s, end_s),
-                          "Give a window inside the recording."});
-    const std::size_t end = options.to_s ? sample_at_time(recording, to_s) : n;
-    const SampleRange window{sample_at_time(recording, from_s), end};
-    if (window.end < window.begin + fewest_samples)
-        throw UsageError(
-            {"--from/--to", place,
-             fmt::format("the window holds {} samples", window.end - std::min(window.begin, window.end)),
-             fmt::format("Give a window of at least {} samples.", fewest_samples)});
-    return window;
-}
-
 /// The decay that begins at the first value, on the time scale on which it is plainest.
 std::optional<Found> decay_from_first(const Pyramid& pyramid, std::size_t size) {
     std::optional<Found> best;
@@ -78,21 +53,52 @@ std::optional<Found> decay_from_first(const Pyramid& pyramid, std::size_t size) 
 }
 
 /// Clipping anywhere in the window: what the user chose is fitted as it stands.
-std::optional<Finding> clipping_in(const Recording& recording, const Event& event) {
+std::optional<Finding> clipping_in(const Recording& recording, const Event& event, double start_s) {
     for (const SampleRange& range : recording.clipped) {
         if (range.end <= event.begin || range.begin >= event.rest_end) continue;
         return Finding{"clipped_samples", Severity::caution,
                        fmt::format("The window holds clipped samples, the first {:.4g} s into the recording. "
                                    "Begin it after the last of them, or lower the gain or the amplitude.",
-                                   recording.clock.time_of(range.begin) - recording.clock.time_of(0))};
+                                   recording.clock.time_of(range.begin) - start_s)};
     }
     return {};
 }
 
 }  // namespace
 
+SampleRange window_of(const WholeSpan& whole, const EventOptions& options) {
+    const double start_s = whole.start_s, end_s = whole.end_s;
+    const double from_s = options.from_s.value_or(start_s), to_s = options.to_s.value_or(end_s);
+    const std::string place = !options.to_s     ? fmt::format("from {:.6g} s", from_s)
+                              : !options.from_s ? fmt::format("to {:.6g} s", to_s)
+                                                : fmt::format("{:.6g} s to {:.6g} s", from_s, to_s);
+    if (options.from_s && options.to_s && !(from_s < to_s))
+        throw UsageError({"--from/--to", place, "the window ends before it begins",
+                          "Give a window whose end is later than its start."});
+    if (!(from_s < end_s) || !(to_s > start_s))
+        throw UsageError({"--from/--to", place,
+                          fmt::format("the recording runs from {:.6g} s to {:.6g} s", start_s, end_s),
+                          "Give a window inside the recording."});
+    const std::size_t end = options.to_s ? whole.sample_at(to_s) : whole.size;
+    const SampleRange window{whole.sample_at(from_s), end};
+    if (window.end < window.begin + fewest_samples)
+        throw UsageError(
+            {"--from/--to", place,
+             fmt::format("the window holds {} samples", window.end - std::min(window.begin, window.end)),
+             fmt::format("Give a window of at least {} samples.", fewest_samples)});
+    return window;
+}
+
 EventSearch search_by_hand(const Recording& recording, const EventOptions& options) {
-    const SampleRange window = window_of(recording, options);
+    const std::size_t n = recording.size();
+    const double start_s = n > 0 ? recording.clock.time_of(0) : 0.0;
+    const WholeSpan whole{n, start_s, n > 0 ? recording.clock.time_of(n - 1) : 0.0,
+                          [&](double time_s) { return sample_at_time(recording, time_s); }};
+    return search_window(recording, window_of(whole, options), options, start_s);
+}
+
+EventSearch search_window(const Recording& recording, SampleRange window, const EventOptions& options,
+                          double start_s) {
     Event event;
     event.by_hand = true;
     event.kind = options.kind.value_or(TestKind::pluck);
@@ -110,7 +116,7 @@ EventSearch search_by_hand(const Recording& recording, const EventOptions& optio
         event.start_amplitude = decay->start.amplitude;
         event.frequency_guess_hz = ringing_frequency(pyramid, series.rate_hz(), *decay, options.near_hz);
     }
-    if (const auto finding = clipping_in(recording, event)) event.findings.push_back(*finding);
+    if (const auto finding = clipping_in(recording, event, start_s)) event.findings.push_back(*finding);
     EventSearch result;
     if (decay) {
         if (const auto finding = sampling_finding(decay->cycle())) event.findings.push_back(*finding);

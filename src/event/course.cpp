@@ -143,9 +143,20 @@ Knee find_knee(const std::vector<Cycle>& cycles, std::size_t count) {
     return knee;
 }
 
+/// The same where the rest is so much longer than the decay that it hides the knee: sought in the first
+/// cycles alone, then in more of them.
+Knee find_early_knee(const std::vector<Cycle>& cycles, std::size_t count) {
+    constexpr std::size_t first_look = 1200;
+    const Knee knee = find_knee(cycles, count);
+    if (knee.seen) return knee;
+    for (std::size_t look = first_look; look < count; look *= 4)
+        if (const Knee early = find_knee(cycles, look); early.seen) return early;
+    return knee;
+}
+
 Course course_of(const std::vector<Cycle>& cycles, const Start& start, std::size_t first, std::size_t limit) {
     const std::size_t undisturbed = first_disturbed(cycles, start.fit.residual_rms(), start.amplitude);
-    const Knee knee = find_knee(cycles, undisturbed);
+    const Knee knee = find_early_knee(cycles, undisturbed);
     Course course;
     course.rest_end = undisturbed < cycles.size() ? cycles[undisturbed - 1].block : limit;
     course.end = knee.seen ? cycles[knee.at].block : course.rest_end;

@@ -11,6 +11,7 @@
 #include "event/health.hpp"
 #include "event/hum.hpp"
 #include "event/joint_start.hpp"
+#include "event/long_search.hpp"
 #include "event/plateau.hpp"
 #include "event/rivals.hpp"
 #include "event/second_hit.hpp"
@@ -372,28 +373,43 @@ void follow_beats(Search& search) {
     search.found = std::move(kept);
 }
 
+const Found& found_of(const Found& found) {
+    return found;
+}
+const Found& found_of(const Candidate& candidate) {
+    return candidate.found;
+}
+
 /// One article does not both ring and creep: where something rings as strongly, what does not ring is the
 /// hand, the impact or the sensor's own answer (an AC-coupled one to a held pull).
-void drop_unlike(std::vector<Found>& found) {
+template <typename Holder>
+void drop_unlike(std::vector<Holder>& holders) {
     constexpr double rings = 0.35, creeps = 0.7, as_strong = 0.3;
     double strongest = 0.0;
-    for (const Found& f : found)
-        if (f.start.shape.damping_ratio < rings) strongest = std::max(strongest, f.start.amplitude);
-    std::erase_if(found, [&](const Found& f) {
+    for (const Holder& holder : holders)
+        if (const Found& f = found_of(holder); f.start.shape.damping_ratio < rings)
+            strongest = std::max(strongest, f.start.amplitude);
+    std::erase_if(holders, [&](const Holder& holder) {
+        const Found& f = found_of(holder);
         return f.start.shape.damping_ratio > creeps && strongest > as_strong * f.start.amplitude;
     });
 }
 
 /// Keeps of the weak ones only those that ring like the strongest: what stands out of the noise no more than
-/// noise does, or moves unlike the article, is a hand or a knock.
-void drop_weak(std::vector<Found>& found, std::span<const double> values) {
+/// noise does, or moves unlike the article, is a hand or a knock. `noise_in_rest` gives the rms of the noise
+/// in the rest of the one.
+template <typename Holder, typename NoiseInRest>
+void drop_weak(std::vector<Holder>& holders, NoiseInRest noise_in_rest) {
     constexpr double stands_out = 6.0;
-    const auto weaker = [](const Found& a, const Found& b) { return a.start.amplitude < b.start.amplitude; };
-    const auto strongest = std::max_element(found.begin(), found.end(), weaker);
-    if (strongest == found.end()) return;
-    const double largest = strongest->start.amplitude, noise = rest_rms(values, strongest->course);
-    const DecayShape like = strongest->start.shape;
-    std::erase_if(found, [&](const Found& f) {
+    const auto weaker = [](const Holder& a, const Holder& b) {
+        return found_of(a).start.amplitude < found_of(b).start.amplitude;
+    };
+    const auto strongest = std::max_element(holders.begin(), holders.end(), weaker);
+    if (strongest == holders.end()) return;
+    const double largest = found_of(*strongest).start.amplitude, noise = noise_in_rest(*strongest);
+    const DecayShape like = found_of(*strongest).start.shape;
+    std::erase_if(holders, [&](const Holder& holder) {
+        const Found& f = found_of(holder);
         const double share = f.start.amplitude / largest;
         const double tune =
             std::abs(std::log(f.start.shape.undamped_angular_frequency / like.undamped_angular_frequency));
@@ -480,6 +496,8 @@ bool goes_on(const Pyramid& pyramid, const Found& first, const Found& second) {
     return surprise_between(pyramid, first, second) < surprising;
 }
 
+}  // namespace
+
 Finding double_hit(double time_s) {
     return {"double_hit", Severity::caution,
             fmt::format("The motion before {:.3g} s is not part of the same free decay: a second hit while "
@@ -489,6 +507,8 @@ Finding double_hit(double time_s) {
                         "the window with --from if the decay began before.",
                         time_s)};
 }
+
+namespace {
 
 /// Whether the first is over within a cycle, unlike the second, which follows within a few of its cycles.
 bool is_first_hit(const Found& first, const Found& second) {
@@ -585,13 +605,11 @@ void note_clipping(const Search& search, Event& event) {
 }
 
 /// Mains hum in the rest after the first decay.
-void note_hum(const Search& search, const Series& recorded, EventSearch& result) {
-    if (search.found.empty()) return;
+std::optional<Finding> hum_after_first(const Search& search, const Series& recorded) {
+    if (search.found.empty()) return {};
     const Course& course = search.found.front().course;
     const std::span<const double> rest = recorded.values().subspan(course.end, course.rest_end - course.end);
-    const std::optional<Finding> hum =
-        hum_finding(rest, search.series.rate_hz(), 1.0 / search.found.front().cycle());
-    if (hum) result.findings.push_back(*hum);
+    return hum_finding(rest, search.series.rate_hz(), 1.0 / search.found.front().cycle());
 }
 
 /// The mode that rings beside the one of the guessed frequency (cycles a step): of two that beat, the one
@@ -641,9 +659,11 @@ void look_for_drops(Search& search) {
     search.refused = std::move(drops.refused);
 }
 
-std::string reason_for_none(const Search& search) {
-    if (!search.refused.empty()) return search.refused.front().reason;
-    if (search.steady)
+}  // namespace
+
+std::string reason_for_none(const SearchedStretch& searched) {
+    if (!searched.refused.empty()) return searched.refused;
+    if (searched.steady)
         return "The recording oscillates, but its amplitude does not fall: a steady or forced motion is no "
                "free "
                "decay. Record a single release, tap or drop with the drive switched off.";
@@ -652,10 +672,67 @@ std::string reason_for_none(const Search& search) {
            "the trigger and the sensor, or give the window with --from and --to.";
 }
 
+namespace {
+
 bool constant(const Series& series) {
     const auto [low, high] = std::minmax_element(series.values().begin(), series.values().end());
     return !(*high > *low);
 }
+
+/// Hum would hide the start and pass for a steady motion; the fit that follows has it as a tone.
+std::vector<double> take_out_hum(const Series& recorded, Series& series) {
+    auto cleaned = without_hum(recorded.values(), recorded.rate_hz());
+    if (!cleaned) return {};
+    series.replace(std::move(cleaned->values));
+    return std::move(cleaned->lines_hz);
+}
+
+/// All decays of the search, in order.
+void find_all(Search& search) {
+    look_for_drops(search);
+    const std::vector<Onset> onsets = find_onsets(search.pyramid);
+    for (const Onset& onset : onsets) try_onset(search, onset, onsets);
+    std::sort(search.found.begin(), search.found.end(),
+              [](const Found& a, const Found& b) { return a.begin() < b.begin(); });
+    const std::span<const double> values = search.series.values();
+    follow_beats(search);
+    drop_unlike(search.found);
+    drop_weak(search.found, [&](const Found& found) { return rest_rms(values, found.course); });
+    drop_wanderings(search);
+    drop_pulls(search.found);
+    judge_interruptions(search.found, search.series, search.pyramid);
+    note_double_hits(search.found, search);
+    find_quiet(search.found, search.pyramid);
+}
+
+}  // namespace
+
+void drop_unlike_others(std::vector<Candidate>& candidates) {
+    drop_unlike(candidates);
+    drop_weak(candidates, [](const Candidate& candidate) { return candidate.noise_in_rest; });
+}
+
+SearchedStretch search_stretch(const Recording& recording, const EventOptions& options) {
+    SearchedStretch result;
+    const Series recorded(recording);
+    if (constant(recorded)) return result;
+    Series series = recorded;
+    const std::vector<double> hum_hz = take_out_hum(recorded, series);
+    const Pyramid pyramid(series.values());
+    Search search{recording, series, pyramid, options.kind, options.near_hz.has_value(), {}, {}, {}, false};
+    find_all(search);
+    for (const Found& found : search.found) {
+        result.candidates.push_back(
+            {found, to_event(found, search, options), rest_rms(series.values(), found.course)});
+        result.candidates.back().event.hum_hz = hum_hz;
+    }
+    result.hum = hum_after_first(search, recorded);
+    result.steady = search.steady;
+    if (!search.refused.empty()) result.refused = search.refused.front().reason;
+    return result;
+}
+
+namespace {
 
 EventSearch search_whole(const Recording& recording, const EventOptions& options) {
     EventSearch result;
@@ -666,39 +743,14 @@ EventSearch search_whole(const Recording& recording, const EventOptions& options
         result.findings.push_back({"too_short_record", Severity::defect, result.reason});
         return result;
     }
-    const Series recorded(recording);
-    if (constant(recorded)) {
+    if (constant(Series(recording))) {
         result.reason = "Every sample has the same value. Check the sensor, its cable and the channel.";
         return result;
     }
-    // Hum would hide the start and pass for a steady motion; the fit that follows has it as a tone.
-    Series series = recorded;
-    std::vector<double> hum_hz;
-    if (auto cleaned = without_hum(recorded.values(), recorded.rate_hz())) {
-        series.replace(std::move(cleaned->values));
-        hum_hz = std::move(cleaned->lines_hz);
-    }
-    const Pyramid pyramid(series.values());
-    Search search{recording, series, pyramid, options.kind, options.near_hz.has_value(), {}, {}, {}, false};
-    look_for_drops(search);
-    const std::vector<Onset> onsets = find_onsets(pyramid);
-    for (const Onset& onset : onsets) try_onset(search, onset, onsets);
-    std::sort(search.found.begin(), search.found.end(),
-              [](const Found& a, const Found& b) { return a.begin() < b.begin(); });
-    follow_beats(search);
-    drop_unlike(search.found);
-    drop_weak(search.found, series.values());
-    drop_wanderings(search);
-    drop_pulls(search.found);
-    judge_interruptions(search.found, series, pyramid);
-    note_double_hits(search.found, search);
-    find_quiet(search.found, pyramid);
-    for (const Found& found : search.found) {
-        result.events.push_back(to_event(found, search, options));
-        result.events.back().hum_hz = hum_hz;
-    }
-    note_hum(search, recorded, result);
-    if (result.events.empty()) result.reason = reason_for_none(search);
+    SearchedStretch searched = search_stretch(recording, options);
+    for (Candidate& candidate : searched.candidates) result.events.push_back(std::move(candidate.event));
+    if (searched.hum) result.findings.push_back(*searched.hum);
+    if (result.events.empty()) result.reason = reason_for_none(searched);
     return result;
 }
 
@@ -727,6 +779,11 @@ std::optional<TestKind> test_kind_from_text(std::string_view text) {
 EventSearch find_events(const Recording& recording, const EventOptions& options) {
     if (options.from_s || options.to_s) return event_search::search_by_hand(recording, options);
     return event_search::search_whole(recording, options);
+}
+
+EventSearch find_events(const LongRecording& recording, const EventOptions& options) {
+    if (options.from_s || options.to_s) return event_search::search_long_by_hand(recording, options);
+    return event_search::search_long(recording, options);
 }
 
 }  // namespace ringwright

@@ -4,7 +4,7 @@
 
 #include <algorithm>
 #include <cmath>
-#include <limits>
+#include <functional>
 #include <thread>
 
 #include "recording/channel_scale.hpp"
@@ -14,6 +14,7 @@
 #include "recording/csv_rows.hpp"
 #include "recording/csv_table.hpp"
 #include "recording/csv_thousands.hpp"
+#include "recording/in_pieces.hpp"
 #include "recording/preamble_rate.hpp"
 #include "recording/quantity_words.hpp"
 #include "recording/text_encoding.hpp"
@@ -538,6 +539,27 @@ void read_csv(std::string_view bytes, const ReadOptions& options, Recording& rec
 
 namespace {
 
+/// Bytes of a table whose columns are read as a whole.
+constexpr std::size_t longest_column_held = std::size_t{1} << 24;
+
+void add_value(double value, ChannelSummary& summary, double& sum) {
+    if (std::isnan(value)) {
+        ++summary.missing;
+        return;
+    }
+    const bool first = summary.values++ == 0;
+    sum += value;
+    summary.minimum = first ? value : std::min(summary.minimum, value);
+    summary.maximum = first ? value : std::max(summary.maximum, value);
+}
+
+/// Hands on the rows of a long table part by part.
+void for_each_part(const OpenTable& open, const RowPlan& plan, unsigned threads,
+                   const std::function<void(const Rows&)>& take) {
+    for (const std::string_view part : pieces_of(open.rows(), longest_column_held, open.table.end_of_line))
+        take(read_rows(part, plan, threads));
+}
+
 ChannelSummary summarise_column(const OpenTable& open, const TimeChoice& time, std::size_t i) {
     const Column& column = open.table.columns[i];
     ChannelSummary summary;
@@ -552,20 +574,16 @@ ChannelSummary summarise_column(const OpenTable& open, const TimeChoice& time, s
                    : column.content == ColumnContent::empty  ? "empty"
                                                              : "text";
     if (column.content != ColumnContent::number) return summary;
-    RowPlan plan = plan_for(open.table, TimeChoice{}, i, ReadOptions{});
-    const Rows rows = read_rows(open.rows(), plan, std::max(1U, std::thread::hardware_concurrency()));
+    const RowPlan plan = plan_for(open.table, TimeChoice{}, i, ReadOptions{});
     double sum = 0.0;
-    summary.minimum = std::numeric_limits<double>::infinity();
-    summary.maximum = -summary.minimum;
-    for (const double value : rows.values) {
-        if (std::isnan(value)) continue;
-        ++summary.values;
-        sum += value;
-        summary.minimum = std::min(summary.minimum, value);
-        summary.maximum = std::max(summary.maximum, value);
-    }
-    summary.missing = rows.values.size() - summary.values;
-    if (summary.values == 0) summary.minimum = summary.maximum = 0.0;
+    const auto add_all = [&](const Rows& rows) {
+        for (const double value : rows.values) add_value(value, summary, sum);
+    };
+    const unsigned threads = std::max(1U, std::thread::hardware_concurrency());
+    if (open.rows().size() <= longest_column_held)
+        add_all(read_rows(open.rows(), plan, threads));
+    else
+        for_each_part(open, plan, threads, add_all);
     if (summary.values > 0) summary.mean = sum / static_cast<double>(summary.values);
     return summary;
 }

@@ -33,6 +33,10 @@ void LongRecording::name(const std::string& file, const std::string& sha256) {
     }
 }
 
+double LongRecording::time_of(std::size_t sample) const {
+    return equal_steps_ ? facts_.clock.time_of(sample) : stretch({sample, sample + 1}).clock.time_of(0);
+}
+
 std::size_t LongRecording::sample_at(double time_s) const {
     const SampleClock& clock = facts_.clock;
     const double position = std::ceil((time_s - clock.start_s) * clock.sample_rate_hz - 1e-6);

@@ -2,6 +2,7 @@
 #include <array>
 #include <cmath>
 #include <future>
+#include <memory>
 #include <string>
 
 #include "recording/csv_reader.hpp"
@@ -83,6 +84,25 @@ Recording recording_from(std::string_view bytes, const std::string& name, const 
     return recording;
 }
 
+std::unique_ptr<LongRecording> open_long(const std::shared_ptr<const InputBytes>& input,
+                                         const std::string& path, const ReadOptions& options,
+                                         const LongLimits& limits) {
+    const std::string_view bytes = input->view();
+    const bool sound = is_sound(bytes);
+    const std::size_t samples = sound ? frames_stated(bytes, shown_name(path)) : rows_estimate(bytes);
+    if (samples <= limits.held_whole) return nullptr;
+    check_options(options);
+    Recording facts;
+    facts.origin.file = shown_name(path);
+    facts.origin.bytes = bytes.size();
+    auto hash = hash_beside(bytes);
+    if (!sound) refuse_foreign(bytes, facts.origin.file);
+    auto recording = sound ? open_long_sound(input, options, std::move(facts), limits)
+                           : open_long_csv(input, options, std::move(facts), limits);
+    if (recording) recording->name(path, hash.get());
+    return recording;
+}
+
 }  // namespace
 
 Recording read_recording(const std::string& path, const ReadOptions& options) {
@@ -100,21 +120,15 @@ Recording read_recording_from_memory(std::string_view bytes, const std::string& 
 
 std::unique_ptr<LongRecording> open_long_recording(const std::string& path, const ReadOptions& options,
                                                    const LongLimits& limits) {
+    return open_long(std::make_shared<const InputBytes>(path), path, options, limits);
+}
+
+OpenedRecording open_recording(const std::string& path, const ReadOptions& options,
+                               const LongLimits& limits) {
     const auto input = std::make_shared<const InputBytes>(path);
-    const std::string_view bytes = input->view();
-    const bool sound = is_sound(bytes);
-    const std::size_t samples = sound ? frames_stated(bytes, shown_name(path)) : rows_estimate(bytes);
-    if (samples <= limits.held_whole) return nullptr;
-    check_options(options);
-    Recording facts;
-    facts.origin.file = shown_name(path);
-    facts.origin.bytes = bytes.size();
-    auto hash = hash_beside(bytes);
-    if (!sound) refuse_foreign(bytes, facts.origin.file);
-    auto recording = sound ? open_long_sound(input, options, std::move(facts), limits)
-                           : open_long_csv(input, options, std::move(facts), limits);
-    if (recording) recording->name(path, hash.get());
-    return recording;
+    if (std::shared_ptr<const LongRecording> recording = open_long(input, path, options, limits))
+        return {recording->facts(), recording};
+    return {recording_from(input->view(), path, options), nullptr};
 }
 
 FileSummary summarise_file(const std::string& path, const ReadOptions& options) {

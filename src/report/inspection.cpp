@@ -41,11 +41,35 @@ std::string channels_text(const FileSummary& file) {
     return report::to_text(table, 2);
 }
 
-std::string clock_text(const Recording& recording) {
-    std::string text =
-        fmt::format("{} samples at {:.6g} Hz, {:.4g} s, {}", recording.size(), recording.clock.sample_rate_hz,
-                    recording.duration_s(),
-                    recording.clock.uniform() ? "equal steps" : "steps as the time column has them");
+/// A recording, held or not.
+struct Seen {
+    const Recording& recording;
+    const LongRecording* stretches = nullptr;
+    [[nodiscard]] std::size_t size() const {
+        return stretches != nullptr ? stretches->size() : recording.size();
+    }
+    [[nodiscard]] double duration_s() const {
+        return stretches != nullptr ? stretches->duration_s() : recording.duration_s();
+    }
+    [[nodiscard]] bool equal_steps() const {
+        return stretches != nullptr ? stretches->equal_steps() : recording.clock.uniform();
+    }
+    [[nodiscard]] double time_of(std::size_t sample) const {
+        return stretches != nullptr ? stretches->time_of(sample) : recording.clock.time_of(sample);
+    }
+    [[nodiscard]] double start_of(const Event& event) const { return time_of(event.begin); }
+    [[nodiscard]] double end_of(const Event& event) const { return time_of(std::min(event.end, size() - 1)); }
+};
+
+Seen seen(const Inspection& inspection) {
+    return {*inspection.recording, inspection.stretches.get()};
+}
+
+std::string clock_text(const Seen& seen) {
+    const Recording& recording = seen.recording;
+    std::string text = fmt::format("{} samples at {:.6g} Hz, {:.4g} s, {}", seen.size(),
+                                   recording.clock.sample_rate_hz, seen.duration_s(),
+                                   seen.equal_steps() ? "equal steps" : "steps as the time column has them");
     if (recording.resolution > 0.0) {
         const double factor =
             recording.scaled && recording.unit.si_factor != 0.0 ? recording.unit.si_factor : 1.0;
@@ -63,24 +87,24 @@ std::string health_text(const Recording& recording) {
                        counted(recording.clipped.size(), "run"), counted(recording.gaps.size(), "gap"));
 }
 
-std::string recording_text(const Recording& recording) {
+std::string recording_text(const Seen& seen) {
+    const Recording& recording = seen.recording;
     std::string text = "Recording\n";
     text += fmt::format(
         "  channel {}: {}{}\n", printable(recording.origin.channel),
         recording.quantity_known ? std::string(to_text(recording.quantity)) : "quantity not known",
         recording.unit.symbol.empty() ? "" : fmt::format(" in {}", printable(recording.unit.symbol)));
-    return text + fmt::format("  {}\n  {}\n", clock_text(recording), health_text(recording));
+    return text + fmt::format("  {}\n  {}\n", clock_text(seen), health_text(recording));
 }
 
-std::string events_text(const Recording& recording, const EventSearch& search) {
+std::string events_text(const Seen& seen, const EventSearch& search) {
     if (search.events.empty()) return report::wrapped("Events: none. ", search.reason);
     TextTable table{
         {Align::right, Align::left, Align::right, Align::right, Align::right, Align::right}, {}, true};
     table.rows.push_back({"N", "test", "start / s", "end / s", "length / s", "frequency about / Hz"});
     std::size_t number = 0;
     for (const Event& event : search.events) {
-        const double start = recording.clock.time_of(event.begin);
-        const double end = recording.clock.time_of(std::min(event.end, recording.size() - 1));
+        const double start = seen.start_of(event), end = seen.end_of(event);
         table.rows.push_back(
             {std::to_string(++number), std::string(to_text(event.kind)) + (event.kind_known ? "" : "?"),
              fmt::format("{:.4f}", start), fmt::format("{:.4f}", end), fmt::format("{:.4f}", end - start),
@@ -88,6 +112,24 @@ std::string events_text(const Recording& recording, const EventSearch& search) {
                                             : "does not ring"});
     }
     return "Events\n" + report::to_text(table, 2);
+}
+
+/// Of a recording that is not held, its overview with the events in their places there.
+std::string drawing(const Inspection& inspection, std::size_t columns) {
+    constexpr std::size_t rows = 10;
+    std::vector<Event> events = inspection.events.events;
+    if (!inspection.stretches) return draw(*inspection.recording, events, columns, rows);
+    const Recording& overview = inspection.stretches->overview();
+    const std::vector<double>& times = overview.clock.times_s;
+    const auto place = [&](double time_s) {
+        return static_cast<std::size_t>(std::ranges::lower_bound(times, time_s) - times.begin());
+    };
+    for (Event& event : events) {
+        const double start = seen(inspection).start_of(event), end = seen(inspection).end_of(event);
+        event.begin = place(start);
+        event.end = place(end);
+    }
+    return draw(overview, events, columns, rows);
 }
 
 std::string all_findings(const Inspection& inspection) {
@@ -113,9 +155,9 @@ Json channel_json(const ChannelSummary& channel) {
     return json;
 }
 
-Json event_json(const Recording& recording, const Event& event) {
-    Json json{{"start_s", recording.clock.time_of(event.begin)},
-              {"end_s", recording.clock.time_of(std::min(event.end, recording.size() - 1))},
+Json event_json(const Seen& seen, const Event& event) {
+    Json json{{"start_s", seen.start_of(event)},
+              {"end_s", seen.end_of(event)},
               {"test", std::string(to_text(event.kind))},
               {"test_certain", event.kind_known}};
     if (event.frequency_guess_hz > 0.0) json["frequency_about_hz"] = event.frequency_guess_hz;
@@ -131,20 +173,20 @@ Json ranges_json(const std::vector<SampleRange>& ranges) {
 
 void put_recording(Json& json, const Inspection& inspection) {
     const Recording& recording = *inspection.recording;
+    const Seen whole = seen(inspection);
     Json entry{{"channel", recording.origin.channel}};
     if (recording.quantity_known) entry["quantity"] = std::string(to_text(recording.quantity));
     if (!recording.unit.symbol.empty()) entry["unit"] = recording.unit.symbol;
     entry["sample_rate_hz"] = recording.clock.sample_rate_hz;
-    entry["uniform"] = recording.clock.uniform();
-    entry["sample_count"] = recording.size();
-    entry["duration_s"] = recording.duration_s();
+    entry["uniform"] = whole.equal_steps();
+    entry["sample_count"] = whole.size();
+    entry["duration_s"] = whole.duration_s();
     entry["clipped"] = ranges_json(recording.clipped);
     entry["gaps"] = ranges_json(recording.gaps);
     entry["findings"] = to_json(recording.findings);
     json["recording"] = std::move(entry);
     json["events"] = Json::array();
-    for (const Event& event : inspection.events.events)
-        json["events"].push_back(event_json(recording, event));
+    for (const Event& event : inspection.events.events) json["events"].push_back(event_json(whole, event));
     if (inspection.events.events.empty()) json["reason"] = inspection.events.reason;
     json["events_findings"] = to_json(inspection.events.findings);
 }
@@ -163,9 +205,8 @@ std::string to_text(const Inspection& inspection, std::size_t width) {
         text += fmt::format("\n{}", report::wrapped("Not read: ", printable(to_text(*inspection.problem))));
     if (inspection.recording) {
         const std::size_t columns = std::clamp<std::size_t>(width, 40, 400);
-        text += fmt::format("\n{}\n{}\n", recording_text(*inspection.recording),
-                            draw(*inspection.recording, inspection.events.events, columns, 10));
-        text += events_text(*inspection.recording, inspection.events);
+        text += fmt::format("\n{}\n{}\n", recording_text(seen(inspection)), drawing(inspection, columns));
+        text += events_text(seen(inspection), inspection.events);
     }
     const std::string findings = all_findings(inspection);
     return findings.empty() ? text : fmt::format("{}\n{}", text, findings);
