@@ -57,7 +57,7 @@ std::optional<Fall> fall_of(const CurveFit& fit) {
 }
 
 // Plateau and decay from `before` falls ahead of the fall, or from as far as the recording goes back; nothing
-// where that is too little.
+// where that is too little and not all that there is.
 std::optional<CurveFit> window_from(const CurveFit& fit, const Recording& recording, const Event& event,
                                     const Fall& fall, double before) {
     constexpr double least_before = 0.4;
@@ -66,7 +66,8 @@ std::optional<CurveFit> window_from(const CurveFit& fit, const Recording& record
                  fall_begin = static_cast<double>(fit.window.begin) + fall.begin_s * rate;
     const double limit = event.quiet_end > event.quiet_begin ? 0.0 : static_cast<double>(event.quiet_end);
     const double begin = std::max(limit, fall_begin - before * fall.length_s * rate);
-    if (begin > fall_begin - least_before * fall.length_s * rate) return std::nullopt;
+    const bool is_first_sample = begin == 0.0;
+    if (!is_first_sample && begin > fall_begin - least_before * fall.length_s * rate) return std::nullopt;
     held.window =
         cut_window(recording, static_cast<std::size_t>(begin), fit.window.begin + fit.window.size());
     const auto block = static_cast<Index>(std::max(1.0, fall.length_s * rate / rows_in_fall));
@@ -92,7 +93,7 @@ ProjectedFit best_start(const DecaySamples& samples, const DecayModel& like, dou
         DecayModel start = like;
         const double omega = (1.0 + 1.1 * ratio + 1.4 * ratio * ratio) / fall_s;
         start.oscillators.front() = Oscillator::from(ratio, omega);
-        start.release = std::max(0.5 * fall_begin_s, fall_begin_s - 0.45 / omega);
+        start.release = std::max(0.3 * fall_begin_s, fall_begin_s - 0.45 / omega);
         ProjectedFit fit = fit_projected(start, samples, AutoregressiveNoise{}, first_evaluations);
         if (fit.model.parameters().allFinite() && (!best || fit.residual_sum < best->residual_sum))
             best = std::move(fit);
@@ -104,7 +105,9 @@ bool rests_before_release(const CurveFit& held) {
     const double release = *held.fit.model.release;
     const Index rows = std::lower_bound(held.samples.time.begin(), held.samples.time.end(), release) -
                        held.samples.time.begin();
-    constexpr Index fewest = 6;
+    // A recording that begins shortly before the release has no more of it, and one that begins behind it
+    // none.
+    const Index fewest = held.window.begin == 0 ? 1 : 6;
     if (rows < fewest) return false;
     return held.innovations.head(rows).squaredNorm() <
            chi_squared_quantile(1.0 - plateau_false_alarm, static_cast<double>(rows));
@@ -168,6 +171,19 @@ bool explains_release(const CurveFit& held) {
            chi_squared_quantile(1.0 - false_alarm, static_cast<double>(rows));
 }
 
+// Whether a decay that was running at the first sample explains the same samples as well, by their
+// likelihood: nine is three standard deviations of what the instant of the release, the one parameter more,
+// may gain.
+bool may_have_been_running(const CurveFit& held) {
+    constexpr double clearly = 9.0;
+    if (held.window.begin != 0) return false;
+    DecayModel running = held.fit.model;
+    running.release.reset();
+    running.let_go_slowly = false;
+    const ProjectedFit fit = fit_projected(running, held.samples, held.noise.noise);
+    return fit.residual_sum - held.fit.residual_sum < clearly * held.noise.noise.innovation_variance;
+}
+
 double release_uncertainty(const CurveFit& held) {
     VectorXd gradient = VectorXd::Zero(held.map.rows());
     gradient(gradient.size() - 1) = 1.0;
@@ -201,7 +217,9 @@ std::optional<HeldRelease> fit_held_release(const CurveFit& fit, const Recording
     for (const double before : falls_before) {
         auto longer = fit_from(fit, recording, event, *fall, before);
         if (!longer) break;
+        const bool is_whole = longer->window.begin == 0;
         held = std::move(longer);
+        if (is_whole) break;
     }
     constexpr double most_growth = 1.15;  // of the residual, by chance, over a wider window
     if (!held || held->oscillator().damping_ratio() < least_damping) return std::nullopt;
@@ -213,6 +231,7 @@ std::optional<HeldRelease> fit_held_release(const CurveFit& fit, const Recording
     held->valid = true;
     HeldRelease release;
     release.explained = as_good && explains_release(*held);
+    release.may_be_none = may_have_been_running(*held);
     release.uncertainty_s = release_uncertainty(*held);
     release.release_s = recording.clock.time_of(held->window.begin) + *held->fit.model.release;
     held->findings = fit.findings;
@@ -222,10 +241,13 @@ std::optional<HeldRelease> fit_held_release(const CurveFit& fit, const Recording
     held->findings.push_back(
         {"release_hidden", Severity::note,
          fmt::format(
-             "When the article was let go is not known better than the recording tells: plateau, release and "
-             "decay were fitted together (release at {:.4g} s, standard uncertainty {:.2g} s), and the "
-             "intervals contain that. Less noise or a larger displacement narrows them.",
-             release.release_s, release.uncertainty_s)});
+             "When the article was let go is not known better than the recording tells: plateau, "
+             "release and decay were fitted together (release at {:.4g} s, standard uncertainty "
+             "{:.2g} s), and the intervals contain that{}. Less noise or a larger displacement narrows "
+             "them{}.",
+             release.release_s, release.uncertainty_s,
+             release.may_be_none ? ", and that it may have been before the first sample" : "",
+             release.may_be_none ? ", and so does a recording that begins earlier" : "")});
     release.curve = std::move(*held);
     return release;
 }

@@ -21,6 +21,8 @@ struct HeldRelease {
     double uncertainty_s = 0.0;  ///< of the release
     bool explained = true;       ///< noise explains what is left about the release (one false alarm in 100)
 
+    bool may_be_none = false;  ///< a decay that was running at the recording's first sample explains it too
+
     /// Seen within 0.05 % of a period, or let go in a way that the model does not know: then a decay that is
     /// taken from safely behind the release says as much and supposes nothing of how the article was let go.
     [[nodiscard]] bool sharp() const;

@@ -17,6 +17,7 @@
 #include "identify/law_window.hpp"
 #include "identify/method_bootstrap.hpp"
 #include "identify/residual_checks.hpp"
+#include "identify/running_start.hpp"
 #include "ringwright/distributions.hpp"
 #include "ringwright/identify.hpp"
 
@@ -56,6 +57,23 @@ MethodResult curve_fit_result(const CurveFit& fit, double confidence_level) {
     }
     result.status = MethodStatus::ok;
     return result;
+}
+
+// Two explanations between which the recording does not decide: each interval holds those of both.
+void contain_also(Quantities& quantities, const Quantities& others) {
+    for (auto& [quantity, estimate] : quantities) {
+        const auto other = others.find(quantity);
+        if (other == others.end()) continue;
+        const Estimate& o = other->second;
+        estimate.interval = {std::min(estimate.interval.low, o.interval.low),
+                             std::max(estimate.interval.high, o.interval.high)};
+        const double apart = estimate.value - o.value;
+        const auto square = [](double x) { return x * x; };
+        // Standard deviation of either with the same probability.
+        estimate.standard_uncertainty =
+            std::sqrt(0.5 * (square(estimate.standard_uncertainty) + square(o.standard_uncertainty)) +
+                      0.25 * square(apart));
+    }
 }
 
 // The amplitude asked for as one of what was measured, which follows from another by the natural frequency.
@@ -225,6 +243,9 @@ struct Explanation {
     /// Where noise hides the instant of the release: the fit of plateau, release and decay, which then is the
     /// answer. `viscous` begins safely behind the release.
     std::optional<CurveFit> held;
+    /// Beside `held`, where the recording began too late to tell: a decay that was running at its first
+    /// sample.
+    std::optional<CurveFit> running;
     std::optional<LawFit> law;
 
     [[nodiscard]] const CurveFit& fit() const { return law ? law->viscous : viscous; }
@@ -240,20 +261,25 @@ void take_held(Explanation& explanation, HeldRelease held, const Recording& reco
     explanation.event = held.behind(explanation.event, recording);
     const bool too_early = viscous.window.begin < explanation.event.begin;
     CurveFit later = fit_decay(recording, explanation.event, options);
+    if (held.may_be_none && viscous.valid && viscous.window.begin == 0) explanation.running = viscous;
     if (!held.sharp()) explanation.held = std::move(held.curve);
     if (explanation.held || (too_early && later.valid)) viscous = std::move(later);
 }
 
 Explanation explain(const Recording& recording, const Event& event, const CurveFitOptions& options) {
-    Explanation explanation{event, fit_decay(recording, event, options), std::nullopt, std::nullopt};
+    Explanation explanation{event, fit_decay(recording, event, options), {}, {}, {}};
     CurveFit& viscous = explanation.viscous;
-    auto held = fit_held_release(viscous, recording, event, options);
+    if (auto first = fit_from_first_sample(viscous, recording, event, options)) {
+        explanation.event = first->event;
+        viscous = std::move(first->fit);
+    }
+    auto held = fit_held_release(viscous, recording, explanation.event, options);
     if (!held || !held->explained)
-        explanation.law = law_from_earlier_start(viscous, recording, event, options);
+        explanation.law = law_from_earlier_start(viscous, recording, explanation.event, options);
     if (held && !explanation.law) {
         const double start_s = recording.clock.time_of(viscous.window.begin);
         if (start_s > held->release_s + held->uncertainty_s)
-            explanation.law = choose_law(viscous, recording, event, options);
+            explanation.law = choose_law(viscous, recording, explanation.event, options);
         take_held(explanation, std::move(*held), recording, options);
     }
     if (!explanation.law) explanation.law = choose_law(viscous, recording, explanation.event, options);
@@ -285,6 +311,11 @@ EventIdentification identify_event(const Recording& recording, const Event& even
     result.end_s = recording.clock.time_of(event.end > event.begin ? event.end - 1 : event.begin);
     result.curve_fit = law ? law_result(*law, recording, options)
                            : curve_fit_result(explanation.answer(), options.confidence_level);
+    if (explanation.held && explanation.running && result.curve_fit.status == MethodStatus::ok) {
+        const Quantities running = decay_quantities(*explanation.running, 0, options.confidence_level);
+        contain_also(result.curve_fit.quantities, running);
+        contain_also(result.curve_fit.modes.front().quantities, running);
+    }
     result.findings = explanation.answer().findings;
     if (result.curve_fit.status != MethodStatus::ok) return unanswered(std::move(result));
     if (!fit.valid) {  // behind a release that noise hides is too little left for the simple methods

@@ -4,6 +4,7 @@
 #include <cmath>
 
 #include "identify/held_release.hpp"
+#include "identify/running_start.hpp"
 #include "ringwright/identify.hpp"
 #include "support/simulated_decay.hpp"
 
@@ -109,6 +110,45 @@ TEST_CASE("beyond critical damping a start behind the release would throw away w
     }
 }
 
+TEST_CASE("a plateau too short to be seen for one is allowed for") {
+    // 40 recordings that begin a fifth of a period before the release: 38 expected, fewer than 33 has a
+    // chance of one in a hundred thousand. Taken for a decay that was running already, one in 60 held.
+    IdentifyOptions options;
+    options.replicates = 0;
+    int found_events = 0, frequency = 0, ratio = 0;
+    for (std::uint64_t seed = 7600; seed < 7640; ++seed) {
+        const simulated::Sample sample = held_sample(1.5, 20.0, 0.2, seed);
+        const EventSearch found = find_events(sample.recording);
+        if (found.events.size() != 1) continue;
+        ++found_events;
+        const EventIdentification result = identify_event(sample.recording, found.events.front(), options);
+        frequency += holds(result.curve_fit.quantities, Quantity::natural_frequency, 5.0);
+        ratio += holds(result.curve_fit.quantities, Quantity::damping_ratio, 1.5);
+    }
+    CHECK(found_events >= 30);
+    CHECK(frequency >= 0.8 * found_events);
+    CHECK(ratio >= 0.8 * found_events);
+}
+
+TEST_CASE("in slow noise a decay that was running when the recording began is taken from its first sample") {
+    // 30 recordings of which the search is made to begin 8 samples late: one false alarm in twenty, so 28.5.
+    int first = 0, spoilt = 0;
+    for (std::uint64_t seed = 7700; seed < 7730; ++seed) {
+        simulated::Sample sample = held_sample(1.5, 40.0, 0.0, seed, 0.9);
+        Event late = sample.event;
+        late.begin += 8;
+        const auto running =
+            fit_from_first_sample(fit_decay(sample.recording, late, {}), sample.recording, late, {});
+        first += running && running->event.begin == 0;
+        for (std::size_t i = 0; i < 8; ++i)  // a push that is still going on: 5 % of the amplitude
+            sample.recording.samples[i] -= 0.05 * static_cast<double>(i % 2);
+        spoilt += fit_from_first_sample(fit_decay(sample.recording, late, {}), sample.recording, late, {})
+                      .has_value();
+    }
+    CHECK(first >= 24);
+    CHECK(spoilt == 0);
+}
+
 TEST_CASE("the release is found within what is said of it") {
     // Four standard uncertainties: one false alarm in 16,000 for each.
     for (std::uint64_t seed = 7200; seed < 7210; ++seed) {
@@ -140,7 +180,8 @@ TEST_CASE("the release is found where the fit began long before it") {
 
 TEST_CASE("what was not held, or is seen sharply, keeps a start of its own") {
     const simulated::Sample cut = held_sample(0.7, 26.0, 0.0, 7301);
-    CHECK_FALSE(fit_held_release(fit_decay(cut.recording, cut.event, {}), cut.recording, cut.event, {}));
+    const auto none = fit_held_release(fit_decay(cut.recording, cut.event, {}), cut.recording, cut.event, {});
+    CHECK((!none || none->may_be_none));  // a few samples of noise may pass for a plateau there
     const simulated::Sample light = held_sample(0.05, 26.0, 1.5, 7302);
     CHECK_FALSE(
         fit_held_release(fit_decay(light.recording, light.event, {}), light.recording, light.event, {}));
