@@ -265,7 +265,7 @@ bool start_fit(CurveFit& fit, const Event& event, const CurveFitOptions& options
         fit.reason = "no decaying oscillation fits the recording";
         return false;
     }
-    fit.fit = *start;
+    fit.fit = find_ring_on_tail(*start, fit.samples, guess).value_or(*start);
     add_what_was_seen(fit, event, options);
     return true;
 }

@@ -102,4 +102,22 @@ std::optional<ProjectedFit> find_start(const DecaySamples& samples, double guess
     return found;
 }
 
+std::optional<ProjectedFit> find_ring_on_tail(const ProjectedFit& fit, const DecaySamples& samples,
+                                              double guess_hz) {
+    constexpr double does_not_ring = 0.8, much_better = 0.2, most_damping = 0.6;
+    if (guess_hz <= 0.0 || fit.model.oscillators.front().damping_ratio() < does_not_ring) return std::nullopt;
+    std::optional<ProjectedFit> best;
+    for (const double damping : {0.03, 0.1, 0.25})
+        for (const double over_length : {1.0, 5.0, 20.0}) {
+            DecayModel start;
+            start.oscillators.push_back(Oscillator::from(damping, two_pi * guess_hz));
+            start.real_poles.push_back(std::log(over_length / samples.time.maxCoeff()));
+            ProjectedFit tried = fit_projected(start, samples, AutoregressiveNoise{}, 40);
+            const bool rings = tried.model.parameters().allFinite() &&
+                               tried.model.oscillators.front().damping_ratio() < most_damping;
+            if (rings && (!best || tried.residual_sum < best->residual_sum)) best = std::move(tried);
+        }
+    return best && best->residual_sum < much_better * fit.residual_sum ? best : std::nullopt;
+}
+
 }  // namespace ringwright::identify
