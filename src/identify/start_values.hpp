@@ -15,7 +15,7 @@ namespace ringwright::identify {
                                                      std::optional<double> near_hz);
 
 /// Where `fit` does not ring and the recording does, about `guess_hz`: the ring on a slow exponential, as an
-/// AC-coupled sensor leaves them of a release. Nothing where that explains less than four fifths of what
+/// AC-coupled sensor leaves them of a release. Nothing where that leaves more than a fifth of what
 /// `fit` leaves.
 [[nodiscard]] std::optional<ProjectedFit> find_ring_on_tail(const ProjectedFit& fit,
                                                             const DecaySamples& samples, double guess_hz);
