@@ -75,6 +75,22 @@ std::string refusal_of(const Found& drop, const Fall& fall, MeasuredQuantity qua
     return {};
 }
 
+/// Whether the swing after a fall, recorded as displacement in m, is larger than that fall can have made it:
+/// √((v/ω)² + (g/ω²)²) with the contact velocity v. Then noise in a hold, or the crest of a swing that had
+/// died away, passed for the fall.
+bool swings_too_far(const Found& drop, const Fall& fall, std::span<const double> values, double rate_hz) {
+    constexpr double allowance = 1.5;
+    const Flight& first = fall.flights.front();
+    const std::size_t last_third = std::max<std::size_t>(1, (first.end - first.begin) / 3);
+    const double third_s = static_cast<double>(last_third) / rate_hz;
+    // The mean over the last third, and what gravity adds to it in half of that.
+    const double speed = std::abs(values[first.end - 1] - values[first.end - 1 - last_third]) / third_s +
+                         0.5 * standard_gravity * third_s;
+    const double omega = drop.start.shape.undamped_angular_frequency * rate_hz;
+    const double largest = std::hypot(speed / omega, standard_gravity / (omega * omega));
+    return drop.start.amplitude > allowance * largest + least_amplitude * first.noise;
+}
+
 /// The time after an impact in which another decay would be part of the same fall.
 std::size_t aftermath(const Fall& fall) {
     constexpr std::size_t falls = 10;
@@ -105,6 +121,9 @@ Drops find_drops(const Pyramid& pyramid, double rate_hz, MeasuredQuantity quanti
             drop.course = follow_decay(pyramid, drop.start, limits.latest);
             drop.flights = fall.flights;
             drop.hold_seen = fall.hold_seen;
+            if (quantity == MeasuredQuantity::displacement &&
+                swings_too_far(drop, seen, pyramid.level(0), rate_hz))
+                continue;
             reason = refusal_of(drop, fall, quantity, rate_hz);
         }
         if (!reason.empty() && quantity == MeasuredQuantity::acceleration) {
