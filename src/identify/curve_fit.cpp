@@ -212,6 +212,8 @@ bool same_noise_behind(const CurveFit& fit, const Event& event) {
     if (split < fewest || behind < fewest) return true;
     const double ratio = fit.innovations.tail(behind).squaredNorm() / static_cast<double>(behind) /
                          (fit.innovations.head(split).squaredNorm() / static_cast<double>(split));
+    if (!std::isfinite(ratio))
+        return false;  // numbers at the end of their range, or nothing but equal values
     const double below = f_probability(ratio, static_cast<double>(behind), static_cast<double>(split));
     return below > false_alarm / 2.0 && below < 1.0 - false_alarm / 2.0;
 }

@@ -119,7 +119,7 @@ bool goes_on_unchanged(const CurveFit& fit, Index from) {
     const double less = sum_left(design.cols()), more = sum_left(fit.basis.cols());
     const auto freedom = static_cast<double>(design.rows() - design.cols());
     const double ratio = (more - less) / 2.0 / (less / freedom);
-    return f_probability(ratio, 2.0, freedom) < 1.0 - same_decay_level;
+    return !std::isfinite(ratio) || f_probability(ratio, 2.0, freedom) < 1.0 - same_decay_level;
 }
 
 }  // namespace

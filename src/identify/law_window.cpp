@@ -207,6 +207,7 @@ void widen_forwards(LawFit& fit, const Recording& recording, const Event& event)
     if (behind < fewest || before < fewest) return;
     const double ratio = innovations.tail(behind).squaredNorm() / static_cast<double>(behind) /
                          (innovations.head(before).squaredNorm() / static_cast<double>(before));
+    if (!std::isfinite(ratio)) return;
     const double below = f_probability(ratio, static_cast<double>(behind), static_cast<double>(before));
     if (below > behind_false_alarm / 2.0 && below < 1.0 - behind_false_alarm / 2.0) fit = *longer;
 }

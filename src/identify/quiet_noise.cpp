@@ -63,11 +63,12 @@ bool is_noise_of_decay(const CurveFit& fit, const DecaySamples& quiet) {
                  less = whitened_residual_sum(fit, quiet, more);
     const auto freedom = static_cast<double>(quiet.size() - columns.cols());
     const double ratio = sum / freedom / fit.noise.noise.innovation_variance;
+    if (!std::isfinite(ratio)) return false;
     const double below = f_probability(ratio, freedom, fit.noise.degrees_of_freedom);
     if (below < false_alarm / 2.0 || below > 1.0 - false_alarm / 2.0) return false;
     const auto added = static_cast<double>(more.cols() - columns.cols());
     const double bend = (sum - less) / added / (less / (freedom - added));
-    return f_probability(bend, added, freedom - added) < 1.0 - false_alarm;
+    return std::isfinite(bend) && f_probability(bend, added, freedom - added) < 1.0 - false_alarm;
 }
 
 }  // namespace
