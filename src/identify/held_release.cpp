@@ -241,10 +241,9 @@ std::optional<HeldRelease> fit_held_release(const CurveFit& fit, const Recording
     held->findings.push_back(
         {"release_hidden", Severity::note,
          fmt::format(
-             "When the article was let go is not known better than the recording tells: plateau, "
-             "release and decay were fitted together (release at {:.4g} s, standard uncertainty "
-             "{:.2g} s), and the intervals contain that{}. Less noise or a larger displacement narrows "
-             "them{}.",
+             "The instant of release was read from the recording as well ({:.4g} s, standard uncertainty "
+             "{:.2g} s): plateau, release and decay were fitted together, and the intervals contain its "
+             "uncertainty{}. Less noise or a larger displacement narrows them{}.",
              release.release_s, release.uncertainty_s,
              release.may_be_none ? ", and that it may have been before the first sample" : "",
              release.may_be_none ? ", and so does a recording that begins earlier" : "")});

@@ -34,7 +34,7 @@ struct HeldRelease {
 /// The decay that `fit` found, with what was held before it. Nothing where the damping ratio is too small for
 /// the start to matter (0.15), the recording shows no displacement, other components were fitted, it was hit
 /// or dropped, or no plateau of the same noise is recorded before the decay (chi-squared, one false alarm in
-/// a thousand).
+/// a thousand). Of a recording that begins shortly before the decay a single row of plateau will do.
 [[nodiscard]] std::optional<HeldRelease> fit_held_release(const CurveFit& fit, const Recording& recording,
                                                           const Event& event, const CurveFitOptions& options);
 

@@ -240,8 +240,8 @@ namespace {
 struct Explanation {
     Event event;
     CurveFit viscous;
-    /// Where noise hides the instant of the release: the fit of plateau, release and decay, which then is the
-    /// answer. `viscous` begins safely behind the release.
+    /// Where the article is seen held and the release is not sharp: the fit of plateau, release and decay,
+    /// which then is the answer. `viscous` begins safely behind the release.
     std::optional<CurveFit> held;
     /// Beside `held`, where the recording began too late to tell: a decay that was running at its first
     /// sample.

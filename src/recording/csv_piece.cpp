@@ -95,15 +95,4 @@ void shift(CsvPiece& piece, double seconds) {
         for (StampCourse::Corner& corner : *hull) corner.time += seconds;
 }
 
-void merge_counts(Rows& counts, const Rows& later) {
-    counts.empty.merge(later.empty, counts.lines);
-    counts.not_a_number.merge(later.not_a_number, counts.lines);
-    counts.overflow.merge(later.overflow, counts.lines);
-    counts.text.merge(later.text, counts.lines);
-    counts.unreadable_time.merge(later.unreadable_time, counts.lines);
-    counts.unreadable_row.merge(later.unreadable_row, counts.lines);
-    if (counts.first_text.empty()) counts.first_text = later.first_text;
-    counts.lines += later.lines;
-}
-
 }  // namespace ringwright

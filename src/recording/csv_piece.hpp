@@ -54,7 +54,4 @@ void digest_rows(Rows& rows, const TimeScale& scale, double factor, CsvPiece& pi
 /// Moves its times.
 void shift(CsvPiece& piece, double seconds);
 
-/// Adds the counts of the rows behind.
-void merge_counts(Rows& counts, const Rows& later);
-
 }  // namespace ringwright

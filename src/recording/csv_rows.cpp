@@ -297,15 +297,23 @@ class ChunkReader {
     bool cell_done_ = false;  // at_ stands at the end of a cell that was read
 };
 
+}  // namespace
+
+void merge_counts(Rows& counts, const Rows& later) {
+    counts.empty.merge(later.empty, counts.lines);
+    counts.not_a_number.merge(later.not_a_number, counts.lines);
+    counts.overflow.merge(later.overflow, counts.lines);
+    counts.text.merge(later.text, counts.lines);
+    counts.unreadable_time.merge(later.unreadable_time, counts.lines);
+    counts.unreadable_row.merge(later.unreadable_row, counts.lines);
+    if (counts.first_text.empty()) counts.first_text = later.first_text;
+    counts.lines += later.lines;
+}
+
+namespace {
+
 void append(Rows& rows, const Rows& later) {
-    rows.empty.merge(later.empty, rows.lines);
-    rows.not_a_number.merge(later.not_a_number, rows.lines);
-    rows.overflow.merge(later.overflow, rows.lines);
-    rows.text.merge(later.text, rows.lines);
-    rows.unreadable_time.merge(later.unreadable_time, rows.lines);
-    rows.unreadable_row.merge(later.unreadable_row, rows.lines);
-    if (rows.first_text.empty()) rows.first_text = later.first_text;
-    rows.lines += later.lines;
+    merge_counts(rows, later);
     rows.times.insert(rows.times.end(), later.times.begin(), later.times.end());
     rows.values.insert(rows.values.end(), later.values.begin(), later.values.end());
 }

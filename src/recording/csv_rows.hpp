@@ -62,6 +62,9 @@ struct Rows {
 /// Reads the rows of one piece of a text in place of what `rows` holds, in its memory.
 void read_piece(std::string_view piece, const RowPlan& plan, Rows& rows);
 
+/// Adds the counts of the rows behind.
+void merge_counts(Rows& counts, const Rows& later);
+
 /// Rows whose times are one steady clock, which stands in place of the times.
 struct SteadyRows {
     Rows rows;
