@@ -5,8 +5,12 @@
 #include <numbers>
 #include <span>
 
+#include "event/contact.hpp"
+
 namespace ringwright::event_search {
 namespace {
+
+constexpr double standard_gravity = 9.80665;  // m/s²
 
 /// Blocks a cycle on which a drop is read: short bounces have to show.
 constexpr double fine_turn = 48.0;
@@ -21,7 +25,7 @@ struct Look {
     std::span<const double> values;
     std::size_t level = 0;
     double step_s = 0.0;
-    std::size_t end = 0;  ///< block, of what is fitted
+    std::size_t last = 0;  ///< block behind the last that may be fitted
 
     [[nodiscard]] std::size_t block_at(std::size_t position) const {
         return (position + (std::size_t{1} << level) - 1) >> level;
@@ -43,9 +47,7 @@ Look look_at(const Pyramid& pyramid, double rate_hz, const Onset& onset, std::si
     look.level = std::min(static_cast<std::size_t>(wanted), pyramid.levels() - 1);
     look.values = pyramid.level(look.level);
     look.step_s = std::ldexp(1.0, static_cast<int>(look.level)) / rate_hz;
-    const DecayShape shape = at_level(single, 0, look.level);
-    look.end =
-        end_of_look(shape, look.block_at(onset.position), std::min(look.values.size(), latest >> look.level));
+    look.last = std::min(look.values.size(), latest >> look.level);
     return look;
 }
 
@@ -64,16 +66,19 @@ std::optional<Onset> onset_after(const Pyramid& pyramid, std::size_t position, s
 struct After {
     std::size_t first = 0;
     DecayFit fit;
-    [[nodiscard]] double value_at(std::size_t block) const {
-        return fit.value_at(static_cast<double>(block) - static_cast<double>(first));
-    }
+    [[nodiscard]] std::size_t end() const { return first + fit.points; }
 };
 
-std::optional<After> fit_after(const Look& look, std::size_t first, const DecayShape& shape) {
-    if (first + fewest_blocks > look.end) return {};
-    const std::optional<DecayFit> fit = fit_decay(look.values.subspan(first, look.end - first), shape);
+std::optional<After> fit_between(const Look& look, std::size_t first, std::size_t end,
+                                 const DecayShape& shape) {
+    if (first + fewest_blocks > end) return {};
+    const std::optional<DecayFit> fit = fit_decay(look.values.subspan(first, end - first), shape);
     if (!fit) return {};
     return After{first, *fit};
+}
+
+std::optional<After> fit_after(const Look& look, std::size_t first, const DecayShape& shape) {
+    return fit_between(look, first, end_of_look(shape, first, look.last), shape);
 }
 
 /// Sum of squares of a flight about what gravity makes of it: a parabola, a straight line or a level.
@@ -98,14 +103,15 @@ double sum_about_flight(std::span<const double> points, MeasuredQuantity quantit
 /// there on. Nothing where that cannot be fitted.
 std::optional<double> sum_of_release(const Look& look, std::size_t begin, std::size_t end,
                                      std::size_t release, const After& after) {
-    const std::optional<After> whole = fit_after(look, release, after.fit.shape);
+    const std::optional<After> whole = fit_between(look, release, after.end(), after.fit.shape);
     if (!whole) return {};
     double together = 0.0, mean = 0.0;
     for (std::size_t k = begin; k < release; ++k)
         mean += look.values[k] / static_cast<double>(release - begin);
-    for (std::size_t k = begin; k < look.end; ++k) {
+    for (std::size_t k = begin; k < whole->end(); ++k) {
         if (k >= end && k < after.first) continue;
-        const double r = look.values[k] - (k < release ? mean : whole->value_at(k));
+        const double t = static_cast<double>(k) - static_cast<double>(release);
+        const double r = look.values[k] - (k < release ? mean : whole->fit.value_at(t));
         together += r * r;
     }
     return together;
@@ -118,7 +124,8 @@ bool is_flight(const Look& look, const Flight& flight, const After& after, Measu
     constexpr double surprising = 25.0;
     constexpr std::size_t releases = 12;
     const std::size_t begin = look.block_at(flight.begin), end = flight.end >> look.level;
-    if (end < begin + 4 || after.first <= begin) return true;
+    if (after.first <= begin) return false;
+    if (end < begin + 4) return true;
     const double apart =
         sum_about_flight(look.values.subspan(begin, end - begin), quantity) + after.fit.residual_sum;
     const auto spare = static_cast<double>(end - begin + after.fit.points) - 8.0;
@@ -133,60 +140,110 @@ bool is_flight(const Look& look, const Flight& flight, const After& after, Measu
     return true;
 }
 
-/// Push of spring and damper as the recording shows it at each block: how far a displacement lies below first
-/// touch, or an accelerometer above free fall. Nothing for a velocity.
-struct Push {
-    double sign = 0.0, zero = 0.0;
-    [[nodiscard]] bool known() const { return sign != 0.0; }
-    [[nodiscard]] double at(double value) const { return sign * (value - zero); }
-};
-
-Push push_of(const Fall& fall, const After& after, const Look& look, MeasuredQuantity quantity) {
+/// What gravity looks like to the sensor: as the fall shows it, the less the more noise hides it. A scale is
+/// seldom further off than the spread of the prior.
+double gravity_seen(const Fall& fall, const After& after, MeasuredQuantity quantity) {
+    constexpr double prior = 0.03 * standard_gravity;
     const Flight& first = fall.flights.front();
-    if (quantity == MeasuredQuantity::acceleration) return {-fall.down, first.level};
-    if (quantity != MeasuredQuantity::displacement) return {};
-    const double omega = after.fit.shape.undamped_angular_frequency / look.step_s;
-    return {fall.down, after.fit.offset - fall.down * first.acceleration / (omega * omega)};
+    const double seen = quantity == MeasuredQuantity::acceleration
+                            ? fall.down * (first.level - after.fit.offset)
+                            : first.acceleration;
+    const double share = prior * prior / (prior * prior + first.uncertainty * first.uncertainty);
+    return standard_gravity + share * (seen - standard_gravity);
 }
 
-/// Whether nothing pushes at a block. Displacement passes first touch slowly and is taken two blocks at a
-/// time. An accelerometer cannot show less than nothing: there it is where it shows no more than noise.
-bool is_free(const Look& look, const Push& push, std::size_t block, double noise, MeasuredQuantity quantity) {
-    constexpr double deviations = 3.0;
-    const double here = push.at(look.values[block]), next = push.at(look.values[block + 1]);
-    if (quantity == MeasuredQuantity::acceleration) return here < deviations * noise;
-    return 0.5 * (here + next) < -deviations * noise / std::numbers::sqrt2;
+Footing footing_of(const Fall& fall, const After& after, const Look& look, MeasuredQuantity quantity) {
+    const double gravity = gravity_seen(fall, after, quantity);
+    if (quantity == MeasuredQuantity::acceleration) return {quantity, fall.down, gravity};
+    const double step = look.step_s * (quantity == MeasuredQuantity::displacement ? look.step_s : 1.0);
+    return {quantity, fall.down, gravity * step};
 }
 
-/// The next block to begin at: after the flight in which `first` lies, else after the last flight; `first`
-/// when it pushes all along. The block in which an accelerometer jumps is neither flight nor contact.
-std::size_t after_flight(const Look& look, const Push& push, std::size_t first, double noise,
-                         MeasuredQuantity quantity) {
-    const std::size_t jump = quantity == MeasuredQuantity::acceleration ? 1 : 0;
-    std::size_t after = first;
-    while (after + 1 < look.end && is_free(look, push, after, noise, quantity)) ++after;
-    if (after > first) return after + jump;
-    for (std::size_t k = first; k + 1 < look.end; ++k)
-        if (is_free(look, push, k, noise, quantity)) after = k + 1 + jump;
-    return after;
+/// The block from which on the decay has spring and damper push without a break, not before `earliest`.
+/// `pull` is what they may pull by, as a share of gravity.
+double contact_since(const Look& look, const Fall& fall, const After& after, MeasuredQuantity quantity,
+                     double earliest, double pull = 0.0) {
+    Footing footing = footing_of(fall, after, look, quantity);
+    footing.gravity *= 1.0 + pull;
+    const auto origin = static_cast<double>(after.first);
+    const std::optional<double> free =
+        Swing(after.fit, footing).last_free(earliest - origin, static_cast<double>(after.fit.points));
+    return free ? origin + *free : earliest;
 }
 
-/// Moves the decay on until the spring pushes all along it, or one decay explains the recording as well as
-/// free fall explained the fall.
-After in_contact(const Look& look, const Fall& fall, After after, MeasuredQuantity quantity) {
-    constexpr int most_bounces = 40;
-    constexpr double as_well = 1.2;
-    const double noise = fall.flights.front().noise;
-    for (int bounce = 0; bounce < most_bounces; ++bounce) {
-        const Push push = push_of(fall, after, look, quantity);
-        if (!push.known() || after.fit.residual_rms() < as_well * noise) return after;
-        const std::size_t next = after_flight(look, push, after.first, after.fit.residual_rms(), quantity);
-        if (next == after.first) return after;
-        const std::optional<After> later = fit_after(look, next, after.fit.shape);
-        if (!later) return after;
+/// The pull at the top of the swing, as a share of gravity, that noise may feign.
+double feigned_pull(const Look& look, const Fall& fall, const After& after, MeasuredQuantity quantity) {
+    constexpr double deviations = 1.0, blocks = 0.5 * fine_turn;
+    const double omega = after.fit.shape.undamped_angular_frequency;
+    const double order = quantity == MeasuredQuantity::displacement ? 2.0
+                         : quantity == MeasuredQuantity::velocity   ? 1.0
+                                                                    : 0.0;
+    const double noise = after.fit.residual_rms() * std::pow(omega, order) * std::sqrt(2.0 / blocks);
+    return std::min(0.05, deviations * noise / footing_of(fall, after, look, quantity).gravity);
+}
+
+/// On to where the motion that is fitted would not have the spring pull any more.
+After moved_on(const Look& look, const Fall& fall, After after, MeasuredQuantity quantity, double earliest) {
+    constexpr int most_moves = 60;
+    for (int move = 0; move < most_moves; ++move) {
+        const double since = contact_since(look, fall, after, quantity, earliest);
+        const auto wanted = static_cast<std::size_t>(std::max(0.0, std::ceil(since)));
+        const auto cycle = static_cast<std::size_t>(cycle_of(after.fit.shape));
+        if (wanted <= after.first) break;
+        const std::optional<After> later =
+            fit_after(look, std::min(wanted, after.first + cycle), after.fit.shape);
+        if (!later) break;
         after = *later;
     }
     return after;
+}
+
+/// Whether the decay explains the recording from an earlier block on as it does from a later one on.
+bool as_well(const After& longer, const After& shorter) {
+    constexpr double worse = 2.0, more = 1.15;
+    const auto added = static_cast<double>(shorter.first - longer.first);
+    const double rms = shorter.fit.residual_rms(), allowed = worse * (added + 4.0) * rms * rms;
+    const double kept = static_cast<double>(longer.fit.points) - added;
+    return longer.fit.residual_sum < more * std::max(kept, 0.0) * rms * rms + allowed;
+}
+
+/// The earliest place from which the decay has spring and damper push and explains the recording as well as
+/// it does later.
+After moved_back(const Look& look, const Fall& fall, const After& after, MeasuredQuantity quantity,
+                 double earliest) {
+    const std::size_t step = std::max<std::size_t>(1, static_cast<std::size_t>(fine_turn / 12.0));
+    for (auto first = static_cast<std::size_t>(std::max(earliest, 0.0)); first + step <= after.first;
+         first += step) {
+        const std::optional<After> sooner = fit_after(look, first, after.fit.shape);
+        if (!sooner || !as_well(*sooner, after)) continue;
+        const double pull = feigned_pull(look, fall, *sooner, quantity);
+        const double since = contact_since(look, fall, *sooner, quantity, earliest, pull);
+        if (since <= static_cast<double>(first) + 1.0) return *sooner;
+    }
+    return after;
+}
+
+/// Back to the touch itself, as far as the decay explains the recording.
+After settled(const Look& look, const Fall& fall, After after, MeasuredQuantity quantity, double earliest) {
+    constexpr int most_moves = 8;
+    constexpr std::size_t step = 4;
+    for (int move = 0; move < most_moves; ++move) {
+        const double since = contact_since(look, fall, after, quantity, earliest);
+        const auto touch = static_cast<std::size_t>(std::max(0.0, std::ceil(since)));
+        if (touch >= after.first) break;
+        const std::optional<After> sooner =
+            fit_after(look, std::max(touch, after.first - std::min(after.first, step)), after.fit.shape);
+        if (!sooner || !as_well(*sooner, after)) break;
+        after = *sooner;
+    }
+    return after;
+}
+
+/// The decay from where it has spring and damper push without a break.
+After in_contact(const Look& look, const Fall& fall, const After& after, MeasuredQuantity quantity) {
+    const double earliest = static_cast<double>(look.block_at(fall.flights.front().end)) - 2.0;
+    const After later = moved_on(look, fall, after, quantity, earliest);
+    return settled(look, fall, moved_back(look, fall, later, quantity, earliest), quantity, earliest);
 }
 
 std::optional<After> after_last(const Look& look, const Fall& fall, const DecayShape& shape,
@@ -198,35 +255,27 @@ std::optional<After> after_last(const Look& look, const Fall& fall, const DecayS
 }
 
 /// First single value of the decay of an accelerometer, which jumps where the mass touches down.
-std::size_t after_jump(const Pyramid& pyramid, const Look& look, const Push& push, const After& after) {
+std::size_t after_jump(const Pyramid& pyramid, const Look& look, const Fall& fall, const After& after,
+                       std::size_t touch) {
     constexpr double deviations = 4.0;
-    const std::size_t first = after.first << look.level, end = (after.first + 3) << look.level;
+    const std::size_t reach = std::size_t{3} << look.level, first = touch - std::min(touch, reach);
     const double noise = after.fit.residual_rms() * std::exp2(0.5 * static_cast<double>(look.level));
     const std::span<const double> values = pyramid.level(0);
-    std::size_t position = first;
-    for (std::size_t k = first; k < std::min(end, values.size()); ++k)
-        if (push.at(values[k]) < deviations * noise) position = k + 2;
+    std::size_t position = touch;
+    for (std::size_t k = first; k < std::min(touch + reach, values.size()); ++k)
+        if (-fall.down * (values[k] - fall.flights.front().level) < deviations * noise) position = k + 2;
     return position;
-}
-
-/// First single value of the decay of a displacement: back from the first block for as long as the decay
-/// explains the recording and the mass has touched.
-std::size_t since_touch(const Look& look, const Push& push, const After& after, const Flight& last) {
-    constexpr double deviations = 3.0;
-    const std::size_t earliest = look.block_at((last.begin + last.end) / 2);
-    std::size_t first = after.first;
-    while (first > earliest && push.at(look.values[first - 1]) > 0.0 &&
-           std::abs(look.values[first - 1] - after.value_at(first - 1)) <
-               deviations * after.fit.residual_rms())
-        --first;
-    return first << look.level;
 }
 
 std::size_t first_value(const Pyramid& pyramid, const Look& look, const Fall& fall, const After& after,
                         MeasuredQuantity quantity) {
-    const Push push = push_of(fall, after, look, quantity);
-    if (quantity == MeasuredQuantity::acceleration) return after_jump(pyramid, look, push, after);
-    return push.known() ? since_touch(look, push, after, fall.flights.back()) : after.first << look.level;
+    const auto first = static_cast<double>(after.first);
+    // Of a block that lies half before the touch, the part behind it.
+    const double since = contact_since(look, fall, after, quantity, first - 1.0) + 0.5;
+    const auto touch = static_cast<std::size_t>(
+        std::ceil(std::clamp(since, first - 0.5, first + 1.0) * std::exp2(static_cast<double>(look.level))));
+    if (quantity == MeasuredQuantity::acceleration) return after_jump(pyramid, look, fall, after, touch);
+    return touch;
 }
 
 Start to_start(const Pyramid& pyramid, const Look& look, const After& after, std::size_t position) {
@@ -239,7 +288,7 @@ Start to_start(const Pyramid& pyramid, const Look& look, const After& after, std
     start.level = std::min(static_cast<std::size_t>(wanted), pyramid.levels() - 1);
     start.fit_block = (start.position + (std::size_t{1} << start.level) - 1) >> start.level;
     const std::span<const double> means = pyramid.level(start.level);
-    const std::size_t end = std::min(means.size(), (look.end << look.level) >> start.level);
+    const std::size_t end = std::min(means.size(), (after.end() << look.level) >> start.level);
     const DecayShape shape = at_level(start.shape, 0, start.level);
     if (end > start.fit_block + 4)
         start.fit = fit_amplitudes(means.subspan(start.fit_block, end - start.fit_block), shape);

@@ -8,11 +8,10 @@
 
 namespace ringwright::event_search {
 
-/// The decay after the last flight of `fall`. Spring and damper push and cannot pull, so the mass is free
-/// wherever a displacement lies above the level of first touch (the rest position less g/ω_n²), or an
-/// accelerometer shows no more than in free fall; the decay begins after the last such place. Takes out of
-/// `fall` what the decay that follows explains as well as a flight does (the crest of a swing). Nothing when
-/// no flight is left, or no decay follows.
+/// The decay of the last unbroken contact after `fall`: the earliest from whose start on neither the level of
+/// first touch is passed nor spring and damper would have to pull (contact.hpp), as the decay fitted from
+/// there has it. Takes out of `fall` what the decay that follows explains as well as a flight does (the crest
+/// of a swing). Nothing when no flight is left, or no decay follows.
 [[nodiscard]] std::optional<Start> locate_drop_start(const Pyramid& pyramid, Fall& fall,
                                                      MeasuredQuantity quantity, double rate_hz,
                                                      const StartLimits& limits);

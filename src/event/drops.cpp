@@ -75,6 +75,15 @@ std::string refusal_of(const Found& drop, const Fall& fall, MeasuredQuantity qua
     return {};
 }
 
+/// How far the mass comes below its rest position after a fall, as the recording shows it.
+double lowest_below_rest(const Found& drop, const Fall& fall, std::span<const double> values) {
+    double lowest = drop.start.amplitude;
+    const std::size_t end = std::min(drop.begin() + static_cast<std::size_t>(drop.cycle()), values.size());
+    for (std::size_t k = fall.flights.front().end; k < end; ++k)
+        lowest = std::max(lowest, fall.down * (values[k] - drop.start.fit.offset));
+    return lowest;
+}
+
 /// Whether the swing after a fall, recorded as displacement in m, is larger than that fall can have made it:
 /// √((v/ω)² + (g/ω²)²) with the contact velocity v. Then noise in a hold, or the crest of a swing that had
 /// died away, passed for the fall.
@@ -88,7 +97,7 @@ bool swings_too_far(const Found& drop, const Fall& fall, std::span<const double>
                          0.5 * standard_gravity * third_s;
     const double omega = drop.start.shape.undamped_angular_frequency * rate_hz;
     const double largest = std::hypot(speed / omega, standard_gravity / (omega * omega));
-    return drop.start.amplitude > allowance * largest + least_amplitude * first.noise;
+    return lowest_below_rest(drop, fall, values) > allowance * largest + least_amplitude * first.noise;
 }
 
 /// The time after an impact in which another decay would be part of the same fall.

@@ -18,6 +18,9 @@ constexpr double next_window = 1.42;  // times the one before
 /// white scatter: either will do.
 constexpr double plain = 15.0, plain_to_tell = 8.0;
 
+/// By how much neighbours that go together may widen an uncertainty (first-order noise of 0.6).
+constexpr double coloured = 2.0;
+
 /// c0 + c1·x + c2·x², x in blocks from the middle of the points.
 struct Curve {
     double middle = 0.0, c0 = 0.0, c1 = 0.0, c2 = 0.0, rms = 0.0;
@@ -270,8 +273,15 @@ bool from_rest(const Blocks& blocks, const Stretch& stretch) {
 }
 
 Flight to_flight(const Blocks& blocks, const Stretch& stretch) {
-    return {stretch.begin << blocks.level, stretch.end << blocks.level,
-            std::abs(acceleration_of(blocks, stretch.curve)), 0.0, stretch.curve.rms};
+    const std::size_t count = stretch.end - stretch.begin;
+    const double off =
+        coloured * height_scatter(blocks, count) * stretch.curve.rms / height_of(blocks, count);
+    return {stretch.begin << blocks.level,
+            stretch.end << blocks.level,
+            std::abs(acceleration_of(blocks, stretch.curve)),
+            0.0,
+            off * standard_gravity,
+            stretch.curve.rms};
 }
 
 std::vector<Fall> falls_of_motion(const Blocks& blocks) {
@@ -327,7 +337,13 @@ std::vector<Plateau> plateaus_of(const Blocks& blocks) {
 }
 
 Flight to_flight(const Blocks& blocks, const Plateau& plateau) {
-    return {plateau.begin << blocks.level, plateau.end << blocks.level, standard_gravity, plateau.level,
+    const double off = coloured * plateau.rms /
+                       std::sqrt(static_cast<double>(std::max<std::size_t>(1, plateau.end - plateau.begin)));
+    return {plateau.begin << blocks.level,
+            plateau.end << blocks.level,
+            standard_gravity,
+            plateau.level,
+            off,
             plateau.rms};
 }
 

@@ -16,7 +16,8 @@ struct Flight {
     /// gravity for an accelerometer, which shows none.
     double acceleration = 0.0;
     double level = 0.0;  ///< acceleration only: what the sensor shows while nothing holds the mass, m/s²
-    double noise = 0.0;  ///< rms about the flight of single blocks of the level on which it was found
+    double uncertainty = 0.0;  ///< standard uncertainty of `acceleration`, or of gravity as `level` shows it
+    double noise = 0.0;        ///< rms about the flight of single blocks of the level on which it was found
 };
 
 /// A fall from a hold and the bounces after it, in order. `down` is +1 where a downward motion raises the
