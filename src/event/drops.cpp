@@ -100,6 +100,27 @@ bool swings_too_far(const Found& drop, const Fall& fall, std::span<const double>
     return lowest_below_rest(drop, fall, values) > allowance * largest + least_amplitude * first.noise;
 }
 
+/// How far the values of a recording lie apart but for one in two hundred at either end, where something may
+/// have knocked against the sensor.
+double range_of(std::span<const double> values) {
+    constexpr std::size_t left_out = 200;
+    std::vector<double> sorted(values.begin(), values.end());
+    const auto rank = static_cast<std::ptrdiff_t>(sorted.size() / left_out);
+    const auto low = sorted.begin() + rank, high = sorted.end() - 1 - rank;
+    std::nth_element(sorted.begin(), low, sorted.end());
+    const double lowest = *low;
+    std::nth_element(low, high, sorted.end());
+    return *high - lowest;
+}
+
+/// Whether the article moves so much farther elsewhere in the recording that what passed for a fall is slow
+/// noise in a hold or behind a decay: whoever drops an article lifts it about as far as it falls.
+bool is_lost_in(double range, const Fall& fall, std::span<const double> values) {
+    constexpr double least_share = 0.1;
+    const Flight& first = fall.flights.front();
+    return std::abs(values[first.end - 1] - values[first.begin]) < least_share * range;
+}
+
 /// The time after an impact in which another decay would be part of the same fall.
 std::size_t aftermath(const Fall& fall) {
     constexpr std::size_t falls = 10;
@@ -113,10 +134,14 @@ Drops find_drops(const Pyramid& pyramid, double rate_hz, MeasuredQuantity quanti
     std::vector<Fall> falls = find_falls(pyramid, rate_hz, quantity);
     const std::size_t size = pyramid.level(0).size();
     Drops drops;
+    const std::span<const double> values = pyramid.level(0);
+    const bool displaced = quantity == MeasuredQuantity::displacement;
+    const double range = displaced && !falls.empty() ? range_of(values) : 0.0;
     for (std::size_t i = 0; i < falls.size(); ++i) {
         Fall& fall = falls[i];
         const std::size_t begin = fall.flights.front().begin;
         if (!drops.found.empty() && begin < drops.found.back().course.end) continue;
+        if (displaced && is_lost_in(range, fall, values)) continue;
         StartLimits limits;
         limits.drop = true;
         limits.latest = i + 1 < falls.size() ? falls[i + 1].flights.front().begin : size;
@@ -130,14 +155,12 @@ Drops find_drops(const Pyramid& pyramid, double rate_hz, MeasuredQuantity quanti
             drop.course = follow_decay(pyramid, drop.start, limits.latest);
             drop.flights = fall.flights;
             drop.hold_seen = fall.hold_seen;
-            if (quantity == MeasuredQuantity::displacement &&
-                swings_too_far(drop, seen, pyramid.level(0), rate_hz))
-                continue;
+            if (displaced && swings_too_far(drop, seen, values, rate_hz)) continue;
             reason = refusal_of(drop, fall, quantity, rate_hz);
         }
         if (!reason.empty() && quantity == MeasuredQuantity::acceleration) {
             const double rest =
-                rest_after(pyramid.level(0), seen.flights.front(), fall.flights.back().end, limits.latest);
+                rest_after(values, seen.flights.front(), fall.flights.back().end, limits.latest);
             if (std::string at_rest = refusal_of_rest(fall, rest); !at_rest.empty())
                 reason = std::move(at_rest);
         }
