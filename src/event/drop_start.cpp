@@ -239,11 +239,20 @@ After settled(const Look& look, const Fall& fall, After after, MeasuredQuantity 
     return after;
 }
 
-/// The decay from where it has spring and damper push without a break.
+/// The decay from where it has spring and damper push without a break. One that never lifts off began with
+/// the first touch, however little of it that explains.
 After in_contact(const Look& look, const Fall& fall, const After& after, MeasuredQuantity quantity) {
-    const double earliest = static_cast<double>(look.block_at(fall.flights.front().end)) - 2.0;
+    constexpr double late = 0.25;
+    const std::size_t touch = look.block_at(fall.flights.front().end);
+    const double earliest = static_cast<double>(touch) - 2.0;
     const After later = moved_on(look, fall, after, quantity, earliest);
-    return settled(look, fall, moved_back(look, fall, later, quantity, earliest), quantity, earliest);
+    const After found =
+        settled(look, fall, moved_back(look, fall, later, quantity, earliest), quantity, earliest);
+    const double gap = static_cast<double>(found.first) - static_cast<double>(touch);
+    if (gap < late * cycle_of(found.fit.shape) ||
+        contact_since(look, fall, found, quantity, earliest) > earliest)
+        return found;
+    return fit_after(look, touch, found.fit.shape).value_or(found);
 }
 
 std::optional<After> after_last(const Look& look, const Fall& fall, const DecayShape& shape,

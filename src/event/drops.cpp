@@ -48,6 +48,21 @@ std::string refusal_of_rest(const Fall& fall, double rest) {
         weight_at(fall, rest));
 }
 
+/// Whether an accelerometer shows a push just before the decay: then no flight ended there, and no touch
+/// began it.
+bool pushed_before(const Found& drop, const Fall& fall, std::span<const double> values) {
+    constexpr double part_of_cycle = 1.0 / 24.0, most = 0.5 * standard_gravity, deviations = 4.0;
+    constexpr std::size_t jump = 2;
+    if (drop.start.shape.damping_ratio < 0.5) return false;
+    const auto count = std::max<std::size_t>(3, static_cast<std::size_t>(part_of_cycle * drop.cycle()));
+    const std::size_t end = drop.begin() - std::min(drop.begin(), jump);
+    if (end < count) return false;
+    double mean = 0.0;
+    for (std::size_t k = end - count; k < end; ++k) mean += values[k] / static_cast<double>(count);
+    const double push = -fall.down * (mean - fall.flights.front().level);
+    return push > most + deviations * drop.start.noise_rms;
+}
+
 /// Whether what follows a fall that hardly stands out of the noise creeps to rest: a hand or a slipping clamp
 /// sets off as abruptly.
 bool creeps_after_a_hint(const Found& drop, const Fall& fall, double rate_hz) {
@@ -59,8 +74,11 @@ bool creeps_after_a_hint(const Found& drop, const Fall& fall, double rate_hz) {
 }
 
 /// Why what follows a fall is no decay of a mass on a spring; empty when it is one.
-std::string refusal_of(const Found& drop, const Fall& fall, MeasuredQuantity quantity, double rate_hz) {
+std::string refusal_of(const Found& drop, const Fall& fall, MeasuredQuantity quantity,
+                       std::span<const double> values, double rate_hz) {
     const Start& start = drop.start;
+    if (quantity == MeasuredQuantity::acceleration && pushed_before(drop, fall, values))
+        return "but no touch is seen after which it swings about the rest position";
     if (quantity == MeasuredQuantity::acceleration &&
         std::abs(weight_at(fall, start.fit.offset) - 1.0) > off_rest)
         return "but what follows the impact does not swing about the rest position";
@@ -156,7 +174,7 @@ Drops find_drops(const Pyramid& pyramid, double rate_hz, MeasuredQuantity quanti
             drop.flights = fall.flights;
             drop.hold_seen = fall.hold_seen;
             if (displaced && swings_too_far(drop, seen, values, rate_hz)) continue;
-            reason = refusal_of(drop, fall, quantity, rate_hz);
+            reason = refusal_of(drop, fall, quantity, values, rate_hz);
         }
         if (!reason.empty() && quantity == MeasuredQuantity::acceleration) {
             const double rest =
