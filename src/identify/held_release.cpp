@@ -128,6 +128,22 @@ std::optional<CurveFit> fit_from(const CurveFit& fit, const Recording& recording
     return held;
 }
 
+// Whether the rows that a wider window adds before a narrower one show the same plateau in the same noise: an
+// F test of what they add to the residual sum, whitened by the narrower one's noise. A hand that pulls the
+// mass aside, or sets it down, adds more.
+bool goes_on_before(const CurveFit& wider, const CurveFit& narrower) {
+    const Index added = wider.samples.size() - narrower.samples.size();
+    if (added <= 0) return true;
+    VectorXd left = wider.residual * (wider.samples.scale / narrower.samples.scale);
+    whiten(narrower.noise.noise, wider.samples.stretches, left);
+    const double variance = narrower.noise.noise.innovation_variance;
+    const double more = left.squaredNorm() / variance - narrower.innovations.squaredNorm();
+    const double ratio = more / static_cast<double>(added);
+    return std::isfinite(ratio) &&
+           f_probability(std::max(0.0, ratio), static_cast<double>(added),
+                         narrower.noise.degrees_of_freedom) < 1.0 - plateau_false_alarm;
+}
+
 // How much higher the decay begins than what is held, as a share of it.
 struct Excess {
     double share = 0.0, uncertainty = 0.0;
@@ -216,7 +232,7 @@ std::optional<HeldRelease> fit_held_release(const CurveFit& fit, const Recording
     std::optional<CurveFit> held;
     for (const double before : falls_before) {
         auto longer = fit_from(fit, recording, event, *fall, before);
-        if (!longer) break;
+        if (!longer || (held && !goes_on_before(*longer, *held))) break;
         const bool is_whole = longer->window.begin == 0;
         held = std::move(longer);
         if (is_whole) break;
