@@ -37,6 +37,8 @@ constexpr double least_amplitude_in_rest = 4.0;
 /// (other modes ring along), of a short one (it has little else to show), of one that looks like a mere
 /// pulse.
 constexpr double misfit_of_long = 0.125, misfit_of_short = 0.06, misfit_of_pulse = 0.02;
+/// Of ln amplitude, before something else interrupts a decay that does not ring.
+constexpr double least_fall_of_creeping = 1.5;
 /// Samples between the start and the noise: position moves smoothly, acceleration may jump.
 constexpr std::size_t shortest_decay = 8, shortest_decay_of_position = 5;
 /// The same of an acceleration that does not ring on: fewer are what a knock leaves.
@@ -188,6 +190,23 @@ double range_of(std::span<const double> values) {
     return *high - *low;
 }
 
+/// Whether a way up and down again stays above seven tenths of its top for more than five times as long as it
+/// falls from there to three tenths: half a sine stays there for 3.4 times as long (arithmetic), a pulse with
+/// round feet for less.
+bool is_held(std::span<const double> way, double rest, double top, double sign) {
+    constexpr double at_top = 0.7, fallen = 0.3;
+    constexpr std::size_t longer = 5;
+    const auto last_above = [&](double share) {
+        std::size_t last = way.size();
+        while (last > 0 && sign * (way[last - 1] - rest) < share * top) --last;
+        return last;
+    };
+    const std::size_t leaves = last_above(at_top), falls = last_above(fallen);
+    std::size_t held = 0;
+    while (held < leaves && sign * (way[leaves - 1 - held] - rest) > at_top * top) ++held;
+    return held > longer * (falls - leaves);
+}
+
 /// Whether the start belongs to a pulse that fell in less than `ratio` times the time in which it rose.
 bool on_a_pulse(std::span<const double> values, const Found& found, double height, double ratio) {
     const double rest = found.start.fit.offset;
@@ -198,6 +217,7 @@ bool on_a_pulse(std::span<const double> values, const Found& found, double heigh
     while (last + 1 < values.size() && above(last)) ++last;
     for (std::size_t k = first; k < last; ++k)
         if (sign * values[k] > sign * values[peak]) peak = k;
+    if (is_held(values.subspan(first, last - first), rest, sign * (values[peak] - rest), sign)) return false;
     if (first == 0 || found.begin() <= first + 1) return false;
     // A swing the other way just before makes it the answer to a blow, not the blow.
     const std::size_t before = 3 * (peak - first) + 3;
@@ -257,7 +277,9 @@ bool believable(const Search& search, const Found& found) {
     const double cycles = static_cast<double>(found.course.end - found.begin()) / found.cycle();
     const double seen = static_cast<double>(found.course.rest_end - found.begin()) / found.cycle();
     if (found.course.rest_end < values.size() && start.shape.damping_ratio < 0.5 && seen < 2.0) return false;
-    if (found.course.rest_end < values.size() && !found.course.reaches_noise && seen < 1.5) return false;
+    const bool cut_short = found.course.rest_end < values.size() && !found.course.reaches_noise;
+    if (cut_short && seen < 1.5) return false;
+    if (cut_short && !start.shape.rings() && found.course.fall < least_fall_of_creeping) return false;
     const double noise = rest_rms(values, found.course);
     const double amplitude = std::min(start.amplitude, height);
     double misfit = cycles < 3.0 && noise > 0.0 ? misfit_of_short : misfit_of_long;
@@ -299,7 +321,7 @@ bool on_known_path(const Search& search, const Found& found) {
 
 /// Whether it is a path or a pulse, which is then remembered.
 bool follows_a_path(Search& search, const Found& found) {
-    if (static_cast<double>(found.end() - found.begin()) > 2.0 * found.cycle()) return false;
+    if (!shows_one_swing(found)) return false;
     const std::optional<SampleRange> path = hand_or_pulse(search.pyramid, found);
     if (path) search.paths.push_back(*path);
     return path.has_value();
@@ -310,6 +332,7 @@ bool convincing(Search& search, const Found& found, const std::vector<Onset>& al
     if (on_known_path(search, found) || !believable(search, found)) return false;
     if (is_plateau_and_decay(search.pyramid, found, all) || is_outlived(search.pyramid, found, all))
         return false;
+    if (shows_position(search.recording.quantity) && comes_down(search.pyramid, found)) return false;
     return !follows_a_path(search, found);
 }
 
@@ -667,6 +690,11 @@ std::string reason_for_none(const SearchedStretch& searched) {
         return "The recording oscillates, but its amplitude does not fall: a steady or forced motion is no "
                "free "
                "decay. Record a single release, tap or drop with the drive switched off.";
+    if (searched.settles)
+        return "The recording goes from one level to another, but not as what is let go does: the article "
+               "was "
+               "lowered or moved by hand, it creeps, or a clamp slipped. Hold it, let it go suddenly, and "
+               "record from before the release until it rests.";
     return "Nothing in the recording starts suddenly and then dies away as a free decay does. Check the "
            "channel, "
            "the trigger and the sensor, or give the window with --from and --to.";
@@ -677,6 +705,22 @@ namespace {
 bool constant(const Series& series) {
     const auto [low, high] = std::minmax_element(series.values().begin(), series.values().end());
     return !(*high > *low);
+}
+
+/// Whether the last twentieth of the values lies elsewhere than the first, plainly outside their scatter.
+bool settles_elsewhere(std::span<const double> values) {
+    constexpr double plainly = 6.0;
+    const std::size_t n = values.size() / 20;
+    if (n < 2) return false;
+    const auto mean_and_variance = [&](std::span<const double> part) {
+        double sum = 0.0, squares = 0.0;
+        for (const double v : part) sum += v - values[0], squares += (v - values[0]) * (v - values[0]);
+        const auto count = static_cast<double>(part.size());
+        return std::pair{sum / count, std::max(0.0, squares - sum * sum / count) / count};
+    };
+    const auto [head, head_variance] = mean_and_variance(values.first(n));
+    const auto [tail, tail_variance] = mean_and_variance(values.last(n));
+    return std::abs(tail - head) > plainly * std::sqrt(std::max(head_variance, tail_variance));
 }
 
 /// Hum would hide the start and pass for a steady motion; the fit that follows has it as a tone.
@@ -728,6 +772,8 @@ SearchedStretch search_stretch(const Recording& recording, const EventOptions& o
     }
     result.hum = hum_after_first(search, recorded);
     result.steady = search.steady;
+    result.settles =
+        search.found.empty() && shows_position(recording.quantity) && settles_elsewhere(series.values());
     if (!search.refused.empty()) result.refused = search.refused.front().reason;
     return result;
 }

@@ -210,6 +210,71 @@ bool outlives(const Onset& onset, const Found& brief) {
 
 }  // namespace
 
+bool shows_one_swing(const Found& found) {
+    constexpr double few_cycles = 2.0;
+    return !found.start.shape.rings() ||
+           static_cast<double>(found.end() - found.begin()) <= few_cycles * found.cycle();
+}
+
+namespace {
+
+/// Distances from the rest position of a decay, on the side of its start.
+struct Distances {
+    std::span<const double> means;
+    double rest = 0.0, sign = 1.0, noise = 0.0;
+    std::size_t start = 0;  ///< block
+    double height = 0.0;    ///< at the start
+    [[nodiscard]] double at(std::size_t block) const { return sign * (means[block] - rest); }
+};
+
+Distances distances_of(const Pyramid& pyramid, const Found& found) {
+    constexpr double late = 0.25;  // cycles by which the start may come after the release
+    const Start& start = found.start;
+    Distances away{pyramid.level(start.level), start.fit.offset, 1.0, start.fit.residual_rms()};
+    away.start = std::min(start.position >> start.level, away.means.size() - 1);
+    if (away.at(away.start) < 0.0) away.sign = -1.0;
+    away.height = std::max(start.amplitude, away.at(away.start));
+    const std::size_t near = 1 + (static_cast<std::size_t>(std::ceil(late * found.cycle())) >> start.level);
+    for (std::size_t k = away.start > near ? away.start - near : 0; k < away.start; ++k)
+        away.height = std::max(away.height, away.at(k));
+    return away;
+}
+
+constexpr double at_rest = 0.3;  // of the height at the start
+
+/// Blocks from the last one at rest to the start.
+std::size_t blocks_away_before(const Distances& away) {
+    std::size_t k = away.start;
+    while (k > 0 && away.at(k - 1) >= at_rest * away.height) --k;
+    return away.start - k;
+}
+
+bool was_farther(const Distances& away) {
+    // A hand that pulls may well yield a little before it lets go.
+    constexpr double farther = 1.4, noise_margin = 4.0;
+    double farthest = 0.0;
+    for (std::size_t k = away.start - blocks_away_before(away); k < away.start; ++k)
+        farthest = std::max(farthest, away.at(k));
+    return farthest > farther * away.height + noise_margin * away.noise;
+}
+
+bool ends_beyond(const Distances& away, std::size_t rest_end) {
+    if (blocks_away_before(away) < away.start || rest_end + 8 > away.means.size()) return false;
+    // Half of what comes then leaves the first step its time.
+    const std::size_t since = rest_end + (away.means.size() - rest_end) / 2;
+    for (std::size_t k = since; k < away.means.size(); ++k)
+        if (away.at(k) > -at_rest * away.height) return false;
+    return true;
+}
+
+}  // namespace
+
+bool comes_down(const Pyramid& pyramid, const Found& found) {
+    if (!shows_one_swing(found)) return false;
+    const Distances away = distances_of(pyramid, found);
+    return was_farther(away) || ends_beyond(away, found.course.rest_end >> found.start.level);
+}
+
 bool is_outlived(const Pyramid& pyramid, const Found& found, const std::vector<Onset>& onsets) {
     constexpr double brief = 2.0;  // cycles
     if (found.start.from_rest || static_cast<double>(found.end() - found.begin()) > brief * found.cycle())

@@ -15,6 +15,15 @@ namespace ringwright::event_search {
 /// Nothing where the decay does it better, or where noise hides the difference.
 [[nodiscard]] std::optional<SampleRange> hand_or_pulse(const Pyramid& pyramid, const Found& found);
 
+/// Whether what was found does not ring, or is over within two cycles.
+[[nodiscard]] bool shows_one_swing(const Found& found);
+
+/// Whether what was found in a displacement record shows one swing, and is only a part of a way down: since
+/// it last was at rest the article was plainly farther away than at the start of the decay; or it never was
+/// at rest before, and goes on to lie as far on the other side until the end. A hand, a jack or creep lowers
+/// so; whoever releases holds, and lets go from there.
+[[nodiscard]] bool comes_down(const Pyramid& pyramid, const Found& found);
+
 /// Whether what was found is over within two cycles, and what lies about it rings on longer, not much weaker:
 /// then it is the blow itself, or a corner of the path before the release.
 [[nodiscard]] bool is_outlived(const Pyramid& pyramid, const Found& found, const std::vector<Onset>& onsets);
