@@ -6,6 +6,9 @@
 #include <numbers>
 #include <vector>
 
+#include "event/term_table.hpp"
+#include "event/work.hpp"
+
 namespace ringwright::event_search {
 namespace {
 
@@ -21,7 +24,6 @@ double bounded_exp(double x) {
 struct NormalEquations {
     std::array<std::array<double, 3>, 3> matrix{};
     std::array<double, 3> right{};
-    double square_sum = 0.0;
 };
 
 std::array<double, 3> solve(NormalEquations equations) {
@@ -55,30 +57,6 @@ std::array<double, 3> solve(NormalEquations equations) {
     return x;
 }
 
-/// Both terms at t = 0, 1, 2 … : the free decay obeys z(t+1) = 2 e^(−s) C₁ z(t) − e^(−2s) z(t−1).
-class TermSequence {
-  public:
-    explicit TermSequence(const DecayShape& shape) {
-        const DecayTerms first = decay_terms(shape, 1.0);
-        next_ = first;
-        trace_ = 2.0 * first.cosine_like;
-        determinant_ = bounded_exp(-2.0 * shape.decay_rate());
-    }
-    [[nodiscard]] const DecayTerms& current() const { return current_; }
-    void advance() {
-        const DecayTerms after{trace_ * next_.cosine_like - determinant_ * current_.cosine_like,
-                               trace_ * next_.sine_like - determinant_ * current_.sine_like};
-        current_ = next_;
-        next_ = after;
-    }
-
-  private:
-    DecayTerms current_{1.0, 0.0};
-    DecayTerms next_;
-    double trace_ = 0.0;
-    double determinant_ = 0.0;
-};
-
 double mean_of(std::span<const double> points) {
     double sum = 0.0;
     for (const double y : points) sum += y;
@@ -98,53 +76,134 @@ std::vector<DecayShape> starting_shapes(std::size_t points) {
     return shapes;
 }
 
-/// Levenberg–Marquardt on (ln ω_n, ln ζ) with the amplitudes eliminated at every step.
-DecayFit refine(std::span<const double> points, DecayFit best) {
-    constexpr int largest_iterations = 40;
-    double damping = 1e-3;
-    const std::size_t n = points.size();
-    std::vector<double> residual(n), along_frequency(n), along_damping(n);
-    const auto residuals_of = [&](const DecayFit& fit, std::vector<double>& into) {
-        TermSequence terms(fit.shape);
-        for (std::size_t k = 0; k < n; ++k, terms.advance())
-            into[k] = points[k] - fit.offset - fit.cosine_part * terms.current().cosine_like -
-                      fit.sine_part * terms.current().sine_like;
-    };
-    for (int iteration = 0; iteration < largest_iterations; ++iteration) {
-        constexpr double step = 1e-5;
-        const DecayShape at = best.shape;
-        residuals_of(best, residual);
-        residuals_of(fit_amplitudes(points, {at.undamped_angular_frequency * (1.0 + step), at.damping_ratio}),
-                     along_frequency);
-        residuals_of(fit_amplitudes(points, {at.undamped_angular_frequency, at.damping_ratio * (1.0 + step)}),
-                     along_damping);
-        double ff = 0.0, fd = 0.0, dd = 0.0, fr = 0.0, dr = 0.0;
-        for (std::size_t k = 0; k < n; ++k) {
-            const double f = (along_frequency[k] - residual[k]) / step;
-            const double d = (along_damping[k] - residual[k]) / step;
-            ff += f * f, fd += f * d, dd += d * d, fr += f * residual[k], dr += d * residual[k];
+/// Points that are fitted with many shapes: their mean is taken out once, and the terms of a shape are made
+/// once for the amplitudes and for what these leave.
+class Projection {
+  public:
+    explicit Projection(std::span<const double> points)
+        : mean_(mean_of(points)), centred_(points.size()), terms_(points.size()), left_(points.size()) {
+        for (std::size_t k = 0; k < points.size(); ++k) {
+            centred_[k] = points[k] - mean_;
+            total_ += centred_[k] * centred_[k];
         }
-        bool improved = false;
+    }
+
+    [[nodiscard]] DecayFit fit(const DecayShape& shape) {
+        terms_.set(shape, 0.0);
+        const std::array<double, 3> x = solve(normal_equations());
+        DecayFit fit;
+        fit.shape = shape;
+        fit.points = centred_.size();
+        fit.offset = mean_ + x[0];
+        fit.cosine_part = x[1];
+        fit.sine_part = x[2];
+        fit.total_sum = total_;
+        fit.residual_sum = leave(x);
+        if (!std::isfinite(fit.residual_sum)) {
+            fit.residual_sum = total_, fit.cosine_part = fit.sine_part = 0.0;
+            for (std::size_t k = 0; k < left_.size(); ++k) left_[k] = centred_[k] + mean_ - fit.offset;
+        }
+        return fit;
+    }
+
+    /// What the last fit left of each point.
+    [[nodiscard]] const std::vector<double>& left() const { return left_; }
+
+  private:
+    double mean_ = 0.0, total_ = 0.0;
+    std::vector<double> centred_;
+    TermTable terms_;
+    std::vector<double> left_;
+
+    /// Sums of every second point apart: they do not wait for each other.
+    [[nodiscard]] NormalEquations normal_equations() const {
+        constexpr std::size_t ways = 2;
+        using Sum = std::array<double, ways>;
+        Sum c1{}, s1{}, cc{}, cs{}, ss{}, yc{}, ys{};
+        const std::size_t n = centred_.size(), whole = n - n % ways;
+        const double *c = terms_.cosine_like().data(), *s = terms_.sine_like().data(), *y = centred_.data();
+        const auto add = [&](std::size_t k, std::size_t i) {
+            c1[i] += c[k], s1[i] += s[k], cc[i] += c[k] * c[k], cs[i] += c[k] * s[k], ss[i] += s[k] * s[k];
+            yc[i] += y[k] * c[k], ys[i] += y[k] * s[k];
+        };
+        for (std::size_t k = 0; k < whole; k += ways)
+            for (std::size_t i = 0; i < ways; ++i) add(k + i, i);
+        if (whole < n) add(whole, 0);
+        const auto of = [](const Sum& sum) { return sum[0] + sum[1]; };
+        NormalEquations equations;
+        equations.matrix = {
+            {{static_cast<double>(n), of(c1), of(s1)}, {of(c1), of(cc), of(cs)}, {of(s1), of(cs), of(ss)}}};
+        equations.right = {0.0, of(yc), of(ys)};
+        return equations;
+    }
+
+    /// Fills left_ and gives its sum of squares.
+    double leave(const std::array<double, 3>& x) {
+        const double *c = terms_.cosine_like().data(), *s = terms_.sine_like().data(), *y = centred_.data();
+        double* left = left_.data();
+        for (std::size_t k = 0; k < left_.size(); ++k) left[k] = y[k] - x[0] - x[1] * c[k] - x[2] * s[k];
+        double sum = 0.0, other = 0.0;
+        std::size_t k = 0;
+        for (; k + 1 < left_.size(); k += 2) sum += left[k] * left[k], other += left[k + 1] * left[k + 1];
+        if (k < left_.size()) sum += left[k] * left[k];
+        return sum + other;
+    }
+};
+
+/// The slopes of what is left along ln ω_n and ln ζ, as their products with each other and with it.
+struct Slopes {
+    double ff = 0.0, fd = 0.0, dd = 0.0, fr = 0.0, dr = 0.0;
+};
+
+Slopes slopes_at(Projection& projection, const DecayShape& at, const std::vector<double>& left) {
+    constexpr double step = 1e-5;
+    (void)projection.fit({at.undamped_angular_frequency * (1.0 + step), at.damping_ratio});
+    const std::vector<double> along_frequency = projection.left();
+    (void)projection.fit({at.undamped_angular_frequency, at.damping_ratio * (1.0 + step)});
+    const std::vector<double>& along_damping = projection.left();
+    Slopes slopes;
+    for (std::size_t k = 0; k < left.size(); ++k) {
+        const double f = (along_frequency[k] - left[k]) / step, d = (along_damping[k] - left[k]) / step;
+        slopes.ff += f * f, slopes.fd += f * d, slopes.dd += d * d;
+        slopes.fr += f * left[k], slopes.dr += d * left[k];
+    }
+    return slopes;
+}
+
+/// One step of Levenberg and Marquardt; nothing where the slopes do not tell where to.
+std::optional<DecayShape> moved(const DecayShape& at, const Slopes& slopes, double damping) {
+    const double a = slopes.ff * (1.0 + damping), b = slopes.fd, c = slopes.dd * (1.0 + damping);
+    const double determinant = a * c - b * b;
+    if (!(determinant > 0.0)) return {};
+    const double move_f = std::clamp(-(c * slopes.fr - b * slopes.dr) / determinant, -0.5, 0.5);
+    const double move_d = std::clamp(-(a * slopes.dr - b * slopes.fr) / determinant, -1.0, 1.0);
+    return DecayShape{std::clamp(at.undamped_angular_frequency * std::exp(move_f), 1e-7, 3.1),
+                      std::clamp(at.damping_ratio * std::exp(move_d), 1e-7, 50.0)};
+}
+
+/// Levenberg–Marquardt on (ln ω_n, ln ζ) with the amplitudes eliminated at every step.
+DecayFit refine(Projection& projection, const DecayShape& start) {
+    ++refined_shapes;
+    constexpr int largest_iterations = 40, attempts = 8;
+    DecayFit best = projection.fit(start);
+    std::vector<double> left = projection.left();
+    double damping = 1e-3;
+    for (int iteration = 0; iteration < largest_iterations; ++iteration) {
+        const Slopes slopes = slopes_at(projection, best.shape, left);
         double gain = 0.0;
-        for (int attempt = 0; attempt < 8 && !improved; ++attempt) {
-            const double a = ff * (1.0 + damping), b = fd, c = dd * (1.0 + damping);
-            const double determinant = a * c - b * b;
-            if (!(determinant > 0.0)) break;
-            const double move_f = std::clamp(-(c * fr - b * dr) / determinant, -0.5, 0.5);
-            const double move_d = std::clamp(-(a * dr - b * fr) / determinant, -1.0, 1.0);
-            const DecayShape tried{std::clamp(at.undamped_angular_frequency * std::exp(move_f), 1e-7, 3.1),
-                                   std::clamp(at.damping_ratio * std::exp(move_d), 1e-7, 50.0)};
-            const DecayFit fit = fit_amplitudes(points, tried);
+        for (int attempt = 0; attempt < attempts && gain == 0.0; ++attempt) {
+            const std::optional<DecayShape> tried = moved(best.shape, slopes, damping);
+            if (!tried) break;
+            const DecayFit fit = projection.fit(*tried);
             if (fit.residual_sum < best.residual_sum) {
                 gain = (best.residual_sum - fit.residual_sum) / best.residual_sum;
-                best = fit;
+                best = fit, left = projection.left();
                 damping = std::max(damping * 0.2, 1e-9);
-                improved = true;
             } else {
                 damping = std::min(damping * 6.0, 1e9);
             }
         }
-        if (!improved || gain < 1e-6) break;
+        if (gain < 1e-6) break;
     }
     return best;
 }
@@ -209,67 +268,38 @@ double DecayFit::explained_ratio() const {
 }
 
 DecayFit fit_amplitudes(std::span<const double> points, const DecayShape& shape) {
-    const double mean = mean_of(points);
-    NormalEquations equations;
-    TermSequence terms(shape);
-    double c1 = 0.0, s1 = 0.0, cc = 0.0, cs = 0.0, ss = 0.0, yc = 0.0, ys = 0.0, yy = 0.0;
-    for (const double point : points) {
-        const double y = point - mean, c = terms.current().cosine_like, s = terms.current().sine_like;
-        c1 += c, s1 += s, cc += c * c, cs += c * s, ss += s * s, yc += y * c, ys += y * s, yy += y * y;
-        terms.advance();
-    }
-    const auto count = static_cast<double>(points.size());
-    equations.matrix = {{{count, c1, s1}, {c1, cc, cs}, {s1, cs, ss}}};
-    equations.right = {0.0, yc, ys};
-    const std::array<double, 3> x = solve(equations);
-    DecayFit fit;
-    fit.shape = shape;
-    fit.points = points.size();
-    fit.offset = mean + x[0];
-    fit.cosine_part = x[1];
-    fit.sine_part = x[2];
-    fit.total_sum = yy;
-    TermSequence again(shape);
-    for (const double point : points) {
-        const double r =
-            point - fit.offset - x[1] * again.current().cosine_like - x[2] * again.current().sine_like;
-        fit.residual_sum += r * r;
-        again.advance();
-    }
-    if (!std::isfinite(fit.residual_sum)) fit.residual_sum = yy, fit.cosine_part = fit.sine_part = 0.0;
-    return fit;
+    return Projection(points).fit(shape);
 }
 
 double roughly_explained(std::span<const double> points) {
     const double per_cycle = 2.0 * std::numbers::pi / static_cast<double>(points.size());
     const double highest = static_cast<double>(points.size()) / 2.3;
+    Projection projection(points);
     double best = 0.0;
     for (double cycles = 0.5; cycles <= highest; cycles += 0.6)
-        best = std::max(
-            best,
-            fit_amplitudes(points, {cycles * per_cycle, 0.25 / (1.0 + 2.0 * cycles)}).explained_ratio());
+        best = std::max(best,
+                        projection.fit({cycles * per_cycle, 0.25 / (1.0 + 2.0 * cycles)}).explained_ratio());
     for (double cycles = 0.4; cycles <= highest; cycles *= 2.0)
-        best = std::max(best, fit_amplitudes(points, {cycles * per_cycle, 0.5}).explained_ratio());
+        best = std::max(best, projection.fit({cycles * per_cycle, 0.5}).explained_ratio());
     return best;
 }
 
 std::optional<DecayFit> fit_decay(std::span<const double> points, const std::optional<DecayShape>& start) {
     if (points.size() < 8) return {};
+    Projection projection(points);
     if (start) {
-        const DecayFit first = fit_amplitudes(points, *start);
-        if (!(first.total_sum > 0.0)) return {};
-        return refine(points, first);
+        if (!(projection.fit(*start).total_sum > 0.0)) return {};
+        return refine(projection, *start);
     }
     std::vector<DecayFit> fits;
-    for (const DecayShape& shape : starting_shapes(points.size()))
-        fits.push_back(fit_amplitudes(points, shape));
+    for (const DecayShape& shape : starting_shapes(points.size())) fits.push_back(projection.fit(shape));
     const auto better = [](const DecayFit& a, const DecayFit& b) { return a.residual_sum < b.residual_sum; };
     const std::size_t kept = std::min<std::size_t>(3, fits.size());
     std::partial_sort(fits.begin(), fits.begin() + static_cast<std::ptrdiff_t>(kept), fits.end(), better);
     if (!(fits.front().total_sum > 0.0)) return {};
-    DecayFit best = refine(points, fits.front());
+    DecayFit best = refine(projection, fits.front().shape);
     for (std::size_t i = 1; i < kept; ++i) {
-        const DecayFit other = refine(points, fits[i]);
+        const DecayFit other = refine(projection, fits[i].shape);
         if (better(other, best)) best = other;
     }
     return best;

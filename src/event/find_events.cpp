@@ -123,31 +123,35 @@ std::optional<Onset> last_hit(const Pyramid& pyramid, const Onset& onset, std::s
 /// Whether what follows a start may hold a second hit that the decay begins after.
 enum class SecondHits { looked_for, ignored };
 
+/// The start after the last hit; sets `hit_seen` where there is a second one.
 std::optional<Start> locate_last_start(const Search& search, const Onset& onset, const StartLimits& limits,
-                                       SecondHits second_hits) {
+                                       SecondHits second_hits, bool& hit_seen) {
     if (limits.drop || second_hits == SecondHits::ignored) return locate_start(search.pyramid, onset, limits);
     const std::optional<Onset> hit =
         last_hit(search.pyramid, onset, onset.level, onset.fit_block, onset.fit.shape);
+    if (hit) hit_seen = true;
     std::optional<Start> start = locate_start(search.pyramid, hit.value_or(onset), limits);
     if (!start) return {};
     const std::size_t first = std::max(start->position >> start->level, start->fit_block);
     const std::optional<Onset> later = last_hit(search.pyramid, onset, start->level, first, start->fit.shape);
     if (!later) return start;
+    hit_seen = true;
     const std::optional<Start> again = locate_start(search.pyramid, *later, limits);
     return again && again->position > start->position ? again : start;
 }
 
-/// Start and course, the start a second time with the noise that the rest shows.
+/// Start and course, the start a second time with the noise that the rest shows. Sets `hit_seen` where a
+/// second hit makes the start another one than without looking for it.
 std::optional<Found> follow_onset(const Search& search, const Onset& onset, StartLimits limits,
-                                  SecondHits second_hits) {
-    std::optional<Start> start = locate_last_start(search, onset, limits, second_hits);
+                                  SecondHits second_hits, bool& hit_seen) {
+    std::optional<Start> start = locate_last_start(search, onset, limits, second_hits, hit_seen);
     if (!start || start->position + 8 > limits.latest) return {};
     // What does not stand out of the noise is not worth following through a long recording.
     if (start->amplitude < 0.8 * least_amplitude * start->noise_rms) return {};
     Course course = follow_decay(search.pyramid, *start, limits.latest);
     if (course.reaches_noise) {
         limits.rest = SampleRange{course.end, course.rest_end};
-        if (std::optional<Start> again = locate_last_start(search, onset, limits, second_hits)) {
+        if (std::optional<Start> again = locate_last_start(search, onset, limits, second_hits, hit_seen)) {
             if (again->position + 8 <= limits.latest) {
                 start = again;
                 course = follow_decay(search.pyramid, *start, limits.latest);
@@ -340,10 +344,12 @@ bool convincing(Search& search, const Found& found, const std::vector<Onset>& al
 /// as a second hit does, and nothing rings after it.
 std::optional<Found> follow_convincingly(Search& search, const Onset& onset, const StartLimits& limits,
                                          const std::vector<Onset>& all) {
-    std::optional<Found> last = follow_onset(search, onset, limits, SecondHits::looked_for);
+    bool hit_seen = false;
+    std::optional<Found> last = follow_onset(search, onset, limits, SecondHits::looked_for, hit_seen);
     if (!last) return {};
     if (convincing(search, *last, all)) return last;
-    std::optional<Found> first = follow_onset(search, onset, limits, SecondHits::ignored);
+    if (!hit_seen) return {};
+    std::optional<Found> first = follow_onset(search, onset, limits, SecondHits::ignored, hit_seen);
     if (!first || !first->course.reaches_noise) return {};
     const auto later = static_cast<double>(last->begin()) - static_cast<double>(first->begin());
     if (later > 0.5 * first->cycle() && convincing(search, *first, all)) return first;

@@ -18,6 +18,9 @@ constexpr double most_cycles_back = 6.0, cycles_after = 3.0;
 constexpr double most_damping = 0.5;
 /// What two decays may leave unexplained against the noise, and as a share of the amplitude.
 constexpr double as_well = 1.12, tolerated_share = 0.003;
+/// Where two decays leave more than this of what follows the start, as a share of the amplitude and against
+/// the noise of the rest, there is nothing that could be followed back: neither would be believed.
+constexpr double most_left = 0.2, most_noise = 2.5;
 /// Of leaving a block out of both decays, in noise variances: as for one decay.
 constexpr double cost_of_leaving_out = 5.0;
 
@@ -57,9 +60,12 @@ std::optional<Look> look_at(const Pyramid& pyramid, const Start& start, const St
     look.end = std::min({look.values.size(), limits.latest >> look.level,
                          look.late + static_cast<std::size_t>(std::ceil(cycles_after * look.cycle))});
     if (look.end < look.late + 16 || look.late < look.earliest + 2) return {};
-    look.noise = std::max(rms_after(look), tolerated_share * start.amplitude);
-    // The few blocks after a late start show correlated noise too small; a long rest shows it as it is.
+    const double left = rms_after(look);
     const std::optional<RestNoise> rest = noise_of_rest(look.values, look.level, limits.rest);
+    if (left > std::max(most_left * start.amplitude, rest ? most_noise * std::sqrt(rest->variance) : 0.0))
+        return {};
+    look.noise = std::max(left, tolerated_share * start.amplitude);
+    // The few blocks after a late start show correlated noise too small; a long rest shows it as it is.
     if (rest && rest->is_long()) look.noise = std::max(look.noise, std::sqrt(rest->variance));
     return look;
 }
@@ -72,10 +78,12 @@ struct Candidate {
 std::optional<TwoTermFit> fit_from(const Look& look, std::size_t first,
                                    const std::optional<Candidate>& last) {
     const std::span<const double> points = look.values.subspan(first, look.end - first);
-    std::optional<TwoTermFit> fit = fit_two_terms(points, look.shape);
-    if (!last) return fit;
-    const std::optional<TwoTermFit> other = fit_two_terms(points, last->fit.first, last->fit.second);
-    return other && (!fit || other->residual_sum < fit->residual_sum) ? other : fit;
+    std::optional<TwoTermFit> further;
+    if (last) further = fit_two_terms(points, last->fit.first, last->fit.second);
+    // What goes on to the noise needs no search for another pair.
+    if (further && further->residual_rms() <= look.noise) return further;
+    const std::optional<TwoTermFit> fit = fit_two_terms(points, look.shape);
+    return further && (!fit || further->residual_sum < fit->residual_sum) ? further : fit;
 }
 
 /// Whether the two decays also explain the first quarter of a cycle: a few wrong blocks hardly show in all.
@@ -101,10 +109,23 @@ bool apart(const TwoTermFit& fit) {
     return std::abs(tune) > 2.0 * widest;
 }
 
+/// Beyond so many cycles without an explanation lies something else.
+constexpr double most_unexplained_cycles = 2.0;
+
+/// Whether two decays leave more of the blocks from here on than they may of all from the last place on that
+/// would be tried: a fit of more blocks leaves no less.
+bool leaves_too_much(const Look& look, const TwoTermFit& fit, std::size_t since) {
+    const double most_blocks =
+        static_cast<double>(look.end - since) + most_unexplained_cycles * look.cycle + 1.0;
+    return fit.residual_sum > as_well * as_well * look.noise * look.noise * most_blocks;
+}
+
 /// Of the places in steps of an eighth of a cycle before the late start, the one from which two decays
 /// explain the recording most cheaply; nothing when the late start is the cheapest.
 std::optional<Candidate> cheapest_explained(const Look& look) {
     constexpr double step_cycles = 0.125;
+    constexpr int sure = 2;  // one of the fits may have gone astray
+    int too_much = 0;
     const auto step = std::max<std::size_t>(1, static_cast<std::size_t>(step_cycles * look.cycle));
     const double price = cost_of_leaving_out * look.noise * look.noise;
     const double late_sum = look.noise * look.noise * static_cast<double>(look.end - look.late);
@@ -114,8 +135,9 @@ std::optional<Candidate> cheapest_explained(const Look& look) {
         first -= step;
         const std::optional<TwoTermFit> fit = fit_from(look, first, last);
         const std::size_t since = best ? best->first : look.late;
-        // Beyond two cycles without an explanation lies something else.
-        if (static_cast<double>(since - first) > 2.0 * look.cycle) break;
+        if (static_cast<double>(since - first) > most_unexplained_cycles * look.cycle) break;
+        too_much = fit && leaves_too_much(look, *fit, since) ? too_much + 1 : 0;
+        if (too_much == sure) break;
         if (!fit || !apart(*fit) || fit->residual_rms() > as_well * look.noise) continue;
         last = Candidate{first, *fit};
         const double cost = fit->residual_sum + price * static_cast<double>(first - look.earliest);

@@ -7,6 +7,8 @@
 #include <optional>
 #include <vector>
 
+#include "event/term_table.hpp"
+
 namespace ringwright::event_search {
 namespace {
 
@@ -18,18 +20,33 @@ struct ReleaseFit {
     double residual_sum = 0.0;
 };
 
-double share_of_plateau(const DecayShape& shape, double t) {
-    if (t <= 0.0) return 1.0;
-    const DecayTerms terms = decay_terms(shape, t);
-    return terms.cosine_like + shape.decay_rate() * terms.sine_like;
+/// The points, and room for the share of the plateau that is left at each of them.
+struct Fitting {
+    explicit Fitting(std::span<const double> all) : points(all), terms(all.size()), share(all.size()) {}
+    std::span<const double> points;
+    TermTable terms;
+    std::vector<double> share;
+};
+
+/// All up to the release, e^(−st)[C + s·S] from then on.
+void put_share(Fitting& fitting, double moment, const DecayShape& shape) {
+    const std::size_t n = fitting.share.size();
+    const auto after = static_cast<std::size_t>(std::max(0.0, std::floor(moment) + 1.0));
+    std::fill_n(fitting.share.begin(), std::min(n, after), 1.0);
+    if (after >= n) return;
+    fitting.terms.set(shape, static_cast<double>(after) - moment, n - after);
+    const std::span<const double> cosine = fitting.terms.cosine_like(), sine = fitting.terms.sine_like();
+    for (std::size_t k = after; k < n; ++k)
+        fitting.share[k] = cosine[k - after] + shape.decay_rate() * sine[k - after];
 }
 
-ReleaseFit fit_levels(std::span<const double> points, double moment, const DecayShape& shape) {
+ReleaseFit fit_levels(Fitting& fitting, double moment, const DecayShape& shape) {
+    put_share(fitting, moment, shape);
+    const std::span<const double> points = fitting.points, share = fitting.share;
     double w1 = 0.0, ww = 0.0, y1 = 0.0, wy = 0.0;
     const auto n = static_cast<double>(points.size());
-    std::vector<double> share(points.size());
     for (std::size_t k = 0; k < points.size(); ++k) {
-        const double w = share[k] = share_of_plateau(shape, static_cast<double>(k) - moment);
+        const double w = share[k];
         w1 += w, ww += w * w, y1 += points[k], wy += w * points[k];
     }
     const double determinant = n * ww - w1 * w1;
@@ -44,14 +61,14 @@ ReleaseFit fit_levels(std::span<const double> points, double moment, const Decay
     return fit;
 }
 
-ReleaseFit moved(std::span<const double> points, const ReleaseFit& fit, const std::array<double, 3>& move) {
-    return fit_levels(points, fit.moment + move[0],
+ReleaseFit moved(Fitting& fitting, const ReleaseFit& fit, const std::array<double, 3>& move) {
+    return fit_levels(fitting, fit.moment + move[0],
                       {fit.shape.undamped_angular_frequency * std::exp(move[1]),
                        std::clamp(fit.shape.damping_ratio * std::exp(move[2]), 1e-6, 50.0)});
 }
 
 /// Pattern search on (τ, ln ω_n, ln ζ): the sum of squares has kinks in τ, and three numbers are few.
-ReleaseFit descend(std::span<const double> points, ReleaseFit best) {
+ReleaseFit descend(Fitting& fitting, ReleaseFit best) {
     std::array<double, 3> step{1.0, 0.05, 0.1};
     for (int round = 0; round < 60; ++round) {
         bool improved = false;
@@ -59,7 +76,7 @@ ReleaseFit descend(std::span<const double> points, ReleaseFit best) {
             for (const double sign : {1.0, -1.0}) {
                 std::array<double, 3> move{};
                 move[i] = sign * step[i];
-                const ReleaseFit tried = moved(points, best, move);
+                const ReleaseFit tried = moved(fitting, best, move);
                 if (tried.residual_sum < best.residual_sum) {
                     best = tried;
                     improved = true;
@@ -109,24 +126,25 @@ std::optional<Window> window_before(std::span<const double> means, const Start& 
 
 ReleaseFit best_release(std::span<const double> points, const Window& window, const DecayShape& shape,
                         double cycle) {
+    Fitting fitting(points);
     std::vector<ReleaseFit> fits;
     for (double shift = -0.5; shift <= 1.21; shift += 0.05) {
         const double moment = static_cast<double>(window.before) + shift * cycle;
         if (moment < 0.5 * static_cast<double>(window.before) ||
             moment + 6.0 > static_cast<double>(points.size()))
             continue;
-        fits.push_back(fit_levels(points, moment, shape));
+        fits.push_back(fit_levels(fitting, moment, shape));
         for (const double damping : {0.15, 0.5, 1.0, 2.5})
-            fits.push_back(fit_levels(points, moment, {shape.undamped_angular_frequency, damping}));
+            fits.push_back(fit_levels(fitting, moment, {shape.undamped_angular_frequency, damping}));
     }
-    if (fits.empty()) return descend(points, fit_levels(points, static_cast<double>(window.before), shape));
+    if (fits.empty()) return descend(fitting, fit_levels(fitting, static_cast<double>(window.before), shape));
     const auto better = [](const ReleaseFit& a, const ReleaseFit& b) {
         return a.residual_sum < b.residual_sum;
     };
     const std::size_t kept = std::min<std::size_t>(3, fits.size());
     std::partial_sort(fits.begin(), fits.begin() + static_cast<std::ptrdiff_t>(kept), fits.end(), better);
-    ReleaseFit best = descend(points, fits.front());
-    for (std::size_t i = 1; i < kept; ++i) best = std::min(best, descend(points, fits[i]), better);
+    ReleaseFit best = descend(fitting, fits.front());
+    for (std::size_t i = 1; i < kept; ++i) best = std::min(best, descend(fitting, fits[i]), better);
     return best;
 }
 

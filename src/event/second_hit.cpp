@@ -5,6 +5,8 @@
 #include <numbers>
 #include <vector>
 
+#include "event/term_table.hpp"
+
 namespace ringwright::event_search {
 namespace {
 
@@ -19,13 +21,16 @@ struct Forecast {
     double missed = 0.0, amplitude = 0.0;
 };
 
+/// `terms` are those of the shape over a cycle and a half.
 Forecast forecast_after(std::span<const double> means, std::size_t k, std::size_t cycle,
-                        const DecayShape& shape) {
+                        const DecayShape& shape, const TermTable& terms) {
     const DecayFit fit = fit_amplitudes(means.subspan(k, cycle), shape);
     Forecast forecast{0.0, fit.envelope_at(0.0)};
-    for (std::size_t i = cycle; i < cycle + cycle / 2; ++i)
-        forecast.missed =
-            std::max(forecast.missed, std::abs(means[k + i] - fit.value_at(static_cast<double>(i))));
+    for (std::size_t i = cycle; i < cycle + cycle / 2; ++i) {
+        const double foretold =
+            fit.offset + fit.cosine_part * terms.cosine_like()[i] + fit.sine_part * terms.sine_like()[i];
+        forecast.missed = std::max(forecast.missed, std::abs(means[k + i] - foretold));
+    }
     return forecast;
 }
 
@@ -59,9 +64,11 @@ std::optional<std::size_t> after_second_hit(std::span<const double> means, std::
     if (shape.damping_ratio > most_damping) return {};
     const std::size_t cycle = cycle_of(shape);
     if (cycle < fewest_blocks) return {};
+    TermTable terms(cycle + cycle / 2);
+    terms.set(shape, 0.0);
     std::vector<Forecast> forecasts;
     for (std::size_t k = first; k + 2 * cycle < means.size() && k < first + looked_at * cycle; ++k)
-        forecasts.push_back(forecast_after(means, k, cycle, shape));
+        forecasts.push_back(forecast_after(means, k, cycle, shape, terms));
     if (forecasts.empty()) return {};
     const double usual = median_missed(forecasts);
     std::size_t last = 0, surprised = 0, followed = 0;

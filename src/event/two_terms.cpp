@@ -6,24 +6,35 @@
 #include <cmath>
 #include <vector>
 
+#include "event/term_table.hpp"
+#include "event/work.hpp"
+
 namespace ringwright::event_search {
 namespace {
 
 constexpr std::size_t fewest_points = 14, linear_count = 5, shape_count = 4;
-using Columns = Eigen::Matrix<double, Eigen::Dynamic, linear_count>;
 using Linear = Eigen::Matrix<double, linear_count, 1>;
 using Shapes = Eigen::Matrix<double, shape_count, 1>;  ///< ln ω, ln ζ of both
 
-/// Both terms at t = 0, 1, 2 …: z(t+1) = 2 e^(−s) C₁ z(t) − e^(−2s) z(t−1).
-void put_terms(Columns& columns, Eigen::Index at, const DecayShape& shape) {
-    const DecayTerms one = decay_terms(shape, 1.0);
-    const double trace = 2.0 * one.cosine_like, determinant = std::exp(-2.0 * shape.decay_rate());
-    columns(0, at) = 1.0, columns(0, at + 1) = 0.0;
-    columns(1, at) = one.cosine_like, columns(1, at + 1) = one.sine_like;
-    for (Eigen::Index k = 2; k < columns.rows(); ++k)
-        for (Eigen::Index j = at; j < at + 2; ++j)
-            columns(k, j) = trace * columns(k - 1, j) - determinant * columns(k - 2, j);
-}
+/// Offset and both terms of both shapes at t = 0, 1, 2 …, on the points that they are fitted to.
+struct Columns {
+    explicit Columns(const Eigen::VectorXd& points)
+        : values(points),
+          all(points.size(), static_cast<Eigen::Index>(linear_count)),
+          terms(static_cast<std::size_t>(points.size())) {
+        all.col(0).setOnes();
+    }
+    void put(Eigen::Index at, const DecayShape& shape) {
+        terms.set(shape, 0.0);
+        const auto n = all.rows();
+        all.col(at) = Eigen::Map<const Eigen::VectorXd>(terms.cosine_like().data(), n);
+        all.col(at + 1) = Eigen::Map<const Eigen::VectorXd>(terms.sine_like().data(), n);
+    }
+
+    const Eigen::VectorXd& values;
+    Eigen::Matrix<double, Eigen::Dynamic, linear_count> all;
+    TermTable terms;
+};
 
 struct Projection {
     Linear coefficients;
@@ -35,22 +46,32 @@ DecayShape shape_at(const Shapes& shapes, Eigen::Index which) {
     return {std::exp(shapes(2 * which)), std::exp(shapes(2 * which + 1))};
 }
 
-Projection project(const Eigen::VectorXd& values, const Shapes& shapes, Columns& columns) {
+/// The columns have to hold the terms of the shapes.
+Projection project(const Columns& columns) {
     constexpr double ridge = 1e-11;  // alike columns far beyond critical damping
-    columns.col(0).setOnes();
-    put_terms(columns, 1, shape_at(shapes, 0));
-    put_terms(columns, 3, shape_at(shapes, 1));
-    const Linear scale = columns.colwise().norm().transpose().cwiseMax(1e-300);
-    columns *= scale.cwiseInverse().asDiagonal();
-    Eigen::Matrix<double, linear_count, linear_count> normal = columns.transpose() * columns;
+    Eigen::Matrix<double, linear_count, linear_count> normal;
+    Linear right;
+    for (Eigen::Index j = 0; j < normal.cols(); ++j) {
+        for (Eigen::Index i = 0; i <= j; ++i)
+            normal(i, j) = normal(j, i) = columns.all.col(i).dot(columns.all.col(j));
+        right(j) = columns.all.col(j).dot(columns.values);
+    }
+    const Linear scale = normal.diagonal().cwiseSqrt().cwiseMax(1e-300).cwiseInverse();
+    normal = scale.asDiagonal() * normal * scale.asDiagonal();
     normal.diagonal().array() += ridge;
-    const Linear scaled = normal.ldlt().solve(columns.transpose() * values);
     Projection projection;
-    projection.residual = values - columns * scaled;
+    projection.coefficients = scale.cwiseProduct(normal.ldlt().solve(scale.cwiseProduct(right)));
+    projection.residual = columns.values;
+    for (Eigen::Index j = 0; j < normal.cols(); ++j)
+        projection.residual -= projection.coefficients(j) * columns.all.col(j);
     projection.sum = projection.residual.squaredNorm();
-    projection.coefficients = scaled.cwiseQuotient(scale);
     if (!std::isfinite(projection.sum)) projection.sum = 1e300;
     return projection;
+}
+
+Projection project(Columns& columns, const Shapes& shapes) {
+    for (const Eigen::Index which : {0, 1}) columns.put(1 + 2 * which, shape_at(shapes, which));
+    return project(columns);
 }
 
 Shapes bounded(Shapes shapes) {
@@ -74,20 +95,25 @@ TwoTermFit to_fit(const Shapes& shapes, const Projection& projection, double mea
 
 /// Levenberg and Marquardt on the four shape numbers with the amplitudes eliminated at every step.
 TwoTermFit refine(const Eigen::VectorXd& values, Shapes shapes, double mean) {
+    ++refined_shapes;
     constexpr int most_steps = 30;
     constexpr double step = 1e-5, settled = 1e-4;
-    Columns columns(values.size(), static_cast<Eigen::Index>(linear_count));
-    Projection best = project(values, shapes, columns);
+    Columns columns(values);
+    Projection best = project(columns, shapes);
     double damping = 1e-2;
     for (int i = 0; i < most_steps && damping < 1e7; ++i) {
         Eigen::Matrix<double, Eigen::Dynamic, shape_count> jacobian(values.size(),
                                                                     static_cast<Eigen::Index>(shape_count));
-        for (Eigen::Index j = 0; j < jacobian.cols(); ++j) {
-            Shapes moved = shapes;
-            moved(j) += step;
-            jacobian.col(j) = (project(values, moved, columns).residual - best.residual) / step;
+        for (const Eigen::Index which : {0, 1}) {
+            columns.put(3 - 2 * which, shape_at(shapes, 1 - which));
+            for (const Eigen::Index j : {2 * which, 2 * which + 1}) {
+                Shapes moved = shapes;
+                moved(j) += step;
+                columns.put(1 + 2 * which, shape_at(moved, which));
+                jacobian.col(j) = (project(columns).residual - best.residual) / step;
+            }
         }
-        const Eigen::Matrix4d normal = jacobian.transpose() * jacobian;
+        const Eigen::Matrix4d normal = jacobian.transpose().lazyProduct(jacobian);
         const Shapes right = -jacobian.transpose() * best.residual;
         bool improved = false;
         double gain = 0.0;
@@ -97,7 +123,7 @@ TwoTermFit refine(const Eigen::VectorXd& values, Shapes shapes, double mean) {
             damped.diagonal().array() += 1e-12 * normal.trace();
             const Shapes move = damped.ldlt().solve(right).cwiseMax(-0.7).cwiseMin(0.7);
             const Shapes tried = bounded(shapes + move);
-            const Projection after = project(values, tried, columns);
+            const Projection after = project(columns, tried);
             if (after.sum < best.sum) {
                 gain = (best.sum - after.sum) / best.sum;
                 best = after, shapes = tried, improved = true;
@@ -156,9 +182,9 @@ TwoTermFit fit_two_amplitudes(std::span<const double> points, const DecayShape& 
         Eigen::Map<const Eigen::VectorXd>(points.data(), static_cast<Eigen::Index>(points.size()));
     const double mean = values.mean();
     values.array() -= mean;
-    Columns columns(values.size(), static_cast<Eigen::Index>(linear_count));
+    Columns columns(values);
     const Shapes shapes = shapes_of(first, second);
-    return to_fit(shapes, project(values, shapes, columns), mean);
+    return to_fit(shapes, project(columns, shapes), mean);
 }
 
 }  // namespace ringwright::event_search
