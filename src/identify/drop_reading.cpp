@@ -11,7 +11,7 @@
 #include <span>
 #include <vector>
 
-#include "ringwright/distributions.hpp"
+#include "identify/fall_reading.hpp"
 
 namespace ringwright::identify {
 
@@ -22,24 +22,6 @@ using Eigen::Vector4d;
 using Eigen::VectorXd;
 
 namespace {
-
-/// A difference that is told: in standard uncertainties (one false alarm in a thousand) and as a share.
-constexpr double surprising = 3.3, material = 0.01;
-
-/// ω, ζ and rest level of the decay, as the motion after first touch needs them.
-struct Support {
-    double angular_frequency = 0.0, damping_ratio = 0.0, level = 0.0;
-    /// Distance from the rest position t after a start at x with velocity v (s after, m, m/s).
-    [[nodiscard]] double motion(double x, double v, double t) const {
-        const double s = damping_ratio * angular_frequency;
-        const double p = angular_frequency * angular_frequency * (1.0 - damping_ratio * damping_ratio);
-        const double root = std::sqrt(std::abs(p)), decay = std::exp(-s * t);
-        if (root * t < 1e-6) return decay * (x + (v + s * x) * t);
-        if (p > 0.0) return decay * (x * std::cos(root * t) + (v + s * x) * std::sin(root * t) / root);
-        const double slow = std::exp(-(s - root) * t), fast = std::exp(-(s + root) * t);
-        return 0.5 * (x * (slow + fast) + (v + s * x) * (slow - fast) / root);
-    }
-};
 
 /// Hold (m), acceleration (m/s², downwards), release and touch (s after the first sample that is looked at).
 struct FallShape {
@@ -189,11 +171,6 @@ FallWindow window_of(const Recording& recording, const Event& event, double angu
     return window;
 }
 
-Estimate estimate_of_reading(double value, double deviation, double degrees_of_freedom, double confidence) {
-    const double reach = student_t_factor(confidence, degrees_of_freedom) * deviation;
-    return {value, deviation, {value - reach, value + reach}, degrees_of_freedom};
-}
-
 double square(double value) {
     return value * value;
 }
@@ -214,21 +191,6 @@ double uncertainty_of(const FallFit& fit, const std::vector<std::pair<FallFit, S
     const double here = value(fit.shape, support);
     for (const auto& [other, at] : moved) variance += square(value(other.shape, at) - here);
     return std::sqrt(std::max(variance, 0.0));
-}
-
-std::string percent(double share) {
-    return fmt::format("{:.1f} % {}", 100.0 * std::abs(share), share > 0.0 ? "more" : "less");
-}
-
-Finding fall_finding(double seen, double gravity, const char* what) {
-    return {"fall_disagrees_with_gravity", Severity::caution,
-            fmt::format("{} {:.4g} m/s², {} than gravity ({:.6g} m/s²). Check the sensor's scale and that it "
-                        "points along the fall; a guide that rubs also holds the mass back.",
-                        what, seen, percent(seen / gravity - 1.0), gravity)};
-}
-
-bool disagrees(double ratio, double deviation) {
-    return std::abs(ratio - 1.0) > material && std::abs(ratio - 1.0) > surprising * deviation;
 }
 
 DropReading read_displacement(const Recording& recording, const Event& event, const RestingDecay& decay,
@@ -271,7 +233,7 @@ DropReading read_displacement(const Recording& recording, const Event& event, co
     put(Quantity::static_deflection, deflection);
     const double seen = fit->shape.acceleration / gravity.value;
     const double seen_off = std::hypot(deviation(gravity_seen), gravity.standard_uncertainty) / gravity.value;
-    if (disagrees(seen, seen_off)) {
+    if (disagrees(seen, seen_off, fit->degrees_of_freedom)) {
         reading.findings.push_back(
             fall_finding(fit->shape.acceleration, gravity.value, "The mass falls with"));
         return reading;
@@ -281,80 +243,13 @@ DropReading read_displacement(const Recording& recording, const Event& event, co
     };
     const double stiffer = ratio(fit->shape, support);
     const double off = std::hypot(deviation(ratio), gravity.standard_uncertainty / gravity.value);
-    if (stiffer > 0.0 && disagrees(stiffer, off))
+    if (stiffer > 0.0 && disagrees(stiffer, off, fit->degrees_of_freedom))
         reading.findings.push_back(
             {"static_deflection_disagrees", Severity::caution,
              fmt::format("Gravity over the static deflection gives a stiffness per mass {} than the ringing "
                          "does. A spring that is not straight, a preload, friction that holds the mass off "
                          "its rest position, or a sensor that does not see the foot of the spring does that.",
                          percent(stiffer - 1.0))});
-    return reading;
-}
-
-/// When a change of level passes its middle, s, and the standard uncertainty of that moment.
-struct Moment {
-    double time_s = 0.0, deviation_s = 0.0;
-    bool seen = false;
-};
-
-/// The crossing of the middle between two levels next to a sample; known to the sampling interval and to the
-/// time the change takes, as a rectangular distribution (JCGM 100, 4.3.7).
-Moment crossing(const Recording& recording, std::size_t begin, std::size_t end, double from, double to) {
-    const std::vector<double>& y = recording.samples;
-    const auto share = [&](std::size_t i) { return (y[i] - from) / (to - from); };
-    Moment moment;
-    for (std::size_t i = begin; i + 1 < end && !moment.seen; ++i) {
-        if (share(i) >= 0.5 || share(i + 1) < 0.5) continue;
-        std::size_t first = i, last = i + 1;
-        while (first > begin && share(first) > 0.1) --first;
-        while (last + 1 < end && share(last) < 0.9) ++last;
-        const double t0 = recording.clock.time_of(i), t1 = recording.clock.time_of(i + 1);
-        moment.time_s = t0 + (0.5 - share(i)) / (share(i + 1) - share(i)) * (t1 - t0);
-        const double width = recording.clock.time_of(last) - recording.clock.time_of(first);
-        moment.deviation_s = width / std::sqrt(12.0);
-        moment.seen = true;
-    }
-    return moment;
-}
-
-double mean_between(const Recording& recording, std::size_t begin, std::size_t end) {
-    double sum = 0.0;
-    for (std::size_t i = begin; i < end; ++i) sum += recording.samples[i];
-    return sum / static_cast<double>(std::max<std::size_t>(1, end - begin));
-}
-
-DropReading read_acceleration(const Recording& recording, const Event& event, const RestingDecay& decay,
-                              const Gravity& gravity, double confidence) {
-    constexpr double infinite = std::numeric_limits<double>::infinity();
-    const SampleRange& fall = event.flights.front();
-    const std::size_t time = fall.end - fall.begin, inner = time / 5;
-    const double free = mean_between(recording, fall.begin + inner, fall.end - inner);
-    DropReading reading;
-    const double omega = 2.0 * std::numbers::pi * decay.natural_frequency.value;
-    const double deflection = gravity.value / square(omega);
-    const double relative =
-        2.0 * decay.natural_frequency.standard_uncertainty / decay.natural_frequency.value;
-    reading.quantities[Quantity::static_deflection] = estimate_of_reading(
-        deflection, deflection * relative, decay.natural_frequency.degrees_of_freedom, confidence);
-    const double shown = std::abs(decay.level - free);
-    const double shown_off = std::hypot(decay.level_standard_uncertainty, gravity.standard_uncertainty);
-    if (disagrees(shown / gravity.value, shown_off / gravity.value))
-        reading.findings.push_back(
-            fall_finding(shown, gravity.value, "Between free fall and rest the sensor shows"));
-    const std::size_t before = fall.begin - std::min(fall.begin, time);
-    const double hold = mean_between(recording, before, fall.begin - std::min(fall.begin, inner));
-    const Moment release = crossing(recording, before, fall.begin + inner, hold, free);
-    // The touch: to where the sensor shows as much push as the weight asks for.
-    const Moment touch = crossing(recording, fall.end - inner,
-                                  std::min(recording.size(), fall.end + inner + 4), free, decay.level);
-    if (!event.hold_seen || !release.seen || !touch.seen || !(touch.time_s > release.time_s)) return reading;
-    const double lasts = touch.time_s - release.time_s;
-    const double lasts_off = std::hypot(release.deviation_s, touch.deviation_s) / lasts;
-    const double height = 0.5 * gravity.value * lasts * lasts, speed = gravity.value * lasts;
-    reading.quantities[Quantity::drop_height] =
-        estimate_of_reading(height, 2.0 * height * lasts_off, infinite, confidence);
-    reading.quantities[Quantity::contact_velocity] =
-        estimate_of_reading(speed, speed * lasts_off, infinite, confidence);
     return reading;
 }
 
@@ -368,6 +263,8 @@ RestingDecay resting_decay(const CurveFit& fit, const Quantities& quantities) {
     VectorXd gradient = VectorXd::Zero(fit.map.rows());
     gradient(0) = 1.0;
     decay.level_standard_uncertainty = spread_of(fit, gradient).scale * fit.samples.scale;
+    decay.noise_density =
+        fit.noise.noise.spectral_density(0.0) * fit.samples.step_s * square(fit.samples.scale);
     return decay;
 }
 

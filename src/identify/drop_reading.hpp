@@ -10,6 +10,9 @@ namespace ringwright::identify {
 struct RestingDecay {
     Estimate natural_frequency, damping_ratio;
     double level = 0.0, level_standard_uncertainty = 0.0;
+    /// Power spectral density of the noise at low frequency, two-sided, units of the samples squared times s:
+    /// a mean over T seconds has the variance noise_density/T.
+    double noise_density = 0.0;
 };
 [[nodiscard]] RestingDecay resting_decay(const CurveFit& fit, const Quantities& quantities);
 
@@ -28,9 +31,12 @@ struct DropReading {
 /// by 1 % and by what their uncertainties allow once in a thousand. Finding "fall_disagrees_with_gravity"
 /// where the curvature differs from gravity by as much: the sensor's scale, or what held the mass back.
 ///
-/// Acceleration: time T from leaving the hold to the touch, each known to the sampling interval and the time
-/// that the change takes; height gT²/2, contact velocity gT. Static deflection g/ω_n², from the frequency.
-/// The same finding where the rest position does not lie gravity away from free fall.
+/// Acceleration: time T from the release, where the hold turns into free fall (a step, or a ramp of up to 60
+/// ms), to the touch, where free fall turns into the push of spring and damper on a mass that comes in at gT;
+/// both by least squares; height gT²/2, contact velocity gT. Static deflection g/ω_n², from the frequency.
+/// The same finding where the rest position does not lie gravity away from free fall, by 1 % and by what
+/// noise does once in a thousand. The noise of the means is that of the decay at low frequency, or that of
+/// the stretch itself, whichever is more.
 ///
 /// The uncertainties leave out those of gravity, the clock and the sensor's gain, which repeats share: they
 /// are added where repeats are pooled.
