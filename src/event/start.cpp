@@ -46,13 +46,14 @@ Stretch stretch_around(const Onset& onset, const DecayShape& shape, std::size_t 
                        const StartLimits& limits) {
     const double cycle = 2.0 * std::numbers::pi / shape.undamped_angular_frequency;
     const std::size_t centre = onset.position >> level;
-    const std::size_t fitted = (onset.fit_block << onset.level) >> level;
     const std::size_t before =
         blocks_before_onset(cycle) + (onset.level > level ? reach_of(onset, level) : 0);
     Stretch stretch;
     stretch.first = centre > before ? centre - before : 0;
     const std::size_t earliest = (limits.earliest + (std::size_t{1} << level) - 1) >> level;
     stretch.first = std::max(stretch.first, earliest);
+    // A limit may lie cycles behind the onset, as where the first swings are clipped.
+    const std::size_t fitted = std::max((onset.fit_block << onset.level) >> level, earliest);
     stretch.last_start = std::max(stretch.first, fitted + static_cast<std::size_t>(1.5 * cycle));
     const double settling = 5.0 / std::max(shape.slow_rate(), 1e-9);
     const double length = std::clamp(std::min(settling, 4.0 * cycle), std::min(3.0 * cycle, 160.0), 200.0);

@@ -69,8 +69,9 @@ Extent whole_of(const std::vector<Extent>& extents) {
     return whole;
 }
 
-void runs_at(const std::vector<double>& x, const std::vector<Extent>& extents, double rail, double resolution,
-             std::vector<SampleRange>& runs) {
+// Calls `visit` with each run of samples at the rail, until it says that it has seen enough.
+template <typename Visit>
+void visit_runs(const std::vector<double>& x, const std::vector<Extent>& extents, double rail, Visit visit) {
     std::size_t i = 0;
     for (std::size_t block = 0; block < extents.size(); ++block) {
         if (extents[block].low != rail && extents[block].high != rail) continue;
@@ -79,18 +80,40 @@ void runs_at(const std::vector<double>& x, const std::vector<Extent>& extents, d
             if (x[i] != rail) continue;
             std::size_t end = i + 1;
             while (end < x.size() && x[end] == rail) ++end;
-            if (end - i >= 3 && runs_into_rail(x, i, end, resolution)) runs.push_back({i, end});
+            if (!visit(i, end)) return;
             i = end;
         }
     }
 }
 
-std::vector<SampleRange> clipped_in(const std::vector<double>& x, const std::vector<Extent>& extents,
-                                    const Extent& whole, double resolution) {
+bool is_met(const std::vector<double>& x, const std::vector<Extent>& extents, double rail,
+            double resolution) {
+    constexpr std::size_t least = 3;
+    bool met = false;
+    visit_runs(x, extents, rail, [&](std::size_t begin, std::size_t end) {
+        met = end - begin >= least && runs_into_rail(x, begin, end, resolution);
+        return !met;
+    });
+    return met;
+}
+
+Rails met_among(const std::vector<double>& x, const std::vector<Extent>& extents, const Rails& ends,
+                double resolution) {
+    Rails met = ends;
+    if (met.low && !is_met(x, extents, *met.low, resolution)) met.low.reset();
+    if (met.high && !is_met(x, extents, *met.high, resolution)) met.high.reset();
+    return met;
+}
+
+std::vector<SampleRange> runs_at(const std::vector<double>& x, const std::vector<Extent>& extents,
+                                 const Rails& rails) {
     std::vector<SampleRange> runs;
-    if (whole.low == whole.high) return runs;
-    runs_at(x, extents, whole.high, resolution, runs);
-    runs_at(x, extents, whole.low, resolution, runs);
+    const auto keep = [&](std::size_t begin, std::size_t end) {
+        runs.push_back({begin, end});
+        return true;
+    };
+    if (rails.high) visit_runs(x, extents, *rails.high, keep);
+    if (rails.low) visit_runs(x, extents, *rails.low, keep);
     std::sort(runs.begin(), runs.end(),
               [](const SampleRange& a, const SampleRange& b) { return a.begin < b.begin; });
     return runs;
@@ -122,16 +145,14 @@ double smallest_step(const std::vector<double>& samples) {
     return smallest;
 }
 
-std::vector<SampleRange> clipped_runs(const std::vector<double>& samples, double resolution) {
+Rails rails_met(const std::vector<double>& samples, const Rails& ends, double resolution) {
     if (samples.empty()) return {};
-    const std::vector<Extent> extents = extents_of(samples);
-    return clipped_in(samples, extents, whole_of(extents), resolution);
+    return met_among(samples, extents_of(samples), ends, resolution);
 }
 
-std::vector<SampleRange> clipped_runs_at(const std::vector<double>& samples, double low, double high,
-                                         double resolution) {
+std::vector<SampleRange> runs_at_rails(const std::vector<double>& samples, const Rails& rails) {
     if (samples.empty()) return {};
-    return clipped_in(samples, extents_of(samples), {low, high}, resolution);
+    return runs_at(samples, extents_of(samples), rails);
 }
 
 void report_health(Recording& recording, double low, double high, double clipped_s) {
@@ -160,7 +181,8 @@ void examine_health(Recording& recording) {
     const Extent whole = whole_of(extents);
     if (whole.high - whole.low != 0.0) {
         recording.resolution = smallest_step(x);
-        recording.clipped = clipped_in(x, extents, whole, recording.resolution);
+        recording.clipped =
+            runs_at(x, extents, met_among(x, extents, {whole.low, whole.high}, recording.resolution));
     }
     const bool clipped = !recording.clipped.empty();
     report_health(recording, whole.low, whole.high,

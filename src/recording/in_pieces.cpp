@@ -27,12 +27,12 @@ std::vector<std::string_view> pieces_of(std::string_view text, std::size_t size,
 
 void for_each_piece(std::size_t count, unsigned threads,
                     const std::function<void(std::size_t, unsigned)>& work) {
-    std::atomic<std::size_t> next{0};
+    std::atomic<std::size_t> next{1};
     std::mutex guard;
     std::exception_ptr failure;
     const auto run = [&](unsigned thread) {
         try {
-            for (std::size_t i = next++; i < count; i = next++) work(i, thread);
+            for (std::size_t i = thread == 0 ? 0 : next++; i < count; i = next++) work(i, thread);
         } catch (...) {
             next = count;
             const std::scoped_lock lock(guard);

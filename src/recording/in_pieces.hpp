@@ -14,8 +14,8 @@ namespace ringwright {
                                                       char end_of_line);
 
 /// Calls work(i, thread) once for each i in [0, count) on at most `threads` threads, the calling one being
-/// thread 0; indices are handed out in order. When a call throws, no more are handed out, and the first
-/// exception is thrown again when all threads have ended.
+/// thread 0 and getting the first index; indices are handed out in order. When a call throws, no more are
+/// handed out, and the first exception is thrown again when all threads have ended.
 void for_each_piece(std::size_t count, unsigned threads,
                     const std::function<void(std::size_t index, unsigned thread)>& work);
 

@@ -24,21 +24,40 @@ void take_smaller(double& smallest, double step) {
 // Samples beside a part that tell whether a run at its edge is met at speed.
 constexpr std::size_t margin = 4;
 
-// The clipped runs that begin in the part; a run that goes on beyond it is followed.
-void add_runs(const LongRecording& recording, const DigestedPart& part, const SignalDigest& whole,
-              std::vector<SampleRange>& runs) {
+// The part with what lies beside it, a run at a rail that goes on beyond it followed to its end.
+struct Surroundings {
+    std::size_t begin = 0;
+    std::vector<double> samples;
+};
+
+Surroundings read_around(const LongRecording& recording, const DigestedPart& part,
+                         const SignalDigest& whole) {
     const std::size_t size = recording.size(), part_end = part.begin + part.digest.count;
     const std::size_t begin = part.begin > margin ? part.begin - margin : 0;
     for (std::size_t more = margin;; more *= 4) {
         const std::size_t end = std::min(size, part_end + more);
-        const std::vector<double> x = recording.stretch({begin, end}).samples;
+        std::vector<double> x = recording.stretch({begin, end}).samples;
         const bool open = end < size && (x.back() == whole.low || x.back() == whole.high);
-        if (open && end - begin < recording.limits().stretch) continue;
-        for (const SampleRange& run : clipped_runs_at(x, whole.low, whole.high, whole.smallest_step))
-            if (begin + run.begin >= part.begin && begin + run.begin < part_end)
-                runs.push_back({begin + run.begin, begin + run.end});
-        return;
+        if (!open || end - begin >= recording.limits().stretch) return {begin, std::move(x)};
     }
+}
+
+bool touches(const SignalDigest& part, const Rails& rails) {
+    return part.count > 0 &&
+           ((rails.low && part.low == *rails.low) || (rails.high && part.high == *rails.high));
+}
+
+// Reads no further than both ends are known to be rails.
+Rails rails_of(const LongRecording& recording, const std::vector<DigestedPart>& parts,
+               const SignalDigest& whole) {
+    Rails met, open{whole.low, whole.high};
+    for (const DigestedPart& part : parts) {
+        if (!touches(part.digest, open)) continue;
+        const Rails here = rails_met(read_around(recording, part, whole).samples, open, whole.smallest_step);
+        if (here.low) met.low = here.low, open.low.reset();
+        if (here.high) met.high = here.high, open.high.reset();
+    }
+    return met;
 }
 
 }  // namespace
@@ -80,9 +99,16 @@ std::vector<SampleRange> clipped_runs(const LongRecording& recording, const std:
                                       const SignalDigest& whole) {
     std::vector<SampleRange> runs;
     if (whole.low == whole.high) return runs;
-    for (const DigestedPart& part : parts)
-        if (part.digest.count > 0 && (part.digest.low == whole.low || part.digest.high == whole.high))
-            add_runs(recording, part, whole, runs);
+    const Rails rails = rails_of(recording, parts, whole);
+    for (const DigestedPart& part : parts) {
+        if (!touches(part.digest, rails)) continue;
+        const std::size_t part_end = part.begin + part.digest.count;
+        const Surroundings around = read_around(recording, part, whole);
+        // Those that begin in the part.
+        for (const SampleRange& run : runs_at_rails(around.samples, rails))
+            if (around.begin + run.begin >= part.begin && around.begin + run.begin < part_end)
+                runs.push_back({around.begin + run.begin, around.begin + run.end});
+    }
     return runs;
 }
 

@@ -167,6 +167,31 @@ TEST_CASE("too few samples a cycle and a clipped start are findings") {
     CHECK(found.events[0].findings[0].code == "clipped_start");
 }
 
+TEST_CASE("a light decay whose first dozens of swings are clipped is found behind them") {
+    // zeta 0.01, the rail at 0.4 of the start amplitude: ln(2.5)/0.02 pi = 15 cycles are clipped.
+    for (std::uint64_t seed = 60; seed < 70; ++seed) {
+        Generator generator(seed);
+        simulator::Pull pull;
+        pull.decay_s = 8.0;
+        auto clipped =
+            simulator::plucks({10.0, 0.01}, 500.0, pull, MeasuredQuantity::displacement, {30.0}, generator);
+        std::vector<double>& samples = clipped.recording.samples;
+        std::size_t last = 0;
+        for (std::size_t i = 0; i < samples.size(); ++i) {
+            if (std::abs(samples[i]) < 0.4) continue;
+            samples[i] = samples[i] > 0.0 ? 0.4 : -0.4;
+            if (clipped.recording.clipped.empty() || clipped.recording.clipped.back().end < i)
+                clipped.recording.clipped.push_back({i, i + 1});
+            last = clipped.recording.clipped.back().end = i + 1;
+        }
+        const EventSearch found = find_events(clipped.recording);
+        INFO("seed " << seed);
+        REQUIRE(found.events.size() == 1);
+        CHECK(found.events[0].begin >= last);
+        CHECK(found.events[0].begin < last + 50);  // a cycle
+    }
+}
+
 TEST_CASE("a drop's decay begins in the last unbroken contact") {
     for (const auto quantity : {MeasuredQuantity::acceleration, MeasuredQuantity::displacement}) {
         Generator generator(3);

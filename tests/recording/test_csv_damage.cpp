@@ -1,4 +1,6 @@
 // Tables with holes, disorder and rubbish in them; and files that are no recordings.
+#include <unistd.h>
+
 #include <catch2/catch.hpp>
 #include <cstdio>
 #include <cstdlib>
@@ -42,7 +44,7 @@ void check_samples_at_their_times(const Recording& recording) {
 struct TemporaryFile {
     std::filesystem::path path;
     TemporaryFile(const char* name, const std::string& bytes)
-        : path(std::filesystem::temp_directory_path() / (std::string("ringwright-reading-") + name)) {
+        : path(std::filesystem::temp_directory_path() / (std::to_string(::getpid()) + "-reading-" + name)) {
         std::ofstream(path, std::ios::binary) << bytes;
     }
     ~TemporaryFile() { std::filesystem::remove(path); }
