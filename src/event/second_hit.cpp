@@ -64,12 +64,13 @@ std::optional<std::size_t> after_second_hit(std::span<const double> means, std::
     if (shape.damping_ratio > most_damping) return {};
     const std::size_t cycle = cycle_of(shape);
     if (cycle < fewest_blocks) return {};
+    // A shape of hardly any frequency has a cycle beyond any recording.
+    if (first + 2 * cycle >= means.size()) return {};
     TermTable terms(cycle + cycle / 2);
     terms.set(shape, 0.0);
     std::vector<Forecast> forecasts;
     for (std::size_t k = first; k + 2 * cycle < means.size() && k < first + looked_at * cycle; ++k)
         forecasts.push_back(forecast_after(means, k, cycle, shape, terms));
-    if (forecasts.empty()) return {};
     const double usual = median_missed(forecasts);
     std::size_t last = 0, surprised = 0, followed = 0;
     for (std::size_t i = 0; i < forecasts.size(); ++i) {
