@@ -64,12 +64,14 @@ std::optional<CurveFit> window_from(const CurveFit& fit, const Recording& record
     CurveFit held;
     const double rate = fit.window.rate_hz,
                  fall_begin = static_cast<double>(fit.window.begin) + fall.begin_s * rate;
+    // Over a gap the samples say less than the time: then the fall seems to lie behind them.
+    const std::size_t end = fit.window.begin + fit.window.size();
+    if (!(fall_begin < static_cast<double>(end))) return std::nullopt;
     const double limit = event.quiet_end > event.quiet_begin ? 0.0 : static_cast<double>(event.quiet_end);
     const double begin = std::max(limit, fall_begin - before * fall.length_s * rate);
     const bool is_first_sample = begin == 0.0;
     if (!is_first_sample && begin > fall_begin - least_before * fall.length_s * rate) return std::nullopt;
-    held.window =
-        cut_window(recording, static_cast<std::size_t>(begin), fit.window.begin + fit.window.size());
+    held.window = cut_window(recording, static_cast<std::size_t>(begin), end);
     const auto block = static_cast<Index>(std::max(1.0, fall.length_s * rate / rows_in_fall));
     held.samples = block_means(held.window, std::min(block, fit.samples.block * 4));
     DecaySamples& samples = held.samples;
@@ -183,8 +185,9 @@ bool explains_release(const CurveFit& held) {
                held.samples.time.begin();
     };
     const Index first = row_at(release - before * period), rows = row_at(release + behind * period) - first;
-    return held.innovations.segment(first, rows).squaredNorm() <
-           chi_squared_quantile(1.0 - false_alarm, static_cast<double>(rows));
+    // None where that is shorter than a step.
+    return rows > 0 && held.innovations.segment(first, rows).squaredNorm() <
+                           chi_squared_quantile(1.0 - false_alarm, static_cast<double>(rows));
 }
 
 // Whether a decay that was running at the first sample explains the same samples as well, by their
