@@ -515,14 +515,15 @@ double surprise_between(const Pyramid& pyramid, const Found& first, const Found&
 /// Whether the first decay simply goes on in the second: as large as was to be expected, at the same
 /// frequency.
 bool goes_on(const Pyramid& pyramid, const Found& first, const Found& second) {
-    constexpr double surprising = 0.4, as_clean = 3.0;
+    constexpr double surprising = 0.4, surprising_if_clean = 0.12, noise_margin = 8.0, as_clean = 3.0;
     if (first.start.noise_rms > as_clean * second.start.noise_rms) return false;
     const double later = static_cast<double>(second.begin() - first.begin());
     const double expected = first.start.amplitude * std::exp(-first.start.shape.slow_rate() * later);
     const double tune =
         second.start.shape.undamped_angular_frequency / first.start.shape.undamped_angular_frequency;
     if (second.start.amplitude > 1.15 * expected || std::abs(tune - 1.0) > 0.1) return false;
-    return surprise_between(pyramid, first, second) < surprising;
+    const double noise = noise_margin * first.start.fit.residual_rms() / second.start.amplitude;
+    return surprise_between(pyramid, first, second) < std::clamp(noise, surprising_if_clean, surprising);
 }
 
 }  // namespace
@@ -551,7 +552,8 @@ bool is_first_hit(const Found& first, const Found& second) {
 }
 
 /// A decay that the next one cuts short goes on in it, or is replaced by it when little of it was seen (a
-/// second hit of the same test), or keeps its place with a finding.
+/// second hit of the same test: nobody pulls, holds and lets go again within four cycles), or keeps its place
+/// with a finding.
 void judge_interruptions(std::vector<Found>& found, const Series& series, const Pyramid& pyramid) {
     std::vector<Found> kept;
     for (std::size_t i = 0; i < found.size(); ++i) {
@@ -573,7 +575,8 @@ void judge_interruptions(std::vector<Found>& found, const Series& series, const 
         if (goes_on(pyramid, found[i], next)) {
             found[i].course = next.course;
             next = std::move(found[i]);
-        } else if ((cycles < 12.0 && found[i].course.fall < 1.5) || found[i].course.fall < 0.5) {
+        } else if ((cycles < 4.0 && !next.start.from_rest) || (cycles < 12.0 && found[i].course.fall < 1.5) ||
+                   found[i].course.fall < 0.5) {
             next.findings.push_back(double_hit(static_cast<double>(next.begin()) / series.rate_hz()));
         } else {
             if (found[i].course.fall < 3.0)

@@ -198,11 +198,16 @@ void run_simple_methods(EventIdentification& result, const CurveFit& fit, const 
         simple_method_result(bootstrap.readings.half_power, bootstrap.half_power, fit, confidence_level);
 }
 
+bool hit_twice(const Event& event) {
+    return std::any_of(event.findings.begin(), event.findings.end(),
+                       [](const Finding& finding) { return finding.code == "double_hit"; });
+}
+
 // A law that needs the swings before the event's start, and leaves no more there than noise as the search saw
 // it.
 std::optional<LawFit> law_from_earlier_start(const CurveFit& viscous, const Recording& recording,
                                              const Event& event, const CurveFitOptions& options) {
-    constexpr double most_noise = 2.0;
+    constexpr double most_noise = 2.0, as_noisy = 1.1;
     if (!viscous.valid || rings_too_long(viscous) || !event.flights.empty()) return std::nullopt;
     const auto earlier = with_earlier_start(viscous, recording, event);
     if (!earlier) return std::nullopt;
@@ -211,6 +216,8 @@ std::optional<LawFit> law_from_earlier_start(const CurveFit& viscous, const Reco
     const double left = residual_level(law->curve);
     const double noise = event.noise_level / std::sqrt(static_cast<double>(law->curve.samples.block));
     if (left > most_noise * noise && left > residual_level(viscous)) return std::nullopt;
+    // Two hits are no law, though one may come near to them.
+    if (hit_twice(event) && left > as_noisy * residual_level(viscous)) return std::nullopt;
     return law;
 }
 

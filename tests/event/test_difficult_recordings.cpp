@@ -142,6 +142,37 @@ TEST_CASE("of two hits the decay after the second is used, and it is said") {
     }
 }
 
+// A second hit of 0.3 to 0.45 of the first, where it adds to the swing or takes from it: the motion is
+// linear, so that the sum of two answers is the answer to both. One decay from the first hit on leaves a
+// tenth of the amplitude here, and gave damping ratios a quarter off. Seed 332.
+TEST_CASE("a weaker second hit is seen where all else goes as foretold") {
+    const Noise none{300.0};
+    for (const double share : {0.3, 0.45}) {
+        for (const double gap_cycles : {1.85, 2.1, 2.3, 2.6}) {
+            INFO("second hit of " << share << ", gap of " << gap_cycles << " cycles");
+            Generator generator(332);
+            const Mode mode{10.0, 0.03};
+            const auto quantity = MeasuredQuantity::displacement;
+            auto truth = simulator::taps(mode, 2000.0, 4.0, {0.6}, 0.01, quantity, none, generator);
+            const auto second = simulator::taps(mode, 2000.0, 4.0, {0.6 + gap_cycles / 10.0}, 0.01, quantity,
+                                                none, generator);
+            const double height =
+                *std::max_element(truth.recording.samples.begin(), truth.recording.samples.end());
+            for (std::size_t i = 0; i < truth.recording.samples.size(); ++i)
+                truth.recording.samples[i] += share * second.recording.samples[i];
+            simulator::add_noise(truth.recording.samples, height, 2000.0, Noise{45.0}, generator);
+            const EventSearch search = find_events(truth.recording);
+            REQUIRE(search.events.size() == 1);
+            // From the end of contact on, with the slack of the double hits above, or up to half a cycle
+            // later.
+            const double late = begin_error_cycles(second, search.events[0]);
+            CHECK(late > -0.06);
+            CHECK(late < 0.5);
+            CHECK(has_finding(search.events[0], "double_hit"));
+        }
+    }
+}
+
 TEST_CASE("a single tap or release is no double hit") {
     Generator generator(341);
     const auto tap = simulator::taps({20.0, 0.02}, 2000.0, 4.0, {0.5}, 0.006, MeasuredQuantity::acceleration,
