@@ -14,7 +14,7 @@ namespace {
 
 constexpr double standard_gravity = 9.80665;  // m/s²
 /// What the decay may leave unexplained: as a share of its amplitude, or against the noise in the fall.
-constexpr double misfit = 0.125, misfit_to_noise = 1.5;
+constexpr double misfit = 0.2, misfit_to_noise = 1.5;
 constexpr double least_amplitude = 3.0;  ///< against the noise
 constexpr std::size_t shortest_decay = 14;
 /// Departure of what an accelerometer shows at rest from gravity, as a share of it.
@@ -73,6 +73,22 @@ bool creeps_after_a_hint(const Found& drop, const Fall& fall, double rate_hz) {
     return drop.start.shape.damping_ratio > creeps && bow < plain * first.noise;
 }
 
+/// The noise of the flights; a single one shows less of it where it is slow.
+double noise_in(const Fall& fall) {
+    double most = 0.0;
+    for (const Flight& flight : fall.flights) most = std::max(most, flight.noise);
+    return most;
+}
+
+/// Whether the amplitude falls, over the whole course or over the first cycles: slow noise may be as large as
+/// the rest of it.
+bool dies_away(const Found& drop) {
+    constexpr double least = 0.5;  // of ln amplitude: 40 %
+    const Start& start = drop.start;
+    const double fitted = std::ldexp(static_cast<double>(start.fit.points), static_cast<int>(start.level));
+    return drop.course.falls() || start.shape.decay_rate() * fitted > least;
+}
+
 /// Why what follows a fall is no decay of a mass on a spring; empty when it is one.
 std::string refusal_of(const Found& drop, const Fall& fall, MeasuredQuantity quantity,
                        std::span<const double> values, double rate_hz) {
@@ -84,11 +100,11 @@ std::string refusal_of(const Found& drop, const Fall& fall, MeasuredQuantity qua
         return "but what follows the impact does not swing about the rest position";
     const bool over = drop.course.end < drop.begin() + shortest_decay;
     if (over || start.amplitude < least_amplitude * start.noise_rms ||
-        start.noise_rms > std::max(misfit * start.amplitude, misfit_to_noise * fall.flights.front().noise))
+        start.noise_rms > std::max(misfit * start.amplitude, misfit_to_noise * noise_in(fall)))
         return "but what follows the impact does not swing about a rest position as a mass on a spring does";
     if (quantity == MeasuredQuantity::displacement && creeps_after_a_hint(drop, fall, rate_hz))
         return "but what follows the impact creeps to rest, and the noise hides whether anything fell";
-    if (start.shape.damping_ratio < 0.5 && !drop.course.falls())
+    if (start.shape.damping_ratio < 0.5 && !dies_away(drop))
         return "but the motion after the impact does not die away";
     return {};
 }
