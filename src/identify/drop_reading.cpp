@@ -82,7 +82,9 @@ struct FallFit {
     double degrees_of_freedom = 1.0;
 };
 
-/// By how much neighbours that go together widen an uncertainty: (1 + ρ)/(1 − ρ) of the variance.
+/// By how much neighbours that go together widen an uncertainty: (1 + ρ)/(1 − ρ) of the variance. Four
+/// numbers fitted to a short stretch take some of that away, so that the noise of the decay counts where it
+/// is more.
 double correlation_factor(const VectorXd& r) {
     const Index n = r.size();
     const double squares = r.squaredNorm();
@@ -91,8 +93,9 @@ double correlation_factor(const VectorXd& r) {
     return (1.0 + bounded) / (1.0 - bounded);
 }
 
-/// Levenberg and Marquardt on the four numbers.
-std::optional<FallFit> fit_fall(const FallSamples& samples, FallShape shape, const Support& support) {
+/// Levenberg and Marquardt on the four numbers; `noise_density` of RestingDecay.
+std::optional<FallFit> fit_fall(const FallSamples& samples, FallShape shape, const Support& support,
+                                double noise_density) {
     constexpr int most_steps = 60;
     const double time = shape.touch - shape.release;
     const Vector4d steps{1e-5 * std::abs(shape.height()), 1e-5 * shape.acceleration, 1e-5 * time,
@@ -117,7 +120,10 @@ std::optional<FallFit> fit_fall(const FallSamples& samples, FallShape shape, con
     }
     const auto spare = static_cast<double>(r.size()) - 4.0;
     if (spare < 4.0 || !(shape.touch > shape.release) || !(shape.acceleration > 0.0)) return {};
-    const double inflation = correlation_factor(r);
+    const double step =
+        (samples.time.back() - samples.time.front()) / static_cast<double>(samples.time.size() - 1);
+    const double inflation =
+        std::max(correlation_factor(r), noise_density * spare / (step * std::max(r.squaredNorm(), 1e-300)));
     FallFit fit{shape, {}, std::max(1.0, spare / inflation)};
     const Matrix4d normal = jacobian.transpose() * jacobian;
     fit.covariance = r.squaredNorm() / spare * inflation * normal.ldlt().solve(Matrix4d::Identity());
@@ -202,11 +208,13 @@ DropReading read_displacement(const Recording& recording, const Event& event, co
     const FallSamples samples = samples_of(recording, window.begin, window.end, down);
     const Support support{omega, decay.damping_ratio.value, down * decay.level};
     const auto first = first_shape(samples, window.fall_begin_s, window.fall_end_s, support, gravity.value);
-    const std::optional<FallFit> fit = first ? fit_fall(samples, *first, support) : std::nullopt;
+    const std::optional<FallFit> fit =
+        first ? fit_fall(samples, *first, support, decay.noise_density) : std::nullopt;
     if (!fit) return {};
     std::vector<std::pair<FallFit, Support>> moved;
     const auto move = [&](const Support& to) {
-        if (const auto other = fit_fall(samples, fit->shape, to)) moved.emplace_back(*other, to);
+        if (const auto other = fit_fall(samples, fit->shape, to, decay.noise_density))
+            moved.emplace_back(*other, to);
     };
     const double frequency_off = decay.natural_frequency.standard_uncertainty / decay.natural_frequency.value;
     move({omega * (1.0 + frequency_off), support.damping_ratio, support.level});
@@ -238,18 +246,20 @@ DropReading read_displacement(const Recording& recording, const Event& event, co
             fall_finding(fit->shape.acceleration, gravity.value, "The mass falls with"));
         return reading;
     }
-    const auto ratio = [&](const FallShape& s, const Support& on) {
-        return gravity.value / (on.level - s.hold - s.height()) / square(on.angular_frequency);
+    // Deflection over that of the frequency, not the other way round: its error is that of a difference of
+    // places, as likely up as down however large.
+    const auto softer = [&](const FallShape& shape, const Support& on) {
+        return (on.level - shape.hold - shape.height()) * square(on.angular_frequency) / gravity.value;
     };
-    const double stiffer = ratio(fit->shape, support);
-    const double off = std::hypot(deviation(ratio), gravity.standard_uncertainty / gravity.value);
-    if (stiffer > 0.0 && disagrees(stiffer, off, fit->degrees_of_freedom))
+    const double ratio = softer(fit->shape, support);
+    const double off = std::hypot(deviation(softer), gravity.standard_uncertainty / gravity.value);
+    if (ratio > 0.0 && disagrees(ratio, off, fit->degrees_of_freedom))
         reading.findings.push_back(
             {"static_deflection_disagrees", Severity::caution,
              fmt::format("Gravity over the static deflection gives a stiffness per mass {} than the ringing "
                          "does. A spring that is not straight, a preload, friction that holds the mass off "
                          "its rest position, or a sensor that does not see the foot of the spring does that.",
-                         percent(stiffer - 1.0))});
+                         percent(1.0 / ratio - 1.0))});
     return reading;
 }
 
