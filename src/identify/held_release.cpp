@@ -190,12 +190,11 @@ bool explains_release(const CurveFit& held) {
                            chi_squared_quantile(1.0 - false_alarm, static_cast<double>(rows));
 }
 
-// Whether a decay that was running at the first sample explains the same samples as well, by their
+// Whether a decay that was running at the window's first sample explains the same samples as well, by their
 // likelihood: nine is three standard deviations of what the instant of the release, the one parameter more,
 // may gain.
 bool may_have_been_running(const CurveFit& held) {
     constexpr double clearly = 9.0;
-    if (held.window.begin != 0) return false;
     DecayModel running = held.fit.model;
     running.release.reset();
     running.let_go_slowly = false;
@@ -242,6 +241,9 @@ std::optional<HeldRelease> fit_held_release(const CurveFit& fit, const Recording
     }
     constexpr double most_growth = 1.15;  // of the residual, by chance, over a wider window
     if (!held || held->oscillator().damping_ratio() < least_damping) return std::nullopt;
+    // The round top of a swing can pass for a short plateau; what lies before the first sample nobody knows.
+    const bool may_be_none = may_have_been_running(*held);
+    if (may_be_none && held->window.begin != 0) return std::nullopt;
     const double finer = std::max(
         1.0, std::sqrt(static_cast<double>(fit.samples.block) / static_cast<double>(held->samples.block)));
     const bool as_good = residual_level(*held) <= most_growth * finer * residual_level(fit);
@@ -250,7 +252,7 @@ std::optional<HeldRelease> fit_held_release(const CurveFit& fit, const Recording
     held->valid = true;
     HeldRelease release;
     release.explained = as_good && explains_release(*held);
-    release.may_be_none = may_have_been_running(*held);
+    release.may_be_none = may_be_none;
     release.uncertainty_s = release_uncertainty(*held);
     release.release_s = recording.clock.time_of(held->window.begin) + *held->fit.model.release;
     held->findings = fit.findings;

@@ -26,12 +26,13 @@ TEST_CASE("each real decay is found once, and begins where the eye sees it begin
     // Running from the first sample: the weights on a spring. Step of the pendulum: its top at sample 115 to
     // 120. Heavily damped: the last push of the hand ends at 45 to 49. Blown at: turns at 57, free at the
     // latest after half a period (73 samples). Board: the last samples at the
-    // rail of 546.5 g are 533 and 534. Struck: within 20 ms.
+    // rails of 546.5 g are 533 (a10) and 564 (a40, alone at the upper rail, which 500 to 502 show; those of the
+    // lower rail end with 534). Struck: within 20 ms.
     for (const Band& band :
          {Band{"spring_weight/plain.txt", 0, 0}, Band{"spring_weight/rubbing.txt", 0, 0},
           Band{"seismometer/seismometer.txt", 105, 125}, Band{"seismometer/q5_heavily_damped.txt", 43, 50},
           Band{"seismometer/blow.txt", 50, 130}, Band{"share_alike/board_shock/acc_pcb_a10.txt", 534, 545},
-          Band{"share_alike/board_shock/acc_pcb_a40.txt", 535, 546}, Band{"struck/tine_e5.wav", 0, 882},
+          Band{"share_alike/board_shock/acc_pcb_a40.txt", 565, 576}, Band{"struck/tine_e5.wav", 0, 882},
           Band{"struck/bass_a4_24bit.wav", 0, 882}, Band{"struck/tabla_tun2.wav", 0, 882},
           Band{"struck/tabla_tun3.wav", 0, 882}}) {
         INFO(band.file);
