@@ -115,6 +115,15 @@ bool rests_before_release(const CurveFit& held) {
            chi_squared_quantile(1.0 - plateau_false_alarm, static_cast<double>(rows));
 }
 
+// Whether the search for the best fit is over. One in which noise hides the fast pole runs along a valley
+// towards ever more damping, until a further search gains nothing that counts beside the noise.
+bool is_best(const CurveFit& held) {
+    constexpr double nothing = 0.05;  // of the rise by which an interval's end is told, 4 and less
+    if (held.fit.converged) return true;
+    const ProjectedFit again = fit_projected(held.fit.model, held.samples, held.noise.noise);
+    return held.fit.residual_sum - again.residual_sum < nothing * held.noise.noise.innovation_variance;
+}
+
 std::optional<CurveFit> fit_from(const CurveFit& fit, const Recording& recording, const Event& event,
                                  const Fall& fall, double before) {
     auto held = window_from(fit, recording, event, fall, before);
@@ -126,7 +135,7 @@ std::optional<CurveFit> fit_from(const CurveFit& fit, const Recording& recording
         (static_cast<double>(fit.window.begin) - static_cast<double>(held->window.begin)) /
         fit.window.rate_hz;
     held->fit = best_start(held->samples, like, earlier_s + fall.begin_s, fall.length_s);
-    if (!settle(*held) || !held->fit.converged || !rests_before_release(*held)) return std::nullopt;
+    if (!settle(*held) || !is_best(*held) || !rests_before_release(*held)) return std::nullopt;
     return held;
 }
 
@@ -168,7 +177,7 @@ std::optional<CurveFit> let_go_slowly(const CurveFit& at_once) {
     DecayModel model = at_once.fit.model;
     model.let_go_slowly = true;
     slowly.fit = fit_projected(model, slowly.samples, at_once.noise.noise);
-    if (!settle(slowly) || !slowly.fit.converged) return std::nullopt;
+    if (!settle(slowly) || !is_best(slowly)) return std::nullopt;
     const Excess excess = excess_of(slowly);
     if (excess.uncertainty > matters && std::abs(excess.share) < clearly * excess.uncertainty)
         return std::nullopt;

@@ -49,6 +49,9 @@ std::optional<RunningStart> fit_from_first_sample(const CurveFit& fit, const Rec
     first.event.begin = 0;
     first.fit = fit_decay(recording, first.event, options);
     const double earlier_s = static_cast<double>(fit.window.begin) / fit.window.rate_hz;
+    // What asks for a further mode to explain what lies before the start is no decay that was running: a
+    // plateau and a fall are such.
+    if (first.fit.fit.model.oscillators.size() > fit.fit.model.oscillators.size()) return std::nullopt;
     if (!first.fit.valid || first.fit.window.begin != 0 || !explains_first(first.fit, earlier_s) ||
         residual_level(first.fit) > most_growth * residual_level(fit))
         return std::nullopt;
