@@ -76,17 +76,6 @@ Spread spread_of_oscillator(const CurveFit& fit, std::size_t index, const Vector
     return spread_of(fit, full);
 }
 
-// Relative standard uncertainty of the size of the decay, from its whitened energy.
-double relative_uncertainty_of_size(const CurveFit& fit, std::size_t index) {
-    const DecayModel& model = fit.fit.model;
-    const Index width = model.has_one_column() ? 1 : 2;
-    const Index column = model.first_oscillator_column() + width * static_cast<Index>(index);
-    VectorXd decay = linear_columns(model, fit.samples).middleCols(column, width) *
-                     fit.fit.coefficients.segment(column, width);
-    whiten(fit.noise.noise, fit.samples.stretches, decay);
-    return std::sqrt(fit.noise.noise.innovation_variance / decay.squaredNorm());
-}
-
 // What neither a straight line nor the profile knows of the error: how the fit shapes the noise that is seen
 // and, where the instant of a release is fitted as well, how noise moves it from one bend to another.
 // Measured over recordings of known truth (docs/methods/coverage.md), not derived: intervals were too narrow
@@ -393,6 +382,16 @@ void drop_undetermined(Quantities& quantities) {
 }
 
 }  // namespace
+
+double relative_uncertainty_of_size(const CurveFit& fit, std::size_t index) {
+    const DecayModel& model = fit.fit.model;
+    const Index width = model.has_one_column() ? 1 : 2;
+    const Index column = model.first_oscillator_column() + width * static_cast<Index>(index);
+    VectorXd decay = linear_columns(model, fit.samples).middleCols(column, width) *
+                     fit.fit.coefficients.segment(column, width);
+    whiten(fit.noise.noise, fit.samples.stretches, decay);
+    return std::sqrt(fit.noise.noise.innovation_variance / decay.squaredNorm());
+}
 
 void add_functions_of_damping(Quantities& quantities) {
     const auto found = quantities.find(Quantity::damping_ratio);

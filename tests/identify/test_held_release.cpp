@@ -243,3 +243,21 @@ TEST_CASE("what was not held, or is seen sharply, keeps a start of its own") {
     REQUIRE(held.has_value());
     CHECK(held->sharp());
 }
+
+TEST_CASE("slow noise as large as a tenth of a decay that is soon over is said") {
+    const auto says_so = [](double damping_ratio, double decibel, double correlation, std::uint64_t seed) {
+        const simulated::Sample sample = held_sample(damping_ratio, decibel, 1.0, seed, correlation);
+        IdentifyOptions options;
+        options.replicates = 0;
+        const EventIdentification result = identify_event(sample.recording, sample.event, options);
+        REQUIRE(result.curve_fit.status == MethodStatus::ok);
+        return std::any_of(result.findings.begin(), result.findings.end(),
+                           [](const Finding& finding) { return finding.code == "slow_noise"; });
+    };
+    for (std::uint64_t seed = 7500; seed < 7505; ++seed) {
+        INFO("seed " << seed);
+        CHECK(says_so(0.3, 20.0, 0.95, seed));
+        CHECK_FALSE(says_so(0.3, 20.0, 0.0, seed));   // as large, but quick
+        CHECK_FALSE(says_so(0.3, 40.0, 0.95, seed));  // as slow, but a tenth of it
+    }
+}
