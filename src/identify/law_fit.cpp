@@ -688,6 +688,17 @@ bool stands_out_of_noise(const LawFit& fit) {
     });
 }
 
+// Whether rounding to the recorder's steps may stand for the law: the noise is too small to carry the signal
+// over the steps, and nowhere do the two curves lie a step apart. A decay below half a step seems to stick.
+bool may_be_rounding(const LawFit& law, const CurveFit& plain, double resolution) {
+    constexpr double least_noise = 0.5, apart = 1.0;  // steps
+    const double step = resolution / plain.samples.scale;
+    if (residual_level(plain) > least_noise * resolution) return false;
+    const VectorXd curve = plain.samples.value - plain.residual;
+    const VectorXd other = law.curve.samples.value - law.curve.residual;
+    return curve.size() == other.size() && (curve - other).cwiseAbs().maxCoeff() < apart * step;
+}
+
 }  // namespace
 
 std::optional<LawFit> choose_law(const CurveFit& viscous, const Recording& recording, const Event& event,
@@ -700,8 +711,9 @@ std::optional<LawFit> choose_law(const CurveFit& viscous, const Recording& recor
         const auto trial = without_components(viscous, options.near_hz.has_value(), keep_slow_terms);
         if (!trial || !rings_enough(*trial)) continue;
         LawFit law = law_from(*trial, measured_of(recording.quantity), leaves_more_than_noise(*trial, event));
-        const bool beats =
-            law.terms.count() > 0 && law.criterion + surcharge(law.terms, *trial) < criterion_of(viscous);
+        const bool beats = law.terms.count() > 0 &&
+                           law.criterion + surcharge(law.terms, *trial) < criterion_of(viscous) &&
+                           !may_be_rounding(law, *trial, recording.resolution);
         if (!beats || (chosen && chosen->criterion < law.criterion)) continue;
         chosen = std::move(law);
         plain = trial;
