@@ -23,7 +23,7 @@ struct WindowedRecord {
 
     // Eight phasors side by side, started afresh now and then, so that the sum is neither slow nor inexact.
     [[nodiscard]] double power(double frequency_hz) const {
-        constexpr Index lanes = 8, fresh = 64 * lanes;
+        constexpr Index lanes = 8, fresh = 256 * lanes;
         using Lanes = Eigen::Array<double, lanes, 1>;
         const double turn = -two_pi * frequency_hz * step;
         const std::complex<double> rotation = std::polar(1.0, turn * static_cast<double>(lanes));
@@ -112,12 +112,13 @@ double peak_near(const WindowedRecord& record, double frequency_hz, double width
     return best;
 }
 
-// Frequency at which the power falls to `level` on one side of the peak (direction ±1); nothing when it never
-// does.
-std::optional<double> crossing(const WindowedRecord& record, double peak_hz, double level, double width_hz,
-                               double direction) {
+// Frequency at which the power falls to half of that of the peak on one side of it (direction ±1); nothing
+// when it never does.
+std::optional<double> crossing(const WindowedRecord& record, double peak_hz, double peak_power,
+                               double width_hz, double direction) {
+    const double level = 0.5 * peak_power;
     const auto logarithm = [&](double f) { return std::log(record.power(f) / level); };
-    double inside = peak_hz, inside_value = logarithm(peak_hz), step = 0.5 * width_hz, outside = peak_hz,
+    double inside = peak_hz, inside_value = std::numbers::ln2, step = 0.5 * width_hz, outside = peak_hz,
            outside_value = 0.0;
     for (int i = 0;; ++i) {
         outside = inside + direction * step;
@@ -128,18 +129,22 @@ std::optional<double> crossing(const WindowedRecord& record, double peak_hz, dou
         inside_value = outside_value;
         step = 0.25 * width_hz;
     }
-    for (int i = 0; i < 20 && std::abs(outside - inside) > 1e-9 * peak_hz; ++i) {  // regula falsi, Illinois
+    // Regula falsi; an end that stays twice in turn counts half (Illinois), or it would stay for good.
+    double before = 0.0;
+    for (int i = 0; i < 20 && std::abs(outside - inside) > 1e-9 * peak_hz; ++i) {
         const double f = inside - inside_value * (outside - inside) / (outside_value - inside_value);
         const double value = logarithm(f);
         if (std::abs(value) < 1e-7) return f;
+        const bool again = value * before > 0.0;
+        before = value;
         if (value < 0.0) {
             outside = f;
             outside_value = value;
-            inside_value *= 0.5;
+            if (again) inside_value *= 0.5;
         } else {
             inside = f;
             inside_value = value;
-            outside_value *= 0.5;
+            if (again) outside_value *= 0.5;
         }
     }
     return 0.5 * (inside + outside);
@@ -156,9 +161,10 @@ HalfPowerReading read_half_power(const DecaySamples& samples, const HalfPowerSet
     }
     reading.peak_hz = peak_near(*record, settings.frequency_hz, settings.width_hz, settings.peak_known);
     reading.peak_power = record->power(reading.peak_hz);
-    const double level = 0.5 * reading.peak_power;
-    const std::optional<double> low = crossing(*record, reading.peak_hz, level, settings.width_hz, -1.0),
-                                high = crossing(*record, reading.peak_hz, level, settings.width_hz, 1.0);
+    const auto side = [&](double direction) {
+        return crossing(*record, reading.peak_hz, reading.peak_power, settings.width_hz, direction);
+    };
+    const std::optional<double> low = side(-1.0), high = side(1.0);
     if (!low || !high) {
         reading.reason = "the spectrum does not fall to half its peak on both sides of it";
         return reading;

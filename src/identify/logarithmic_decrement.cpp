@@ -45,7 +45,7 @@ std::optional<Extreme> vertex_near(const DecaySamples& samples, double centre, d
     }
     Eigen::Matrix3d normal;
     normal << s[0], s[1], s[2], s[1], s[2], s[3], s[2], s[3], s[4];
-    const Eigen::Vector3d c = normal.ldlt().solve(Eigen::Vector3d(m[0], m[1], m[2]));
+    const Eigen::Vector3d c = normal.llt().solve(Eigen::Vector3d(m[0], m[1], m[2]));
     if (!c.allFinite() || c(2) == 0.0) return std::nullopt;
     const double x = std::clamp(-c(1) / (2.0 * c(2)), -1.5, 1.5);
     return Extreme{centre + x * half_width, c(0) + x * (c(1) + x * c(2)), last - first};
