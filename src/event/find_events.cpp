@@ -512,9 +512,28 @@ double surprise_between(const Pyramid& pyramid, const Found& first, const Found&
     return largest;
 }
 
+/// How long samples are missing where the second decay follows the first, in positions; 0 where no gap is as
+/// long as a good part of a cycle. What was put in their place is no motion.
+double gap_between(const Search& search, const Found& first, const Found& second) {
+    constexpr double good_part = 0.2, near = 1.0;  // cycles
+    if (search.recording.clock.uniform()) return 0.0;
+    const auto reach = static_cast<std::size_t>(near * first.cycle());
+    const std::size_t from = first.course.rest_end > reach ? first.course.rest_end - reach : 0;
+    const std::size_t begin = search.series.sample_at(from), end = search.series.sample_at(second.begin());
+    double missing = 0.0;
+    for (std::size_t i = begin + 1; i <= end && i < search.recording.size(); ++i) {
+        const double step = search.recording.clock.time_of(i) - search.recording.clock.time_of(i - 1);
+        const double positions = step * search.series.rate_hz();
+        if (positions > good_part * first.cycle()) missing += positions;
+    }
+    return missing;
+}
+
 /// Whether the first decay simply goes on in the second: as large as was to be expected, at the same
 /// frequency.
-bool goes_on(const Pyramid& pyramid, const Found& first, const Found& second) {
+bool goes_on(const Search& search, const Found& first, const Found& second) {
+    constexpr double fewest_left = 0.75;
+    const Pyramid& pyramid = search.pyramid;
     constexpr double surprising = 0.4, surprising_if_clean = 0.12, noise_margin = 8.0, as_clean = 3.0;
     if (first.start.noise_rms > as_clean * second.start.noise_rms) return false;
     const double later = static_cast<double>(second.begin() - first.begin());
@@ -522,6 +541,7 @@ bool goes_on(const Pyramid& pyramid, const Found& first, const Found& second) {
     const double tune =
         second.start.shape.undamped_angular_frequency / first.start.shape.undamped_angular_frequency;
     if (second.start.amplitude > 1.15 * expected || std::abs(tune - 1.0) > 0.1) return false;
+    if (gap_between(search, first, second) > 0.0) return second.start.amplitude > fewest_left * expected;
     const double noise = noise_margin * first.start.fit.residual_rms() / second.start.amplitude;
     return surprise_between(pyramid, first, second) < std::clamp(noise, surprising_if_clean, surprising);
 }
@@ -551,15 +571,23 @@ bool is_first_hit(const Found& first, const Found& second) {
     return follows && brief && std::abs(tune) > 0.7;
 }
 
+/// Whether the second begins within two cycles of the first one's end, missing samples not counted, before
+/// the first has reached the noise. What was put in the place of missing samples passes for noise.
+bool is_cut_short(const Search& search, const Found& first, const Found& second) {
+    constexpr double near = 2.0;  // cycles
+    const double missing = gap_between(search, first, second);
+    const double later = static_cast<double>(second.begin()) - static_cast<double>(first.course.rest_end);
+    return later < near * first.cycle() + missing && (!first.course.reaches_noise || missing > 0.0);
+}
+
 /// A decay that the next one cuts short goes on in it, or is replaced by it when little of it was seen (a
 /// second hit of the same test: nobody pulls, holds and lets go again within four cycles), or keeps its place
 /// with a finding.
-void judge_interruptions(std::vector<Found>& found, const Series& series, const Pyramid& pyramid) {
+void judge_interruptions(const Search& search, std::vector<Found>& found) {
+    const Series& series = search.series;
     std::vector<Found> kept;
     for (std::size_t i = 0; i < found.size(); ++i) {
-        const bool cut = i + 1 < found.size() && !found[i].course.reaches_noise &&
-                         static_cast<double>(found[i + 1].begin()) <
-                             static_cast<double>(found[i].course.rest_end) + 2.0 * found[i].cycle();
+        const bool cut = i + 1 < found.size() && is_cut_short(search, found[i], found[i + 1]);
         const bool first_hit = i + 1 < found.size() && is_first_hit(found[i], found[i + 1]);
         if (!cut && !first_hit) {
             kept.push_back(std::move(found[i]));
@@ -572,7 +600,7 @@ void judge_interruptions(std::vector<Found>& found, const Series& series, const 
         }
         const double cycles =
             static_cast<double>(found[i].course.rest_end - found[i].begin()) / found[i].cycle();
-        if (goes_on(pyramid, found[i], next)) {
+        if (goes_on(search, found[i], next)) {
             found[i].course = next.course;
             next = std::move(found[i]);
         } else if ((cycles < 4.0 && !next.start.from_rest) || (cycles < 12.0 && found[i].course.fall < 1.5) ||
@@ -753,7 +781,7 @@ void find_all(Search& search) {
     drop_weak(search.found, [&](const Found& found) { return rest_rms(values, found.course); });
     drop_wanderings(search);
     drop_pulls(search.found);
-    judge_interruptions(search.found, search.series, search.pyramid);
+    judge_interruptions(search, search.found);
     note_double_hits(search.found, search);
     find_quiet(search.found, search.pyramid);
 }
