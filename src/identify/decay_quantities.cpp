@@ -342,6 +342,16 @@ void close_open_ends(Quantities& quantities) {
         frequency->second.interval.high = rate * largest_damping_ratio / std::numbers::pi;
 }
 
+// An interval that reaches far to one side belongs to an error that does: the standard uncertainty is not
+// smaller than the wider side over the factor that makes the interval.
+void follow_wider_side(Estimate& estimate, double confidence_level) {
+    const double wider =
+        std::max(estimate.interval.high - estimate.value, estimate.value - estimate.interval.low);
+    estimate.standard_uncertainty =
+        std::max(estimate.standard_uncertainty,
+                 wider / student_t_factor(confidence_level, estimate.degrees_of_freedom));
+}
+
 bool exists(const Derived& derived, const Oscillator& o) {
     if (derived.quantity == Quantity::slow_decay_rate) return o.damping_ratio() > critical;
     if (derived.quantity == Quantity::damped_frequency) return std::abs(o.damping_ratio()) < 1.0;
@@ -432,6 +442,8 @@ Quantities decay_quantities(const CurveFit& fit, std::size_t index, double confi
     std::erase_if(quantities, [](const auto& entry) {
         return !std::isfinite(entry.second.interval.low) || !std::isfinite(entry.second.interval.high);
     });
+    if (region && region->curved)
+        for (auto& [quantity, estimate] : quantities) follow_wider_side(estimate, confidence_level);
     drop_undetermined(quantities);
     add_functions_of_damping(quantities);
     return quantities;

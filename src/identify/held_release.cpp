@@ -124,6 +124,15 @@ bool is_best(const CurveFit& held) {
     return held.fit.residual_sum - again.residual_sum < nothing * held.noise.noise.innovation_variance;
 }
 
+bool settle_for_good(CurveFit& held) {
+    constexpr int most = 6;
+    for (int i = 0; i < most; ++i) {
+        if (!settle(held)) return false;
+        if (is_best(held)) return true;
+    }
+    return false;
+}
+
 std::optional<CurveFit> fit_from(const CurveFit& fit, const Recording& recording, const Event& event,
                                  const Fall& fall, double before) {
     auto held = window_from(fit, recording, event, fall, before);
@@ -135,7 +144,7 @@ std::optional<CurveFit> fit_from(const CurveFit& fit, const Recording& recording
         (static_cast<double>(fit.window.begin) - static_cast<double>(held->window.begin)) /
         fit.window.rate_hz;
     held->fit = best_start(held->samples, like, earlier_s + fall.begin_s, fall.length_s);
-    if (!settle(*held) || !is_best(*held) || !rests_before_release(*held)) return std::nullopt;
+    if (!settle_for_good(*held) || !rests_before_release(*held)) return std::nullopt;
     return held;
 }
 
@@ -177,7 +186,7 @@ std::optional<CurveFit> let_go_slowly(const CurveFit& at_once) {
     DecayModel model = at_once.fit.model;
     model.let_go_slowly = true;
     slowly.fit = fit_projected(model, slowly.samples, at_once.noise.noise);
-    if (!settle(slowly) || !is_best(slowly)) return std::nullopt;
+    if (!settle_for_good(slowly)) return std::nullopt;
     const Excess excess = excess_of(slowly);
     if (excess.uncertainty > matters && std::abs(excess.share) < clearly * excess.uncertainty)
         return std::nullopt;

@@ -198,6 +198,21 @@ TEST_CASE("a plateau and a fall are no decay that was running") {
     }
 }
 
+TEST_CASE("an interval that reaches far to one side has a standard uncertainty to match") {
+    // White noise of 20 dB hides the fast pole: [0.66, 1.13] about 0.78. Student's factor at 95 % and some
+    // 500 degrees of freedom is 1.965 (tables).
+    const auto quantities = searched_and_fitted(held_sample(0.7, 20.0, 1.0, 670026155));
+    REQUIRE(quantities.has_value());
+    const Estimate& ratio = quantities->at(Quantity::damping_ratio);
+    REQUIRE(ratio.interval.high - ratio.value > 2.0 * (ratio.value - ratio.interval.low));
+    CHECK(ratio.standard_uncertainty == Approx((ratio.interval.high - ratio.value) / 1.965).epsilon(0.01));
+    // Where nothing is hidden it is that of a straight line: half the interval over the factor.
+    const Estimate light =
+        searched_and_fitted(held_sample(0.05, 60.0, 1.0, 7600))->at(Quantity::damping_ratio);
+    CHECK(light.standard_uncertainty ==
+          Approx((light.interval.high - light.interval.low) / 2.0 / 1.97).epsilon(0.03));
+}
+
 TEST_CASE("the release is found within what is said of it") {
     // Four standard uncertainties: one false alarm in 16,000 for each.
     for (std::uint64_t seed = 7200; seed < 7210; ++seed) {
