@@ -182,6 +182,27 @@ Index misfitting_start(const CurveFit& fit) {
     return drop;
 }
 
+// Acceleration jumps when an article is let go or hit. A sample that still lies in the noise of the rest,
+// beside a next one that stands far out of it, is before the jump; the fast pole of a heavily damped decay
+// would take it up.
+std::size_t behind_jump(const Recording& recording, const Event& event) {
+    constexpr std::size_t rest = 40, fewest = 10, most = 2;
+    constexpr double in_noise = 4.0, out_of_noise = 12.0;
+    const std::vector<double>& x = recording.samples;
+    std::size_t begin = event.begin;
+    if (recording.quantity != MeasuredQuantity::acceleration || event.by_hand || begin < fewest) return begin;
+    const std::size_t first = begin > rest ? begin - rest : 0;
+    const Eigen::Map<const VectorXd> before(x.data() + first, static_cast<Index>(begin - first));
+    const double level = before.mean();
+    const double noise =
+        std::sqrt((before.array() - level).square().sum() / static_cast<double>(before.size() - 1));
+    while (begin < event.begin + most && begin + fewest_decay_samples < event.end &&
+           std::abs(x[begin] - level) < in_noise * noise &&
+           std::abs(x[begin + 1] - level) > out_of_noise * noise)
+        ++begin;
+    return begin;
+}
+
 // A plucked displacement leaves its plateau as x₀ω²t²/2, so the noise hides the release for a while of about
 // √(2σ/x₀)/ω. Samples of the plateau would pull the fit; that stretch, at most 3 % of a period, is left out
 // where the recording goes back before the release.
@@ -365,7 +386,8 @@ CurveFit fit_decay(const Recording& recording, const Event& event, const CurveFi
         return fit;
     }
     std::size_t end = end_of_fit(event);
-    fit.window = cut_window(recording, event.begin, end);
+    const std::size_t begin = behind_jump(recording, event);
+    fit.window = cut_window(recording, begin, end);
     if (!start_fit(fit, event, options)) return fit;
     const std::size_t hidden = hidden_release(fit, recording, event);
     if (hidden > 0 && event.begin + hidden + fewest_decay_samples < event.end)
