@@ -18,7 +18,7 @@ constexpr double largest_damping_ratio = 100.0;
 [[nodiscard]] Quantities decay_quantities(const CurveFit& fit, std::size_t index, double confidence_level);
 
 /// Standard uncertainty of the size of the decay of oscillator `index` over that size, from its energy beside
-/// the noise at the same frequencies: all amplitudes and nothing else unknown.
+/// the noise at the same frequencies, of the plateau before a release too: its size and nothing else unknown.
 [[nodiscard]] double relative_uncertainty_of_size(const CurveFit& fit, std::size_t index);
 
 /// Quantities that follow from one damping ratio and one undamped frequency (both with intervals) and their

@@ -115,13 +115,18 @@ bool rests_before_release(const CurveFit& held) {
            chi_squared_quantile(1.0 - plateau_false_alarm, static_cast<double>(rows));
 }
 
+// Of the residuals, whitened by the noise model as it stands.
+double whitened_sum(const CurveFit& held) {
+    return held.innovations.squaredNorm() * held.noise.noise.innovation_variance;
+}
+
 // Whether the search for the best fit is over. One in which noise hides the fast pole runs along a valley
 // towards ever more damping, until a further search gains nothing that counts beside the noise.
 bool is_best(const CurveFit& held) {
     constexpr double nothing = 0.05;  // of the rise by which an interval's end is told, 4 and less
     if (held.fit.converged) return true;
     const ProjectedFit again = fit_projected(held.fit.model, held.samples, held.noise.noise);
-    return held.fit.residual_sum - again.residual_sum < nothing * held.noise.noise.innovation_variance;
+    return whitened_sum(held) - again.residual_sum < nothing * held.noise.noise.innovation_variance;
 }
 
 bool settle_for_good(CurveFit& held) {
@@ -217,7 +222,7 @@ bool may_have_been_running(const CurveFit& held) {
     running.release.reset();
     running.let_go_slowly = false;
     const ProjectedFit fit = fit_projected(running, held.samples, held.noise.noise);
-    return fit.residual_sum - held.fit.residual_sum < clearly * held.noise.noise.innovation_variance;
+    return fit.residual_sum - whitened_sum(held) < clearly * held.noise.noise.innovation_variance;
 }
 
 double release_uncertainty(const CurveFit& held) {

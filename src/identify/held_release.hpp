@@ -34,7 +34,9 @@ struct HeldRelease {
 /// The decay that `fit` found, with what was held before it. Nothing where the damping ratio is too small for
 /// the start to matter (0.15), the recording shows no displacement, other components were fitted, it was hit
 /// or dropped, or no plateau of the same noise is recorded before the decay (chi-squared, one false alarm in
-/// a thousand). Of a recording that begins shortly before the decay a single row of plateau will do.
+/// a thousand), or where a decay that was running at the first sample looked at explains a hold in the midst
+/// of the recording as well. Of a recording that begins shortly before the decay a single row of plateau will
+/// do.
 [[nodiscard]] std::optional<HeldRelease> fit_held_release(const CurveFit& fit, const Recording& recording,
                                                           const Event& event, const CurveFitOptions& options);
 

@@ -693,7 +693,9 @@ bool stands_out_of_noise(const LawFit& fit) {
 bool may_be_rounding(const LawFit& law, const CurveFit& plain, double resolution) {
     constexpr double least_noise = 0.5, apart = 1.0;  // steps
     const double step = resolution / plain.samples.scale;
-    if (residual_level(plain) > least_noise * resolution) return false;
+    const double noise =
+        residual_level(plain) * std::sqrt(static_cast<double>(plain.samples.block));  // of a sample
+    if (noise > least_noise * resolution) return false;
     const VectorXd curve = plain.samples.value - plain.residual;
     const VectorXd other = law.curve.samples.value - law.curve.residual;
     return curve.size() == other.size() && (curve - other).cwiseAbs().maxCoeff() < apart * step;
