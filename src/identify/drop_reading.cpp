@@ -199,67 +199,94 @@ double uncertainty_of(const FallFit& fit, const std::vector<std::pair<FallFit, S
     return std::sqrt(std::max(variance, 0.0));
 }
 
-DropReading read_displacement(const Recording& recording, const Event& event, const RestingDecay& decay,
-                              const Gravity& gravity, double confidence) {
-    const SampleRange& fall = event.flights.front();
+/// The fall of a displacement: fitted with the decay as it was identified, and again with each of what the
+/// decay tells moved by its standard uncertainty.
+struct FallSeen {
+    FallFit fit;
+    Support support;
+    std::vector<std::pair<FallFit, Support>> moved;
+
+    using Value = std::function<double(const FallShape&, const Support&)>;
+    [[nodiscard]] double value(const Value& of) const { return of(fit.shape, support); }
+    [[nodiscard]] double uncertainty(const Value& of) const {
+        return uncertainty_of(fit, moved, support, of);
+    }
+};
+
+std::optional<FallSeen> fall_seen(const Recording& recording, const Event& event, const RestingDecay& decay,
+                                  double gravity) {
     const double omega = 2.0 * std::numbers::pi * decay.natural_frequency.value;
-    const double down = decay.level > recording.samples[fall.begin] ? 1.0 : -1.0;
+    const double down = decay.level > recording.samples[event.flights.front().begin] ? 1.0 : -1.0;
     const FallWindow window = window_of(recording, event, omega);
     const FallSamples samples = samples_of(recording, window.begin, window.end, down);
     const Support support{omega, decay.damping_ratio.value, down * decay.level};
-    const auto first = first_shape(samples, window.fall_begin_s, window.fall_end_s, support, gravity.value);
-    const std::optional<FallFit> fit =
-        first ? fit_fall(samples, *first, support, decay.noise_density) : std::nullopt;
+    const auto first = first_shape(samples, window.fall_begin_s, window.fall_end_s, support, gravity);
+    const auto fit = first ? fit_fall(samples, *first, support, decay.noise_density) : std::nullopt;
     if (!fit) return {};
-    std::vector<std::pair<FallFit, Support>> moved;
+    FallSeen seen{*fit, support, {}};
     const auto move = [&](const Support& to) {
         if (const auto other = fit_fall(samples, fit->shape, to, decay.noise_density))
-            moved.emplace_back(*other, to);
+            seen.moved.emplace_back(*other, to);
     };
     const double frequency_off = decay.natural_frequency.standard_uncertainty / decay.natural_frequency.value;
     move({omega * (1.0 + frequency_off), support.damping_ratio, support.level});
     move({omega, support.damping_ratio + decay.damping_ratio.standard_uncertainty, support.level});
     move({omega, support.damping_ratio, support.level + decay.level_standard_uncertainty});
-    const auto deviation = [&](const std::function<double(const FallShape&, const Support&)>& value) {
-        return uncertainty_of(*fit, moved, support, value);
-    };
-    const auto height = [](const FallShape& s, const Support&) { return s.height(); };
-    const auto speed = [](const FallShape& s, const Support&) { return s.speed(); };
-    const auto deflection = [](const FallShape& s, const Support& on) {
-        return on.level - s.hold - s.height();
-    };
-    const auto gravity_seen = [](const FallShape& s, const Support&) { return s.acceleration; };
-    DropReading reading;
-    const auto put = [&](Quantity quantity, const auto& value) {
-        const double at = value(fit->shape, support);
+    return seen;
+}
+
+double deflection_of(const FallShape& shape, const Support& on) {
+    return on.level - shape.hold - shape.height();
+}
+
+Quantities fall_quantities(const FallSeen& seen, double confidence) {
+    Quantities quantities;
+    const auto put = [&](Quantity quantity, const FallSeen::Value& value) {
+        const double at = seen.value(value);
         if (at > 0.0)
-            reading.quantities[quantity] =
-                estimate_of_reading(at, deviation(value), fit->degrees_of_freedom, confidence);
+            quantities[quantity] =
+                estimate_of_reading(at, seen.uncertainty(value), seen.fit.degrees_of_freedom, confidence);
     };
-    put(Quantity::drop_height, height);
-    put(Quantity::contact_velocity, speed);
-    put(Quantity::static_deflection, deflection);
-    const double seen = fit->shape.acceleration / gravity.value;
-    const double seen_off = std::hypot(deviation(gravity_seen), gravity.standard_uncertainty) / gravity.value;
-    if (disagrees(seen, seen_off, fit->degrees_of_freedom)) {
-        reading.findings.push_back(
-            fall_finding(fit->shape.acceleration, gravity.value, "The mass falls with"));
-        return reading;
-    }
+    put(Quantity::drop_height, [](const FallShape& s, const Support&) { return s.height(); });
+    put(Quantity::contact_velocity, [](const FallShape& s, const Support&) { return s.speed(); });
+    put(Quantity::static_deflection, deflection_of);
+    return quantities;
+}
+
+std::optional<Finding> fall_against_gravity(const FallSeen& seen, const Gravity& gravity) {
+    const auto acceleration = [](const FallShape& s, const Support&) { return s.acceleration; };
+    const double off =
+        std::hypot(seen.uncertainty(acceleration), gravity.standard_uncertainty) / gravity.value;
+    if (!disagrees(seen.value(acceleration) / gravity.value, off, seen.fit.degrees_of_freedom)) return {};
+    return fall_finding(seen.value(acceleration), gravity.value, "The mass falls with");
+}
+
+std::optional<Finding> deflection_against_frequency(const FallSeen& seen, const Gravity& gravity) {
     // Deflection over that of the frequency, not the other way round: its error is that of a difference of
     // places, as likely up as down however large.
     const auto softer = [&](const FallShape& shape, const Support& on) {
-        return (on.level - shape.hold - shape.height()) * square(on.angular_frequency) / gravity.value;
+        return deflection_of(shape, on) * square(on.angular_frequency) / gravity.value;
     };
-    const double ratio = softer(fit->shape, support);
-    const double off = std::hypot(deviation(softer), gravity.standard_uncertainty / gravity.value);
-    if (ratio > 0.0 && disagrees(ratio, off, fit->degrees_of_freedom))
-        reading.findings.push_back(
-            {"static_deflection_disagrees", Severity::caution,
-             fmt::format("Gravity over the static deflection gives a stiffness per mass {} than the ringing "
-                         "does. A spring that is not straight, a preload, friction that holds the mass off "
-                         "its rest position, or a sensor that does not see the foot of the spring does that.",
-                         percent(1.0 / ratio - 1.0))});
+    const double ratio = seen.value(softer);
+    const double off = std::hypot(seen.uncertainty(softer), gravity.standard_uncertainty / gravity.value);
+    if (!(ratio > 0.0) || !disagrees(ratio, off, seen.fit.degrees_of_freedom)) return {};
+    return Finding{
+        "static_deflection_disagrees", Severity::caution,
+        fmt::format("Gravity over the static deflection gives a stiffness per mass {} than the ringing "
+                    "does. A spring that is not straight, a preload, friction that holds the mass off "
+                    "its rest position, or a sensor that does not see the foot of the spring does that.",
+                    percent(1.0 / ratio - 1.0))};
+}
+
+DropReading read_displacement(const Recording& recording, const Event& event, const RestingDecay& decay,
+                              const Gravity& gravity, double confidence) {
+    const auto seen = fall_seen(recording, event, decay, gravity.value);
+    if (!seen) return {};
+    DropReading reading{fall_quantities(*seen, confidence), {}};
+    // With a wrong scale the deflection is wrong as well, and says nothing more.
+    auto finding = fall_against_gravity(*seen, gravity);
+    if (!finding) finding = deflection_against_frequency(*seen, gravity);
+    if (finding) reading.findings.push_back(std::move(*finding));
     return reading;
 }
 

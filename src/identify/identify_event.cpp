@@ -158,16 +158,17 @@ void warn_of_slow_noise(const CurveFit& fit, Findings& findings) {
     if (partial.size() == 0 || partial(0) < slow || fit.oscillator().damping_ratio() < soon_over ||
         !(of_size > badly_told))
         return;
-    findings.push_back({"slow_noise", Severity::caution,
-                        fmt::format("The noise is as slow as the decay and tells its size to {:.2g} % only. "
-                                    "Of such recordings the intervals "
-                                    "given for 95 % were found to hold the truth in 90 to 95 %. Reduce the "
-                                    "noise (drift, a draught, a bench that sways), "
-                                    "use a larger displacement, or take the result of several releases.",
-                                    100.0 * of_size)});
+    findings.push_back(
+        {"slow_noise", Severity::caution,
+         fmt::format(
+             "The noise is as slow as the decay and tells its size to {:.2g} % only. Of such recordings "
+             "the intervals given for 95 % were found to hold the truth in 90 to 95 %. Reduce the noise "
+             "(drift, a draught, a bench that sways), use a larger displacement, or take the result of "
+             "several releases.",
+             100.0 * of_size)});
 }
 
-void explain_missing(const CurveFit& fit, const MethodResult& result, Findings& findings) {
+void describe_limits(const CurveFit& fit, const MethodResult& result, Findings& findings) {
     if (result.status != MethodStatus::ok) return;
     warn_of_slow_noise(fit, findings);
     const auto ratio = result.quantities.find(Quantity::damping_ratio);
@@ -345,7 +346,7 @@ EventIdentification identify_event(const Recording& recording, const Event& even
     result.findings = explanation.answer().findings;
     if (result.curve_fit.status != MethodStatus::ok) return unanswered(std::move(result));
     if (!fit.valid) {  // behind a release that noise hides is too little left for the simple methods
-        explain_missing(explanation.answer(), result.curve_fit, result.findings);
+        describe_limits(explanation.answer(), result.curve_fit, result.findings);
         result.logarithmic_decrement.reason = result.half_power_bandwidth.reason = fit.reason;
         if (options.pictures) result.picture = draw_decay(recording, explanation.answer(), {});
         return result;
@@ -359,7 +360,7 @@ EventIdentification identify_event(const Recording& recording, const Event& even
     if (law)
         append(result.findings, describe_law(*law, recording, *result.curve_fit.at_amplitude));
     else
-        explain_missing(explanation.answer(), result.curve_fit, result.findings);
+        describe_limits(explanation.answer(), result.curve_fit, result.findings);
     result.course = law ? course_beside(*law, recording, options.confidence_level)
                         : amplitude_course(fit, fit.noise, options.confidence_level);
     if (!law) append(result.findings, describe_course(result.course));

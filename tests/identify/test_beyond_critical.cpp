@@ -69,8 +69,8 @@ TEST_CASE("an interval is never infinite, and an open end is said to be one") {
 TEST_CASE("an acceleration that begins with a sample before its jump") {
     // Let go from rest at critical damping: the second derivative of (1 + ωt) e^(−ωt) is −ω² (1 − ωt)
     // e^(−ωt). 500 samples a second, 5.9 Hz, noise of 2 % of the jump. The event given begins one sample too
-    // early. Twenty: 95 % is 19, fewer than 16 once in 400. With the sample before the jump all were answered
-    // by a decay that is over within it.
+    // early. Twenty: 95 % is 19, fewer than 16 once in 400. With the sample before the jump all gave more
+    // than twice the frequency, and none held it.
     constexpr double rate_hz = 500.0, natural_hz = 5.9, noise = 0.02;
     constexpr std::size_t jump = 150;
     const double omega = 2.0 * std::numbers::pi * natural_hz;
