@@ -3,8 +3,8 @@
 
 #include <catch2/catch.hpp>
 
-#include "event/simulator.hpp"
 #include "ringwright/event.hpp"
+#include "support/simulator.hpp"
 
 using namespace ringwright;
 using simulator::Generator;

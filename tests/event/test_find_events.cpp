@@ -3,9 +3,9 @@
 
 #include <catch2/catch.hpp>
 
-#include "event/simulator.hpp"
 #include "ringwright/error.hpp"
 #include "ringwright/event.hpp"
+#include "support/simulator.hpp"
 
 using namespace ringwright;
 using simulator::Generator;

@@ -1,4 +1,4 @@
-// What a drop says beside its decay. Truth from the simulator of tests/event (height, frequency, damping put
+// What a drop says beside its decay. Truth from the simulator of tests/support (height, frequency, damping put
 // in; v = √(2gh) and δ = g/ω² follow); seeds are written at each case. The simulator's own steps, first order
 // at 2,000 a cycle, are off by less than a thousandth of each quantity.
 
@@ -6,7 +6,7 @@
 #include <cmath>
 #include <numbers>
 
-#include "event/simulator.hpp"
+#include "support/simulator.hpp"
 #include "identify/drop_reading.hpp"
 #include "ringwright/identify.hpp"
 

@@ -1,10 +1,10 @@
-// What the search saw beside the decay is in the fit from the first. Truth from the simulator of tests/event;
+// What the search saw beside the decay is in the fit from the first. Truth from the simulator of tests/support;
 // seeds are written at each case.
 
 #include <catch2/catch.hpp>
 #include <cmath>
 
-#include "event/simulator.hpp"
+#include "support/simulator.hpp"
 #include "ringwright/identify.hpp"
 
 using namespace ringwright;
