@@ -155,6 +155,28 @@ bool is_lost_in(double range, const Fall& fall, std::span<const double> values) 
     return std::abs(values[first.end - 1] - values[first.begin]) < least_share * range;
 }
 
+/// The decay after a fall, and why it is none; empty where it is one.
+struct Attempt {
+    std::optional<Found> drop;
+    std::string reason = "but nothing rings after the impact";
+};
+
+/// Takes from `fall` the flights that are none.
+Attempt try_decay(const Pyramid& pyramid, Fall& fall, MeasuredQuantity quantity, double rate_hz,
+                  const StartLimits& limits) {
+    Attempt attempt;
+    const std::optional<Start> start = locate_drop_start(pyramid, fall, quantity, rate_hz, limits);
+    if (!start) return attempt;
+    Found drop;
+    drop.start = *start;
+    drop.course = follow_decay(pyramid, drop.start, limits.latest);
+    drop.flights = fall.flights;
+    drop.hold_seen = fall.hold_seen;
+    attempt.reason = refusal_of(drop, fall, quantity, pyramid.level(0), rate_hz);
+    attempt.drop = std::move(drop);
+    return attempt;
+}
+
 /// The time after an impact in which another decay would be part of the same fall.
 std::size_t aftermath(const Fall& fall) {
     constexpr std::size_t falls = 10;
@@ -180,18 +202,20 @@ Drops find_drops(const Pyramid& pyramid, double rate_hz, MeasuredQuantity quanti
         limits.drop = true;
         limits.latest = i + 1 < falls.size() ? falls[i + 1].flights.front().begin : size;
         const Fall seen = fall;
-        const std::optional<Start> start = locate_drop_start(pyramid, fall, quantity, rate_hz, limits);
-        if (fall.flights.empty()) continue;
-        Found drop;
-        std::string reason = "but nothing rings after the impact";
-        if (start) {
-            drop.start = *start;
-            drop.course = follow_decay(pyramid, drop.start, limits.latest);
-            drop.flights = fall.flights;
-            drop.hold_seen = fall.hold_seen;
-            if (displaced && swings_too_far(drop, seen, values, rate_hz)) continue;
-            reason = refusal_of(drop, fall, quantity, values, rate_hz);
+        Attempt attempt = try_decay(pyramid, fall, quantity, rate_hz, limits);
+        // What passed for the last bounce may have been noise.
+        while (!attempt.reason.empty() && fall.flights.size() > 1) {
+            fall.flights.pop_back();
+            Fall fewer = fall;
+            Attempt other = try_decay(pyramid, fewer, quantity, rate_hz, limits);
+            if (other.reason.empty() && !fewer.flights.empty()) {
+                attempt = std::move(other);
+                fall = std::move(fewer);
+            }
         }
+        if (fall.flights.empty()) continue;
+        if (displaced && attempt.drop && swings_too_far(*attempt.drop, seen, values, rate_hz)) continue;
+        std::string reason = std::move(attempt.reason);
         if (!reason.empty() && quantity == MeasuredQuantity::acceleration) {
             const double rest =
                 rest_after(values, seen.flights.front(), fall.flights.back().end, limits.latest);
@@ -199,7 +223,7 @@ Drops find_drops(const Pyramid& pyramid, double rate_hz, MeasuredQuantity quanti
                 reason = std::move(at_rest);
         }
         if (reason.empty())
-            drops.found.push_back(std::move(drop));
+            drops.found.push_back(std::move(*attempt.drop));
         else
             drops.refused.push_back(
                 {begin, std::min(limits.latest, seen.flights.back().end + aftermath(seen)),

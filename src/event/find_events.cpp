@@ -62,6 +62,7 @@ struct Search {
     std::vector<RefusedFall> refused;
     std::vector<SampleRange> paths = {};  ///< of a hand, or pulses
     bool steady = false;                  ///< something rang and did not fall
+    double mains_hz = 0.0;                ///< hum that was taken for a decay
 };
 
 /// The end of a clipped stretch that holds the position, or that lies within a cycle after it.
@@ -77,11 +78,14 @@ std::size_t after_clipping(const Search& search, std::size_t position, double cy
     return earliest;
 }
 
+bool in_refused_fall(const Search& search, std::size_t position) {
+    return std::any_of(search.refused.begin(), search.refused.end(), [&](const RefusedFall& fall) {
+        return position >= fall.begin && position < fall.end;
+    });
+}
+
 bool taken(const Search& search, const Onset& onset) {
-    const auto holds = [&](const RefusedFall& fall) {
-        return onset.position >= fall.begin && onset.position < fall.end;
-    };
-    if (std::any_of(search.refused.begin(), search.refused.end(), holds)) return true;
+    if (in_refused_fall(search, onset.position)) return true;
     const std::size_t reach = std::size_t{4} << onset.level;
     return std::any_of(search.found.begin(), search.found.end(), [&](const Found& f) {
         const std::size_t margin = std::max(reach, static_cast<std::size_t>(f.cycle()));
@@ -211,16 +215,30 @@ bool is_held(std::span<const double> way, double rest, double top, double sign) 
     return held > longer * (falls - leaves);
 }
 
+/// What stands above a share of the height about a place, and its top.
+struct Bump {
+    std::size_t first = 0, peak = 0, last = 0;
+};
+
+Bump bump_at(std::span<const double> values, std::size_t place, double rest, double sign, double least) {
+    Bump bump{place, place, place};
+    const auto above = [&](std::size_t k) { return sign * (values[k] - rest) > least; };
+    while (bump.first > 0 && above(bump.first)) --bump.first;
+    while (bump.last + 1 < values.size() && above(bump.last)) ++bump.last;
+    for (std::size_t k = bump.first; k < bump.last; ++k)
+        if (sign * values[k] > sign * values[bump.peak]) bump.peak = k;
+    return bump;
+}
+
 /// Whether the start belongs to a pulse that fell in less than `ratio` times the time in which it rose.
 bool on_a_pulse(std::span<const double> values, const Found& found, double height, double ratio) {
+    // Where a blow falls into another motion than it left, its upper half shows its shape.
+    constexpr double foot = 0.1, upper_half = 0.5;
     const double rest = found.start.fit.offset;
     const double sign = values[found.begin()] > rest ? 1.0 : -1.0;
-    const auto above = [&](std::size_t k) { return sign * (values[k] - rest) > 0.1 * height; };
-    std::size_t first = found.begin(), last = found.begin(), peak = found.begin();
-    while (first > 0 && above(first)) --first;
-    while (last + 1 < values.size() && above(last)) ++last;
-    for (std::size_t k = first; k < last; ++k)
-        if (sign * values[k] > sign * values[peak]) peak = k;
+    Bump bump = bump_at(values, found.begin(), rest, sign, foot * height);
+    if (bump.first == 0) bump = bump_at(values, found.begin(), rest, sign, upper_half * height);
+    const auto [first, peak, last] = bump;
     if (is_held(values.subspan(first, last - first), rest, sign * (values[peak] - rest), sign)) return false;
     if (first == 0 || found.begin() <= first + 1) return false;
     // A swing the other way just before makes it the answer to a blow, not the blow.
@@ -247,6 +265,17 @@ bool abrupt(const Pyramid& pyramid, const Found& found) {
             std::abs(pyramid.level(start.level)[k] - start.fit.value_at(t)) / static_cast<double>(far - near);
     }
     return left > std::max(0.3 * start.amplitude, 2.0 * start.fit.residual_rms());
+}
+
+/// Whether an acceleration jumps within a cycle before the start by the height of what follows, as a release
+/// makes it do. A damper that is softer one way leads into the start as smoothly as the path of a hand.
+bool jumps_before(std::span<const double> values, const Found& found, double height) {
+    constexpr double finely_sampled = 24.0;  // samples a cycle: a swing moves by less in two of them
+    if (found.cycle() < finely_sampled) return false;
+    const auto cycle = static_cast<std::size_t>(std::min(found.cycle(), 1e15));
+    for (std::size_t k = found.begin() > cycle ? found.begin() - cycle : 0; k + 2 <= found.begin(); ++k)
+        if (std::abs(values[k + 2] - values[k]) > height) return true;
+    return false;
 }
 
 /// Standard deviation about a straight line of all of the rest.
@@ -291,7 +320,8 @@ bool believable(const Search& search, const Found& found) {
     // After a blow the acceleration has the other sign: what falls with the sign of the blow is the blow.
     const bool blow = shows_acceleration(search.recording.quantity) && cycles < 2.0;
     if (blow && found.course.end < found.begin() + shortest_blow) return false;
-    if (cycles < 2.0 && !abrupt(search.pyramid, found)) return false;
+    const bool jumped = shows_acceleration(search.recording.quantity) && jumps_before(values, found, height);
+    if (cycles < 2.0 && !jumped && !abrupt(search.pyramid, found)) return false;
     if (amplitude < least_amplitude_in_rest * spread_of_rest(values, found.course)) return false;
     if (blow && on_a_pulse(values, found, height, 3.0)) return false;
     return start.noise_rms < std::max(misfit * amplitude, 2.5 * noise);
@@ -333,6 +363,7 @@ bool follows_a_path(Search& search, const Found& found) {
 
 /// Whether a decay follows that nothing else explains better.
 bool convincing(Search& search, const Found& found, const std::vector<Onset>& all) {
+    if (in_refused_fall(search, found.begin())) return false;
     if (on_known_path(search, found) || !believable(search, found)) return false;
     if (is_plateau_and_decay(search.pyramid, found, all) || is_outlived(search.pyramid, found, all))
         return false;
@@ -380,6 +411,28 @@ void try_onset(Search& search, const Onset& onset, const std::vector<Onset>& all
         return;
     }
     search.found.push_back(std::move(*found));
+}
+
+/// What rings plainly from shortly after a blow on, on the scale that shows it best.
+std::optional<Onset> answer_to(const Pyramid& pyramid, const Onset& blow) {
+    constexpr double rings = 0.3, plain = 10.0;
+    std::optional<Onset> best;
+    for (std::size_t level = blow.level + 1; level < pyramid.levels(); ++level) {
+        const std::optional<Onset> onset = onset_at(pyramid, level, (blow.position >> level) + 1);
+        if (!onset || onset->fit.shape.damping_ratio > rings || onset->fit.explained_ratio() < plain)
+            continue;
+        if (!best || onset->score > best->score) best = onset;
+    }
+    return best;
+}
+
+/// A blow far higher than what answers it is all that shows where a second one follows soon.
+void try_answers(Search& search, const std::vector<Onset>& onsets) {
+    constexpr double blow = 0.5;  // damping ratio that a pulse seems to have, at least
+    for (const Onset& onset : onsets) {
+        if (onset.fit.shape.damping_ratio < blow || taken(search, onset)) continue;
+        if (const auto answer = answer_to(search.pyramid, onset)) try_onset(search, *answer, onsets);
+    }
 }
 
 /// A decay of two close modes is followed through its beats; what was found on their rises belongs to it.
@@ -472,6 +525,29 @@ void drop_wanderings(Search& search) {
         if (f.is_drop() || (!is_brief(f) && search.mode_meant)) return false;
         const std::vector<SampleRange> clipped = clipped_stretches(search, f.cycle());
         return swing_against_elsewhere(search.pyramid, f, all, clipped) < stands_out;
+    });
+}
+
+/// Whether it is hum of the mains, whose size seldom holds, rather than a decay: a tone at a line of 50 or 60
+/// Hz or at a harmonic that was there before the recording began and loses less than half in it.
+bool is_hum(const Search& search, const Found& found) {
+    constexpr double off_line = 0.2, half = 0.7;  // Hz for each order; of ln amplitude
+    constexpr int highest_order = 9;
+    const double hz = search.series.rate_hz() / found.cycle();
+    const auto on_line = [&](double line) {
+        const double order = std::round(hz / line);
+        return order >= 1.0 && order <= highest_order && std::abs(hz - order * line) < order * off_line;
+    };
+    return (on_line(50.0) || on_line(60.0)) && found.course.fall < half && !found.is_drop() &&
+           !starts_from_quiet(search.pyramid, found);
+}
+
+void drop_hum(Search& search) {
+    if (search.mode_meant) return;
+    std::erase_if(search.found, [&](const Found& found) {
+        if (!is_hum(search, found)) return false;
+        search.mains_hz = search.series.rate_hz() / found.cycle();
+        return true;
     });
 }
 
@@ -571,6 +647,18 @@ bool is_first_hit(const Found& first, const Found& second) {
     return follows && brief && std::abs(tune) > 0.7;
 }
 
+/// A blow may be far higher than what answers it, so this goes before anything is judged by its height.
+void drop_first_hits(std::vector<Found>& found, double rate_hz) {
+    std::vector<Found> kept;
+    for (std::size_t i = 0; i < found.size(); ++i) {
+        if (i + 1 < found.size() && is_first_hit(found[i], found[i + 1]))
+            found[i + 1].findings.push_back(double_hit(static_cast<double>(found[i + 1].begin()) / rate_hz));
+        else
+            kept.push_back(std::move(found[i]));
+    }
+    found = std::move(kept);
+}
+
 /// Whether the second begins within two cycles of the first one's end, missing samples not counted, before
 /// the first has reached the noise. What was put in the place of missing samples passes for noise.
 bool is_cut_short(const Search& search, const Found& first, const Found& second) {
@@ -587,17 +675,11 @@ void judge_interruptions(const Search& search, std::vector<Found>& found) {
     const Series& series = search.series;
     std::vector<Found> kept;
     for (std::size_t i = 0; i < found.size(); ++i) {
-        const bool cut = i + 1 < found.size() && is_cut_short(search, found[i], found[i + 1]);
-        const bool first_hit = i + 1 < found.size() && is_first_hit(found[i], found[i + 1]);
-        if (!cut && !first_hit) {
+        if (i + 1 == found.size() || !is_cut_short(search, found[i], found[i + 1])) {
             kept.push_back(std::move(found[i]));
             continue;
         }
         Found& next = found[i + 1];
-        if (is_first_hit(found[i], next)) {
-            next.findings.push_back(double_hit(static_cast<double>(next.begin()) / series.rate_hz()));
-            continue;
-        }
         const double cycles =
             static_cast<double>(found[i].course.rest_end - found[i].begin()) / found[i].cycle();
         if (goes_on(search, found[i], next)) {
@@ -723,6 +805,14 @@ void look_for_drops(Search& search) {
 
 std::string reason_for_none(const SearchedStretch& searched) {
     if (!searched.refused.empty()) return searched.refused;
+    if (searched.mains_hz > 0.0)
+        return fmt::format(
+            "A tone of {:.4g} Hz was there before the recording began and loses less than half of its size "
+            "in it: "
+            "mains hum, which swells and fades, and no decay. Mend the cable or its ground; if the article "
+            "itself rings "
+            "at that frequency, name it with --near.",
+            searched.mains_hz);
     if (searched.steady)
         return "The recording oscillates, but its amplitude does not fall: a steady or forced motion is no "
                "free "
@@ -773,13 +863,16 @@ void find_all(Search& search) {
     look_for_drops(search);
     const std::vector<Onset> onsets = find_onsets(search.pyramid);
     for (const Onset& onset : onsets) try_onset(search, onset, onsets);
+    if (shows_acceleration(search.recording.quantity)) try_answers(search, onsets);
     std::sort(search.found.begin(), search.found.end(),
               [](const Found& a, const Found& b) { return a.begin() < b.begin(); });
     const std::span<const double> values = search.series.values();
     follow_beats(search);
+    drop_first_hits(search.found, search.series.rate_hz());
     drop_unlike(search.found);
     drop_weak(search.found, [&](const Found& found) { return rest_rms(values, found.course); });
     drop_wanderings(search);
+    drop_hum(search);
     drop_pulls(search.found);
     judge_interruptions(search, search.found);
     note_double_hits(search.found, search);
@@ -809,6 +902,7 @@ SearchedStretch search_stretch(const Recording& recording, const EventOptions& o
     }
     result.hum = hum_after_first(search, recorded);
     result.steady = search.steady;
+    result.mains_hz = search.mains_hz;
     result.settles =
         search.found.empty() && shows_position(recording.quantity) && settles_elsewhere(series.values());
     if (!search.refused.empty()) result.refused = search.refused.front().reason;

@@ -52,6 +52,7 @@ class LongSearch {
     void search_from(std::size_t begin) {
         SearchedStretch searched = search_stretch(recording_.stretch({begin, end_}), options_);
         seen_.steady = seen_.steady || searched.steady;
+        seen_.mains_hz = std::max(seen_.mains_hz, searched.mains_hz);
         seen_.settles = seen_.settles || searched.settles;
         if (seen_.refused.empty()) seen_.refused = searched.refused;
         std::size_t hand_over = last() ? end_ : end_ - share_;

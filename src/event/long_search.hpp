@@ -23,6 +23,7 @@ struct SearchedStretch {
     std::vector<Candidate> candidates;  ///< in order
     std::optional<Finding> hum;         ///< in the rest after the first of them
     bool steady = false;                ///< something rang and did not fall
+    double mains_hz = 0.0;              ///< hum that passed for a decay; 0: none
     bool settles = false;               ///< a displacement goes to another level, and nothing was let go
     std::string refused;                ///< why the first fall that was seen is no drop; empty without one
 };

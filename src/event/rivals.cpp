@@ -32,46 +32,84 @@ double creep(double u) {
     return std::log1p(10.0 * std::max(u, 0.0));
 }
 
-/// Residual sum of squares of a + b·path((k − begin)/duration).
-double sum_about(std::span<const double> points, Path path, double begin, double duration) {
-    double g1 = 0.0, gg = 0.0, y1 = 0.0, gy = 0.0, yy = 0.0;
+/// A path of this begin and duration in points; where `creep_time` is not 0 the article creeps on from its
+/// end, logarithmically with that own time as a share of the duration.
+struct Way {
+    Path path = straight;
+    double begin = 0.0, duration = 1.0, creep_time = 0.0;
+
+    [[nodiscard]] double path_at(std::size_t point) const {
+        return path((static_cast<double>(point) - begin) / duration);
+    }
+    [[nodiscard]] double creep_at(std::size_t point) const {
+        if (creep_time == 0.0) return 0.0;
+        const double after = (static_cast<double>(point) - begin) / duration - 1.0;
+        return std::log1p(std::max(after, 0.0) / creep_time);
+    }
+};
+
+/// Least squares of a + b·path + c·creep, c only in the direction of b.
+struct Heights {
+    double path = 0.0, creep = 0.0, sum = 0.0;  ///< the sum: residual sum of squares
+};
+
+Heights heights_of(std::span<const double> points, const Way& way) {
+    double g1 = 0.0, gg = 0.0, y1 = 0.0, gy = 0.0, yy = 0.0, c1 = 0.0, cc = 0.0, cg = 0.0, cy = 0.0;
     for (std::size_t k = 0; k < points.size(); ++k) {
-        const double g = path((static_cast<double>(k) - begin) / duration), y = points[k] - points[0];
+        const double g = way.path_at(k), c = way.creep_at(k), y = points[k] - points[0];
         g1 += g, gg += g * g, y1 += y, gy += g * y, yy += y * y;
+        c1 += c, cc += c * c, cg += c * g, cy += c * y;
     }
     const auto n = static_cast<double>(points.size());
-    const double spread = gg - g1 * g1 / n, joint = gy - g1 * y1 / n;
-    return yy - y1 * y1 / n - (spread > 1e-9 * n ? joint * joint / spread : 0.0);
+    gg -= g1 * g1 / n, gy -= g1 * y1 / n, yy -= y1 * y1 / n;
+    cc -= c1 * c1 / n, cg -= c1 * g1 / n, cy -= c1 * y1 / n;
+    Heights heights;
+    heights.path = gg > 1e-9 * n ? gy / gg : 0.0;
+    const double determinant = gg * cc - cg * cg;
+    if (determinant > 1e-9 * n * n) {
+        const double creep = (gg * cy - cg * gy) / determinant, path = (cc * gy - cg * cy) / determinant;
+        if (creep * path > 0.0) heights.path = path, heights.creep = creep;
+    }
+    heights.sum = yy - heights.path * (2.0 * gy - heights.path * gg) -
+                  heights.creep * (2.0 * cy - heights.creep * cc) + 2.0 * heights.path * heights.creep * cg;
+    return heights;
 }
 
 struct PathFit {
-    Path path = straight;
-    double begin = 0.0, duration = 1.0, sum = -1.0;  ///< residual sum of squares
+    Way way;
+    double sum = -1.0;  ///< residual sum of squares
 };
 
 void improve(std::span<const double> points, PathFit& best, double begin, double duration) {
-    const double sum = sum_about(points, best.path, begin, duration);
-    if (best.sum < 0.0 || sum < best.sum) best = {best.path, begin, duration, sum};
+    const Way way{best.way.path, begin, duration, best.way.creep_time};
+    const double sum = heights_of(points, way).sum;
+    if (best.sum < 0.0 || sum < best.sum) best = {way, sum};
+}
+
+/// The least about where it is by a pattern search.
+void refine(std::span<const double> points, PathFit& best) {
+    constexpr int most_steps = 60;
+    int steps = 0;
+    for (double step = 0.05; step > 1e-3 && steps < most_steps; ++steps) {
+        const PathFit from = best;
+        for (const double share : {step, -step}) {
+            const double begin = from.way.begin, duration = from.way.duration, moved = share * duration;
+            improve(points, best, begin + moved, duration);
+            improve(points, best, begin, duration + moved);
+            improve(points, best, begin + moved, duration - moved);
+            improve(points, best, begin - 0.5 * moved, duration + moved);
+        }
+        if (!(best.sum < from.sum)) step *= 0.5;
+    }
 }
 
 /// The least over begin and duration: a grid, then a pattern search.
 PathFit fit_path(std::span<const double> points, Path path) {
     const auto n = static_cast<double>(points.size());
-    PathFit best{path};
+    PathFit best{{path}};
     for (double d = 0.15 * n; d < 2.0 * n; d *= 1.15)
         for (double b = -0.9 * d; b < 0.9 * n; b += 0.06 * d) improve(points, best, b, d);
-    constexpr int most_steps = 60;
-    int steps = 0;
-    for (double step = 0.05; step > 1e-3 && steps < most_steps; ++steps) {
-        const PathFit from = best;
-        for (const double way : {step, -step}) {
-            improve(points, best, from.begin + way * from.duration, from.duration);
-            improve(points, best, from.begin, from.duration * (1.0 + way));
-            improve(points, best, from.begin + way * from.duration, from.duration * (1.0 - way));
-            improve(points, best, from.begin - 0.5 * way * from.duration, from.duration * (1.0 + way));
-        }
-        if (!(best.sum < from.sum)) step *= 0.5;
-    }
+    refine(points, best);
     return best;
 }
 
@@ -84,20 +122,34 @@ PathFit fit_best_path(std::span<const double> points) {
     return best;
 }
 
+/// The best of the paths of a hand after each of which the article creeps on.
+PathFit fit_path_and_creep(std::span<const double> points) {
+    PathFit best;
+    for (const Path path : {straight, half_cosine, least_jerk})
+        for (const double time : {0.15, 0.5, 1.5}) {
+            const auto n = static_cast<double>(points.size());
+            PathFit fit{{path, 0.0, 1.0, time}};
+            for (double d = 0.1 * n; d < 0.9 * n; d *= 1.25)
+                for (double b = -0.3 * d; b + d < 0.9 * n; b += 0.12 * d) improve(points, fit, b, d);
+            refine(points, fit);
+            if (best.sum < 0.0 || fit.sum < best.sum) best = fit;
+        }
+    return best;
+}
+
 /// Number of points over the correlation length of what the path leaves unexplained.
 double independent_values(std::span<const double> points, const PathFit& fit) {
-    std::vector<double> heights(points.size());
-    double g1 = 0.0, gg = 0.0, y1 = 0.0, gy = 0.0;
-    for (std::size_t k = 0; k < points.size(); ++k) {
-        const double g = heights[k] = fit.path((static_cast<double>(k) - fit.begin) / fit.duration);
-        g1 += g, gg += g * g, y1 += points[k], gy += g * points[k];
-    }
+    const Heights heights = heights_of(points, fit.way);
+    std::vector<double> left(points.size());
+    double mean = 0.0;
     const auto n = static_cast<double>(points.size());
-    const double spread = gg - g1 * g1 / n;
-    const double height = spread > 0.0 ? (gy - g1 * y1 / n) / spread : 0.0;
-    double last = 0.0, products = 0.0, squares = 0.0;
     for (std::size_t k = 0; k < points.size(); ++k) {
-        const double r = points[k] - y1 / n - height * (heights[k] - g1 / n);
+        left[k] = points[k] - heights.path * fit.way.path_at(k) - heights.creep * fit.way.creep_at(k);
+        mean += left[k] / n;
+    }
+    double last = 0.0, products = 0.0, squares = 0.0;
+    for (const double value : left) {
+        const double r = value - mean;
         products += r * last, squares += r * r, last = r;
     }
     const double rho = squares > 0.0 ? std::clamp(products / squares, 0.0, 0.95) : 0.0;
@@ -139,43 +191,57 @@ SampleRange span_of(const Look& look, const PathFit& path) {
         const double at = std::clamp(first + block, 0.0, static_cast<double>(look.means.size()));
         return static_cast<std::size_t>(at) << look.level;
     };
-    return {position(path.begin), position(path.begin + path.duration)};
+    return {position(path.way.begin), position(path.way.begin + path.way.duration)};
+}
+
+/// What a rival of the decay costs and can show.
+struct Rivalry {
+    double fewer = 0.0;  ///< numbers that it has less to choose than the decay
+    double least_misfit =
+        0.0;  ///< what the likeliest rival leaves of a release, rms, as a share of the height
+};
+
+/// Whether the rival explains the look as well as the decay does, which leaves this sum of squares there
+/// (with a path before it).
+bool is_as_likely(const Look& look, const Found& found, const PathFit& rival, double decay,
+                  const Rivalry& rivalry) {
+    // A path that leaves a tenth less, by this much of twice the log likelihood, is one.
+    constexpr double plainly_better = 0.9, surprising = 12.0;
+    // Where the two can be told apart, the decay has to be likelier by as many halves of ln n as it has
+    // numbers more to choose (Schwarz 1978); by half of what a release would give where that is less. A decay
+    // that leaves no plateau may well begin on the path.
+    constexpr double tells_from_rest = 1.0, tells_from_motion = 0.7, tells_alone = 3.0;
+    const double values = independent_values(look.whole(), rival);
+    // Twice the gain in log likelihood of as many independent values as the residuals amount to.
+    const double gain = values * std::log(std::max(rival.sum, 1e-12 * decay) / decay);
+    if (rival.sum < plainly_better * decay && gain < -surprising) return true;
+    const double misfit = rivalry.least_misfit * found.start.amplitude;
+    const double hoped =
+        values * std::log1p(misfit * misfit * static_cast<double>(look.whole().size()) / decay);
+    const double unit = std::log(std::max(values, std::numbers::e));
+    const double tells = look.nothing_before()   ? tells_alone
+                         : found.start.from_rest ? tells_from_rest
+                                                 : tells_from_motion;
+    return hoped >= tells * unit && gain <= std::min(0.5 * rivalry.fewer * unit, 0.5 * hoped);
 }
 
 /// Where the path runs that explains the look as well as a path and a decay after it do; nothing when none
 /// does.
 std::optional<SampleRange> path_through(const Look& look, const Found& found) {
-    // A path that leaves a tenth less, by this much of twice the log likelihood, is one.
-    constexpr double plainly_better = 0.9, surprising = 12.0;
-    // Where the two can be told apart, the decay has to be likelier by as many halves of ln n as it has
-    // numbers more to choose than the path (Schwarz 1978): six, or one where nothing was seen before it; by
-    // half of what a release would give where that is less. A decay that leaves no plateau may well begin on
-    // the path.
-    constexpr double price_with_path = 3.0, price_alone = 0.5, tells_from_rest = 1.0, tells_from_motion = 0.7,
-                     tells_alone = 3.0;
-    // What the likeliest of the paths leaves of a release at a damping ratio of 0.7, rms over such a look, as
-    // a share of the height; 1.5 to 3 times as much at any other (least squares on the noise-free release).
-    constexpr double least_misfit = 0.015;
+    // Least squares on the noise-free release: of a damping ratio of 0.7 for a path, 1.5 to 3 times as much
+    // at any other.
+    constexpr Rivalry with_path{6.0, 0.015}, alone{1.0, 0.015}, with_creep{4.0, 0.007};
     if (look.begin + 6 > look.end) return {};
     double decay =
         fit_amplitudes(look.after(), at_level(found.start.shape, 0, look.level)).residual_sum + 1e-300;
     if (!look.nothing_before()) decay += fit_best_path(look.before()).sum;
-    const PathFit rival = fit_best_path(look.whole());
-    const double values = independent_values(look.whole(), rival);
-    // Twice the gain in log likelihood of as many independent values as the residuals amount to.
-    const double gain = values * std::log(std::max(rival.sum, 1e-12 * decay) / decay);
-    const SampleRange run = span_of(look, rival);
-    if (rival.sum < plainly_better * decay && gain < -surprising) return run;
-    const double misfit = least_misfit * found.start.amplitude;
-    const double hoped =
-        values * std::log1p(misfit * misfit * static_cast<double>(look.whole().size()) / decay);
-    const double unit = std::log(std::max(values, std::numbers::e));
-    const double price = look.nothing_before() ? price_alone : price_with_path;
-    const double tells = look.nothing_before()   ? tells_alone
-                         : found.start.from_rest ? tells_from_rest
-                                                 : tells_from_motion;
-    if (hoped < tells * unit || gain > std::min(price * unit, 0.5 * hoped)) return {};
-    return run;
+    const PathFit path = fit_best_path(look.whole());
+    if (is_as_likely(look, found, path, decay, look.nothing_before() ? alone : with_path))
+        return span_of(look, path);
+    if (look.nothing_before()) return {};
+    const PathFit creeping = fit_path_and_creep(look.whole());
+    if (is_as_likely(look, found, creeping, decay, with_creep)) return span_of(look, creeping);
+    return {};
 }
 
 }  // namespace
@@ -193,12 +259,15 @@ namespace {
 /// Whether the onset lies about the brief decay and rings on at a slower rate with a good part of its energy.
 bool outlives(const Onset& onset, const Found& brief) {
     constexpr double rings = 0.3, plain = 10.0, fewest_cycles = 1.5, share = 0.15, slower = 0.4;
+    constexpr double beyond_doubt = 100.0, fewest_then = 1.2;
     const DecayShape shape = at_level(onset.fit.shape, onset.level, 0);
     const double rate = brief.start.shape.slow_rate();
     if (shape.damping_ratio > rings || shape.decay_rate() > slower * rate) return false;
     const double cycle = 2.0 * std::numbers::pi / shape.undamped_angular_frequency;
     const double seen = std::ldexp(static_cast<double>(onset.fit.points), static_cast<int>(onset.level));
-    if (onset.fit.explained_ratio() < plain || seen < fewest_cycles * cycle) return false;
+    const double explained = onset.fit.explained_ratio();
+    if (explained < plain || seen < (explained < beyond_doubt ? fewest_cycles : fewest_then) * cycle)
+        return false;
     const auto begin = static_cast<double>(onset.fit_block << onset.level);
     if (begin + cycle < static_cast<double>(brief.begin()) ||
         begin > static_cast<double>(brief.course.rest_end) + cycle)
@@ -269,16 +338,56 @@ bool ends_beyond(const Distances& away, std::size_t rest_end) {
 
 }  // namespace
 
+namespace {
+
+/// Whether it moves, stays and moves on the same way as fast as before, as a hand or a jack lowers an
+/// article: a decay is slower each time it comes the same way.
+bool goes_in_steps(const Pyramid& pyramid, const Found& found) {
+    constexpr double blocks = 64.0, as_fast = 0.5, stays = 0.15, plainly = 8.0, good_part = 0.15;
+    constexpr std::size_t together = 3;  // blocks over which a speed is taken
+    const auto length = static_cast<double>(found.end() - found.begin());
+    std::size_t level = 0;
+    while (level + 1 < pyramid.levels() && length > 1.5 * blocks * std::exp2(static_cast<double>(level)))
+        ++level;
+    const std::span<const double> means = pyramid.level(level);
+    const std::size_t begin = found.begin() >> level, end = std::min(found.end() >> level, means.size());
+    if (begin + 6 * together > end) return false;
+    std::vector<double> moves;
+    for (std::size_t k = begin; k + together < end; ++k) moves.push_back(means[k + together] - means[k]);
+    const double sign = means[end - 1] > means[begin] ? 1.0 : -1.0;
+    for (double& move : moves) move *= sign;
+    std::vector<double> sizes;
+    for (const double move : moves) sizes.push_back(std::abs(move));
+    const auto quarter = sizes.begin() + static_cast<std::ptrdiff_t>(sizes.size() / 4);
+    std::nth_element(sizes.begin(), quarter, sizes.end());
+    const double fastest = *std::max_element(moves.begin(), moves.end());
+    if (fastest < plainly * *quarter) return false;  // it stays nowhere, or noise hides that
+    const double least_way = good_part * sign * (means[end - 1] - means[begin]);
+    bool moved = false;
+    std::size_t stayed = 0;
+    for (std::size_t k = 0; k < moves.size(); ++k) {
+        if (moves[k] < -stays * fastest) moved = false, stayed = 0;  // it swings back
+        const bool fast = moves[k] > as_fast * fastest;
+        const double gone = sign * (means[begin + k] - means[begin]),
+                     left = sign * (means[end - 1] - means[begin + k]);
+        if (fast && stayed >= together && std::min(gone, left) > least_way) return true;
+        stayed = moved && std::abs(moves[k]) < stays * fastest ? stayed + 1 : fast ? 0 : stayed;
+        moved = moved || fast;
+    }
+    return false;
+}
+
+}  // namespace
+
 bool comes_down(const Pyramid& pyramid, const Found& found) {
     if (!shows_one_swing(found)) return false;
     const Distances away = distances_of(pyramid, found);
-    return was_farther(away) || ends_beyond(away, found.course.rest_end >> found.start.level);
+    return was_farther(away) || ends_beyond(away, found.course.rest_end >> found.start.level) ||
+           goes_in_steps(pyramid, found);
 }
 
 bool is_outlived(const Pyramid& pyramid, const Found& found, const std::vector<Onset>& onsets) {
-    constexpr double brief = 2.0;  // cycles
-    if (found.start.from_rest || static_cast<double>(found.end() - found.begin()) > brief * found.cycle())
-        return false;
+    if (found.start.from_rest || !shows_one_swing(found)) return false;
     const auto outlives_it = [&](const Onset& onset) { return outlives(onset, found); };
     if (std::any_of(onsets.begin(), onsets.end(), outlives_it)) return true;
     // A blow much higher than the answer hides it on every scale that begins with the blow.

@@ -3,8 +3,8 @@
 
 #include <catch2/catch.hpp>
 
-#include "event/simulator.hpp"
 #include "ringwright/event.hpp"
+#include "support/simulator.hpp"
 
 using namespace ringwright;
 using simulator::Generator;
@@ -164,4 +164,21 @@ TEST_CASE("a fall after which nothing rings is refused with what was seen") {
     INFO(search.reason);
     CHECK(search.reason.find("fall") != std::string::npos);
     if (turned_to < gravity) CHECK(search.reason.find("turned over") != std::string::npos);
+}
+
+// Noise of a fourth of the static deflection and more: after bounces little of the decay is left above it.
+// What was seen to fall is a drop or is refused; taken for a release it gave frequencies 20 % too low. Seeds
+// 470 to 489.
+TEST_CASE("a drop that noise nearly hides is not taken for a release") {
+    for (std::uint64_t seed = 470; seed < 490; ++seed) {
+        INFO("seed " << seed);
+        Generator generator(seed);
+        const Mode mode{7.07, 0.16};
+        Simulated truth = simulator::drop(mode, 1600.0, 3.0, 0.4, 0.057, MeasuredQuantity::displacement,
+                                          Noise{300.0}, generator);
+        simulator::add_noise(truth.recording.samples, 0.06, 1600.0, Noise{26.0}, generator);
+        const EventSearch search = find_events(truth.recording);
+        for (const Event& event : search.events) CHECK(event.kind == TestKind::drop);
+        if (search.events.empty()) CHECK_THAT(search.reason, Catch::Contains("A fall of"));
+    }
 }
