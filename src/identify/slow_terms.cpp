@@ -42,6 +42,10 @@ double first_order_gain(const CurveFit& fit, const MatrixXd& whitened_basis,
     return along * along / column.squaredNorm() / fit.noise.noise.innovation_variance;
 }
 
+double criterion_of(const CurveFit& fit) {
+    return fit.noise.fit.likelihood_criterion + 2.0 * static_cast<double>(fit.noise.noise.order());
+}
+
 struct SlowRate {
     double rate = 0.0, gain = 0.0;
 };
@@ -64,8 +68,22 @@ SlowRate most_telling_rate(const CurveFit& fit) {
     return best;
 }
 
-double criterion_of(const CurveFit& fit) {
-    return fit.noise.fit.likelihood_criterion + 2.0 * static_cast<double>(fit.noise.noise.order());
+// The same with the noise estimated anew beside each column: a noise model made without a slow term takes it
+// for slow noise.
+SlowRate most_telling_rate_beside_noise(const CurveFit& fit) {
+    SlowRate best;
+    const double fastest = fastest_over_mode * fit.oscillator().slowest_rate();
+    for (const double over_length : rates_over_length) {
+        const double rate = over_length / fit.samples.time.maxCoeff();
+        if (rate > fastest) continue;
+        MatrixXd columns(fit.basis.rows(), fit.basis.cols() + 1);
+        columns << fit.basis, slow_column(fit.samples, rate);
+        CurveFit trial = fit;
+        if (!estimate_noise(trial, columns, fit.residual, noise_no_higher(fit))) continue;
+        const double gain = criterion_of(fit) - criterion_of(trial);
+        if (gain > best.gain) best = {rate, gain};
+    }
+    return best;
 }
 
 std::optional<CurveFit> with_drift(const CurveFit& fit) {
@@ -89,7 +107,9 @@ std::optional<CurveFit> with_pole(const CurveFit& fit, double rate) {
 }  // namespace
 
 void add_slow_term(CurveFit& fit) {
-    const SlowRate slow = most_telling_rate(fit);
+    SlowRate slow = most_telling_rate(fit);
+    if (fit.noise.noise.order() > 0)
+        slow = std::ranges::max(slow, most_telling_rate_beside_noise(fit), {}, &SlowRate::gain);
     if (slow.gain < chi_squared_quantile(1.0 - false_alarm / independent_looks, 1.0)) return;
     const double before = criterion_of(fit);
     const double line_cost = chi_squared_quantile(1.0 - false_alarm / independent_looks, 1.0);

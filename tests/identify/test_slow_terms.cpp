@@ -72,6 +72,34 @@ TEST_CASE("a straight drift is fitted with the decay and named") {
     CHECK(held >= 16);
 }
 
+// The curved ramp of a sensor that warms up, for a while after the decay too: a noise model of the residuals
+// takes it for slow noise, and a damper that is stronger one way for the shift of the mean. With the noise
+// estimated beside the term it is found. 20 recordings each; fewer than 16 of 20 at 95 % are seen once in
+// 400.
+TEST_CASE("a sensor that warms up is a slow term, and no law of damping") {
+    for (const double phi : {0.0, 0.7}) {
+        int held = 0, laws = 0;
+        for (std::uint64_t seed = 250; seed < 270; ++seed) {
+            simulated::Truth truth;
+            truth.damping_ratio = 0.08, truth.cycles = 40.0, truth.noise_correlation = phi;
+            simulated::Deviates deviates(seed);
+            simulated::Sample sample = simulated::draw(truth, deviates);
+            for (std::size_t i = 0; i < sample.recording.size(); ++i)
+                sample.recording.samples[i] -=
+                    0.25 * std::expm1(-static_cast<double>(i) / sample.recording.clock.sample_rate_hz / 5.0);
+            IdentifyOptions options;
+            options.replicates = 0;
+            const EventIdentification result = identify_event(sample.recording, sample.event, options);
+            check_truth(result, held);
+            laws += result.curve_fit.model != "viscous";
+            CHECK((said(result, "drift") || said(result, "slow_exponential")));
+        }
+        INFO("φ " << phi << ", held " << held << ", laws " << laws);
+        CHECK(held >= 16);
+        CHECK(laws <= 1);
+    }
+}
+
 TEST_CASE("nothing slow is found where there is nothing", "[long]") {
     int found = 0;
     for (std::uint64_t seed = 100; seed < 200; ++seed) {
