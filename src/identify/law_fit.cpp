@@ -436,8 +436,8 @@ bool stands_for_a_law(double log_frequency, double mode_log_frequency, double da
     constexpr double most_multiples = 9.0, multiple_width = 0.03, beside = 0.35;
     const double order = std::exp(log_frequency - mode_log_frequency);
     const double nearest = std::max(1.0, std::round(order));
-    const double width = nearest > 1.0 ? multiple_width : std::max(beside, widths_aside * damping_ratio);
-    return nearest <= most_multiples && std::abs(order - nearest) < width * nearest;
+    return std::abs(order - 1.0) < std::max(beside, widths_aside * damping_ratio) ||
+           (nearest <= most_multiples && std::abs(order - nearest) < multiple_width * nearest);
 }
 
 // The mode alone from several damping ratios: with components about it, its own may have been anything.
