@@ -333,6 +333,8 @@ void close_open_ends(Quantities& quantities) {
     const auto frequency = quantities.find(Quantity::natural_frequency);
     if (ratio == quantities.end() || frequency == quantities.end()) return;
     if (ratio->second.value > largest_value_with_open_end) return;
+    // From no damping at all to any: nothing is told.
+    if (!std::isfinite(ratio->second.interval.high) && !(ratio->second.interval.low > 0.0)) return;
     const auto slow = quantities.find(Quantity::slow_decay_rate);
     const double rate = slow != quantities.end() && std::isfinite(slow->second.interval.high)
                             ? slow->second.interval.high

@@ -101,3 +101,22 @@ TEST_CASE("an acceleration that begins with a sample before its jump") {
     }
     CHECK(held >= 16);
 }
+
+// A recording of noise alone with a window by hand, in 60 of which some fits end between no damping and any.
+// Seeds 1 to 60.
+TEST_CASE("an interval from no damping to any is no answer, and none ends before it begins") {
+    for (std::uint64_t seed = 1; seed <= 60; ++seed) {
+        INFO("seed " << seed);
+        simulated::Truth truth;
+        truth.signal_to_noise_db = seed % 2 == 0 ? -10.0 : 3.0;
+        truth.noise_correlation = 0.98, truth.cycles = 4.0;
+        const EventIdentification result = identify_drawn(truth, seed);
+        for (const auto& [quantity, estimate] : result.curve_fit.quantities) {
+            INFO(key_of(quantity));
+            CHECK(estimate.interval.low <= estimate.interval.high);
+        }
+        const auto ratio = result.curve_fit.quantities.find(Quantity::damping_ratio);
+        if (ratio != result.curve_fit.quantities.end())
+            CHECK((ratio->second.interval.low > 0.0 || ratio->second.interval.high < 100.0));
+    }
+}
