@@ -13,6 +13,7 @@
 #include <thread>
 #include <vector>
 
+#include "bench/release_series.hpp"
 #include "identify/decay_window.hpp"
 #include "identify/projected_fit.hpp"
 #include "ringwright/distributions.hpp"
@@ -152,6 +153,11 @@ std::string number(double value, int digits) {
     return std::isfinite(value) ? fmt::format("{:.{}f}", value, digits) : "–";
 }
 
+std::string three_levels(const Score& s) {
+    return number(s.percent(s.in68), 1) + " " + number(s.percent(s.in95), 1) + " " +
+           number(s.percent(s.in99), 1);
+}
+
 std::string dress(const Truth& t) {
     std::string text;
     if (t.hum_share > 0.0) text += fmt::format(" hum {:g} %", 100.0 * t.hum_share);
@@ -172,10 +178,6 @@ void print_header() {
 void print_row(const Cell& cell, int recordings) {
     const Truth& t = cell.truth;
     const simulated::Bound bound = simulated::cramer_rao(t);
-    const auto three = [](const Score& s) {
-        return number(s.percent(s.in68), 1) + " " + number(s.percent(s.in95), 1) + " " +
-               number(s.percent(s.in99), 1);
-    };
     const auto simple = [&](const Tally& m) {
         return number(100.0 * m.ratio.count / recordings, 0) + ", " +
                number(m.frequency.percent(m.frequency.in95), 1) + ", " +
@@ -183,8 +185,8 @@ void print_row(const Cell& cell, int recordings) {
     };
     fmt::print("| {:g} | {:g} | {:g} | {:g} |{} | {} | {} | {} | {} {} | {} | {} | {} | {}, {} |\n",
                t.damping_ratio, t.cycles, t.signal_to_noise_db, t.noise_correlation, dress(t),
-               number(100.0 * cell.fit.ratio.count / recordings, 1), three(cell.fit.frequency),
-               three(cell.fit.ratio), number(cell.fit.frequency.scatter(bound.log_frequency), 2),
+               number(100.0 * cell.fit.ratio.count / recordings, 1), three_levels(cell.fit.frequency),
+               three_levels(cell.fit.ratio), number(cell.fit.frequency.scatter(bound.log_frequency), 2),
                number(cell.fit.ratio.scatter(bound.damping_ratio), 2),
                number(cell.plain.percent(cell.plain.in95), 1), simple(cell.decrement),
                simple(cell.half_power),
@@ -290,8 +292,25 @@ void print_law(const LawCell& cell, int recordings) {
     std::fflush(stdout);
 }
 
+struct SeriesCell {
+    simulated::ReleaseSeries series;
+    Tally pooled{};
+};
+
+void run_series_cell(SeriesCell& cell, std::uint64_t seed, const Run& run) {
+    std::mutex guard;
+    for_each_recording(run.recordings, [&](int i) {
+        const MethodResult pooled =
+            simulated::pooled_result(cell.series, seed + static_cast<std::uint64_t>(i), run.options);
+        const std::scoped_lock lock(guard);
+        add(cell.pooled, pooled, cell.series.article);
+    });
+}
+
 struct Grid {
     bool laws = false;
+    std::vector<int> releases;
+    double frequency_spread = 0.002, damping_spread = 0.03;
     std::vector<double> ratios{0.002, 0.02, 0.1, 0.3, 0.7, 1.0, 1.5}, cycles{3, 10, 30}, decibels{20, 40, 60},
         correlations{0.0, 0.8, 0.95};
     Truth base;
@@ -310,6 +329,15 @@ void add_options(CLI::App& app, Grid& grid) {
     app.add_flag("--laws", grid.laws,
                  "Decays under the damping laws in place of viscous ones, displacement and acceleration; of "
                  "the grid, --decibel and --correlation hold");
+    app.add_option(
+           "--releases", grid.releases,
+           "Pooled results of series of so many releases, through the search and the whole of identify")
+        ->delimiter(',');
+    app.add_option("--frequency-spread", grid.frequency_spread,
+                   "Between releases, relative standard deviation")
+        ->capture_default_str();
+    app.add_option("--damping-spread", grid.damping_spread, "The same of the damping ratio")
+        ->capture_default_str();
     app.add_flag("--search", grid.run.search, "Let the program find the event, as it does for a user");
     app.add_option("--held", grid.base.held_cycles, "Undamped periods of plateau before the release");
     app.add_option("--samples-per-cycle", grid.base.samples_per_cycle, "Sampling")->capture_default_str();
@@ -320,23 +348,57 @@ void add_options(CLI::App& app, Grid& grid) {
     app.add_option("--jitter", grid.base.jitter_share, "Standard deviation of the sampling instants, steps");
 }
 
-void run_grid(const Grid& grid) {
-    print_header();
-    std::uint64_t seed = grid.run.seed;  // every recording of the grid has its own
+/// Calls `visit` with the truth of every cell of the grid.
+template <typename Visit>
+void for_each_cell(const Grid& grid, const Visit& visit) {
     for (const double ratio : grid.ratios)
         for (const double cycles : grid.cycles)
             for (const double decibel : grid.decibels)
                 for (const double correlation : grid.correlations) {
-                    Cell cell;
-                    cell.truth = grid.base;
-                    cell.truth.damping_ratio = ratio;
-                    cell.truth.cycles = cycles;
-                    cell.truth.signal_to_noise_db = decibel;
-                    cell.truth.noise_correlation = correlation;
-                    run_cell(cell, seed, grid.run);
-                    seed += static_cast<std::uint64_t>(grid.run.recordings);
-                    print_row(cell, grid.run.recordings);
+                    Truth truth = grid.base;
+                    truth.damping_ratio = ratio;
+                    truth.cycles = cycles;
+                    truth.signal_to_noise_db = decibel;
+                    truth.noise_correlation = correlation;
+                    visit(truth);
                 }
+}
+
+void run_grid(const Grid& grid) {
+    print_header();
+    std::uint64_t seed = grid.run.seed;  // every recording of the grid has its own
+    for_each_cell(grid, [&](const Truth& truth) {
+        Cell cell;
+        cell.truth = truth;
+        run_cell(cell, seed, grid.run);
+        seed += static_cast<std::uint64_t>(grid.run.recordings);
+        print_row(cell, grid.run.recordings);
+    });
+}
+
+void print_series(const SeriesCell& cell, int recordings) {
+    const Truth& t = cell.series.article;
+    fmt::print("| {} | {:g} | {:g} | {:g} | {:g} | {} | {} | {} | {} {} |\n", cell.series.releases,
+               t.damping_ratio, t.cycles, t.signal_to_noise_db, t.noise_correlation,
+               number(100.0 * cell.pooled.ratio.count / recordings, 1), three_levels(cell.pooled.frequency),
+               three_levels(cell.pooled.ratio), number(100.0 * cell.pooled.frequency.scatter(1.0), 3),
+               number(100.0 * cell.pooled.ratio.scatter(t.damping_ratio), 2));
+    std::fflush(stdout);
+}
+
+void run_series(const Grid& grid) {
+    fmt::print(
+        "| releases | ζ | cycles | dB | φ | answered | f 68/95/99 % | ζ 68/95/99 % | scatter of f, ζ / % |\n"
+        "|---|---|---|---|---|---|---|---|---|\n");
+    std::uint64_t seed = grid.run.seed;
+    for_each_cell(grid, [&](const Truth& truth) {
+        for (const int releases : grid.releases) {
+            SeriesCell cell{{truth, releases, grid.frequency_spread, grid.damping_spread}};
+            run_series_cell(cell, seed, grid.run);
+            seed += static_cast<std::uint64_t>(grid.run.recordings);
+            print_series(cell, grid.run.recordings);
+        }
+    });
 }
 
 void run_laws(const Grid& grid) {
@@ -368,6 +430,6 @@ int main(int argc, char** argv) {
     Grid grid;
     add_options(app, grid);
     CLI11_PARSE(app, argc, argv);
-    grid.laws ? run_laws(grid) : run_grid(grid);
+    grid.laws ? run_laws(grid) : grid.releases.empty() ? run_grid(grid) : run_series(grid);
     return 0;
 }
