@@ -433,9 +433,11 @@ bool rings_enough(const CurveFit& fit) {
 
 // Near the mode itself, or a multiple of it, where a law leaves its mark.
 bool stands_for_a_law(double log_frequency, double mode_log_frequency, double damping_ratio) {
-    constexpr double most_multiples = 9.0, multiple_width = 0.03, beside = 0.35;
+    constexpr double most_multiples = 9.0, least_width = 0.03, width_of_broad = 0.2, beside = 0.35;
     const double order = std::exp(log_frequency - mode_log_frequency);
     const double nearest = std::max(1.0, std::round(order));
+    // A viscous fit of a broad decay misses its frequency by some per cent.
+    const double multiple_width = std::max(least_width, width_of_broad * damping_ratio);
     return std::abs(order - 1.0) < std::max(beside, widths_aside * damping_ratio) ||
            (nearest <= most_multiples && std::abs(order - nearest) < multiple_width * nearest);
 }
