@@ -173,8 +173,8 @@ std::optional<Found> follow_onset(const Search& search, const Onset& onset, Star
 
 /// Standard deviation of single values in the rest: of the quieter among its pieces, since a stray knock in
 /// it is no noise. 0 when there is no rest.
-double rest_rms(std::span<const double> values, const Course& course) {
-    constexpr std::size_t pieces = 12, shortest = 16, longest = 20000;
+double rest_rms(std::span<const double> values, const Course& course, std::size_t pieces = 12) {
+    constexpr std::size_t shortest = 16, longest = 20000;
     if (!course.reaches_noise || course.rest_end < course.end + shortest) return 0.0;
     const std::size_t rest = course.rest_end - course.end;
     const std::size_t length = std::min(longest, std::max(shortest, rest / pieces));
@@ -191,6 +191,13 @@ double rest_rms(std::span<const double> values, const Course& course) {
     const auto at = deviations.begin() + static_cast<std::ptrdiff_t>(deviations.size() / 3);
     std::nth_element(deviations.begin(), at, deviations.end());
     return *at;
+}
+
+/// The same of noise that may wander more slowly than those pieces show: what it does within a third of the
+/// rest counts.
+double rms_of_slow_noise(std::span<const double> values, const Course& course) {
+    constexpr std::size_t long_pieces = 3;
+    return std::max(rest_rms(values, course), rest_rms(values, course, long_pieces));
 }
 
 double range_of(std::span<const double> values) {
@@ -772,7 +779,7 @@ Event to_event(const Found& found, const Search& search, const EventOptions& opt
     event.begin = series.sample_at(found.begin());
     event.end = series.sample_at(found.end());
     event.rest_end = series.sample_at(found.course.rest_end);
-    const double rest = rest_rms(series.values(), found.course);
+    const double rest = rms_of_slow_noise(series.values(), found.course);
     event.noise_level = rest > 0.0 ? rest : found.start.noise_rms;
     event.start_amplitude = found.start.amplitude;
     event.kind = found.is_drop() ? TestKind::drop : options.kind.value_or(TestKind::pluck);

@@ -53,3 +53,26 @@ TEST_CASE("slow noise behind a large swing or in its hold is no fall") {
         CHECK(sample.recording.clock.time_of(found.events.front().begin) == Approx(0.2).margin(0.01));
     }
 }
+
+TEST_CASE("the noise level is that of slow noise too") {
+    // AR(1) noise of φ = 0.95 and 0.01 of the amplitude: within twenty samples it hardly turns. Mean over
+    // recordings; white noise beside it.
+    constexpr int recordings = 20;
+    const auto mean_level = [](double correlation) {
+        double sum = 0.0;
+        for (std::uint64_t seed = 0; seed < recordings; ++seed) {
+            simulated::Truth truth;
+            truth.damping_ratio = 0.3;
+            truth.cycles = 5.0;
+            truth.held_cycles = 1.0;
+            truth.noise_correlation = correlation;
+            simulated::Deviates deviates(733000000 + seed);
+            const EventSearch found = find_events(simulated::draw(truth, deviates).recording);
+            REQUIRE(found.events.size() == 1);
+            sum += found.events.front().noise_level;
+        }
+        return sum / recordings;
+    };
+    CHECK(mean_level(0.95) == Approx(0.01).epsilon(0.25));
+    CHECK(mean_level(0.0) == Approx(0.01).epsilon(0.05));
+}

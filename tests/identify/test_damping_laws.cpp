@@ -282,6 +282,29 @@ TEST_CASE("a viscous decay is called viscous") {
     CHECK(richer <= 9);
 }
 
+TEST_CASE("what slow noise feigns is no law") {
+    // Viscous decays in noise of φ = 0.95 that were called friction (ζ = 0.95 and 0.45 in place of 0.3) and
+    // two-way with a hardening spring.
+    for (const std::uint64_t seed : {700006954u, 700007710u, 700007773u}) {
+        CAPTURE(seed);
+        simulated::Truth truth;
+        truth.damping_ratio = 0.3;
+        truth.cycles = 5.0;
+        truth.noise_correlation = 0.95;
+        truth.held_cycles = 1.0;
+        Deviates deviates(seed);
+        const simulated::Sample sample = simulated::draw(truth, deviates);
+        const EventSearch search = find_events(sample.recording);
+        REQUIRE(search.events.size() == 1);
+        const MethodResult fit =
+            identify_event(sample.recording, search.events.front(), curve_fit_only()).curve_fit;
+        REQUIRE(fit.status == MethodStatus::ok);
+        CHECK(fit.model == "viscous");
+        const Interval ratio = fit.quantities.at(Quantity::damping_ratio).interval;
+        CHECK((ratio.low <= 0.3 && 0.3 <= ratio.high));
+    }
+}
+
 TEST_CASE("what a coarse recorder rounds off is no law") {
     // Eight bits and noise of a ninth of a step: what decays below half a step stands still, as if it stuck.
     // A law was chosen in one of six such recordings; at most 5 % are asked for, so 2 of 40, and 6 but for
