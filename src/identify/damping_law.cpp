@@ -5,19 +5,23 @@
 #include <boost/numeric/odeint.hpp>
 #include <cassert>
 #include <cmath>
+#include <numbers>
 
 namespace ringwright::identify {
 
 namespace {
 
-// x, v, then (∂x, ∂v) by each of `parameters` parameters; of a size known to the compiler, so that it needs no
-// allocation.
+// x, v, then (∂x, ∂v) by each of `parameters` parameters; of a size known to the compiler, so that it needs
+// no allocation.
 constexpr std::size_t state_size(std::size_t parameters) {
     return 2 + 2 * parameters;
 }
 
 constexpr double runaway = 100.0;  // lengths; the motions looked at are of the order of one
 constexpr double first_step = 0.05;
+/// Steps of the integrator: some fifty a cycle are usual; a law so stiff that it needs ten times as many is
+/// none of a swing, and millions of them would be taken.
+constexpr double most_steps_a_cycle = 500.0, most_steps_at_least = 2000.0;
 constexpr double shortest_swing = 1e-9;  // a force this close to the friction holds, to rounding
 
 // ∂a by each parameter at fixed (x, v).
@@ -162,9 +166,12 @@ class Motion {
 
     void integrate() {
         double time = 0.0, step = first_step;
+        double steps_left =
+            most_steps_at_least + most_steps_a_cycle * times_.back() / (2.0 * std::numbers::pi);
         while (next_ < times_.size() && !out_.sticks) {
             stepper_.initialize(here_, time, step);
             for (;;) {
+                if (steps_left-- <= 0.0) return;
                 stepper_.do_step(swing_);
                 const State& at = stepper_.current_state();
                 if (!(std::abs(at[0]) < runaway) || !(std::abs(at[1]) < runaway)) return;

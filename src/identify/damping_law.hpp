@@ -54,7 +54,9 @@ struct LawMotion {
     std::vector<double> reversals;
     bool sticks = false;  ///< friction holds the mass at `stick_time`
     double stick_time = 0.0;
-    bool valid = false;  ///< false: the motion runs away, as a softening spring lets it beyond its crest
+    /// False: the motion runs away, as a softening spring lets it beyond its crest, or is too stiff for a
+    /// swing.
+    bool valid = false;
 };
 
 /// Integrates from t = 0 with Boost.Odeint's dense-output Dormand–Prince method, error at most about
