@@ -4,15 +4,14 @@
 
 #include <CLI/CLI.hpp>
 #include <Eigen/Cholesky>
-#include <atomic>
 #include <cmath>
 #include <mutex>
 #include <numbers>
 #include <optional>
 #include <string>
-#include <thread>
 #include <vector>
 
+#include "bench/for_each_recording.hpp"
 #include "bench/release_series.hpp"
 #include "identify/decay_window.hpp"
 #include "identify/projected_fit.hpp"
@@ -24,6 +23,7 @@
 namespace {
 
 using namespace ringwright;
+using simulated::for_each_recording;
 using simulated::Truth;
 
 constexpr double two_pi = 2.0 * std::numbers::pi;
@@ -127,20 +127,6 @@ void run_one(Cell& cell, std::uint64_t seed, const Run& run, std::mutex& guard) 
         cell.residual_findings += finding.code.starts_with("residuals");
         cell.components += finding.code == "steady_tone" || finding.code == "second_mode";
     }
-}
-
-// Every number below `recordings`, on all processors.
-template <typename Work>
-void for_each_recording(int recordings, const Work& one) {
-    std::atomic<int> next{0};
-    const auto work = [&] {
-        for (int i = next++; i < recordings; i = next++) one(i);
-    };
-    std::vector<std::thread> threads;
-    for (unsigned i = 1; i < std::max(1u, std::thread::hardware_concurrency()); ++i)
-        threads.emplace_back(work);
-    work();
-    for (std::thread& thread : threads) thread.join();
 }
 
 void run_cell(Cell& cell, std::uint64_t seed, const Run& run) {

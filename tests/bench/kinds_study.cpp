@@ -4,18 +4,16 @@
 
 #include <CLI/CLI.hpp>
 #include <algorithm>
-#include <atomic>
 #include <cmath>
 #include <cstdio>
 #include <fstream>
 #include <map>
 #include <mutex>
-#include <optional>
 #include <string>
-#include <thread>
 #include <utility>
 #include <vector>
 
+#include "bench/for_each_recording.hpp"
 #include "support/bench_judgement.hpp"
 #include "support/bench_kinds.hpp"
 
@@ -110,31 +108,25 @@ void write_down(const BenchRecording& made, const Run& run, std::uint64_t seed) 
     std::ofstream(fmt::format("{}/{}.csv", run.folder, seed), std::ios::binary) << made.csv;
 }
 
+void list(const BenchKind& kind, std::uint64_t seed, const BenchTruth& truth, const std::string& wrong) {
+    const auto mode = truth.mode.value_or(simulator::Mode{0.0, 0.0});
+    fmt::print("{} {} ({:.4g} Hz, ζ {:.4g}, {}):{}\n", kind.name, seed, mode.frequency_hz, mode.damping_ratio,
+               truth.conditions, wrong);
+}
+
 Tally run_kind(const BenchKind& kind, std::uint64_t first_seed, const Run& run) {
     Tally tally;
     std::mutex guard;
-    std::atomic<int> next{0};
-    const auto work = [&] {
-        for (int i = next++; i < run.recordings; i = next++) {
-            const std::uint64_t seed = first_seed + static_cast<std::uint64_t>(i);
-            const BenchRecording made = kind.draw(seed);
-            write_down(made, run, seed);
-            const Outcome outcome = simulated::judge(made, run.replicates);
-            const std::scoped_lock lock(guard);
-            add(tally, outcome, made.truth, kind.tolerance);
-            const std::string wrong = shortcomings(outcome, made.truth, kind.tolerance);
-            if (run.list && !wrong.empty()) {
-                const auto mode = made.truth.mode.value_or(simulator::Mode{0.0, 0.0});
-                fmt::print("{} {} ({:.4g} Hz, ζ {:.4g}, {}):{}\n", kind.name, seed, mode.frequency_hz,
-                           mode.damping_ratio, made.truth.conditions, wrong);
-            }
-        }
-    };
-    std::vector<std::thread> threads;
-    for (unsigned i = 1; i < std::max(1u, std::thread::hardware_concurrency()); ++i)
-        threads.emplace_back(work);
-    work();
-    for (std::thread& thread : threads) thread.join();
+    simulated::for_each_recording(run.recordings, [&](int i) {
+        const std::uint64_t seed = first_seed + static_cast<std::uint64_t>(i);
+        const BenchRecording made = kind.draw(seed);
+        write_down(made, run, seed);
+        const Outcome outcome = simulated::judge(made, run.replicates);
+        const std::string wrong = shortcomings(outcome, made.truth, kind.tolerance);
+        const std::scoped_lock lock(guard);
+        add(tally, outcome, made.truth, kind.tolerance);
+        if (run.list && !wrong.empty()) list(kind, seed, made.truth, wrong);
+    });
     return tally;
 }
 

@@ -102,8 +102,7 @@ TEST_CASE("an acceleration that begins with a sample before its jump") {
     CHECK(held >= 16);
 }
 
-// A recording of noise alone with a window by hand, in 60 of which some fits end between no damping and any.
-// Seeds 1 to 60.
+// Decays that slow noise all but hides, the event given: some fits end between no damping and any. Seeds 1 to 60.
 TEST_CASE("an interval from no damping to any is no answer, and none ends before it begins") {
     for (std::uint64_t seed = 1; seed <= 60; ++seed) {
         INFO("seed " << seed);
