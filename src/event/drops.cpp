@@ -177,6 +177,21 @@ Attempt try_decay(const Pyramid& pyramid, Fall& fall, MeasuredQuantity quantity,
     return attempt;
 }
 
+/// The same with fewer bounces where there is none otherwise: what passed for the last may have been noise.
+Attempt decay_after(const Pyramid& pyramid, Fall& fall, MeasuredQuantity quantity, double rate_hz,
+                    const StartLimits& limits) {
+    Attempt attempt = try_decay(pyramid, fall, quantity, rate_hz, limits);
+    for (Fall fewer = fall; !attempt.reason.empty() && fewer.flights.size() > 1;) {
+        fewer.flights.pop_back();
+        Fall trial = fewer;
+        Attempt other = try_decay(pyramid, trial, quantity, rate_hz, limits);
+        if (!other.reason.empty()) continue;
+        fall = std::move(trial);
+        attempt = std::move(other);
+    }
+    return attempt;
+}
+
 /// The time after an impact in which another decay would be part of the same fall.
 std::size_t aftermath(const Fall& fall) {
     constexpr std::size_t falls = 10;
@@ -202,17 +217,7 @@ Drops find_drops(const Pyramid& pyramid, double rate_hz, MeasuredQuantity quanti
         limits.drop = true;
         limits.latest = i + 1 < falls.size() ? falls[i + 1].flights.front().begin : size;
         const Fall seen = fall;
-        Attempt attempt = try_decay(pyramid, fall, quantity, rate_hz, limits);
-        // What passed for the last bounce may have been noise.
-        while (!attempt.reason.empty() && fall.flights.size() > 1) {
-            fall.flights.pop_back();
-            Fall fewer = fall;
-            Attempt other = try_decay(pyramid, fewer, quantity, rate_hz, limits);
-            if (other.reason.empty() && !fewer.flights.empty()) {
-                attempt = std::move(other);
-                fall = std::move(fewer);
-            }
-        }
+        Attempt attempt = decay_after(pyramid, fall, quantity, rate_hz, limits);
         if (fall.flights.empty()) continue;
         if (displaced && attempt.drop && swings_too_far(*attempt.drop, seen, values, rate_hz)) continue;
         std::string reason = std::move(attempt.reason);

@@ -93,6 +93,15 @@ bool taken(const Search& search, const Onset& onset) {
     });
 }
 
+/// Where another event begins for what lies before it: in an acceleration the blow, which may be thirty times
+/// as high as its answer and is over within half a cycle of that, is no noise of an earlier decay.
+std::size_t before_blow(const Search& search, const Found& event) {
+    constexpr double longest = 0.5;  // cycles
+    if (!shows_acceleration(search.recording.quantity) || event.is_drop()) return event.since();
+    return event.since() -
+           static_cast<std::size_t>(std::min(longest * event.cycle(), static_cast<double>(event.since())));
+}
+
 StartLimits limits_for(const Search& search, const Onset& onset) {
     StartLimits limits;
     limits.displacement = shows_position(search.recording.quantity);
@@ -100,7 +109,7 @@ StartLimits limits_for(const Search& search, const Onset& onset) {
     limits.latest = search.series.size();
     for (const Found& other : search.found) {
         if (other.begin() > onset.position) {
-            limits.latest = std::min(limits.latest, other.since());
+            limits.latest = std::min(limits.latest, before_blow(search, other));
         } else {
             limits.earliest = std::max(limits.earliest, other.course.rest_end);
         }
@@ -435,10 +444,14 @@ std::optional<Onset> answer_to(const Pyramid& pyramid, const Onset& blow) {
 
 /// A blow far higher than what answers it is all that shows where a second one follows soon.
 void try_answers(Search& search, const std::vector<Onset>& onsets) {
-    constexpr double blow = 0.5;  // damping ratio that a pulse seems to have, at least
+    constexpr double blow = 0.5;     // damping ratio that a pulse seems to have, at least
+    std::vector<std::size_t> tried;  // positions: one blow shows on several scales
     for (const Onset& onset : onsets) {
         if (onset.fit.shape.damping_ratio < blow || taken(search, onset)) continue;
-        if (const auto answer = answer_to(search.pyramid, onset)) try_onset(search, *answer, onsets);
+        const std::optional<Onset> answer = answer_to(search.pyramid, onset);
+        if (!answer || std::find(tried.begin(), tried.end(), answer->position) != tried.end()) continue;
+        tried.push_back(answer->position);
+        try_onset(search, *answer, onsets);
     }
 }
 

@@ -196,9 +196,10 @@ SampleRange span_of(const Look& look, const PathFit& path) {
 
 /// What a rival of the decay costs and can show.
 struct Rivalry {
-    double fewer = 0.0;  ///< numbers that it has less to choose than the decay
-    double least_misfit =
-        0.0;  ///< what the likeliest rival leaves of a release, rms, as a share of the height
+    /// Numbers that it has less to choose than the decay.
+    double fewer = 0.0;
+    /// What the likeliest of the rivals leaves of a release, rms, as a share of the height.
+    double least_misfit = 0.0;
 };
 
 /// Whether the rival explains the look as well as the decay does, which leaves this sum of squares there
@@ -340,39 +341,65 @@ bool ends_beyond(const Distances& away, std::size_t rest_end) {
 
 namespace {
 
+/// Block means of a decay, and the way from each to the third behind it, in the direction of the whole.
+struct Ways {
+    std::span<const double> means;
+    std::vector<double> moves;
+    double sign = 1.0;
+
+    /// From one block to another, in the direction of the whole.
+    [[nodiscard]] double between(std::size_t from, std::size_t to) const {
+        return sign * (means[to] - means[from]);
+    }
+};
+
+constexpr std::size_t blocks_of_a_move = 3;
+
+Ways ways_of(const Pyramid& pyramid, const Found& found) {
+    constexpr double blocks = 100.0;
+    const auto length = static_cast<double>(found.end() - found.begin());
+    std::size_t level = 0;
+    while (level + 1 < pyramid.levels() && std::ldexp(length, -static_cast<int>(level)) > blocks) ++level;
+    Ways ways;
+    const std::span<const double> all = pyramid.level(level);
+    const std::size_t begin = found.begin() >> level, end = std::min(found.end() >> level, all.size());
+    if (begin + 6 * blocks_of_a_move > end) return ways;
+    ways.means = all.subspan(begin, end - begin);
+    if (ways.means.back() < ways.means.front()) ways.sign = -1.0;
+    for (std::size_t k = 0; k + blocks_of_a_move < ways.means.size(); ++k)
+        ways.moves.push_back(ways.between(k, k + blocks_of_a_move));
+    return ways;
+}
+
+/// The quietest quarter of the moves: larger where it stays nowhere, or noise hides that it does.
+double quiet_move(const Ways& ways) {
+    std::vector<double> sizes;
+    for (const double move : ways.moves) sizes.push_back(std::abs(move));
+    const auto quarter = sizes.begin() + static_cast<std::ptrdiff_t>(sizes.size() / 4);
+    std::nth_element(sizes.begin(), quarter, sizes.end());
+    return *quarter;
+}
+
 /// Whether it moves, stays and moves on the same way as fast as before, as a hand or a jack lowers an
 /// article: a decay is slower each time it comes the same way.
 bool goes_in_steps(const Pyramid& pyramid, const Found& found) {
-    constexpr double blocks = 64.0, as_fast = 0.5, stays = 0.15, plainly = 8.0, good_part = 0.15;
-    constexpr std::size_t together = 3;  // blocks over which a speed is taken
-    const auto length = static_cast<double>(found.end() - found.begin());
-    std::size_t level = 0;
-    while (level + 1 < pyramid.levels() && length > 1.5 * blocks * std::exp2(static_cast<double>(level)))
-        ++level;
-    const std::span<const double> means = pyramid.level(level);
-    const std::size_t begin = found.begin() >> level, end = std::min(found.end() >> level, means.size());
-    if (begin + 6 * together > end) return false;
-    std::vector<double> moves;
-    for (std::size_t k = begin; k + together < end; ++k) moves.push_back(means[k + together] - means[k]);
-    const double sign = means[end - 1] > means[begin] ? 1.0 : -1.0;
-    for (double& move : moves) move *= sign;
-    std::vector<double> sizes;
-    for (const double move : moves) sizes.push_back(std::abs(move));
-    const auto quarter = sizes.begin() + static_cast<std::ptrdiff_t>(sizes.size() / 4);
-    std::nth_element(sizes.begin(), quarter, sizes.end());
-    const double fastest = *std::max_element(moves.begin(), moves.end());
-    if (fastest < plainly * *quarter) return false;  // it stays nowhere, or noise hides that
-    const double least_way = good_part * sign * (means[end - 1] - means[begin]);
+    constexpr double as_fast = 0.5, stays = 0.15, plainly = 8.0, good_part = 0.15;
+    const Ways ways = ways_of(pyramid, found);
+    if (ways.moves.empty()) return false;
+    const double fastest = *std::max_element(ways.moves.begin(), ways.moves.end());
+    if (fastest < plainly * quiet_move(ways)) return false;
+    const std::size_t last = ways.means.size() - 1;
+    const double least_way = good_part * ways.between(0, last);
     bool moved = false;
     std::size_t stayed = 0;
-    for (std::size_t k = 0; k < moves.size(); ++k) {
-        if (moves[k] < -stays * fastest) moved = false, stayed = 0;  // it swings back
-        const bool fast = moves[k] > as_fast * fastest;
-        const double gone = sign * (means[begin + k] - means[begin]),
-                     left = sign * (means[end - 1] - means[begin + k]);
-        if (fast && stayed >= together && std::min(gone, left) > least_way) return true;
-        stayed = moved && std::abs(moves[k]) < stays * fastest ? stayed + 1 : fast ? 0 : stayed;
-        moved = moved || fast;
+    for (std::size_t k = 0; k < ways.moves.size(); ++k) {
+        const double move = ways.moves[k];
+        const bool fast = move > as_fast * fastest;
+        if (move < -stays * fastest) moved = false, stayed = 0;  // it swings back
+        const double smaller_part = std::min(ways.between(0, k), ways.between(k, last));
+        if (fast && stayed >= blocks_of_a_move && smaller_part > least_way) return true;
+        if (fast) moved = true, stayed = 0;
+        if (moved && std::abs(move) < stays * fastest) ++stayed;
     }
     return false;
 }
