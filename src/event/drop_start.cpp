@@ -40,8 +40,8 @@ std::size_t end_of_look(const DecayShape& shape, std::size_t first, std::size_t 
     return std::min(last, first + static_cast<std::size_t>(std::ceil(wanted)));
 }
 
-Look look_at(const Pyramid& pyramid, double rate_hz, const Onset& onset, std::size_t latest) {
-    const DecayShape single = at_level(onset.fit.shape, onset.level, 0);
+/// `single` is the shape a step of the series.
+Look look_at(const Pyramid& pyramid, double rate_hz, const DecayShape& single, std::size_t latest) {
     const double wanted = std::log2(std::max(1.0, cycle_of(single) / fine_turn));
     Look look;
     look.level = std::min(static_cast<std::size_t>(wanted), pyramid.levels() - 1);
@@ -313,8 +313,9 @@ std::optional<Start> locate_drop_start(const Pyramid& pyramid, Fall& fall, Measu
         const std::size_t end = fall.flights.back().end;
         const std::optional<Onset> onset = onset_after(pyramid, end, limits.latest);
         if (onset) {
-            const Look look = look_at(pyramid, rate_hz, *onset, limits.latest);
-            const DecayShape shape = at_level(onset->fit.shape, onset->level, look.level);
+            const DecayShape single = at_level(onset->fit.shape, onset->level, 0);
+            const Look look = look_at(pyramid, rate_hz, single, limits.latest);
+            const DecayShape shape = at_level(single, 0, look.level);
             const std::optional<After> after = after_last(look, fall, shape, quantity);
             if (after && is_flight(look, fall.flights.back(), *after, quantity))
                 return to_start(pyramid, look, *after, first_value(pyramid, look, fall, *after, quantity));
@@ -326,6 +327,15 @@ std::optional<Start> locate_drop_start(const Pyramid& pyramid, Fall& fall, Measu
         fall.flights.pop_back();
     }
     return {};
+}
+
+std::optional<Start> start_of_contact(const Pyramid& pyramid, std::size_t position, const DecayShape& shape,
+                                      double rate_hz, std::size_t latest) {
+    const Look look = look_at(pyramid, rate_hz, shape, latest);
+    const std::optional<After> after =
+        fit_after(look, look.block_at(position), at_level(shape, 0, look.level));
+    if (!after) return {};
+    return to_start(pyramid, look, *after, position);
 }
 
 }  // namespace ringwright::event_search

@@ -16,4 +16,10 @@ namespace ringwright::event_search {
                                                      MeasuredQuantity quantity, double rate_hz,
                                                      const StartLimits& limits);
 
+/// The decay from a position on at which the mass is known to have touched for good, `shape` a step of the
+/// series about as it is. Nothing where too little follows.
+[[nodiscard]] std::optional<Start> start_of_contact(const Pyramid& pyramid, std::size_t position,
+                                                    const DecayShape& shape, double rate_hz,
+                                                    std::size_t latest);
+
 }  // namespace ringwright::event_search

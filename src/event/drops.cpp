@@ -8,6 +8,7 @@
 #include <utility>
 
 #include "event/drop_start.hpp"
+#include "event/whole_drop.hpp"
 
 namespace ringwright::event_search {
 namespace {
@@ -201,7 +202,7 @@ std::size_t aftermath(const Fall& fall) {
 
 }  // namespace
 
-Drops find_drops(const Pyramid& pyramid, double rate_hz, MeasuredQuantity quantity) {
+Drops find_drops(const Pyramid& pyramid, double rate_hz, MeasuredQuantity quantity, bool said) {
     std::vector<Fall> falls = find_falls(pyramid, rate_hz, quantity);
     const std::size_t size = pyramid.level(0).size();
     Drops drops;
@@ -219,6 +220,16 @@ Drops find_drops(const Pyramid& pyramid, double rate_hz, MeasuredQuantity quanti
         const Fall seen = fall;
         Attempt attempt = decay_after(pyramid, fall, quantity, rate_hz, limits);
         if (fall.flights.empty()) continue;
+        if (displaced && seen.hold_seen && attempt.drop) {
+            const std::size_t earliest = drops.found.empty() ? 0 : drops.found.back().course.end;
+            SeenFall whole =
+                drop_as_whole(pyramid, seen, *attempt.drop, {earliest, limits.latest, rate_hz, said});
+            if (whole.slow_release) continue;
+            if (whole.drop && whole.drop->start.amplitude > least_amplitude * whole.drop->start.noise_rms) {
+                drops.found.push_back(std::move(*whole.drop));
+                continue;
+            }
+        }
         if (displaced && attempt.drop && swings_too_far(*attempt.drop, seen, values, rate_hz)) continue;
         std::string reason = std::move(attempt.reason);
         if (!reason.empty() && quantity == MeasuredQuantity::acceleration) {

@@ -20,7 +20,7 @@ struct Drops {
     std::vector<RefusedFall> refused;
 };
 
-/// The drops of a recording in SI units.
-[[nodiscard]] Drops find_drops(const Pyramid& pyramid, double rate_hz, MeasuredQuantity quantity);
+/// The drops of a recording in SI units. `said`: the user says that the article was dropped.
+[[nodiscard]] Drops find_drops(const Pyramid& pyramid, double rate_hz, MeasuredQuantity quantity, bool said);
 
 }  // namespace ringwright::event_search

@@ -16,6 +16,7 @@
 #include "event/rivals.hpp"
 #include "event/second_hit.hpp"
 #include "event/spectrum.hpp"
+#include "event/whole_drop.hpp"
 #include "ringwright/error.hpp"
 #include "ringwright/event.hpp"
 
@@ -816,7 +817,8 @@ Event to_event(const Found& found, const Search& search, const EventOptions& opt
 /// Where gravity can be told: in SI units, unless the user says that nothing fell.
 void look_for_drops(Search& search) {
     if (!search.recording.scaled || search.kind.value_or(TestKind::drop) != TestKind::drop) return;
-    Drops drops = find_drops(search.pyramid, search.series.rate_hz(), search.recording.quantity);
+    Drops drops = find_drops(search.pyramid, search.series.rate_hz(), search.recording.quantity,
+                             search.kind.has_value());
     search.found = std::move(drops.found);
     search.refused = std::move(drops.refused);
 }
@@ -878,6 +880,32 @@ std::vector<double> take_out_hum(const Series& recorded, Series& series) {
     return std::move(cleaned->lines_hz);
 }
 
+Finding drop_or_pluck() {
+    return {"drop_or_pluck", Severity::caution,
+            "The noise hides whether the article was let go on its spring or fell onto it: both explain the "
+            "recording. It is taken as let go. Say --test drop if it fell, --test pluck if it did not."};
+}
+
+/// Takes for the drops they are what passes for plucks since noise hides the fall. What seemed to ring
+/// between the release and the last contact were the bounces.
+void unhide_drops(Search& search) {
+    const bool may_drop = search.recording.scaled &&
+                          search.recording.quantity == MeasuredQuantity::displacement &&
+                          search.kind.value_or(TestKind::drop) == TestKind::drop;
+    if (!may_drop) return;
+    for (std::size_t i = 0; i < search.found.size(); ++i) {
+        if (search.found[i].is_drop()) continue;
+        WholeDropLimits limits;
+        limits.earliest = i > 0 ? search.found[i - 1].course.end : 0;
+        limits.latest = i + 1 < search.found.size() ? search.found[i + 1].since() : search.series.size();
+        limits.rate_hz = search.series.rate_hz();
+        limits.said = search.kind.has_value();
+        DropBehind behind = drop_behind(search.pyramid, search.found[i], limits);
+        if (behind.undecided) search.found[i].findings.push_back(drop_or_pluck());
+        if (behind.drop) search.found[i] = std::move(*behind.drop);
+    }
+}
+
 /// All decays of the search, in order.
 void find_all(Search& search) {
     look_for_drops(search);
@@ -894,6 +922,7 @@ void find_all(Search& search) {
     drop_wanderings(search);
     drop_hum(search);
     drop_pulls(search.found);
+    unhide_drops(search);
     judge_interruptions(search, search.found);
     note_double_hits(search.found, search);
     find_quiet(search.found, search.pyramid);

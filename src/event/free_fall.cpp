@@ -225,6 +225,24 @@ void look_through(const Blocks& blocks, std::size_t window, bool (*fall)(const B
     }
 }
 
+/// Stretches that adjoin as one: between two flights a mass has to touch. A short window across the release
+/// bends as a fall does, and leaves the rest of the fall to another.
+std::vector<Stretch> joined(const Blocks& blocks, const std::vector<Stretch>& stretches) {
+    std::vector<Stretch> all;
+    for (const Stretch& stretch : stretches) {
+        if (!all.empty() && stretch.begin <= all.back().end + 1) {
+            Stretch both{all.back().begin, std::max(all.back().end, stretch.end), {}};
+            both.curve = fit_curve(blocks.means, both.begin, both.end, blocks.bent);
+            if (falls(blocks, both)) {
+                all.back() = trimmed(blocks, both);
+                continue;
+            }
+        }
+        all.push_back(stretch);
+    }
+    return all;
+}
+
 /// Long windows tell a fall from noise best; short ones come last, since a swing looks like a fall to them.
 std::vector<Stretch> stretches_of(const Blocks& blocks) {
     std::vector<std::size_t> windows;
@@ -237,7 +255,7 @@ std::vector<Stretch> stretches_of(const Blocks& blocks) {
     for (const std::size_t window : windows) look_through(blocks, window, falls_plainly, found);
     std::sort(found.begin(), found.end(),
               [](const Stretch& a, const Stretch& b) { return a.begin < b.begin; });
-    return found;
+    return joined(blocks, found);
 }
 
 /// Downward speed at the ends of a flight, unit of the recording a block.

@@ -161,12 +161,6 @@ std::size_t refine(const Look& look, const Candidate& candidate) {
     return first;
 }
 
-/// The first position after a moment in blocks: a block mean is centred half a block after its first value.
-std::size_t position_after(double moment, std::size_t level) {
-    const double position = std::ldexp(moment + 0.5, static_cast<int>(level)) - 0.5;
-    return static_cast<std::size_t>(std::max(0.0, std::ceil(position)));
-}
-
 /// Position at which a hold ends and the two decays begin: noise lets two decays reach back into what was
 /// held. Nothing where no release from a hold explains the recording.
 std::optional<std::size_t> end_of_hold(const Look& look, const Candidate& candidate) {

@@ -106,4 +106,9 @@ std::span<const double> Pyramid::level(std::size_t index) const {
     return index == 0 ? base_ : std::span<const double>(levels_[index - 1]);
 }
 
+std::size_t position_after(double moment, std::size_t level) {
+    const double position = std::ldexp(moment + 0.5, static_cast<int>(level)) - 0.5;
+    return static_cast<std::size_t>(std::max(0.0, std::ceil(position)));
+}
+
 }  // namespace ringwright::event_search

@@ -42,4 +42,8 @@ class Pyramid {
     std::vector<std::vector<double>> levels_;
 };
 
+/// The first position after a moment in blocks of a level: a block mean is centred half a block after its
+/// first value.
+[[nodiscard]] std::size_t position_after(double moment, std::size_t level);
+
 }  // namespace ringwright::event_search
