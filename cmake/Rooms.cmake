@@ -60,14 +60,14 @@ ringwright_carried(sqlite sqlite3 sqlite3)
 ringwright_carried(sqlite_cpp SQLiteCpp SQLiteCpp)
 
 # What each room takes from outside the project.
-set(ringwright_value_libraries fmt::fmt)
+set(ringwright_value_libraries ${fftw} fmt::fmt Threads::Threads)
 # libsndfile is loaded when the first sound file is read.
 set(ringwright_recording_libraries ${crypto} fmt::fmt Threads::Threads ${CMAKE_DL_LIBS})
-set(ringwright_event_libraries Eigen3::Eigen ${fftw} fmt::fmt)
+set(ringwright_event_libraries Eigen3::Eigen fmt::fmt)
 set(ringwright_uncertainty_libraries Eigen3::Eigen Boost::headers fmt::fmt)
-set(ringwright_identify_libraries Eigen3::Eigen Boost::headers ${fftw} fmt::fmt Threads::Threads)
+set(ringwright_identify_libraries Eigen3::Eigen Boost::headers fmt::fmt)
 set(ringwright_property_libraries Boost::headers Eigen3::Eigen fmt::fmt)
-set(ringwright_analysis_libraries fmt::fmt Threads::Threads)
+set(ringwright_analysis_libraries fmt::fmt)
 set(ringwright_conformity_libraries Boost::headers Eigen3::Eigen fmt::fmt)
 set(ringwright_ledger_libraries ${sqlite_cpp} ${sqlite} ${crypto} Boost::headers Eigen3::Eigen fmt::fmt
     nlohmann_json::nlohmann_json)

@@ -3,46 +3,18 @@
 #include <fmt/format.h>
 
 #include <algorithm>
-#include <atomic>
 #include <cmath>
-#include <exception>
 #include <functional>
 #include <optional>
-#include <thread>
 #include <utility>
 
 #include "analysis/long_events.hpp"
 #include "analysis/result.hpp"
 #include "analysis/series.hpp"
+#include "ringwright/each_index.hpp"
 
 namespace ringwright {
 namespace {
-
-/// Runs task(0) … task(count − 1) on as many threads as asked; each task writes only its own place, so that
-/// the result does not depend on the number of threads. What a task throws is thrown when all have ended.
-void for_each_index(std::size_t count, unsigned jobs, const std::function<void(std::size_t)>& task) {
-    const unsigned hardware = std::max(1U, std::thread::hardware_concurrency());
-    const std::size_t threads = std::min<std::size_t>(jobs == 0 ? hardware : jobs, count);
-    if (threads < 2) {
-        for (std::size_t i = 0; i < count; ++i) task(i);
-        return;
-    }
-    std::atomic<std::size_t> next{0};
-    std::vector<std::exception_ptr> failures(threads);
-    const auto work = [&](std::size_t thread) {
-        try {
-            for (std::size_t i = next++; i < count; i = next++) task(i);
-        } catch (...) {
-            failures[thread] = std::current_exception();
-            next = count;
-        }
-    };
-    std::vector<std::jthread> pool;
-    for (std::size_t t = 0; t < threads; ++t) pool.emplace_back(work, t);
-    pool.clear();
-    for (const std::exception_ptr& failure : failures)
-        if (failure) std::rethrow_exception(failure);
-}
 
 using Stretches = std::shared_ptr<const LongRecording>;
 
@@ -96,11 +68,15 @@ void identify_all(Series& series, const AnalysisOptions& options,
         for (EventIdentification& event : series.recordings[i].events)
             if (wanted(event))
                 work.push_back({&series.recordings[i].recording, series.stretches[i].get(), &event});
-    for_each_index(work.size(), options.jobs, [&](std::size_t i) {
+    if (work.empty()) return;
+    const unsigned threads = threads_for(options.jobs);
+    IdentifyOptions each = options.identify;
+    each.threads = std::max(1U, threads / static_cast<unsigned>(work.size()));
+    for_each_index(work.size(), threads, [&](std::size_t i, unsigned) {
         const Event event = work[i].event->event;
         *work[i].event = work[i].stretches != nullptr
-                             ? analysis::identify_within(*work[i].stretches, event, options.identify)
-                             : identify_event(*work[i].recording, event, options.identify);
+                             ? analysis::identify_within(*work[i].stretches, event, each)
+                             : identify_event(*work[i].recording, event, each);
         note_open_intervals(*work[i].event);
     });
 }

@@ -23,6 +23,7 @@
 #include "app/messages.hpp"
 #include "app/no_answer.hpp"
 #include "app/resume_file.hpp"
+#include "ringwright/each_index.hpp"
 #include "ringwright/error.hpp"
 #include "ringwright/result_csv.hpp"
 #include "ringwright/result_json.hpp"
@@ -149,8 +150,7 @@ class BatchRun {
         }
         AnalysisOptions options = batch_.options;
         const std::size_t left = files_.size() - kept_count;
-        const unsigned threads =
-            options.jobs == 0 ? std::max(1U, std::thread::hardware_concurrency()) : options.jobs;
+        const unsigned threads = threads_for(options.jobs);
         // The threads go to the files; those that are left over, to the releases within them.
         options.jobs =
             std::max(1U, threads / static_cast<unsigned>(std::clamp<std::size_t>(left, 1, threads)));

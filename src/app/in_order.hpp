@@ -10,6 +10,8 @@
 #include <thread>
 #include <vector>
 
+#include "ringwright/each_index.hpp"
+
 namespace ringwright::app {
 
 /// How many threads, and how much may be done ahead of the answer that is waited for.
@@ -45,10 +47,9 @@ void in_order(const OrderedWork& plan, Work work, Deliver deliver, Waiting waiti
             arrived.notify_one();
         }
     };
-    const unsigned hardware = std::max(1U, std::thread::hardware_concurrency());
     const std::size_t count = plan.end - plan.begin;
     std::vector<std::jthread> pool;
-    for (std::size_t t = 0; t < std::min<std::size_t>(plan.jobs == 0 ? hardware : plan.jobs, count); ++t)
+    for (std::size_t t = 0; t < std::min<std::size_t>(threads_for(plan.jobs), count); ++t)
         pool.emplace_back(labour);
     try {
         for (std::size_t i = plan.begin; i < plan.end; ++i) {

@@ -1,14 +1,10 @@
 #include "event/spectrum.hpp"
 
-#include <fftw3.h>
-
 #include <algorithm>
 #include <cmath>
-#include <memory>
-#include <mutex>
 #include <numbers>
 
-#include "ringwright/transform_planner.hpp"
+#include "ringwright/power_spectrum.hpp"
 
 namespace ringwright::event_search {
 namespace {
@@ -16,10 +12,6 @@ namespace {
 /// Beyond this damping ratio a line in the spectrum is no longer where the mode is.
 constexpr double spectral_damping = 0.25;
 constexpr std::size_t most_points = std::size_t{1} << 17;
-
-struct FreeFftw {
-    void operator()(void* memory) const { fftw_free(memory); }
-};
 
 double peak_between(const Periodogram& spectrum, double low_hz, double high_hz) {
     const std::vector<double>& power = spectrum.power;
@@ -42,32 +34,14 @@ double peak_between(const Periodogram& spectrum, double low_hz, double high_hz) 
 }  // namespace
 
 Periodogram periodogram_of(std::span<const double> points, double rate_hz) {
-    std::size_t size = 16;
-    while (size < 4 * points.size()) size *= 2;
-    const std::unique_ptr<double, FreeFftw> input(static_cast<double*>(fftw_malloc(sizeof(double) * size)));
-    const std::unique_ptr<fftw_complex, FreeFftw> output(
-        static_cast<fftw_complex*>(fftw_malloc(sizeof(fftw_complex) * (size / 2 + 1))));
+    constexpr double padding = 4.0;
     double mean = 0.0;
     for (const double y : points) mean += y / static_cast<double>(points.size());
-    std::fill(input.get(), input.get() + size, 0.0);
-    std::transform(points.begin(), points.end(), input.get(), [mean](double y) { return y - mean; });
-    fftw_plan plan = nullptr;
-    {
-        const std::lock_guard<std::mutex> lock(transform_planner());
-        plan = fftw_plan_dft_r2c_1d(static_cast<int>(size), input.get(), output.get(), FFTW_ESTIMATE);
-    }
-    fftw_execute(plan);
-    {
-        const std::lock_guard<std::mutex> lock(transform_planner());
-        fftw_destroy_plan(plan);
-    }
+    std::vector<double> centred(points.begin(), points.end());
+    for (double& y : centred) y -= mean;
     Periodogram spectrum;
-    spectrum.step_hz = rate_hz / static_cast<double>(size);
-    spectrum.power.resize(size / 2 + 1);
-    for (std::size_t k = 0; k < spectrum.power.size(); ++k) {
-        const fftw_complex& line = output.get()[k];
-        spectrum.power[k] = line[0] * line[0] + line[1] * line[1];
-    }
+    spectrum.power = padded_power_spectrum(centred, padding);
+    spectrum.step_hz = rate_hz / static_cast<double>(2 * (spectrum.power.size() - 1));
     return spectrum;
 }
 

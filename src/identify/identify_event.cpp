@@ -354,7 +354,7 @@ EventIdentification identify_event(const Recording& recording, const Event& even
     MethodBootstrap bootstrap;
     if (options.replicates > 0)
         bootstrap = bootstrap_methods(fit, affordable_replicates(options.replicates, fit.samples.size()),
-                                      options.seed);
+                                      options.seed, options.threads);
     run_simple_methods(result, fit, bootstrap, options.confidence_level);
     append(result.findings, check_residuals(explanation.answer()));
     if (law)

@@ -5,9 +5,12 @@
 #include <boost/random/mersenne_twister.hpp>
 #include <boost/random/normal_distribution.hpp>
 #include <cmath>
+#include <mutex>
 #include <numbers>
+#include <vector>
 
 #include "identify/decay_quantities.hpp"
+#include "ringwright/each_index.hpp"
 
 namespace ringwright::identify {
 
@@ -86,6 +89,83 @@ std::vector<const NoiseDraw*> spread_draws(const NoiseFit& noise, int replicates
     return chosen;
 }
 
+// What the methods read from the fitted decay with other noise; not valid where they failed.
+struct Replicate {
+    std::array<double, 2> fit_error{};
+    DecrementReading decrement;
+    HalfPowerReading half_power;
+};
+
+// Reads the methods from replicates. The noise of one after the other is drawn from one generator, whichever
+// thread comes for it; what is made of it is work for many.
+class Replicator {
+  public:
+    Replicator(const CurveFit& fit, const VectorXd& model, const DecaySamples& samples,
+               const MethodReadings& readings, const DecrementSettings& decrement,
+               const HalfPowerSettings& half_power)
+        : fit_(fit),
+          model_(model),
+          samples_(samples),
+          readings_(readings),
+          decrement_(decrement),
+          half_power_(half_power),
+          fit_error_(fit) {}
+
+    [[nodiscard]] std::vector<Replicate> run(int count, std::uint64_t seed, unsigned threads) const {
+        std::vector<Replicate> replicates(static_cast<std::size_t>(count));
+        const std::vector<const NoiseDraw*> draws = spread_draws(fit_.noise, count);
+        boost::random::mt19937_64 generator(seed);
+        boost::random::normal_distribution<double> normal;
+        std::mutex drawing;
+        std::size_t next = 0;
+        for_each_index(threads, threads, [&](std::size_t, unsigned) {
+            VectorXd deviates(samples_.size());
+            DecaySamples samples = samples_;
+            for (;;) {
+                std::size_t i = 0;
+                {
+                    const std::scoped_lock lock(drawing);
+                    if (next == replicates.size()) return;
+                    i = next++;
+                    for (double& d : deviates) d = normal(generator);
+                }
+                replicates[i] = read(*draws[i], deviates, samples);
+            }
+        });
+        return replicates;
+    }
+
+  private:
+    [[nodiscard]] Replicate read(const NoiseDraw& draw, const VectorXd& deviates,
+                                 DecaySamples& samples) const {
+        const AutoregressiveNoise noise_model{draw.partial_autocorrelation,
+                                              draw.fit.residual_sum / fit_.noise.degrees_of_freedom};
+        VectorXd noise(samples.size());
+        colour(noise_model, samples.stretches, deviates, noise);
+        samples.value = model_ + noise;
+        Replicate replicate;
+        replicate.fit_error = fit_error_(noise);
+        if (readings_.decrement.valid) replicate.decrement = read_decrement(samples, decrement_);
+        if (readings_.half_power.valid) {
+            // The window was chosen by a decay rate that has its own error.
+            HalfPowerSettings chosen_anew = half_power_;
+            const double rate = (fit_.oscillator().damping_ratio() + replicate.fit_error[1]) *
+                                fit_.oscillator().angular_frequency();
+            chosen_anew.window_rate = window_rate_for(half_power_.cycle_hz, rate, half_power_.end_s);
+            replicate.half_power = read_half_power(samples, chosen_anew);
+        }
+        return replicate;
+    }
+
+    const CurveFit& fit_;
+    const VectorXd& model_;
+    const DecaySamples& samples_;
+    const MethodReadings& readings_;
+    const DecrementSettings& decrement_;
+    const HalfPowerSettings& half_power_;
+    FitError fit_error_;
+};
+
 template <typename Reading>
 void collect(MethodErrors& errors, const Reading& reading, const Oscillator& truth,
              const std::array<double, 2>& fit_error) {
@@ -117,7 +197,7 @@ void summarise(MethodErrors& errors, int replicates) {
 
 }  // namespace
 
-MethodBootstrap bootstrap_methods(const CurveFit& fit, int replicates, std::uint64_t seed) {
+MethodBootstrap bootstrap_methods(const CurveFit& fit, int replicates, std::uint64_t seed, unsigned threads) {
     MethodBootstrap result;
     const Setup setup = set_up(fit);
     MethodReadings& readings = result.readings;
@@ -148,31 +228,12 @@ MethodBootstrap bootstrap_methods(const CurveFit& fit, int replicates, std::uint
         settings.peak_known = true;
         readings.half_power = read_half_power(samples, settings);  // as the replicates will be read
     }
-    const FitError fit_error(fit);
-    const std::vector<const NoiseDraw*> draws = spread_draws(fit.noise, replicates);
-    boost::random::mt19937_64 generator(seed);
-    boost::random::normal_distribution<double> normal;
-    VectorXd deviates(samples.size()), noise(samples.size());
-    for (const NoiseDraw* draw : draws) {
-        const AutoregressiveNoise model{draw->partial_autocorrelation,
-                                        draw->fit.residual_sum / fit.noise.degrees_of_freedom};
-        for (double& d : deviates) d = normal(generator);
-        colour(model, samples.stretches, deviates, noise);
-        samples.value = setup.model + noise;
-        const std::array<double, 2> error = fit_error(noise);
-        if (readings.decrement.valid) {
-            const DecrementReading again = read_decrement(samples, decrement_settings);
-            if (again.valid) collect(result.decrement, again, fit.oscillator(), error);
-        }
-        if (readings.half_power.valid) {
-            // The window was chosen by a decay rate that has its own error.
-            HalfPowerSettings chosen_anew = settings;
-            const double rate =
-                (fit.oscillator().damping_ratio() + error[1]) * fit.oscillator().angular_frequency();
-            chosen_anew.window_rate = window_rate_for(settings.cycle_hz, rate, settings.end_s);
-            const HalfPowerReading again = read_half_power(samples, chosen_anew);
-            if (again.valid) collect(result.half_power, again, fit.oscillator(), error);
-        }
+    const Replicator replicator{fit, setup.model, samples, readings, decrement_settings, settings};
+    for (const Replicate& replicate : replicator.run(replicates, seed, threads)) {
+        if (replicate.decrement.valid)
+            collect(result.decrement, replicate.decrement, fit.oscillator(), replicate.fit_error);
+        if (replicate.half_power.valid)
+            collect(result.half_power, replicate.half_power, fit.oscillator(), replicate.fit_error);
     }
     if (readings.decrement.valid) summarise(result.decrement, replicates);
     if (readings.half_power.valid) summarise(result.half_power, replicates);

@@ -38,6 +38,8 @@ struct MethodBootstrap {
 
 /// Runs both methods on the samples of a valid fit, then on `replicates` decays with the fitted parameters
 /// and noise drawn from the noise model (its own uncertainty included). Preconditions: fit.valid.
-[[nodiscard]] MethodBootstrap bootstrap_methods(const CurveFit& fit, int replicates, std::uint64_t seed);
+/// The answer does not depend on the number of threads.
+[[nodiscard]] MethodBootstrap bootstrap_methods(const CurveFit& fit, int replicates, std::uint64_t seed,
+                                                unsigned threads = 1);
 
 }  // namespace ringwright::identify

@@ -1,51 +1,20 @@
 #include "identify/spectrum.hpp"
 
-#include <fftw3.h>
-
 #include <cmath>
-#include <memory>
-#include <mutex>
+#include <vector>
 
-#include "ringwright/transform_planner.hpp"
+#include "ringwright/power_spectrum.hpp"
 
 namespace ringwright::identify {
 
 using Eigen::Index;
 using Eigen::VectorXd;
 
-namespace {
-
-struct FreeFftw {
-    void operator()(void* p) const { fftw_free(p); }
-};
-
-}  // namespace
-
 PowerSpectrum power_spectrum(const VectorXd& signal, double padding) {
-    Index length = 16;
-    while (static_cast<double>(length) < padding * static_cast<double>(signal.size())) length *= 2;
-    const Index bins = length / 2 + 1;
-    const std::unique_ptr<double, FreeFftw> in(fftw_alloc_real(static_cast<std::size_t>(length)));
-    const std::unique_ptr<fftw_complex, FreeFftw> out(fftw_alloc_complex(static_cast<std::size_t>(bins)));
-    fftw_plan plan = nullptr;
-    {
-        const std::scoped_lock lock(transform_planner());
-        plan = fftw_plan_dft_r2c_1d(static_cast<int>(length), in.get(), out.get(), FFTW_ESTIMATE);
-    }
-    Eigen::Map<VectorXd> padded(in.get(), length);
-    padded.setZero();
-    padded.head(signal.size()) = signal;
-    fftw_execute(plan);
-    PowerSpectrum spectrum;
-    spectrum.bin_cycles = 1.0 / static_cast<double>(length);
-    spectrum.power.resize(bins);
-    for (Index i = 0; i < bins; ++i) {
-        const auto& bin = out.get()[i];
-        spectrum.power(i) = bin[0] * bin[0] + bin[1] * bin[1];
-    }
-    const std::scoped_lock lock(transform_planner());
-    fftw_destroy_plan(plan);
-    return spectrum;
+    const std::vector<double> power =
+        padded_power_spectrum({signal.data(), static_cast<std::size_t>(signal.size())}, padding);
+    const auto bins = static_cast<Index>(power.size());
+    return {Eigen::Map<const VectorXd>(power.data(), bins), 1.0 / static_cast<double>(2 * (bins - 1))};
 }
 
 double refined_peak(const VectorXd& power, Index first, Index last) {

@@ -5,7 +5,6 @@
 #include <algorithm>
 #include <cmath>
 #include <functional>
-#include <thread>
 
 #include "recording/channel_scale.hpp"
 #include "recording/clock.hpp"
@@ -19,6 +18,7 @@
 #include "recording/quantity_words.hpp"
 #include "recording/text_encoding.hpp"
 #include "ringwright/counting.hpp"
+#include "ringwright/each_index.hpp"
 #include "ringwright/error.hpp"
 
 namespace ringwright {
@@ -513,7 +513,7 @@ void read_csv(std::string_view bytes, const ReadOptions& options, Recording& rec
     const OpenTable& open = chosen.open;
     const TimeChoice& time = chosen.time;
     const RowPlan& plan = chosen.plan;
-    const unsigned threads = std::max(1U, std::thread::hardware_concurrency());
+    const unsigned threads = threads_for(0);
     std::optional<SteadyRows> steady;
     if (!time.from_zero)
         steady = read_steady_rows(open.rows(), plan, time.seconds_per_unit, time.rounding_s, threads,
@@ -579,7 +579,7 @@ ChannelSummary summarise_column(const OpenTable& open, const TimeChoice& time, s
     const auto add_all = [&](const Rows& rows) {
         for (const double value : rows.values) add_value(value, summary, sum);
     };
-    const unsigned threads = std::max(1U, std::thread::hardware_concurrency());
+    const unsigned threads = threads_for(0);
     if (open.rows().size() <= longest_column_held)
         add_all(read_rows(open.rows(), plan, threads));
     else

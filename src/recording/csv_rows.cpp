@@ -13,6 +13,7 @@
 #include "recording/clock.hpp"
 #include "recording/in_pieces.hpp"
 #include "recording/input_bytes.hpp"
+#include "ringwright/each_index.hpp"
 
 namespace ringwright {
 namespace {
@@ -386,7 +387,7 @@ class ParallelReader {
     // False when it turned out that there is no steady clock; the rows are then not whole.
     [[nodiscard]] bool read(const std::vector<std::string_view>& pieces,
                             const std::function<void(double)>& progress) {
-        for_each_piece(pieces.size(), threads_, [&](std::size_t i, unsigned thread) {
+        for_each_index(pieces.size(), threads_, [&](std::size_t i, unsigned thread) {
             if (given_up_) return;
             try {
                 read_piece(pieces[i], i, parts_[thread]);

@@ -3,11 +3,11 @@
 #include <algorithm>
 #include <array>
 #include <string>
-#include <thread>
 #include <vector>
 
 #include "recording/in_pieces.hpp"
 #include "recording/input_bytes.hpp"
+#include "ringwright/each_index.hpp"
 
 namespace ringwright {
 namespace {
@@ -99,7 +99,7 @@ ThousandsMarks find_thousands_marks(std::string_view rows, const Table& table) {
     const std::array<char, 3> marks = {table.dialect.decimal == ',' ? '.' : ',', '\'', ' '};
     std::string signs;
     for (const char mark : marks) signs += sign_of(mark, table.dialect);
-    const std::string present = bytes_present(rows, signs, std::max(1U, std::thread::hardware_concurrency()));
+    const std::string present = bytes_present(rows, signs, threads_for(0));
     for (const char mark : marks) {
         if (present.find(sign_of(mark, table.dialect)) == std::string::npos) continue;
         if (table.dialect.grouping != '\0' || (mark == ' ' && table.dialect.delimiter == ' ')) continue;

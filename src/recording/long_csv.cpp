@@ -4,7 +4,6 @@
 #include <atomic>
 #include <cmath>
 #include <optional>
-#include <thread>
 #include <utility>
 
 #include "recording/csv_open.hpp"
@@ -12,6 +11,7 @@
 #include "recording/health.hpp"
 #include "recording/in_pieces.hpp"
 #include "recording/signal_digest.hpp"
+#include "ringwright/each_index.hpp"
 #include "ringwright/error.hpp"
 
 namespace ringwright {
@@ -19,10 +19,6 @@ namespace {
 
 constexpr std::size_t piece_bytes = std::size_t{1} << 20;
 constexpr double day_s = 86400.0;
-
-unsigned thread_count() {
-    return std::max(1U, std::thread::hardware_concurrency());
-}
 
 class LongCsv final : public LongRecording {
   public:
@@ -50,8 +46,8 @@ class LongCsv final : public LongRecording {
         const bool stamped = needs_times(first, last);
         part.samples.resize(range.end - range.begin);
         if (stamped) part.clock.times_s.resize(range.end - range.begin);
-        std::vector<Rows> buffers(thread_count());
-        for_each_piece(last - first + 1, thread_count(), [&](std::size_t i, unsigned thread) {
+        std::vector<Rows> buffers(threads_for(0));
+        for_each_index(last - first + 1, threads_for(0), [&](std::size_t i, unsigned thread) {
             copy_piece(pieces_[first + i], buffers[thread], range, part);
         });
         if (stamped)
@@ -106,9 +102,9 @@ class LongCsv final : public LongRecording {
 
     void digest_all() {
         pieces_.resize((rows().size() + piece_bytes - 1) / piece_bytes);
-        std::vector<Rows> buffers(thread_count());
+        std::vector<Rows> buffers(threads_for(0));
         std::atomic<bool> hopeless{false};
-        for_each_piece(pieces_.size(), thread_count(), [&](std::size_t i, unsigned thread) {
+        for_each_index(pieces_.size(), threads_for(0), [&](std::size_t i, unsigned thread) {
             if (hopeless) return;
             CsvPiece& piece = pieces_[i];
             piece.begin = line_start(i * piece_bytes);

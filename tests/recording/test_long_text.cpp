@@ -15,6 +15,7 @@
 #include "recording/csv_rows.hpp"
 #include "recording/in_pieces.hpp"
 #include "recording/stamp_course.hpp"
+#include "ringwright/each_index.hpp"
 #include "ringwright/recording.hpp"
 #include "support/draws.hpp"
 
@@ -179,7 +180,7 @@ TEST_CASE("a failure in the midst of a reading in pieces comes out, and no threa
     plan.value_column = 1;
     const auto stop = [](double) { throw std::runtime_error("stopped"); };
     CHECK_THROWS_AS(read_rows(rows, plan, 3, stop), std::runtime_error);
-    CHECK_THROWS_AS(for_each_piece(100, 4,
+    CHECK_THROWS_AS(for_each_index(100, 4,
                                    [](std::size_t i, unsigned) {
                                        if (i == 50) throw std::runtime_error("stopped");
                                    }),
