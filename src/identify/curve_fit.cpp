@@ -168,6 +168,26 @@ bool settle(CurveFit& fit) {
 
 namespace {
 
+// The same, unless the noise model has taken up the ringing: samples before the decay, which no decay
+// explains, can lead it there, and what is fitted is then their end. The fit for white noise and a noise
+// model that cannot ring are kept in its place, so that those samples show.
+bool settle_on_decay(CurveFit& fit) {
+    constexpr double most_left = 100.0, explained = 0.01;  // of the sums of squares
+    const DecayModel before = fit.fit.model;
+    if (!settle(fit)) return false;
+    const VectorXd& value = fit.samples.value;
+    const double total = (value.array() - value.mean()).square().sum();
+    if (fit.residual.squaredNorm() < explained * total) return true;
+    ProjectedFit white = fit_projected(before, fit.samples, AutoregressiveNoise{});
+    if (!(white.residual_sum < explained * total) ||
+        fit.residual.squaredNorm() < most_left * white.residual_sum)
+        return true;
+    fit.fit = std::move(white);
+    NoiseOptions options = noise_alone();
+    options.highest_order = 1;
+    return estimate_noise(fit, options);
+}
+
 // First blocks that do not belong to the decay (the release or the contact still going on) show as
 // innovations far beyond the rest; each test has a false-alarm rate of 1e-5.
 Index misfitting_start(const CurveFit& fit) {
@@ -395,7 +415,7 @@ CurveFit fit_decay(const Recording& recording, const Event& event, const CurveFi
     reblock(fit);
     fit.reason = "the samples do not determine a decay (too few, or too much noise)";
     for (int attempt = 0; attempt < most_attempts; ++attempt) {
-        if (fit.samples.size() < fewest_rows || !settle(fit)) return fit;
+        if (fit.samples.size() < fewest_rows || !settle_on_decay(fit)) return fit;
         if (replace_spikes(fit)) {
             reblock(fit);
             continue;

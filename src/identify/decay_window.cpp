@@ -12,7 +12,7 @@ using Eigen::Index;
 
 namespace {
 
-constexpr double gap_in_steps = 2.5;  // a longer step is a gap
+constexpr double gap_in_steps = 2.5;  // a longer step is a gap, unless the next is as long
 constexpr double finest_turn =
     2.0 * std::numbers::pi / 24.0;  // of the fastest pole, a block: loses 0.6 % of information
 constexpr double coarsest_turn = 2.0 * std::numbers::pi / 8.0;  // loses 5 %
@@ -54,6 +54,36 @@ std::vector<char> usable_samples(const Recording& recording, std::size_t begin, 
     return usable;
 }
 
+// How the samples follow each other in a window.
+class Steps {
+  public:
+    explicit Steps(const DecayWindow& window) : window_(window), longest_(gap_in_steps / window.rate_hz) {}
+
+    // Whether no run goes on from the sample before to this one: time was lost, or the rate changes.
+    [[nodiscard]] bool breaks_before(std::size_t i) const {
+        if (i == 0 || window_.time_s.empty()) return false;
+        if (!is_long(i)) return i > 1 && is_slow(i - 1);
+        return !is_slow(i) || (i > 1 && !is_long(i - 1));
+    }
+
+  private:
+    [[nodiscard]] double step(std::size_t i) const {
+        return i > 0 && i < window_.size() ? window_.time_of(i) - window_.time_of(i - 1) : 0.0;
+    }
+    [[nodiscard]] bool is_long(std::size_t i) const { return step(i) > longest_; }
+    // A long step beside another as long is no gap: the recorder went on at a lower rate.
+    [[nodiscard]] bool is_slow(std::size_t i) const {
+        constexpr double alike = 1.2;
+        const auto as_long = [&](std::size_t other) {
+            return step(other) < alike * step(i) && step(i) < alike * step(other);
+        };
+        return is_long(i) && (as_long(i - 1) || as_long(i + 1));
+    }
+
+    const DecayWindow& window_;
+    double longest_;
+};
+
 }  // namespace
 
 DecayWindow cut_window(const Recording& recording, std::size_t begin, std::size_t end) {
@@ -69,7 +99,7 @@ DecayWindow cut_window(const Recording& recording, std::size_t begin, std::size_
         for (double& t : window.time_s) t -= start;
     }
     const std::vector<char> usable = usable_samples(recording, begin, end);
-    const double longest_step = gap_in_steps / window.rate_hz;
+    const Steps steps(window);
     SampleRange run{0, 0};
     const auto close = [&](std::size_t at) {
         run.end = at;
@@ -77,8 +107,7 @@ DecayWindow cut_window(const Recording& recording, std::size_t begin, std::size_
     };
     bool open = false;
     for (std::size_t i = 0; i < window.size(); ++i) {
-        const bool gap = i > 0 && window.time_of(i) - window.time_of(i - 1) > longest_step;
-        if (open && (gap || !usable[i])) {
+        if (open && (steps.breaks_before(i) || !usable[i])) {
             close(i);
             open = false;
         }
