@@ -46,6 +46,7 @@ struct EventOptions {
     std::optional<double> from_s, to_s;  ///< a window by hand, on the recording's clock
     std::optional<double> near_hz;       ///< the mode meant
     ReadProgress progress;               ///< called while a long recording is searched
+    unsigned threads = 1;                ///< the answer does not depend on it
 };
 
 struct EventSearch {

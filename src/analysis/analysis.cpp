@@ -21,8 +21,9 @@ using Stretches = std::shared_ptr<const LongRecording>;
 RecordingIdentification search(RecordingInput input, const AnalysisOptions& options) {
     RecordingIdentification result;
     const Stretches& stretches = input.stretches;
-    EventSearch found =
-        stretches ? find_events(*stretches, options.event) : find_events(input.recording, options.event);
+    EventOptions wanted = options.event;
+    wanted.threads = threads_for(options.jobs);
+    EventSearch found = stretches ? find_events(*stretches, wanted) : find_events(input.recording, wanted);
     result.sample_count = stretches ? stretches->size() : input.recording.size();
     result.duration_s = stretches ? stretches->duration_s() : input.recording.duration_s();
     result.findings = input.recording.findings;

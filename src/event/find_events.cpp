@@ -852,8 +852,8 @@ std::string reason_for_none(const SearchedStretch& searched) {
 namespace {
 
 bool constant(const Series& series) {
-    const auto [low, high] = std::minmax_element(series.values().begin(), series.values().end());
-    return !(*high > *low);
+    const std::span<const double> values = series.values();
+    return std::all_of(values.begin(), values.end(), [&](double value) { return value == values.front(); });
 }
 
 /// Whether the last twentieth of the values lies elsewhere than the first, plainly outside their scatter.
@@ -873,8 +873,8 @@ bool settles_elsewhere(std::span<const double> values) {
 }
 
 /// Hum would hide the start and pass for a steady motion; the fit that follows has it as a tone.
-std::vector<double> take_out_hum(const Series& recorded, Series& series) {
-    auto cleaned = without_hum(recorded.values(), recorded.rate_hz());
+std::vector<double> take_out_hum(const Series& recorded, Series& series, unsigned threads) {
+    auto cleaned = without_hum(recorded.values(), recorded.rate_hz(), threads);
     if (!cleaned) return {};
     series.replace(std::move(cleaned->values));
     return std::move(cleaned->lines_hz);
@@ -907,9 +907,9 @@ void unhide_drops(Search& search) {
 }
 
 /// All decays of the search, in order.
-void find_all(Search& search) {
+void find_all(Search& search, unsigned threads) {
     look_for_drops(search);
-    const std::vector<Onset> onsets = find_onsets(search.pyramid);
+    const std::vector<Onset> onsets = find_onsets(search.pyramid, threads);
     for (const Onset& onset : onsets) try_onset(search, onset, onsets);
     if (shows_acceleration(search.recording.quantity)) try_answers(search, onsets);
     std::sort(search.found.begin(), search.found.end(),
@@ -940,10 +940,10 @@ SearchedStretch search_stretch(const Recording& recording, const EventOptions& o
     const Series recorded(recording);
     if (constant(recorded)) return result;
     Series series = recorded;
-    const std::vector<double> hum_hz = take_out_hum(recorded, series);
+    const std::vector<double> hum_hz = take_out_hum(recorded, series, options.threads);
     const Pyramid pyramid(series.values());
     Search search{recording, series, pyramid, options.kind, options.near_hz.has_value(), {}, {}, {}, false};
-    find_all(search);
+    find_all(search, options.threads);
     for (const Found& found : search.found) {
         result.candidates.push_back(
             {found, to_event(found, search, options), rest_rms(series.values(), found.course)});

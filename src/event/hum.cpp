@@ -8,6 +8,8 @@
 #include <numbers>
 #include <numeric>
 
+#include "ringwright/each_index.hpp"
+
 namespace ringwright::event_search {
 namespace {
 
@@ -173,10 +175,13 @@ void subtract(std::vector<double>& values, const Line& line) {
 
 }  // namespace
 
-std::optional<Cleaned> without_hum(std::span<const double> values, double rate_hz) {
+std::optional<Cleaned> without_hum(std::span<const double> values, double rate_hz, unsigned threads) {
+    constexpr std::array mains_hz{50.0, 60.0};
+    std::array<Line, mains_hz.size()> lines;
+    for_each_index(lines.size(), threads,
+                   [&](std::size_t i, unsigned) { lines[i] = find_line(values, rate_hz, mains_hz[i]); });
     std::optional<Cleaned> cleaned;
-    for (const double mains_hz : {50.0, 60.0}) {
-        const Line line = find_line(values, rate_hz, mains_hz);
+    for (const Line& line : lines) {
         if (!line.found) continue;
         if (!cleaned) cleaned = Cleaned{{values.begin(), values.end()}, {}};
         subtract(cleaned->values, line);

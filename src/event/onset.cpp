@@ -4,6 +4,8 @@
 #include <cmath>
 #include <numbers>
 
+#include "ringwright/each_index.hpp"
+
 namespace ringwright::event_search {
 namespace {
 
@@ -155,15 +157,18 @@ std::optional<Onset> onset_at(const Pyramid& pyramid, std::size_t level, std::si
     return best;
 }
 
-std::vector<Onset> find_onsets(const Pyramid& pyramid) {
-    std::vector<Onset> onsets;
-    for (std::size_t level = 0; level < pyramid.levels(); ++level) {
+std::vector<Onset> find_onsets(const Pyramid& pyramid, unsigned threads) {
+    std::vector<std::vector<Onset>> of_level(pyramid.levels());
+    // The finest level, which comes first, is half of what there is to read.
+    for_each_index(of_level.size(), threads, [&](std::size_t level, unsigned) {
         const std::span<const double> means = pyramid.level(level);
         for (const Place& place : places_of(means)) {
             if (hopeless(means, place)) continue;
-            if (const auto onset = onset_at(pyramid, level, place.block)) onsets.push_back(*onset);
+            if (const auto onset = onset_at(pyramid, level, place.block)) of_level[level].push_back(*onset);
         }
-    }
+    });
+    std::vector<Onset> onsets;
+    for (const std::vector<Onset>& found : of_level) onsets.insert(onsets.end(), found.begin(), found.end());
     std::stable_sort(onsets.begin(), onsets.end(),
                      [](const Onset& a, const Onset& b) { return a.score > b.score; });
     return onsets;

@@ -24,6 +24,6 @@ struct Onset {
 [[nodiscard]] std::optional<Onset> onset_at(const Pyramid& pyramid, std::size_t level, std::size_t block);
 
 /// All of them, best first, each place and scale on its own (one release shows on several scales).
-[[nodiscard]] std::vector<Onset> find_onsets(const Pyramid& pyramid);
+[[nodiscard]] std::vector<Onset> find_onsets(const Pyramid& pyramid, unsigned threads = 1);
 
 }  // namespace ringwright::event_search
