@@ -303,7 +303,7 @@ bool start_fit(CurveFit& fit, const Event& event, const CurveFitOptions& options
     }
     const bool hum = !event.hum_hz.empty() && guess > 0.0;
     const std::optional<double> near = hum ? std::optional(guess) : options.near_hz;
-    const std::optional<ProjectedFit> start = find_start(fit.samples, guess, near);
+    const std::optional<ProjectedFit> start = find_start(fit.samples, guess, near, options.threads);
     if (!start) {
         fit.reason = "no decaying oscillation fits the recording";
         return false;

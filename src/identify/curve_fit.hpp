@@ -20,6 +20,7 @@ struct CurveFitOptions {
     std::optional<int> modes;  ///< exactly so many; otherwise as many as the data show
     int noise_draws = 40;
     std::uint64_t seed = 1;
+    unsigned threads = 1;  ///< of the search for a start; the answer does not depend on it
 };
 
 /// A decay fitted by generalised least squares. All parameters, linear ones first, are q-coordinates times

@@ -328,6 +328,7 @@ EventIdentification identify_event(const Recording& recording, const Event& even
     fit_options.near_hz = options.near_hz;
     fit_options.modes = options.modes;
     fit_options.seed = options.seed;
+    fit_options.threads = options.threads;
     const Explanation explanation = explain(recording, event, fit_options);
     const std::optional<LawFit>& law = explanation.law;
     const CurveFit& fit = explanation.fit();

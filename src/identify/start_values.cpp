@@ -8,6 +8,7 @@
 #include <vector>
 
 #include "identify/spectrum.hpp"
+#include "ringwright/each_index.hpp"
 
 namespace ringwright::identify {
 
@@ -86,16 +87,19 @@ Candidate best_damping(const DecaySamples& samples, double omega, double total) 
 }  // namespace
 
 std::optional<ProjectedFit> find_start(const DecaySamples& samples, double guess_hz,
-                                       std::optional<double> near_hz) {
-    const AutoregressiveNoise white;
+                                       std::optional<double> near_hz, unsigned threads) {
     const double total = samples.value.squaredNorm();
-    std::vector<Candidate> tried;
-    for (const double omega : candidate_frequencies(samples, guess_hz, near_hz))
-        tried.push_back(best_damping(samples, omega, total));
+    const std::vector<double> candidates = candidate_frequencies(samples, guess_hz, near_hz);
+    std::vector<Candidate> tried(candidates.size());
+    for_each_index(tried.size(), threads,
+                   [&](std::size_t i, unsigned) { tried[i] = best_damping(samples, candidates[i], total); });
     std::ranges::sort(tried, {}, &Candidate::residual_sum);
+    std::vector<ProjectedFit> fits(std::min(refined_starts, tried.size()));
+    for_each_index(fits.size(), threads, [&](std::size_t i, unsigned) {
+        fits[i] = fit_projected(tried[i].model, samples, AutoregressiveNoise{}, 40);
+    });
     std::optional<ProjectedFit> found;
-    for (std::size_t i = 0; i < std::min(refined_starts, tried.size()); ++i) {
-        ProjectedFit fit = fit_projected(tried[i].model, samples, white, 40);
+    for (ProjectedFit& fit : fits) {
         if (!std::isfinite(fit.residual_sum) || !fit.model.parameters().allFinite()) continue;
         if (!found || fit.residual_sum < found->residual_sum) found = std::move(fit);
     }

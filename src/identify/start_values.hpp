@@ -12,7 +12,7 @@ namespace ringwright::identify {
 /// damping ratios, the best few fitted. `near_hz` restricts the candidates to within ±40 % of a frequency.
 /// Nothing where no start converges.
 [[nodiscard]] std::optional<ProjectedFit> find_start(const DecaySamples& samples, double guess_hz,
-                                                     std::optional<double> near_hz);
+                                                     std::optional<double> near_hz, unsigned threads = 1);
 
 /// Where `fit` does not ring and the recording does, about `guess_hz`: the ring on a slow exponential, as an
 /// AC-coupled sensor leaves them of a release. Nothing where that leaves more than a fifth of what
