@@ -365,11 +365,15 @@ Flight to_flight(const Blocks& blocks, const Plateau& plateau) {
             plateau.rms};
 }
 
-/// Whether the sensor goes from a hold to free fall within the time in which a hand or magnet lets go.
+/// Whether the sensor goes from a hold to free fall within the time in which a hand or magnet lets go, and
+/// was held for longer than that: crest and trough of a swing that lie 1 g apart are each shorter than the
+/// way from one to the other.
 bool lets_go(const Blocks& blocks, const Plateau& hold, const Plateau& fall) {
-    constexpr double longest_s = 0.06;
-    const double gap_s = static_cast<double>(fall.begin - std::min(fall.begin, hold.end)) * blocks.step_s;
-    return like_gravity(fall.level - hold.level) && gap_s < longest_s;
+    constexpr double longest_s = 0.06, held_longer = 1.5;
+    const double gap = static_cast<double>(fall.begin - std::min(fall.begin, hold.end));
+    const double held = static_cast<double>(hold.end - hold.begin);
+    return like_gravity(fall.level - hold.level) && gap * blocks.step_s < longest_s &&
+           held > held_longer * gap;
 }
 
 bool at_level_of(const Flight& flight, const Plateau& plateau) {
