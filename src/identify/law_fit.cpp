@@ -250,7 +250,7 @@ std::vector<LawState> starts_with(const LawFit& fit, LawParameter added) {
             return {changed(0.9 * s, 0.1 * s * 3.0 * pi / (4.0 * swing)),
                     changed(0.4 * s, 0.6 * s * 3.0 * pi / (2.0 * swing))};
         case LawParameter::asymmetry:
-            return {changed(s, 0.1 * s), changed(s, -0.1 * s)};
+            return {changed(s, 0.1 * s), changed(s, -0.1 * s), changed(s, 0.5 * s), changed(s, -0.5 * s)};
         default: {  // also as strong as the softening and hardening that move the frequency by a tenth
             LawState soft = changed(s, -0.25 / (swing * swing)), hard = changed(s, 0.25 / (swing * swing));
             soft.law[LawParameter::log_frequency] += 0.05;
@@ -340,8 +340,8 @@ bool settle_branches(LawFit& fit) {
     return true;
 }
 
-// The terms whose own score comes near the best one's; strong friction, which is far from a small change of a
-// viscous decay, always.
+// The terms whose own score comes near the best one's; strong friction and a damper that is much stronger one
+// way, which are far from a small change of a viscous decay, always.
 std::vector<LawParameter> worth_trying(const LawFit& fit, const std::vector<LawParameter>& terms) {
     constexpr double near_enough = 0.2;
     std::vector<double> gains;
@@ -351,8 +351,10 @@ std::vector<LawParameter> worth_trying(const LawFit& fit, const std::vector<LawP
     }
     const double best = *std::ranges::max_element(gains);
     std::vector<LawParameter> chosen;
-    for (std::size_t i = 0; i < terms.size(); ++i)
-        if (gains[i] >= near_enough * best || terms[i] == LawParameter::friction) chosen.push_back(terms[i]);
+    for (std::size_t i = 0; i < terms.size(); ++i) {
+        const bool far = terms[i] == LawParameter::friction || terms[i] == LawParameter::asymmetry;
+        if (far || gains[i] >= near_enough * best) chosen.push_back(terms[i]);
+    }
     return chosen;
 }
 
