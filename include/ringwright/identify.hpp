@@ -105,7 +105,7 @@ struct IdentifyOptions {
     bool pictures = false;       ///< fill DecayPicture
     std::uint64_t seed = 20311;  ///< of the bootstrap; the same recording and seed give the same answer
     int replicates = 200;        ///< of the bootstrap; 0: curve fit only
-    unsigned threads = 1;        ///< of the bootstrap; the answer does not depend on it
+    unsigned threads = 1;        ///< within a release; the answer does not depend on it
 };
 
 struct EventIdentification {

@@ -2,28 +2,21 @@
 
 namespace ringwright::event_search {
 
-/// d/dt of e^(−st)[A·C + B·S], p = ω² − s²: e^(−st)[(B − sA)·C − (pA + sB)·S].
-Swing::Terms Swing::rate_of(const Terms& terms) const {
-    const double s = shape_.decay_rate(), omega = shape_.undamped_angular_frequency,
-                 p = omega * omega - s * s;
-    return {terms.sine_part - s * terms.cosine_part, -p * terms.cosine_part - s * terms.sine_part};
-}
-
 /// The decaying motion whose rate this is: with D² + 2sD + ω² = 0 it is −(D + 2s)/ω² of it.
-Swing::Terms Swing::integral_of(const Terms& terms) const {
+DecayAmplitudes Swing::integral_of(const DecayAmplitudes& amplitudes) const {
     const double s = shape_.decay_rate(), omega = shape_.undamped_angular_frequency;
-    const Terms rate = rate_of(terms);
+    const DecayAmplitudes rate = rate_of(shape_, amplitudes);
     const double divisor = -omega * omega;
-    return {(rate.cosine_part + 2.0 * s * terms.cosine_part) / divisor,
-            (rate.sine_part + 2.0 * s * terms.sine_part) / divisor};
+    return {(rate.cosine_part + 2.0 * s * amplitudes.cosine_part) / divisor,
+            (rate.sine_part + 2.0 * s * amplitudes.sine_part) / divisor};
 }
 
 Swing::Swing(const DecayFit& fit, const Footing& footing) : shape_(fit.shape), gravity_(footing.gravity) {
-    const Terms measured{footing.down * fit.cosine_part, footing.down * fit.sine_part};
+    const DecayAmplitudes measured{footing.down * fit.cosine_part, footing.down * fit.sine_part};
     if (footing.quantity == MeasuredQuantity::displacement) {
-        way_ = measured, acceleration_ = rate_of(rate_of(measured));
+        way_ = measured, acceleration_ = rate_of(shape_, rate_of(shape_, measured));
     } else if (footing.quantity == MeasuredQuantity::velocity) {
-        way_ = integral_of(measured), acceleration_ = rate_of(measured);
+        way_ = integral_of(measured), acceleration_ = rate_of(shape_, measured);
     } else {
         way_ = integral_of(integral_of(measured)), acceleration_ = measured;
     }

@@ -31,17 +31,10 @@ class Swing {
     [[nodiscard]] std::optional<double> last_free(double from, double to) const;
 
   private:
-    struct Terms {
-        double cosine_part = 0.0, sine_part = 0.0;
-        [[nodiscard]] double at(const DecayTerms& terms) const {
-            return cosine_part * terms.cosine_like + sine_part * terms.sine_like;
-        }
-    };
-    [[nodiscard]] Terms rate_of(const Terms& terms) const;
-    [[nodiscard]] Terms integral_of(const Terms& terms) const;
+    [[nodiscard]] DecayAmplitudes integral_of(const DecayAmplitudes& amplitudes) const;
     DecayShape shape_;
     double gravity_ = 0.0;
-    Terms way_, acceleration_;
+    DecayAmplitudes way_, acceleration_;
 };
 
 }  // namespace ringwright::event_search

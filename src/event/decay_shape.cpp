@@ -240,6 +240,13 @@ DecayTerms decay_terms(const DecayShape& shape, double t) {
     return {0.5 * (slow + fast), 0.5 * (slow - fast) / root};
 }
 
+/// d/dt of e^(−st)[A·C + B·S], p = ω² − s²: e^(−st)[(B − sA)·C − (pA + sB)·S].
+DecayAmplitudes rate_of(const DecayShape& shape, const DecayAmplitudes& amplitudes) {
+    const double s = shape.decay_rate(), omega = shape.undamped_angular_frequency, p = omega * omega - s * s;
+    return {amplitudes.sine_part - s * amplitudes.cosine_part,
+            -p * amplitudes.cosine_part - s * amplitudes.sine_part};
+}
+
 double DecayFit::value_at(double t) const {
     const DecayTerms terms = decay_terms(shape, t);
     return offset + cosine_part * terms.cosine_like + sine_part * terms.sine_like;

@@ -31,6 +31,16 @@ struct DecayTerms {
 };
 [[nodiscard]] DecayTerms decay_terms(const DecayShape& shape, double t);
 
+/// e^(−st)[A·C + B·S].
+struct DecayAmplitudes {
+    double cosine_part = 0.0, sine_part = 0.0;
+    [[nodiscard]] double at(const DecayTerms& terms) const {
+        return cosine_part * terms.cosine_like + sine_part * terms.sine_like;
+    }
+};
+/// Those of its rate, 1/step.
+[[nodiscard]] DecayAmplitudes rate_of(const DecayShape& shape, const DecayAmplitudes& amplitudes);
+
 /// A least-squares fit of offset + e^(−st)[A·C + B·S] to points at t = 0, 1, 2 …
 struct DecayFit {
     DecayShape shape;

@@ -14,10 +14,7 @@ double cycle_of(const DecayShape& shape) {
     return 2.0 * std::numbers::pi / shape.undamped_angular_frequency;
 }
 
-struct Trial {
-    DropNumbers numbers;
-    double sum = 0.0;
-};
+using Trial = MotionTrial<DropNumbers>;
 
 /// Moments of release, frequencies and damping ratios about those expected.
 std::vector<Trial> grid(std::span<const double> points, const DropSearch& search, double gravity) {
@@ -78,23 +75,20 @@ double DropMotion::push(double way, double speed) const {
     return omega * omega * (way + sag_) + 2.0 * numbers_.shape.decay_rate() * speed;
 }
 
+DecayAmplitudes DropMotion::swing_in(const Phase& contact) const {
+    return {contact.way, contact.speed + numbers_.shape.decay_rate() * contact.way};
+}
+
 double DropMotion::way_in(const Phase& phase, double t) const {
     const double after = t - phase.begin;
     if (phase.free) return phase.way + after * (phase.speed + 0.5 * gravity_ * after);
-    const DecayTerms terms = decay_terms(numbers_.shape, after);
-    const double sine = phase.speed + numbers_.shape.decay_rate() * phase.way;
-    return phase.way * terms.cosine_like + sine * terms.sine_like;
+    return swing_in(phase).at(decay_terms(numbers_.shape, after));
 }
 
-/// d/dt of e^(−st)[A·C + B·S], p = ω² − s²: e^(−st)[(B − sA)·C − (pA + sB)·S].
 double DropMotion::speed_in(const Phase& phase, double t) const {
     const double after = t - phase.begin;
     if (phase.free) return phase.speed + gravity_ * after;
-    const DecayTerms terms = decay_terms(numbers_.shape, after);
-    const double s = numbers_.shape.decay_rate(), omega = numbers_.shape.undamped_angular_frequency;
-    const double sine = phase.speed + s * phase.way;
-    return phase.speed * terms.cosine_like -
-           ((omega * omega - s * s) * phase.way + s * sine) * terms.sine_like;
+    return rate_of(numbers_.shape, swing_in(phase)).at(decay_terms(numbers_.shape, after));
 }
 
 /// Of a flight from below the level of first touch the damper, drawn out, may push again before the mass has
@@ -152,18 +146,8 @@ double DropMotion::value_at(double t) const {
 std::optional<DropFit> fit_drop(std::span<const double> points, const DropSearch& search, double gravity) {
     constexpr std::size_t kept = 3;
     if (points.size() < fewest_points) return {};
-    std::vector<Trial> trials = grid(points, search, gravity);
-    if (trials.empty()) return {};
-    const auto count = static_cast<std::ptrdiff_t>(std::min(kept, trials.size()));
-    std::partial_sort(trials.begin(), trials.begin() + count, trials.end(),
-                      [](const Trial& a, const Trial& b) { return a.sum < b.sum; });
-    std::optional<DropFit> best;
-    for (std::ptrdiff_t i = 0; i < count; ++i) {
-        DropFit fit = refine(points, trials[static_cast<std::size_t>(i)].numbers, gravity);
-        if (std::isfinite(fit.residual_sum) && (!best || fit.residual_sum < best->residual_sum))
-            best = std::move(fit);
-    }
-    return best;
+    return best_refined(grid(points, search, gravity), kept,
+                        [&](const DropNumbers& start) { return refine(points, start, gravity); });
 }
 
 }  // namespace ringwright::event_search

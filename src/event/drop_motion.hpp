@@ -46,6 +46,7 @@ class DropMotion {
     };
     [[nodiscard]] Phase contact_after(const Phase& flight) const;
     [[nodiscard]] std::optional<Phase> flight_after(const Phase& contact) const;
+    [[nodiscard]] DecayAmplitudes swing_in(const Phase& contact) const;
     [[nodiscard]] double way_in(const Phase& phase, double t) const;
     [[nodiscard]] double speed_in(const Phase& phase, double t) const;
     /// Force of spring and damper a mass.

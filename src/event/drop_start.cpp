@@ -10,8 +10,6 @@
 namespace ringwright::event_search {
 namespace {
 
-constexpr double standard_gravity = 9.80665;  // m/s²
-
 /// Blocks a cycle on which a drop is read: short bounces have to show.
 constexpr double fine_turn = 48.0;
 constexpr std::size_t fewest_blocks = 12;

@@ -13,7 +13,6 @@
 namespace ringwright::event_search {
 namespace {
 
-constexpr double standard_gravity = 9.80665;  // m/s²
 /// What the decay may leave unexplained: as a share of its amplitude, or against the noise in the fall.
 constexpr double misfit = 0.2, misfit_to_noise = 1.5;
 constexpr double least_amplitude = 3.0;  ///< against the noise

@@ -886,8 +886,7 @@ Finding drop_or_pluck() {
             "recording. It is taken as let go. Say --test drop if it fell, --test pluck if it did not."};
 }
 
-/// Takes for the drops they are what passes for plucks since noise hides the fall. What seemed to ring
-/// between the release and the last contact were the bounces.
+/// Takes for the drops they are what passes for plucks since noise hides the fall.
 void unhide_drops(Search& search) {
     const bool may_drop = search.recording.scaled &&
                           search.recording.quantity == MeasuredQuantity::displacement &&

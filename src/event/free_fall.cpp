@@ -8,7 +8,6 @@
 namespace ringwright::event_search {
 namespace {
 
-constexpr double standard_gravity = 9.80665;  // m/s² (NIST SP 811, appendix B.8); sites differ by 0.5 %
 /// What gravity as recorded may differ by: the error of a sensor's scale, a slope, friction in a guide.
 constexpr double tolerance = 0.15;
 constexpr double block_s = 0.0025, window_s = 0.025;

@@ -9,6 +9,9 @@
 
 namespace ringwright::event_search {
 
+inline constexpr double standard_gravity =
+    9.80665;  ///< m/s² (NIST SP 811, appendix B.8); sites differ by 0.5 %
+
 /// A stretch of free fall, positions of the series.
 struct Flight {
     std::size_t begin = 0, end = 0;

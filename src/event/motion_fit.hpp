@@ -5,9 +5,11 @@
 #include <algorithm>
 #include <cmath>
 #include <cstddef>
+#include <optional>
 #include <span>
 #include <unsupported/Eigen/LevenbergMarquardt>
 #include <utility>
+#include <vector>
 
 namespace ringwright::event_search {
 
@@ -101,6 +103,29 @@ auto fit_motion(std::span<const double> points, const Make& make, const Eigen::V
     residuals(at, fit.residuals);
     fit.residual_sum = fit.residuals.squaredNorm();
     return fit;
+}
+
+/// Numbers of a motion that a fit may start from, and the sum of squares that they leave.
+template <typename Numbers>
+struct MotionTrial {
+    Numbers numbers;
+    double sum = 0.0;
+};
+
+/// The best of the fits that `refine` makes of the `kept` trials that leave least; nothing without a trial.
+template <typename Numbers, typename Refine>
+auto best_refined(std::vector<MotionTrial<Numbers>> trials, std::size_t kept, const Refine& refine) {
+    const auto count = static_cast<std::ptrdiff_t>(std::min(kept, trials.size()));
+    std::partial_sort(
+        trials.begin(), trials.begin() + count, trials.end(),
+        [](const MotionTrial<Numbers>& a, const MotionTrial<Numbers>& b) { return a.sum < b.sum; });
+    std::optional<decltype(refine(trials.front().numbers))> best;
+    for (auto trial = trials.begin(); trial != trials.begin() + count; ++trial) {
+        auto fit = refine(trial->numbers);
+        if (std::isfinite(fit.residual_sum) && (!best || fit.residual_sum < best->residual_sum))
+            best = std::move(fit);
+    }
+    return best;
 }
 
 }  // namespace ringwright::event_search

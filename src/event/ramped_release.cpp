@@ -3,6 +3,7 @@
 #include <algorithm>
 #include <cmath>
 #include <numbers>
+#include <utility>
 #include <vector>
 
 namespace ringwright::event_search {
@@ -11,10 +12,7 @@ namespace {
 constexpr double shortest_ramp = 0.5;  // steps
 constexpr double longest_ramp = 0.5;   // cycles: what lets go more slowly than that hardly rings
 
-struct Trial {
-    RampNumbers numbers;
-    double sum = 0.0;
-};
+using Trial = MotionTrial<RampNumbers>;
 
 }  // namespace
 
@@ -48,9 +46,6 @@ std::optional<MotionFit<RampedRelease>> fit_ramped_release(std::span<const doubl
             numbers.ramp = std::max(shortest_ramp, ramp * cycle);
             trials.push_back({numbers, sum_left_by(RampedRelease(numbers), points)});
         }
-    const auto count = static_cast<std::ptrdiff_t>(std::min(kept, trials.size()));
-    std::partial_sort(trials.begin(), trials.begin() + count, trials.end(),
-                      [](const Trial& a, const Trial& b) { return a.sum < b.sum; });
     // Hold, rest, release, ln ramp, ln ω, ln ζ.
     const auto make = [cycle](const Eigen::VectorXd& at) {
         return RampedRelease(
@@ -60,19 +55,14 @@ std::optional<MotionFit<RampedRelease>> fit_ramped_release(std::span<const doubl
              std::clamp(std::exp(at(3)), shortest_ramp, longest_ramp * cycle),
              {std::clamp(std::exp(at(4)), 1e-4, 3.0), std::clamp(std::exp(at(5)), 1e-4, 3.0)}});
     };
-    std::optional<MotionFit<RampedRelease>> best;
-    for (std::ptrdiff_t i = 0; i < count; ++i) {
-        const RampNumbers& n = trials[static_cast<std::size_t>(i)].numbers;
+    return best_refined(std::move(trials), kept, [&](const RampNumbers& n) {
         const double size = 1e-3 * std::abs(n.rest - n.hold);
         Eigen::VectorXd start(6), steps(6);
         start << n.hold, n.rest, n.release, std::log(n.ramp), std::log(n.shape.undamped_angular_frequency),
             std::log(n.shape.damping_ratio);
         steps << size, size, 1e-2, 1e-3, 1e-4, 1e-4;
-        auto fit = fit_motion(points, make, start, steps);
-        if (std::isfinite(fit.residual_sum) && (!best || fit.residual_sum < best->residual_sum))
-            best = std::move(fit);
-    }
-    return best;
+        return fit_motion(points, make, start, steps);
+    });
 }
 
 }  // namespace ringwright::event_search

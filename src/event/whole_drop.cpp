@@ -12,7 +12,6 @@
 namespace ringwright::event_search {
 namespace {
 
-constexpr double standard_gravity = 9.80665;  // m/s²
 /// Blocks a cycle: short bounces have to show.
 constexpr double blocks_a_cycle = 48.0;
 constexpr double cycles_before = 3.0, cycles_after = 3.0;

@@ -10,7 +10,7 @@ namespace ringwright::identify {
 /// A white-noise fit of one oscillator that is good enough to refine from: candidate frequencies from the
 /// spectrum and, for decays that do not ring, from a grid of time constants; each tried over a grid of
 /// damping ratios, the best few fitted. `near_hz` restricts the candidates to within ±40 % of a frequency.
-/// Nothing where no start converges.
+/// The answer does not depend on the number of threads. Nothing where no start converges.
 [[nodiscard]] std::optional<ProjectedFit> find_start(const DecaySamples& samples, double guess_hz,
                                                      std::optional<double> near_hz, unsigned threads = 1);
 
