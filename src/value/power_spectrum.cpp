@@ -7,6 +7,7 @@
 #include <memory>
 #include <mutex>
 #include <new>
+#include <type_traits>
 
 namespace ringwright {
 namespace {
@@ -25,16 +26,21 @@ struct Buffers {
     std::unique_ptr<fftw_complex, FreeFftw> output;
 };
 
+struct DestroyPlan {
+    void operator()(fftw_plan plan) const { fftw_destroy_plan(plan); }
+};
+using Plan = std::unique_ptr<std::remove_pointer_t<fftw_plan>, DestroyPlan>;
+
 /// Making a plan touches what all plans share, and takes longer than a short transform.
 fftw_plan plan_for(std::size_t length, const Buffers& buffers) {
     static std::mutex mutex;
-    static std::map<std::size_t, fftw_plan> plans;
+    static std::map<std::size_t, Plan> plans;
     const std::scoped_lock lock(mutex);
-    fftw_plan& plan = plans[length];
-    if (plan == nullptr)
-        plan = fftw_plan_dft_r2c_1d(static_cast<int>(length), buffers.input.get(), buffers.output.get(),
-                                    FFTW_ESTIMATE);
-    return plan;
+    Plan& plan = plans[length];
+    if (!plan)
+        plan.reset(fftw_plan_dft_r2c_1d(static_cast<int>(length), buffers.input.get(), buffers.output.get(),
+                                        FFTW_ESTIMATE));
+    return plan.get();
 }
 
 }  // namespace
