@@ -240,25 +240,6 @@ std::size_t hidden_release(const CurveFit& fit, const Recording& recording, cons
     return static_cast<std::size_t>(std::ceil(std::min(hidden, largest_share * period) * fit.window.rate_hz));
 }
 
-// Whether what is read behind the decay has the same noise as the decay: an F test of the innovations' mean
-// squares (one false alarm in a thousand). A mass that sticks, or a coarse sensor at rest, is quieter; a hand
-// on the bench is louder.
-bool same_noise_behind(const CurveFit& fit, const Event& event) {
-    constexpr double false_alarm = 1e-3;
-    constexpr Index fewest = 20;
-    const double end_s = static_cast<double>(event.end - fit.window.begin) / fit.window.rate_hz;
-    const Index split =
-        std::upper_bound(fit.samples.time.begin(), fit.samples.time.end(), end_s) - fit.samples.time.begin();
-    const Index behind = fit.samples.size() - split;
-    if (split < fewest || behind < fewest) return true;
-    const double ratio = fit.innovations.tail(behind).squaredNorm() / static_cast<double>(behind) /
-                         (fit.innovations.head(split).squaredNorm() / static_cast<double>(split));
-    if (!std::isfinite(ratio))
-        return false;  // numbers at the end of their range, or nothing but equal values
-    const double below = f_probability(ratio, static_cast<double>(behind), static_cast<double>(split));
-    return below > false_alarm / 2.0 && below < 1.0 - false_alarm / 2.0;
-}
-
 // What the search saw beside the decay is in the model from the first: else a strong tone or mode would be
 // taken for the decay, or the noise model would take it up.
 void add_what_was_seen(CurveFit& fit, const Event& event, const CurveFitOptions& options) {
@@ -397,6 +378,22 @@ bool mind_knocks(CurveFit& fit, const Recording& recording) {
 }
 
 }  // namespace
+
+bool same_noise_behind(const CurveFit& fit, const Event& event) {
+    constexpr double false_alarm = 1e-3;
+    constexpr Index fewest = 20;
+    const double end_s = static_cast<double>(event.end - fit.window.begin) / fit.window.rate_hz;
+    const Index split =
+        std::upper_bound(fit.samples.time.begin(), fit.samples.time.end(), end_s) - fit.samples.time.begin();
+    const Index behind = fit.samples.size() - split;
+    if (split < fewest || behind < fewest) return true;
+    const double ratio = fit.innovations.tail(behind).squaredNorm() / static_cast<double>(behind) /
+                         (fit.innovations.head(split).squaredNorm() / static_cast<double>(split));
+    if (!std::isfinite(ratio))
+        return false;  // numbers at the end of their range, or nothing but equal values
+    const double below = f_probability(ratio, static_cast<double>(behind), static_cast<double>(split));
+    return below > false_alarm / 2.0 && below < 1.0 - false_alarm / 2.0;
+}
 
 CurveFit fit_decay(const Recording& recording, const Event& event, const CurveFitOptions& options) {
     CurveFit fit;

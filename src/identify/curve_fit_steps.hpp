@@ -11,6 +11,11 @@ namespace ringwright::identify {
 /// How far behind the decay a fit reads on: the noise there is the same noise, and a short decay needs it.
 [[nodiscard]] std::size_t end_of_fit(const Event& event);
 
+/// Whether what is read behind the decay has the same noise as the decay: an F test of the innovations' mean
+/// squares (one false alarm in a thousand). A mass that sticks, or a coarse sensor at rest, is quieter; a
+/// hand on the bench is louder.
+[[nodiscard]] bool same_noise_behind(const CurveFit& fit, const Event& event);
+
 /// Estimates the noise of the residuals and the parameter map; false where the design has not full rank.
 bool estimate_noise(CurveFit& fit, const NoiseOptions& options);
 /// The same for a model with these columns (derivatives by all its parameters) and this residual.

@@ -707,13 +707,16 @@ bool may_be_rounding(const LawFit& law, const CurveFit& plain, double resolution
     return curve.size() == other.size() && (curve - other).cwiseAbs().maxCoeff() < apart * step;
 }
 
-}  // namespace
+// A law, and the viscous mode alone from which it grew.
+struct Choice {
+    LawFit law;
+    CurveFit plain;
+};
 
-std::optional<LawFit> choose_law(const CurveFit& viscous, const Recording& recording, const Event& event,
-                                 const CurveFitOptions& options) {
-    if (!viscous.valid) return std::nullopt;
-    std::optional<CurveFit> plain;
-    std::optional<LawFit> chosen;
+// The best of the laws that are worth their price beside this viscous fit.
+std::optional<Choice> best_law(const CurveFit& viscous, const Recording& recording, const Event& event,
+                               const CurveFitOptions& options) {
+    std::optional<Choice> chosen;
     for (const bool keep_slow_terms : {false, true}) {
         if (keep_slow_terms && !has_slow_term(viscous)) break;
         const auto trial = without_components(viscous, options.near_hz.has_value(), keep_slow_terms);
@@ -722,17 +725,44 @@ std::optional<LawFit> choose_law(const CurveFit& viscous, const Recording& recor
         const bool beats = law.terms.count() > 0 &&
                            law.criterion + surcharge(law.terms, *trial) < criterion_of(viscous) &&
                            !may_be_rounding(law, *trial, recording.resolution);
-        if (!beats || (chosen && chosen->criterion < law.criterion)) continue;
-        chosen = std::move(law);
-        plain = trial;
+        if (beats && (!chosen || law.criterion <= chosen->law.criterion)) chosen = {std::move(law), *trial};
     }
+    return chosen;
+}
+
+// A viscous fit that left another noise behind the decay was cut to it, one that took a damper's turn for a
+// knock to what lies before; over so few rows modes and a drift may stand for any law. The best law over all
+// that is read, where it leaves nothing but noise, and the same throughout.
+std::optional<Choice> law_of_whole_decay(const CurveFit& viscous, const Recording& recording,
+                                         const Event& event, const CurveFitOptions& options) {
+    const std::size_t begin = viscous.window.begin, end = end_of_fit(event);
+    if (event.by_hand || begin + viscous.window.size() >= end) return std::nullopt;
+    CurveFit whole = viscous;
+    cut_again(whole, recording, begin, end);
+    whole.samples = block_means(whole.window, viscous.samples.block);
+    whole.fit = fit_projected(whole.fit.model, whole.samples, whole.noise.noise);
+    if (!settle(whole)) return std::nullopt;
+    auto chosen = best_law(whole, recording, event, options);
+    if (!chosen || !same_noise_behind(chosen->law.curve, event) ||
+        leaves_more_than_noise(chosen->law.curve, event))
+        return std::nullopt;
+    return chosen;
+}
+
+}  // namespace
+
+std::optional<LawFit> choose_law(const CurveFit& viscous, const Recording& recording, const Event& event,
+                                 const CurveFitOptions& options) {
+    if (!viscous.valid) return std::nullopt;
+    std::optional<Choice> chosen = best_law(viscous, recording, event, options);
+    if (!chosen) chosen = law_of_whole_decay(viscous, recording, event, options);
     if (!chosen) return std::nullopt;
-    LawFit fit = std::move(*chosen);
+    LawFit fit = std::move(chosen->law);
     widen(fit, recording, event);
     if (fit.terms.friction && fit.measured == Measured::acceleration) fit = without_jumps(fit);
     if (fit.terms.friction && !settle_branches(fit)) return std::nullopt;
     constexpr double most_growth = 1.1;  // by chance, over a wider window
-    if (residual_level(fit.curve) > most_growth * residual_level(*plain)) return std::nullopt;
+    if (residual_level(fit.curve) > most_growth * residual_level(chosen->plain)) return std::nullopt;
     if (!estimate_law_noise(fit, fit.model(), noise_with_draws(options)) || !stands_out_of_noise(fit))
         return std::nullopt;
     if (!estimate_noise(fit.viscous, noise_with_draws(options))) return std::nullopt;
