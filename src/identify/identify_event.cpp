@@ -237,7 +237,7 @@ std::optional<LawFit> law_from_earlier_start(const CurveFit& viscous, const Reco
     const double noise = event.noise_level / std::sqrt(static_cast<double>(law->curve.samples.block));
     if (left > most_noise * noise && left > residual_level(viscous)) return std::nullopt;
     // Two hits are no law, though one may come near to them.
-    if (hit_twice(event) && left > as_noisy * residual_level(viscous)) return std::nullopt;
+    if (hit_twice(event) && left > as_noisy * std::max(residual_level(viscous), noise)) return std::nullopt;
     return law;
 }
 

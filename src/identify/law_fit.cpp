@@ -433,15 +433,29 @@ bool rings_enough(const CurveFit& fit) {
            span * o.slowest_rate() > least_fall && !rings_too_long(fit);
 }
 
-// Near the mode itself, or a multiple of it, where a law leaves its mark.
-bool stands_for_a_law(double log_frequency, double mode_log_frequency, double damping_ratio) {
-    constexpr double most_multiples = 9.0, least_width = 0.03, width_of_broad = 0.2, beside = 0.35;
-    const double order = std::exp(log_frequency - mode_log_frequency);
-    const double nearest = std::max(1.0, std::round(order));
+// Logarithms of the least and the largest frequency at which a mode rings in the course of its decay.
+struct Band {
+    double lowest = 0.0, highest = 0.0;
+};
+
+bool near_mode(double log_frequency, double mode_log_frequency, double damping_ratio) {
+    constexpr double beside = 0.35;
+    return std::abs(std::exp(log_frequency - mode_log_frequency) - 1.0) <
+           std::max(beside, widths_aside * damping_ratio);
+}
+
+// Near the mode itself, or a multiple of it, where a law leaves its mark. A spring that hardens or softens
+// moves the frequency, and its multiples, by what the modes lie apart that stand for it.
+bool stands_for_a_law(double log_frequency, const Band& band, double mode_log_frequency,
+                      double damping_ratio) {
+    constexpr double most_multiples = 9.0, least_width = 0.03, width_of_broad = 0.2;
+    if (near_mode(log_frequency, mode_log_frequency, damping_ratio)) return true;
     // A viscous fit of a broad decay misses its frequency by some per cent.
-    const double multiple_width = std::max(least_width, width_of_broad * damping_ratio);
-    return std::abs(order - 1.0) < std::max(beside, widths_aside * damping_ratio) ||
-           (nearest <= most_multiples && std::abs(order - nearest) < multiple_width * nearest);
+    const double width = std::max(least_width, width_of_broad * damping_ratio);
+    const double lowest = std::exp(log_frequency - band.highest) / (1.0 + width);
+    const double highest = std::exp(log_frequency - band.lowest) / (1.0 - width);
+    const double multiple = std::max(1.0, std::ceil(lowest));
+    return multiple <= most_multiples && multiple < highest;
 }
 
 // The mode alone from several damping ratios: with components about it, its own may have been anything.
@@ -496,8 +510,14 @@ std::optional<CurveFit> without_components(const CurveFit& fit, bool mode_given,
     const MainMode main = main_mode(fit, mode_given);
     std::swap(model.oscillators.front(), model.oscillators[main.index]);
     const double ratio = model.oscillators.front().damping_ratio();
+    Band band{main.log_frequency, main.log_frequency};
+    for (const Oscillator& o : model.oscillators) {
+        if (!near_mode(o.log_frequency, main.log_frequency, ratio)) continue;
+        band.lowest = std::min(band.lowest, o.log_frequency);
+        band.highest = std::max(band.highest, o.log_frequency);
+    }
     const auto aside = [&](double log_frequency) {
-        return stands_for_a_law(log_frequency, main.log_frequency, ratio);
+        return stands_for_a_law(log_frequency, band, main.log_frequency, ratio);
     };
     std::erase_if(model.tones, aside);
     // The mean about which a two-way damper swings moves as the swings get smaller.
@@ -561,6 +581,19 @@ namespace {
 bool leaves_more_than_noise(const CurveFit& fit, const Event& event) {
     constexpr double clearly = 1.5;
     return std::sqrt(fit.noise.noise.variance()) * fit.samples.scale > clearly * event.noise_level;
+}
+
+// A noise model with a resonance at the mode has taken up ringing that a viscous mode left, and then the
+// score of a small change of the law has nothing left to gain.
+bool noise_rings_with_mode(const CurveFit& fit) {
+    constexpr double lowest = 0.7, highest = 1.4, step = 0.05, beside = 0.5;  // of the mode's frequency
+    constexpr double clearly = 4.0;                                           // 6 dB
+    const double mode = fit.oscillator().angular_frequency() * fit.samples.step_s / (2.0 * std::numbers::pi);
+    const AutoregressiveNoise& noise = fit.noise.noise;
+    const double enough = clearly * noise.spectral_density(beside * mode);
+    for (double at = lowest; at < highest && at * mode < 0.5; at += step)
+        if (noise.spectral_density(at * mode) > enough) return true;
+    return false;
 }
 
 // Takes a drift, a mode (but the first `kept`), a tone or a pole out of the model and its coefficients; false
@@ -721,7 +754,8 @@ std::optional<Choice> best_law(const CurveFit& viscous, const Recording& recordi
         if (keep_slow_terms && !has_slow_term(viscous)) break;
         const auto trial = without_components(viscous, options.near_hz.has_value(), keep_slow_terms);
         if (!trial || !rings_enough(*trial)) continue;
-        LawFit law = law_from(*trial, measured_of(recording.quantity), leaves_more_than_noise(*trial, event));
+        const bool misfit = leaves_more_than_noise(*trial, event) || noise_rings_with_mode(*trial);
+        LawFit law = law_from(*trial, measured_of(recording.quantity), misfit);
         const bool beats = law.terms.count() > 0 &&
                            law.criterion + surcharge(law.terms, *trial) < criterion_of(viscous) &&
                            !may_be_rounding(law, *trial, recording.resolution);
@@ -759,6 +793,8 @@ std::optional<LawFit> choose_law(const CurveFit& viscous, const Recording& recor
     if (!chosen) return std::nullopt;
     LawFit fit = std::move(chosen->law);
     widen(fit, recording, event);
+    fit = pruned(fit);
+
     if (fit.terms.friction && fit.measured == Measured::acceleration) fit = without_jumps(fit);
     if (fit.terms.friction && !settle_branches(fit)) return std::nullopt;
     constexpr double most_growth = 1.1;  // by chance, over a wider window

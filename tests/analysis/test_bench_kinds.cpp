@@ -130,3 +130,26 @@ TEST_CASE("a two-way damper is told from all of its decay, where a viscous fit h
         CHECK_FALSE(outcome.frequency[0].beyond_four);
     }
 }
+
+TEST_CASE("a law is told where something else had taken its place") {
+    struct Seen {
+        const char* kind;
+        std::uint64_t seed;
+        const char* model;
+    };
+    // At 57 dB a mode 3.3 times as high stood for the third multiple of a frequency that falls with the
+    // swing. At 54 dB what friction leaves passed for a second hit, and a tone stood for the rest. At 31 dB
+    // the law of a short window kept a term that the wider one had no use for.
+    for (const Seen& seen : {Seen{"hardening, softening", 1'218'000'091, "viscous+hardening"},
+                             Seen{"friction", 1'215'000'162, "viscous+friction"},
+                             Seen{"quadratic", 1'217'000'186, "viscous+quadratic"}}) {
+        const Outcome outcome = outcome_of(seen.kind, seen.seed);
+        CHECK(outcome.model == seen.model);
+        CHECK(std::abs(outcome.frequency[0].relative) < 0.01);
+        CHECK_FALSE(outcome.frequency[0].beyond_four);
+    }
+    // At 60 dB noise with a resonance at the mode took up the ringing that a viscous mode left.
+    const Outcome outcome = outcome_of("hardening, softening", 1'218'000'073);
+    CHECK(std::abs(outcome.frequency[0].relative) < 2e-4);
+    CHECK_FALSE(outcome.frequency[0].beyond_four);
+}
