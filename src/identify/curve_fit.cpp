@@ -168,20 +168,23 @@ bool settle(CurveFit& fit) {
 
 namespace {
 
-// The same, unless the noise model has taken up the ringing: samples before the decay, which no decay
-// explains, can lead it there, and what is fitted is then their end. The fit for white noise and a noise
-// model that cannot ring are kept in its place, so that those samples show.
+// The same, unless the noise model has taken up the ringing: samples before the decay, or a second hit, which
+// no decay explains, can lead it there, and what is fitted is then the rest. The fit for white noise and a
+// noise model that cannot ring are kept in its place, so that those samples show.
 bool settle_on_decay(CurveFit& fit) {
     constexpr double most_left = 100.0, explained = 0.01;  // of the sums of squares
+    constexpr double most = 0.5, little = 0.2;
     const DecayModel before = fit.fit.model;
     if (!settle(fit)) return false;
     const VectorXd& value = fit.samples.value;
-    const double total = (value.array() - value.mean()).square().sum();
-    if (fit.residual.squaredNorm() < explained * total) return true;
+    const double total = (value.array() - value.mean()).square().sum(), left = fit.residual.squaredNorm();
+    if (left < explained * total) return true;
     ProjectedFit white = fit_projected(before, fit.samples, AutoregressiveNoise{});
-    if (!(white.residual_sum < explained * total) ||
-        fit.residual.squaredNorm() < most_left * white.residual_sum)
-        return true;
+    const bool far = white.residual_sum < explained * total && left > most_left * white.residual_sum;
+    // Close modes also give the noise a resonance before they are fitted; but then the decay explains most.
+    const bool rings = left > most * total && white.residual_sum < little * total &&
+                       noise_rings_at(fit, white.model.oscillators.front().angular_frequency());
+    if (!far && !rings) return true;
     fit.fit = std::move(white);
     NoiseOptions options = noise_alone();
     options.highest_order = 1;
@@ -393,6 +396,17 @@ bool same_noise_behind(const CurveFit& fit, const Event& event) {
         return false;  // numbers at the end of their range, or nothing but equal values
     const double below = f_probability(ratio, static_cast<double>(behind), static_cast<double>(split));
     return below > false_alarm / 2.0 && below < 1.0 - false_alarm / 2.0;
+}
+
+bool noise_rings_at(const CurveFit& fit, double angular_frequency) {
+    constexpr double lowest = 0.7, highest = 1.4, step = 0.05, beside = 0.5;  // of the frequency
+    constexpr double clearly = 4.0;                                           // 6 dB
+    const double cycles = angular_frequency * fit.samples.step_s / (2.0 * std::numbers::pi);
+    const AutoregressiveNoise& noise = fit.noise.noise;
+    const double enough = clearly * noise.spectral_density(beside * cycles);
+    for (double at = lowest; at < highest && at * cycles < 0.5; at += step)
+        if (noise.spectral_density(at * cycles) > enough) return true;
+    return false;
 }
 
 CurveFit fit_decay(const Recording& recording, const Event& event, const CurveFitOptions& options) {

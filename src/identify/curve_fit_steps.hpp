@@ -31,6 +31,10 @@ bool estimate_noise(CurveFit& fit, const Eigen::MatrixXd& all_columns, const Eig
 /// Generalised least squares to convergence: noise, parameters, noise … until neither moves.
 bool settle(CurveFit& fit);
 
+/// Whether the noise model has a resonance about this frequency (rad/s; 6 dB above what it has at half of it):
+/// ringing that the model of the decay leaves, rather than noise.
+[[nodiscard]] bool noise_rings_at(const CurveFit& fit, double angular_frequency);
+
 /// Replaces isolated spikes (beyond 7 robust standard deviations of the residuals, at most 1 % of the
 /// samples) in the window by the model plus the residual around them; true when there were any, with a
 /// finding.

@@ -583,19 +583,6 @@ bool leaves_more_than_noise(const CurveFit& fit, const Event& event) {
     return std::sqrt(fit.noise.noise.variance()) * fit.samples.scale > clearly * event.noise_level;
 }
 
-// A noise model with a resonance at the mode has taken up ringing that a viscous mode left, and then the
-// score of a small change of the law has nothing left to gain.
-bool noise_rings_with_mode(const CurveFit& fit) {
-    constexpr double lowest = 0.7, highest = 1.4, step = 0.05, beside = 0.5;  // of the mode's frequency
-    constexpr double clearly = 4.0;                                           // 6 dB
-    const double mode = fit.oscillator().angular_frequency() * fit.samples.step_s / (2.0 * std::numbers::pi);
-    const AutoregressiveNoise& noise = fit.noise.noise;
-    const double enough = clearly * noise.spectral_density(beside * mode);
-    for (double at = lowest; at < highest && at * mode < 0.5; at += step)
-        if (noise.spectral_density(at * mode) > enough) return true;
-    return false;
-}
-
 // Takes a drift, a mode (but the first `kept`), a tone or a pole out of the model and its coefficients; false
 // where there is none of that number.
 bool erase_component(DecayModel& model, VectorXd& coefficients, std::size_t number, std::size_t kept) {
@@ -754,7 +741,9 @@ std::optional<Choice> best_law(const CurveFit& viscous, const Recording& recordi
         if (keep_slow_terms && !has_slow_term(viscous)) break;
         const auto trial = without_components(viscous, options.near_hz.has_value(), keep_slow_terms);
         if (!trial || !rings_enough(*trial)) continue;
-        const bool misfit = leaves_more_than_noise(*trial, event) || noise_rings_with_mode(*trial);
+        // Ringing that the noise model took up leaves nothing for the score of a small change to gain.
+        const bool misfit = leaves_more_than_noise(*trial, event) ||
+                            noise_rings_at(*trial, trial->oscillator().angular_frequency());
         LawFit law = law_from(*trial, measured_of(recording.quantity), misfit);
         const bool beats = law.terms.count() > 0 &&
                            law.criterion + surcharge(law.terms, *trial) < criterion_of(viscous) &&
