@@ -301,8 +301,7 @@ Explanation explain(const Recording& recording, const Event& event, const CurveF
         viscous = std::move(first->fit);
     }
     auto held = fit_held_release(viscous, recording, explanation.event, options);
-    if (!held || !held->explained)
-        explanation.law = law_from_earlier_start(viscous, recording, explanation.event, options);
+    explanation.law = law_from_earlier_start(viscous, recording, explanation.event, options);
     if (held && !explanation.law) {
         const double start_s = recording.clock.time_of(viscous.window.begin);
         if (start_s > held->release_s + held->uncertainty_s)
@@ -344,6 +343,10 @@ EventIdentification identify_event(const Recording& recording, const Event& even
         contain_also(result.curve_fit.quantities, running);
         contain_also(result.curve_fit.modes.front().quantities, running);
     }
+    // A law that holds for the motion before that start as well tells that it was no second hit.
+    if (law && law->curve.window.begin < result.event.begin)
+        std::erase_if(result.event.findings,
+                      [](const Finding& finding) { return finding.code == "double_hit"; });
     result.findings = explanation.answer().findings;
     if (result.curve_fit.status != MethodStatus::ok) return unanswered(std::move(result));
     if (!fit.valid) {  // behind a release that noise hides is too little left for the simple methods
