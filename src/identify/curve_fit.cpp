@@ -382,20 +382,23 @@ bool mind_knocks(CurveFit& fit, const Recording& recording) {
 
 }  // namespace
 
-bool same_noise_behind(const CurveFit& fit, const Event& event) {
+bool same_noise(const VectorXd& innovations, Index split) {
     constexpr double false_alarm = 1e-3;
-    constexpr Index fewest = 20;
-    const double end_s = static_cast<double>(event.end - fit.window.begin) / fit.window.rate_hz;
-    const Index split =
-        std::upper_bound(fit.samples.time.begin(), fit.samples.time.end(), end_s) - fit.samples.time.begin();
-    const Index behind = fit.samples.size() - split;
-    if (split < fewest || behind < fewest) return true;
-    const double ratio = fit.innovations.tail(behind).squaredNorm() / static_cast<double>(behind) /
-                         (fit.innovations.head(split).squaredNorm() / static_cast<double>(split));
+    const Index behind = innovations.size() - split;
+    const double ratio = innovations.tail(behind).squaredNorm() / static_cast<double>(behind) /
+                         (innovations.head(split).squaredNorm() / static_cast<double>(split));
     if (!std::isfinite(ratio))
         return false;  // numbers at the end of their range, or nothing but equal values
     const double below = f_probability(ratio, static_cast<double>(behind), static_cast<double>(split));
     return below > false_alarm / 2.0 && below < 1.0 - false_alarm / 2.0;
+}
+
+bool same_noise_behind(const CurveFit& fit, const Event& event) {
+    const double end_s = static_cast<double>(event.end - fit.window.begin) / fit.window.rate_hz;
+    const Index split =
+        std::upper_bound(fit.samples.time.begin(), fit.samples.time.end(), end_s) - fit.samples.time.begin();
+    const bool too_few = std::min(split, fit.samples.size() - split) < fewest_to_tell_noise;
+    return too_few || same_noise(fit.innovations, split);
 }
 
 bool noise_rings_at(const CurveFit& fit, double angular_frequency) {

@@ -11,9 +11,13 @@ namespace ringwright::identify {
 /// How far behind the decay a fit reads on: the noise there is the same noise, and a short decay needs it.
 [[nodiscard]] std::size_t end_of_fit(const Event& event);
 
-/// Whether what is read behind the decay has the same noise as the decay: an F test of the innovations' mean
-/// squares (one false alarm in a thousand). A mass that sticks, or a coarse sensor at rest, is quieter; a
-/// hand on the bench is louder.
+/// Rows on either side without which `same_noise` tells nothing.
+inline constexpr Eigen::Index fewest_to_tell_noise = 20;
+/// Whether innovations have one mean square before row `split` and from there on: an F test, one false alarm
+/// in a thousand.
+[[nodiscard]] bool same_noise(const Eigen::VectorXd& innovations, Eigen::Index split);
+/// Whether what is read behind the decay has the same noise as the decay, or is too little to tell. A mass
+/// that sticks, or a coarse sensor at rest, is quieter; a hand on the bench is louder.
 [[nodiscard]] bool same_noise_behind(const CurveFit& fit, const Event& event);
 
 /// Estimates the noise of the residuals and the parameter map; false where the design has not full rank.
@@ -31,8 +35,8 @@ bool estimate_noise(CurveFit& fit, const Eigen::MatrixXd& all_columns, const Eig
 /// Generalised least squares to convergence: noise, parameters, noise … until neither moves.
 bool settle(CurveFit& fit);
 
-/// Whether the noise model has a resonance about this frequency (rad/s; 6 dB above what it has at half of it):
-/// ringing that the model of the decay leaves, rather than noise.
+/// Whether the noise model has a resonance about this frequency (rad/s; 6 dB above what it has at half of
+/// it): ringing that the model of the decay leaves, rather than noise.
 [[nodiscard]] bool noise_rings_at(const CurveFit& fit, double angular_frequency);
 
 /// Replaces isolated spikes (beyond 7 robust standard deviations of the residuals, at most 1 % of the

@@ -241,6 +241,14 @@ std::optional<LawFit> law_from_earlier_start(const CurveFit& viscous, const Reco
     return law;
 }
 
+// Whether a law holds for the motion before the event's start as well, a quarter of a period and more: then
+// that was no second hit.
+bool holds_before(const LawFit& law, const Event& event) {
+    const double period_s = 2.0 * std::numbers::pi / law.viscous.oscillator().angular_frequency();
+    const auto quarter = static_cast<std::size_t>(0.25 * period_s * law.curve.window.rate_hz);
+    return law.curve.window.begin + quarter <= event.begin;
+}
+
 // The two simple methods know viscous damping only.
 void explain_by_law(Agreement& agreement, const std::string& model) {
     if (!agreement.tested || agreement.consistent) return;
@@ -343,8 +351,7 @@ EventIdentification identify_event(const Recording& recording, const Event& even
         contain_also(result.curve_fit.quantities, running);
         contain_also(result.curve_fit.modes.front().quantities, running);
     }
-    // A law that holds for the motion before that start as well tells that it was no second hit.
-    if (law && law->curve.window.begin < result.event.begin)
+    if (law && holds_before(*law, result.event))
         std::erase_if(result.event.findings,
                       [](const Finding& finding) { return finding.code == "double_hit"; });
     result.findings = explanation.answer().findings;

@@ -783,7 +783,6 @@ std::optional<LawFit> choose_law(const CurveFit& viscous, const Recording& recor
     LawFit fit = std::move(chosen->law);
     widen(fit, recording, event);
     fit = pruned(fit);
-
     if (fit.terms.friction && fit.measured == Measured::acceleration) fit = without_jumps(fit);
     if (fit.terms.friction && !settle_branches(fit)) return std::nullopt;
     constexpr double most_growth = 1.1;  // by chance, over a wider window

@@ -15,7 +15,7 @@ using Eigen::VectorXd;
 namespace {
 
 constexpr double two_pi = 2.0 * std::numbers::pi;
-constexpr double earlier_false_alarm = 1e-4, behind_false_alarm = 1e-3;
+constexpr double earlier_false_alarm = 1e-4;
 constexpr double first_step = 0.25, last_step = 0.02;  // periods
 constexpr double farthest_without_quiet = 2.0;         // periods
 constexpr int evaluations = 20;
@@ -196,20 +196,14 @@ bool leave_plateau(LawFit& fit, const Recording& recording, const Event& event) 
 }
 
 void widen_forwards(LawFit& fit, const Recording& recording, const Event& event) {
-    constexpr Index fewest = 20;
     const std::size_t wanted = end_of_fit(event), end = end_of(fit);
-    if (wanted < end + static_cast<std::size_t>(fewest * fit.curve.samples.block)) return;
-    const Index before = fit.curve.samples.size();
+    const Index before = fit.curve.samples.size(), block = fit.curve.samples.block;
+    if (wanted < end + static_cast<std::size_t>(fewest_to_tell_noise * block)) return;
     const auto longer = on_window(fit, recording, fit.curve.window.begin, wanted);
     if (!longer) return;
-    const VectorXd innovations = innovations_of(*longer);
-    const Index behind = innovations.size() - before;
-    if (behind < fewest || before < fewest) return;
-    const double ratio = innovations.tail(behind).squaredNorm() / static_cast<double>(behind) /
-                         (innovations.head(before).squaredNorm() / static_cast<double>(before));
-    if (!std::isfinite(ratio)) return;
-    const double below = f_probability(ratio, static_cast<double>(behind), static_cast<double>(before));
-    if (below > behind_false_alarm / 2.0 && below < 1.0 - behind_false_alarm / 2.0) fit = *longer;
+    const Index behind = longer->curve.samples.size() - before;
+    if (std::min(before, behind) < fewest_to_tell_noise) return;
+    if (same_noise(innovations_of(*longer), before)) fit = *longer;
 }
 
 bool starts_before_release(const LawFit& fit, const Recording& recording, const Event& event) {
