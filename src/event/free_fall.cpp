@@ -364,15 +364,45 @@ Flight to_flight(const Blocks& blocks, const Plateau& plateau) {
             plateau.rms};
 }
 
+/// How plainly a plateau bends: the share of its scatter that a parabola stands for, with the sign of the
+/// curvature.
+double bend_of(const Blocks& blocks, const Plateau& plateau) {
+    const Curve curve = fit_curve(blocks.means, plateau.begin, plateau.end, true);
+    const auto n = static_cast<double>(plateau.end - plateau.begin);
+    const double squares = plateau.rms * plateau.rms * (n - 1.0), left = curve.rms * curve.rms * (n - 3.0);
+    return squares > 0.0 ? std::copysign(1.0 - left / squares, curve.c2) : 0.0;
+}
+
+/// Whether two plateaus bend towards each other, as crest and trough of a swing do, or what is seen of them:
+/// a parabola stands for more than three quarters of the scatter in either. Noise about a level does that in
+/// one of 100 of the shortest, and not in both.
+bool bend_together(const Blocks& blocks, const Plateau& first, const Plateau& second) {
+    constexpr double plainly = 0.75;
+    const double towards = second.level > first.level ? 1.0 : -1.0;
+    return towards * bend_of(blocks, first) > plainly && -towards * bend_of(blocks, second) > plainly;
+}
+
+/// Whether the sensor leaves what lies between two levels on the way from one to the other: a hold that ends
+/// goes from the weight to nothing. A hand may push or pull by as much as the weight while it lets go; a
+/// spring that is let go pulls by more, and swings back past a level gravity away.
+bool overshoots(const Blocks& blocks, const Plateau& first, const Plateau& second) {
+    constexpr double most = standard_gravity, deviations = 4.0;
+    const double allowed = most + deviations * blocks.quiet;
+    const double low = std::min(first.level, second.level) - allowed,
+                 high = std::max(first.level, second.level) + allowed;
+    const auto way = blocks.means.subspan(first.end, second.begin - std::min(first.end, second.begin));
+    return std::any_of(way.begin(), way.end(), [&](double value) { return value < low || value > high; });
+}
+
 /// Whether the sensor goes from a hold to free fall within the time in which a hand or magnet lets go, and
 /// was held for longer than that: crest and trough of a swing that lie 1 g apart are each shorter than the
-/// way from one to the other.
+/// way from one to the other, or bend towards each other.
 bool lets_go(const Blocks& blocks, const Plateau& hold, const Plateau& fall) {
     constexpr double longest_s = 0.06, held_longer = 1.5;
     const double gap = static_cast<double>(fall.begin - std::min(fall.begin, hold.end));
     const double held = static_cast<double>(hold.end - hold.begin);
     return like_gravity(fall.level - hold.level) && gap * blocks.step_s < longest_s &&
-           held > held_longer * gap;
+           held > held_longer * gap && !bend_together(blocks, hold, fall) && !overshoots(blocks, hold, fall);
 }
 
 bool at_level_of(const Flight& flight, const Plateau& plateau) {
