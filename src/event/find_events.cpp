@@ -34,6 +34,8 @@ constexpr std::size_t shortest_recording = 16;
 constexpr double least_amplitude = 3.0;
 /// The same against all that the rest shows, slow wandering included.
 constexpr double least_amplitude_in_rest = 4.0;
+/// The swing of a decay against those that the recording shows elsewhere.
+constexpr double least_swing_against_elsewhere = 4.0;
 /// What the decay may leave unexplained over its first cycle, as a share of its height: of a long decay
 /// (other modes ring along), of a short one (it has little else to show), of one that looks like a mere
 /// pulse.
@@ -154,16 +156,19 @@ std::optional<Start> locate_last_start(const Search& search, const Onset& onset,
     return again && again->position > start->position ? again : start;
 }
 
-/// Start and course, the start a second time with the noise that the rest shows. Sets `hit_seen` where a
-/// second hit makes the start another one than without looking for it.
+/// Whether the start is looked for a second time, with the noise that the rest shows.
+enum class Looks { one, two };
+
+/// Start and course. Sets `hit_seen` where a second hit makes the start another one than without looking for
+/// it.
 std::optional<Found> follow_onset(const Search& search, const Onset& onset, StartLimits limits,
-                                  SecondHits second_hits, bool& hit_seen) {
+                                  SecondHits second_hits, bool& hit_seen, Looks looks = Looks::two) {
     std::optional<Start> start = locate_last_start(search, onset, limits, second_hits, hit_seen);
     if (!start || start->position + 8 > limits.latest) return {};
     // What does not stand out of the noise is not worth following through a long recording.
     if (start->amplitude < 0.8 * least_amplitude * start->noise_rms) return {};
     Course course = follow_decay(search.pyramid, *start, limits.latest);
-    if (course.reaches_noise) {
+    if (course.reaches_noise && looks == Looks::two) {
         limits.rest = SampleRange{course.end, course.rest_end};
         if (std::optional<Start> again = locate_last_start(search, onset, limits, second_hits, hit_seen)) {
             if (again->position + 8 <= limits.latest) {
@@ -388,6 +393,24 @@ bool convincing(Search& search, const Found& found, const std::vector<Onset>& al
     return !follows_a_path(search, found);
 }
 
+/// Where the noise of the rest moved the start on to the end of a swing that one decay explains but for a few
+/// per cent, as another law of damping makes it do, and that end hardly stands out of the noise: the swing.
+std::optional<Found> swing_before(Search& search, const Onset& onset, const StartLimits& limits,
+                                  const Found& found, const std::vector<Onset>& all) {
+    constexpr double later = 0.4;  // of a cycle
+    const auto stands_out = [&](const Found& f) {
+        return swing_against_elsewhere(search.pyramid, f, {f}, {}) >= least_swing_against_elsewhere;
+    };
+    if (!is_brief(found) || stands_out(found)) return {};
+    bool hit_seen = false;
+    std::optional<Found> swing =
+        follow_onset(search, onset, limits, SecondHits::looked_for, hit_seen, Looks::one);
+    if (!swing || !swing->course.reaches_noise) return {};
+    const auto moved = static_cast<double>(found.begin()) - static_cast<double>(swing->begin());
+    if (moved < later * swing->cycle() || !stands_out(*swing) || !convincing(search, *swing, all)) return {};
+    return swing;
+}
+
 /// The decay from the last hit on; where that is none, from the first: a mass that comes to stick surprises
 /// as a second hit does, and nothing rings after it.
 std::optional<Found> follow_convincingly(Search& search, const Onset& onset, const StartLimits& limits,
@@ -395,7 +418,10 @@ std::optional<Found> follow_convincingly(Search& search, const Onset& onset, con
     bool hit_seen = false;
     std::optional<Found> last = follow_onset(search, onset, limits, SecondHits::looked_for, hit_seen);
     if (!last) return {};
-    if (convincing(search, *last, all)) return last;
+    if (convincing(search, *last, all)) {
+        if (std::optional<Found> swing = swing_before(search, onset, limits, *last, all)) return swing;
+        return last;
+    }
     if (!hit_seen) return {};
     std::optional<Found> first = follow_onset(search, onset, limits, SecondHits::ignored, hit_seen);
     if (!first || !first->course.reaches_noise) return {};
@@ -539,13 +565,12 @@ std::vector<SampleRange> clipped_stretches(const Search& search, double cycle) {
 /// A decay has to stand out of all that the recording shows elsewhere: noise wanders, and a mode that the
 /// ground keeps in motion rises and falls by chance.
 void drop_wanderings(Search& search) {
-    constexpr double stands_out = 4.0;
     const std::vector<Found> all = search.found;
     std::erase_if(search.found, [&](const Found& f) {
         // Another mode than the one meant may well be in motion before.
         if (f.is_drop() || (!is_brief(f) && search.mode_meant)) return false;
         const std::vector<SampleRange> clipped = clipped_stretches(search, f.cycle());
-        return swing_against_elsewhere(search.pyramid, f, all, clipped) < stands_out;
+        return swing_against_elsewhere(search.pyramid, f, all, clipped) < least_swing_against_elsewhere;
     });
 }
 
