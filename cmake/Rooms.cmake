@@ -93,6 +93,17 @@ function(ringwright_room name)
   endforeach()
 endfunction()
 
+# The planner's decisions, made once by the build and compiled into the room of values.
+function(ringwright_transform_plans)
+  set(table ${PROJECT_BINARY_DIR}/transform_plans.cpp)
+  add_executable(write_transform_plans ${PROJECT_SOURCE_DIR}/cmake/write_transform_plans.cpp)
+  target_link_libraries(write_transform_plans PRIVATE ringwright_flags ${fftw})
+  set_target_properties(write_transform_plans PROPERTIES RINGWRIGHT_CARRIES ON
+    RUNTIME_OUTPUT_DIRECTORY ${PROJECT_BINARY_DIR}/CMakeFiles)
+  add_custom_command(OUTPUT ${table} COMMAND write_transform_plans ${table} VERBATIM)
+  target_sources(ringwright_value PRIVATE ${table})
+endfunction()
+
 # `ringwright`: all rooms as one name, for callers who link the library.
 function(ringwright_umbrella target)
   add_library(${target} INTERFACE)
@@ -134,5 +145,5 @@ function(ringwright_program target library)
   add_dependencies(${target} ringwright_drawing_module)
   target_include_directories(${target} PRIVATE ${PROJECT_SOURCE_DIR}/src)
   target_compile_definitions(${target} PRIVATE RINGWRIGHT_VERSION="${PROJECT_VERSION}")
-  target_link_libraries(${target} PRIVATE ${library} ringwright_flags fmt::fmt nlohmann_json::nlohmann_json)
+  target_link_libraries(${target} PRIVATE ${library} ringwright_flags ${crypto} fmt::fmt nlohmann_json::nlohmann_json)
 endfunction()

@@ -9,6 +9,8 @@
 #include <new>
 #include <type_traits>
 
+#include "value/transform_plans.hpp"
+
 namespace ringwright {
 namespace {
 
@@ -37,9 +39,12 @@ fftw_plan plan_for(std::size_t length, const Buffers& buffers) {
     static std::map<std::size_t, Plan> plans;
     const std::scoped_lock lock(mutex);
     Plan& plan = plans[length];
-    if (!plan)
+    if (!plan) {
+        // A processor that lacks what the decision rests on refuses it, and FFTW plans as if there were none.
+        if (const char* kept = kept_decision(length)) fftw_import_wisdom_from_string(kept);
         plan.reset(fftw_plan_dft_r2c_1d(static_cast<int>(length), buffers.input.get(), buffers.output.get(),
                                         FFTW_ESTIMATE));
+    }
     return plan.get();
 }
 

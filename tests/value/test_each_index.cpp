@@ -11,6 +11,7 @@
 
 #include "ringwright/each_index.hpp"
 #include "ringwright/power_spectrum.hpp"
+#include "value/transform_plans.hpp"
 
 using namespace ringwright;
 
@@ -67,4 +68,20 @@ TEST_CASE("the power of a cosine stands at its frequency, and that of all lines 
         CHECK(power == spectra[0]);
     }
     CHECK(padded_power_spectrum(std::vector<double>{1.0}, 1.0).size() == 9);
+}
+
+TEST_CASE("what the planner decided when the program was built is there for each length that is asked for") {
+    // Every power of two from the shortest that padded_power_spectrum takes; a spectrum of one spike is flat.
+    for (std::size_t length = 16; length <= std::size_t{1} << 21U; length *= 2) {
+        CAPTURE(length);
+        CHECK(kept_decision(length) != nullptr);
+        std::vector<double> spike(length, 0.0);
+        spike[length / 3] = 2.0;
+        const std::vector<double> power = padded_power_spectrum(spike, 1.0);
+        REQUIRE(power.size() == length / 2 + 1);
+        const auto [least, most] = std::ranges::minmax(power);
+        CHECK(least == Approx(4.0));
+        CHECK(most == Approx(4.0));
+    }
+    CHECK(kept_decision(48) == nullptr);
 }
