@@ -106,6 +106,18 @@ class Projection {
         return fit;
     }
 
+    /// What the shape with its best amplitudes leaves of the sum of squares, from the normal equations:
+    /// enough to compare shapes by.
+    [[nodiscard]] double rough_residual_sum(const DecayShape& shape) {
+        terms_.set(shape, 0.0);
+        const NormalEquations equations = normal_equations();
+        const std::array<double, 3> x = solve(equations);
+        const double sum = total_ - x[1] * equations.right[1] - x[2] * equations.right[2];
+        return std::isfinite(sum) ? std::clamp(sum, 0.0, total_) : total_;
+    }
+
+    [[nodiscard]] double total_sum() const { return total_; }
+
     /// What the last fit left of each point.
     [[nodiscard]] const std::vector<double>& left() const { return left_; }
 
@@ -181,8 +193,18 @@ std::optional<DecayShape> moved(const DecayShape& at, const Slopes& slopes, doub
                       std::clamp(at.damping_ratio * std::exp(move_d), 1e-7, 50.0)};
 }
 
-/// Levenberg–Marquardt on (ln ω_n, ln ζ) with the amplitudes eliminated at every step.
-DecayFit refine(Projection& projection, const DecayShape& start) {
+/// Whether a fit on its way has all but come to one that was found before: it will end there as well.
+bool arrives_at(const DecayFit& found, const DecayFit& fit) {
+    constexpr double near = 0.01, near_in_damping = 0.1, as_good = 1.01;
+    const double frequencies = fit.shape.undamped_angular_frequency / found.shape.undamped_angular_frequency;
+    const double dampings = fit.shape.damping_ratio / found.shape.damping_ratio;
+    return std::abs(std::log(frequencies)) < near && std::abs(std::log(dampings)) < near_in_damping &&
+           fit.residual_sum < as_good * found.residual_sum;
+}
+
+/// Levenberg–Marquardt on (ln ω_n, ln ζ) with the amplitudes eliminated at every step; ends early where it
+/// comes to what was found from another start.
+DecayFit refine(Projection& projection, const DecayShape& start, const DecayFit* found = nullptr) {
     ++refined_shapes;
     constexpr int largest_iterations = 40, attempts = 8;
     DecayFit best = projection.fit(start);
@@ -203,7 +225,7 @@ DecayFit refine(Projection& projection, const DecayShape& start) {
                 damping = std::min(damping * 6.0, 1e9);
             }
         }
-        if (gain < 1e-6) break;
+        if (gain < 1e-6 || (found && arrives_at(*found, best))) break;
     }
     return best;
 }
@@ -282,13 +304,13 @@ double roughly_explained(std::span<const double> points) {
     const double per_cycle = 2.0 * std::numbers::pi / static_cast<double>(points.size());
     const double highest = static_cast<double>(points.size()) / 2.3;
     Projection projection(points);
-    double best = 0.0;
+    double least = projection.total_sum();
     for (double cycles = 0.5; cycles <= highest; cycles += 0.6)
-        best = std::max(best,
-                        projection.fit({cycles * per_cycle, 0.25 / (1.0 + 2.0 * cycles)}).explained_ratio());
+        least =
+            std::min(least, projection.rough_residual_sum({cycles * per_cycle, 0.25 / (1.0 + 2.0 * cycles)}));
     for (double cycles = 0.4; cycles <= highest; cycles *= 2.0)
-        best = std::max(best, projection.fit({cycles * per_cycle, 0.5}).explained_ratio());
-    return best;
+        least = std::min(least, projection.rough_residual_sum({cycles * per_cycle, 0.5}));
+    return least > 0.0 ? (projection.total_sum() - least) / least : 1e30;
 }
 
 std::optional<DecayFit> fit_decay(std::span<const double> points, const std::optional<DecayShape>& start) {
@@ -298,16 +320,21 @@ std::optional<DecayFit> fit_decay(std::span<const double> points, const std::opt
         if (!(projection.fit(*start).total_sum > 0.0)) return {};
         return refine(projection, *start);
     }
-    std::vector<DecayFit> fits;
-    for (const DecayShape& shape : starting_shapes(points.size())) fits.push_back(projection.fit(shape));
-    const auto better = [](const DecayFit& a, const DecayFit& b) { return a.residual_sum < b.residual_sum; };
-    const std::size_t kept = std::min<std::size_t>(3, fits.size());
-    std::partial_sort(fits.begin(), fits.begin() + static_cast<std::ptrdiff_t>(kept), fits.end(), better);
-    if (!(fits.front().total_sum > 0.0)) return {};
-    DecayFit best = refine(projection, fits.front().shape);
+    if (!(projection.total_sum() > 0.0)) return {};
+    struct Start {
+        double residual_sum = 0.0;
+        DecayShape shape;
+    };
+    std::vector<Start> starts;
+    for (const DecayShape& shape : starting_shapes(points.size()))
+        starts.push_back({projection.rough_residual_sum(shape), shape});
+    const std::size_t kept = std::min<std::size_t>(3, starts.size());
+    std::ranges::partial_sort(starts, starts.begin() + static_cast<std::ptrdiff_t>(kept), {},
+                              &Start::residual_sum);
+    DecayFit best = refine(projection, starts.front().shape);
     for (std::size_t i = 1; i < kept; ++i) {
-        const DecayFit other = refine(projection, fits[i].shape);
-        if (better(other, best)) best = other;
+        const DecayFit other = refine(projection, starts[i].shape, &best);
+        if (other.residual_sum < best.residual_sum) best = other;
     }
     return best;
 }
