@@ -4,6 +4,7 @@
 
 #include <Eigen/Cholesky>
 #include <algorithm>
+#include <array>
 #include <cmath>
 #include <numbers>
 
@@ -21,16 +22,51 @@ constexpr double half_window = 0.125;  // cycles to each side of the vertex
 
 struct Extreme {
     double time = 0.0, value = 0.0;
-    Index samples = 0;  // that its parabola used
 };
 
-// Parabola by least squares over the samples within half a window of `centre` (moments about the centre).
-std::optional<Extreme> vertex_near(const DecaySamples& samples, double centre, double half_width) {
-    const auto begin = samples.time.begin();
-    const auto first = std::lower_bound(begin, samples.time.end(), centre - half_width) - begin;
-    const auto last = std::upper_bound(begin, samples.time.end(), centre + half_width) - begin;
+struct Window {
+    Index first = 0, last = 0;
+    bool operator==(const Window&) const = default;
+};
+
+// The first sample for which `reached(time)`: where steps are equal, a step or so from where it must be.
+template <typename Reached>
+Index first_sample(const DecaySamples& samples, double near_time, Reached reached) {
+    const VectorXd& time = samples.time;
+    if (!samples.uniform || samples.stretches.size() != 1)
+        return std::partition_point(time.begin(), time.end(), [&](double t) { return !reached(t); }) -
+               time.begin();
+    const double steps = std::ceil((near_time - time(0)) / samples.step_s);
+    auto at = static_cast<Index>(std::clamp(steps, 0.0, static_cast<double>(time.size())));
+    while (at > 0 && reached(time(at - 1))) --at;
+    while (at < time.size() && !reached(time(at))) ++at;
+    return at;
+}
+
+Window window_about(const DecaySamples& samples, double centre, double half_width) {
+    const double begin = centre - half_width, end = centre + half_width;
+    return {first_sample(samples, begin, [&](double t) { return t >= begin; }),
+            first_sample(samples, end, [&](double t) { return t > end; })};
+}
+
+// Coefficients of 1, x, x² from the sums of xⁱ (i = 0 … 4) and of y xⁱ (i = 0 … 2), by Cholesky's factor; not
+// finite where three samples do not make a parabola.
+std::array<double, 3> parabola(const std::array<double, 5>& s, const std::array<double, 3>& m) {
+    const double l00 = std::sqrt(s[0]), l10 = s[1] / l00, l20 = s[2] / l00;
+    const double l11 = std::sqrt(s[2] - l10 * l10), l21 = (s[3] - l20 * l10) / l11;
+    const double l22 = std::sqrt(s[4] - l20 * l20 - l21 * l21);
+    const double y0 = m[0] / l00, y1 = (m[1] - l10 * y0) / l11, y2 = (m[2] - l20 * y0 - l21 * y1) / l22;
+    const double c2 = y2 / l22, c1 = (y1 - l21 * c2) / l11;
+    return {(y0 - l10 * c1 - l20 * c2) / l00, c1, c2};
+}
+
+// Parabola by least squares over the samples of a window (moments about its centre).
+std::optional<Extreme> vertex_within(const DecaySamples& samples, const Window& window, double centre,
+                                     double half_width) {
+    const auto [first, last] = window;
     if (last - first < 3) return std::nullopt;
-    double s[5] = {}, m[3] = {};
+    std::array<double, 5> s{};
+    std::array<double, 3> m{};
     for (Index i = first; i < last; ++i) {
         const double x = (samples.time(i) - centre) / half_width, y = samples.value(i);
         const double x2 = x * x;
@@ -43,23 +79,26 @@ std::optional<Extreme> vertex_near(const DecaySamples& samples, double centre, d
         m[1] += y * x;
         m[2] += y * x2;
     }
-    Eigen::Matrix3d normal;
-    normal << s[0], s[1], s[2], s[1], s[2], s[3], s[2], s[3], s[4];
-    const Eigen::Vector3d c = normal.llt().solve(Eigen::Vector3d(m[0], m[1], m[2]));
-    if (!c.allFinite() || c(2) == 0.0) return std::nullopt;
-    const double x = std::clamp(-c(1) / (2.0 * c(2)), -1.5, 1.5);
-    return Extreme{centre + x * half_width, c(0) + x * (c(1) + x * c(2)), last - first};
+    const auto [c0, c1, c2] = parabola(s, m);
+    if (!std::isfinite(c0) || !std::isfinite(c1) || !std::isfinite(c2) || c2 == 0.0) return std::nullopt;
+    const double x = std::clamp(-c1 / (2.0 * c2), -1.5, 1.5);
+    return Extreme{centre + x * half_width, c0 + x * (c1 + x * c2)};
 }
 
 // The vertex, the window centred on it by two further passes; nothing when it lies farther than `reach` from
 // where it should be.
 std::optional<Extreme> refine(const DecaySamples& samples, double expected, double half_width, double reach) {
+    constexpr int most_passes = 3;
     std::optional<Extreme> extreme;
+    Window window = window_about(samples, expected, half_width);
     double time = expected;
-    for (int pass = 0; pass < 3; ++pass) {
-        extreme = vertex_near(samples, time, half_width);
+    for (int pass = 0; pass < most_passes; ++pass) {
+        extreme = vertex_within(samples, window, time, half_width);
         if (!extreme || std::abs(extreme->time - expected) > reach) return std::nullopt;
         time = extreme->time;
+        const Window moved = window_about(samples, time, half_width);
+        if (moved == window) break;  // the same samples have the same parabola
+        window = moved;
     }
     return extreme;
 }
