@@ -93,10 +93,12 @@ struct OscillatorConstants {
     [[nodiscard]] double slow_rate() const { return omega * omega / (decay + root); }
 };
 
-// e^(−s t) C(p,t), e^(−s t) S(p,t) and e^(−s t) ∂S/∂p at every time.
+// e^(−s t) C(p,t), e^(−s t) S(p,t) and, where derivatives are wanted, e^(−s t) ∂S/∂p at every time.
 struct Kernels {
     ArrayXd c, s, ds_dp;
 };
+
+enum class Wanted { values, derivatives };
 
 // Power series in p t², for |p| t² < 0.05: six terms leave less than 1e-16.
 void near_critical(const OscillatorConstants& k, double t, Index i, Kernels& out) {
@@ -109,7 +111,7 @@ void near_critical(const OscillatorConstants& k, double t, Index i, Kernels& out
         -t * t2 / 6.0 * (1.0 - x / 10.0 * (1.0 - x / 28.0 * (1.0 - x / 54.0 * (1.0 - x / 88.0))));
     out.c(i) = e * c;
     out.s(i) = e * s;
-    out.ds_dp(i) = e * ds;
+    if (out.ds_dp.size() > 0) out.ds_dp(i) = e * ds;
 }
 
 // Fills [begin, end) with e^(−s t)C and e^(−s t)S. With equal steps by recurrence, started afresh every 32
@@ -150,9 +152,9 @@ void creeping(const OscillatorConstants& k, const VectorXd& time, Index begin, I
 
 // `step` is the common step within each stretch, or 0.
 Kernels kernels_at(const OscillatorConstants& k, const VectorXd& time, double step,
-                   const std::vector<Stretch>& stretches) {
+                   const std::vector<Stretch>& stretches, Wanted wanted) {
     const Index n = time.size();
-    Kernels out{ArrayXd(n), ArrayXd(n), ArrayXd(n)};
+    Kernels out{ArrayXd(n), ArrayXd(n), ArrayXd(wanted == Wanted::derivatives ? n : 0)};
     const auto fill = [&](Index begin, Index end) {
         while (begin < end && std::abs(k.p) * time(begin) * time(begin) < 0.05)
             near_critical(k, time(begin), begin, out), ++begin;
@@ -161,6 +163,7 @@ Kernels kernels_at(const OscillatorConstants& k, const VectorXd& time, double st
             ringing(k, time, begin, end, step, out);
         else
             creeping(k, time, begin, end, step, out);
+        if (wanted == Wanted::values) return;
         const Index m = end - begin;
         out.ds_dp.segment(begin, m) =
             (time.segment(begin, m).array() * out.c.segment(begin, m) - out.s.segment(begin, m)) /
@@ -189,8 +192,8 @@ MatrixXd over_blocks(const DecaySamples& samples, Index columns, Fill fill) {
 }
 
 // On the clock of a release, before which nothing has moved.
-Kernels kernels_since(const OscillatorConstants& k, const VectorXd& time, double release) {
-    return kernels_at(k, (time.array() - release).cwiseMax(0.0), 0.0, {});
+Kernels kernels_since(const OscillatorConstants& k, const VectorXd& time, double release, Wanted wanted) {
+    return kernels_at(k, (time.array() - release).cwiseMax(0.0), 0.0, {}, wanted);
 }
 
 struct Released {
@@ -198,7 +201,7 @@ struct Released {
 };
 
 Released released_derivatives(const OscillatorConstants& k, const VectorXd& time, double release) {
-    const Kernels kernels = kernels_since(k, time, release);
+    const Kernels kernels = kernels_since(k, time, release, Wanted::derivatives);
     const ArrayXd since = (time.array() - release).cwiseMax(0.0);
     const ArrayXd by_decay = kernels.s - since * (kernels.c + k.decay * kernels.s);
     const ArrayXd by_p = -0.5 * since * kernels.s + k.decay * kernels.ds_dp;
@@ -221,14 +224,15 @@ MatrixXd linear_columns(const DecayModel& model, const DecaySamples& samples) {
         for (std::size_t i = 0; i < model.oscillators.size(); ++i) {
             const OscillatorConstants k(model.oscillators[i]);
             if (i == 0 && model.release) {
-                const Kernels kernels = kernels_since(k, time, *model.release);
+                const Kernels kernels = kernels_since(k, time, *model.release, Wanted::values);
                 const ArrayXd falling = kernels.c + k.decay * kernels.s;
                 const auto after = time.array() >= *model.release;
                 out.col(column++) = model.let_go_slowly ? after.select(falling, 0.0).eval() : falling;
                 if (model.let_go_slowly) out.col(column++) = after.select(ArrayXd::Zero(time.size()), 1.0);
                 continue;
             }
-            const Kernels kernels = kernels_at(k, time, common_step(samples), samples.stretches);
+            const Kernels kernels =
+                kernels_at(k, time, common_step(samples), samples.stretches, Wanted::values);
             out.col(column) = kernels.c;
             out.col(column + 1) = k.omega * kernels.s;
             column += 2;
@@ -257,7 +261,8 @@ MatrixXd derivative_columns(const DecayModel& model, const DecaySamples& samples
                 continue;
             }
             const double a = coefficients(linear), b = coefficients(linear + 1);
-            const Kernels kernels = kernels_at(k, time, common_step(samples), samples.stretches);
+            const Kernels kernels =
+                kernels_at(k, time, common_step(samples), samples.stretches, Wanted::derivatives);
             const ArrayXd by_decay = -time.array() * (a * kernels.c + b * k.omega * kernels.s);
             const ArrayXd by_p = -0.5 * a * time.array() * kernels.s + b * k.omega * kernels.ds_dp;
             out.col(column) = by_decay * k.ds_dz + by_p * k.dp_dz;

@@ -49,14 +49,14 @@ class Projection {
             residual.setConstant(1e3 * (1.0 + response_.norm()));
             return;
         }
-        project(trial);
+        project(trial, parameters);
         residual = residual_;
     }
 
     void jacobian_at(const VectorXd& parameters, MatrixXd& jacobian) {
         DecayModel trial = model_;
         trial.set_parameters(parameters);
-        project(trial);
+        project(trial, parameters);
         jacobian = derivative_columns(trial, samples_, coefficients_);
         whiten(noise_, samples_.stretches, jacobian);
         jacobian.applyOnTheLeft(factor_.householderQ().adjoint());
@@ -69,14 +69,17 @@ class Projection {
         ProjectedFit fit;
         fit.model = model_;
         fit.model.set_parameters(parameters);
-        project(fit.model);
+        project(fit.model, parameters);
         fit.coefficients = coefficients_;
         fit.residual_sum = residual_.squaredNorm();
         return fit;
     }
 
   private:
-    void project(const DecayModel& trial) {
+    // The slopes are mostly wanted where the residuals have just been.
+    void project(const DecayModel& trial, const VectorXd& parameters) {
+        if (projected_.size() > 0 && projected_ == parameters) return;
+        projected_ = parameters;
         MatrixXd columns = linear_columns(trial, samples_);
         whiten(noise_, samples_.stretches, columns);
         factor_.compute(columns);
@@ -87,7 +90,7 @@ class Projection {
     DecayModel model_;
     const DecaySamples& samples_;
     const AutoregressiveNoise& noise_;
-    VectorXd response_, residual_, coefficients_;
+    VectorXd response_, residual_, coefficients_, projected_;
     Eigen::HouseholderQR<MatrixXd> factor_;
 };
 
@@ -99,7 +102,7 @@ ProjectedFit solve_linear(const DecayModel& model, const DecaySamples& samples,
 }
 
 ProjectedFit fit_projected(const DecayModel& start, const DecaySamples& samples,
-                           const AutoregressiveNoise& noise, int most_evaluations) {
+                           const AutoregressiveNoise& noise, int most_evaluations, double tolerance) {
     Projection projection(start, samples, noise);
     LeastSquaresProblem problem;
     problem.residual_count = samples.size();
@@ -107,7 +110,7 @@ ProjectedFit fit_projected(const DecayModel& start, const DecaySamples& samples,
     problem.jacobian = [&](const VectorXd& at, MatrixXd& jacobian) { projection.jacobian_at(at, jacobian); };
     LeastSquaresOptions options;
     options.max_evaluations = most_evaluations;
-    options.tolerance = 1e-10;
+    options.tolerance = tolerance;
     const LeastSquaresFit found = fit_least_squares(problem, start.parameters(), options);
     if (!found.parameters.allFinite()) return projection.at(start.parameters());
     ProjectedFit fit = projection.at(found.parameters);

@@ -24,8 +24,9 @@ struct ProjectedFit {
 
 /// Variable projection (Golub & Pereyra 1973, Jacobian after Kaufman 1975) by Eigen's Levenberg–Marquardt
 /// from the model given. `converged` is false where the steps ran out or the parameters left the range of the
-/// model.
+/// model. `tolerance` is relative, of the sum of squares and of the parameters.
 [[nodiscard]] ProjectedFit fit_projected(const DecayModel& start, const DecaySamples& samples,
-                                         const AutoregressiveNoise& noise, int most_evaluations = 60);
+                                         const AutoregressiveNoise& noise, int most_evaluations = 60,
+                                         double tolerance = 1e-10);
 
 }  // namespace ringwright::identify
