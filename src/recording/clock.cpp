@@ -264,9 +264,19 @@ void report(const Disorder& disorder, Findings& findings) {
                 counted(disorder.set_back, "time"), disorder.first_set_back));
 }
 
+bool any_missing(const std::vector<double>& x) {
+    bool any = false;
+    for (const double v : x) any |= std::isnan(v);
+    return any;
+}
+
 // Rows without a value are left out; with a uniform clock the times of the others are then written out.
 void drop_missing(Timed& timed) {
     std::vector<double>& x = timed.values;
+    if (!any_missing(x)) {
+        if (!x.empty() && !timed.clock.uniform()) timed.clock.start_s = timed.clock.times_s.front();
+        return;
+    }
     std::size_t first = 0, last = x.size();
     while (first < last && std::isnan(x[first])) ++first;
     while (last > first && std::isnan(x[last - 1])) --last;

@@ -3,7 +3,9 @@
 #include <fmt/format.h>
 
 #include <algorithm>
+#include <array>
 #include <cmath>
+#include <limits>
 
 #include "ringwright/counting.hpp"
 
@@ -44,13 +46,21 @@ struct Extent {
 };
 constexpr std::size_t block_size = 8192;
 
+// Side by side, so that no comparison waits for the one before.
+constexpr std::size_t lanes = 8;
+
 Extent extent_of(const double* begin, const double* end) {
-    Extent extent{*begin, *begin};
-    for (const double* x = begin + 1; x != end; ++x) {
-        extent.low = *x < extent.low ? *x : extent.low;
-        extent.high = *x > extent.high ? *x : extent.high;
-    }
-    return extent;
+    std::array<double, lanes> low{}, high{};
+    low.fill(*begin), high.fill(*begin);
+    const auto take = [&](double x, std::size_t lane) {
+        low[lane] = x < low[lane] ? x : low[lane];
+        high[lane] = x > high[lane] ? x : high[lane];
+    };
+    const double* x = begin;
+    for (; end - x >= static_cast<std::ptrdiff_t>(lanes); x += lanes)
+        for (std::size_t lane = 0; lane < lanes; ++lane) take(x[lane], lane);
+    for (; x != end; ++x) take(*x, 0);
+    return {*std::ranges::min_element(low), *std::ranges::max_element(high)};
 }
 
 std::vector<Extent> extents_of(const std::vector<double>& x) {
@@ -137,12 +147,19 @@ void report_clipping(Recording& recording, double at) {
 }  // namespace
 
 double smallest_step(const std::vector<double>& samples) {
-    double smallest = 0.0;
-    for (std::size_t i = 1; i < samples.size(); ++i) {
-        const double step = std::abs(samples[i] - samples[i - 1]);
-        if (step > 0.0 && (smallest == 0.0 || step < smallest)) smallest = step;
-    }
-    return smallest;
+    constexpr double none = std::numeric_limits<double>::infinity();
+    std::array<double, lanes> smallest{};
+    smallest.fill(none);
+    const auto take = [&](std::size_t i, std::size_t lane) {
+        const double step = std::abs(samples[i] - samples[i - 1]), some = step > 0.0 ? step : none;
+        smallest[lane] = some < smallest[lane] ? some : smallest[lane];
+    };
+    std::size_t i = 1;
+    for (; i + lanes <= samples.size(); i += lanes)
+        for (std::size_t lane = 0; lane < lanes; ++lane) take(i + lane, lane);
+    for (; i < samples.size(); ++i) take(i, 0);
+    const double least = *std::ranges::min_element(smallest);
+    return least == none ? 0.0 : least;
 }
 
 Rails rails_met(const std::vector<double>& samples, const Rails& ends, double resolution) {

@@ -188,11 +188,15 @@ TEST_CASE("a failure in the midst of a reading in pieces comes out, and no threa
 }
 
 TEST_CASE("the band of stamps about a line is that of all of them, in pieces too") {
+    // A steady clock, one that slows down and one that speeds up: the hull of a bend is all of its stamps.
+    const double bend = GENERATE(0.0, 2e-8, -2e-8);
     ringwright::test::Draws draws(7002);
     std::vector<double> times;
-    for (std::size_t i = 0; i < 5000; ++i)
-        times.push_back(std::round(1e5 * (3.0 + static_cast<double>(i) / 777.0 + 1e-4 * draws.normal())) /
-                        1e5);
+    for (std::size_t i = 0; i < 5000; ++i) {
+        const double index = static_cast<double>(i), scatter = bend == 0.0 ? 1e-4 : 1e-9;
+        const double time = 3.0 + index / 777.0 + bend * index * index + scatter * draws.normal();
+        times.push_back(bend == 0.0 ? std::round(1e5 * time) / 1e5 : time);
+    }
     std::sort(times.begin(), times.end());
     const std::span<const double> all(times);
     StampCourse course = course_of(all.first(1700));
